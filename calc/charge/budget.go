@@ -19,6 +19,16 @@ const (
 	ItemPullDown         = "gate pull-down"
 )
 
+// ItemNames lists the names in the order of Items.
+func ItemNames() []string {
+	items := Items(Loads{}, Edge{}, Interval{})
+	names := make([]string, len(items))
+	for i := range items {
+		names[i] = items[i].Name
+	}
+	return names
+}
+
 // Edge is the charge that leaves C_B at once when the node rises.
 type Edge struct {
 	Gate       float64 // Q_G at the actual drive, all parallel devices [C]

@@ -31,5 +31,5 @@
 // The digits and the decimal prefix are combined before the conversion to
 // binary, so a parsed value is the float64 nearest to what is written: "63 nC"
 // is exactly the constant 63e-9. Only min, h and deg, whose factors are not
-// powers of ten, add one rounding.
+// powers of ten, add roundings of a few parts in 10^16.
 package quantity

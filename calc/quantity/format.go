@@ -24,7 +24,7 @@ func Format(v float64, d Dimension) string {
 	}
 	switch {
 	case d == Angle:
-		if degrees := v * (180 / math.Pi); finite(degrees) && v != 0 && math.Abs(degrees) > 1e-300 || v == 0 {
+		if degrees := v * (180 / math.Pi); finite(degrees) {
 			return string(appendScaled(buf[:0], degrees, def, "°"))
 		}
 	case d == Time && math.Abs(v) >= 9999.5:
@@ -94,11 +94,10 @@ func decimal(v float64) (digits []byte, exp int, negative bool) {
 	for len(digits) > 1 && digits[len(digits)-1] == '0' {
 		digits = digits[:len(digits)-1]
 	}
-	exponent := text[2+significant:] // behind the sign
-	for _, c := range exponent {
+	for _, c := range text[3+significant:] { // behind e and the sign
 		exp = exp*10 + int(c-'0')
 	}
-	if text[1+significant] == '-' {
+	if text[2+significant] == '-' {
 		exp = -exp
 	}
 	return digits, exp, v < 0

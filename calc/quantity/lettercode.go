@@ -90,17 +90,14 @@ func (c letterCode) text() string {
 	return c.before + "." + c.after
 }
 
-// value is the code's number in the SI unit.
-func (c letterCode) value() (float64, bool) {
-	n, _, ok := scanNumber(c.text())
+// value converts the code's number, given as its text, to the SI unit.
+func (c letterCode) value(decimal string) (float64, bool) {
+	n, _, ok := scanNumber(decimal)
 	if !ok {
 		return 0, false
 	}
 	return n.value(c.letter.exp, 0)
 }
-
-// meaning writes the code out: "4.7 kΩ".
-func (c letterCode) meaning(si string) string { return c.text() + " " + c.letter.prefix + si }
 
 // toleranceLetters of IEC 60062 (from memory) [1].
 var toleranceLetters = [...]struct {

@@ -67,16 +67,19 @@ func cutSign(s string) (rest string, negative bool) {
 	return s, false
 }
 
-// scanExponent reads e-9 or E+3; used is 0 where there is none. Four digits
-// are more than any finite value needs.
+// maxExp is beyond the exponent of any finite value.
+const maxExp = 9999
+
+// scanExponent reads e-9 or E+3, at most maxExp; used is 0 where there is
+// none.
 func scanExponent(s string) (exp, used int) {
 	if len(s) < 2 || s[0]|0x20 != 'e' {
 		return 0, 0
 	}
 	tail, negative := cutSign(s[1:])
 	i := 0
-	for i < len(tail) && i < 4 && tail[i] >= '0' && tail[i] <= '9' {
-		exp = exp*10 + int(tail[i]-'0')
+	for i < len(tail) && tail[i] >= '0' && tail[i] <= '9' {
+		exp = min(exp*10+int(tail[i]-'0'), maxExp)
 		i++
 	}
 	if i == 0 {

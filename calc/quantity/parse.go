@@ -50,10 +50,11 @@ func parse(text string, d Dimension) (v float64, reading *Reading, reason string
 		}
 	}
 	if code, isCode := scanLetterCode(s, def.letters); isCode {
-		if v, ok = code.value(); !ok {
+		decimal := code.text()
+		if v, ok = code.value(decimal); !ok {
 			return 0, nil, reasonRange
 		}
-		return v, &Reading{Text: s, Meaning: code.meaning(def.si)}, ""
+		return v, &Reading{Text: s, Meaning: decimal + " " + code.letter.prefix + def.si}, ""
 	}
 	return 0, nil, diagnose(s, d)
 }

@@ -114,6 +114,9 @@ func parseTwoSided(tail string, d Dimension) (dev deviation, reason string) {
 	if firstUnit == "" {
 		firstUnit = unitText
 	}
+	if firstUnit != unitText {
+		return deviation{}, "both sides of the tolerance must have the same unit"
+	}
 	low, high := &first, &second
 	if second.negative {
 		low, high = high, low
@@ -123,12 +126,9 @@ func parseTwoSided(tail string, d Dimension) (dev deviation, reason string) {
 	if reason != "" {
 		return deviation{}, reason
 	}
-	b, _, reason := deviationValue(high, firstUnit, d)
+	b, _, reason := deviationValue(high, unitText, d)
 	if reason != "" {
 		return deviation{}, reason
-	}
-	if firstUnit != unitText {
-		return deviation{}, "both sides of the tolerance must have the same unit"
 	}
 	dev = deviation{low: a, high: b, relative: relative}
 	return dev, dev.excess()

@@ -100,7 +100,7 @@ type AtTemperature struct {
 type Quantity struct {
 	Field   string // path in the request
 	Declare *Declaration
-	Triple                 // at ReferenceTemperature, or over temperature where At is empty and no law applies
+	Triple                  // at ReferenceTemperature, or over temperature where At is empty and no law applies
 	At      []AtTemperature // ascending in temperature
 	Source  string
 	// Assumption is set where the value, or an end of its spread, was not given.

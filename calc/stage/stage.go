@@ -126,3 +126,34 @@ func Relative(field string) string {
 	}
 	return field
 }
+
+// Identity is the name under which findings are kept: the former one after a rename.
+func (s *Stage) Identity() string {
+	if s.FormerID != "" {
+		return s.FormerID
+	}
+	return s.ID
+}
+
+// Part gives the header of a component by its path relative to the stage; nil where there is none of that path.
+func (s *Stage) Part(path string) *Header {
+	switch path {
+	case "driver":
+		return &s.Driver.Header
+	case "highSide":
+		return &s.HighSide.Header
+	case "lowSide":
+		return &s.LowSide.Header
+	case "gateSupply.reservoir":
+		return &s.GateSupply.Reservoir.Header
+	case "bootstrap.capacitor":
+		return &s.Bootstrap.Capacitor.Header
+	case "bootstrap.diode":
+		return &s.Bootstrap.Diode.Header
+	case "bootstrap.resistor":
+		return &s.Bootstrap.Resistor.Header
+	case "bootstrap.clamp":
+		return &s.Bootstrap.Clamp.Header
+	}
+	return nil
+}

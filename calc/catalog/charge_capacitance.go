@@ -1,0 +1,34 @@
+package catalog
+
+import (
+	"slices"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+var chargeCapacitance = &rule.Rule{
+	ID: "charge/capacitance", Title: "Bootstrap capacitance", Since: first,
+	Equation: "C_min = Q_B/ΔV, ΔV = V_DD - V_F - V_LS - I·R - V_required at the mean recharge current, or the permitted ripple where smaller",
+	Limit:    "C_min", Guard: "10 % above the limit", Applies: "every operating point",
+	Needs: []string{"bootstrap.capacitor", "gateSupply.voltage", "driver.uvloFalling", "highSide.driveVoltageMin", "highSide.gateCharge",
+		"driver.levelShiftCharge", "bootstrap.diode", "bootstrap.resistor"},
+	Sources: []string{"an6076", "ir2114", "slus486b"},
+	Fail:    stage.Major, Marginal: stage.Minor, Open: stage.Major,
+	Quantity: "Effective bootstrap capacitance", Against: "smallest sufficient capacitance", Dimension: quantity.Capacitance, Sense: rule.AtLeast,
+	Inapplicable: always,
+	Check: func(c *circuit.Circuit, _ string) rule.Check {
+		if c.Point == nil {
+			return rule.Check{Value: c.Want("stage.operatingPoints"), Limit: nan, Guard: nan}
+		}
+		limit := c.MinimumCapacitance()
+		ch := rule.Check{Value: c.Capacitance(), Limit: limit, Guard: above(c, limit), Notes: slices.Concat(collapseNote(c), cancelNote(c))}
+		if drop := c.Drop(); drop <= 0 {
+			ch.Notes = append(ch.Notes, "no capacitance suffices: recharge leaves nothing above the required voltage (budget "+
+				quantity.Format(drop, quantity.Voltage)+")")
+		}
+		return ch
+	},
+}

@@ -1,0 +1,60 @@
+package catalog
+
+import (
+	"fmt"
+
+	"floatrail/calc/charge"
+	"floatrail/calc/circuit"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+// standingShare is the share of the charge budget that avoidable loads may take [common-practice].
+const standingShare = 0.20
+
+var chargeStandingLoad = &rule.Rule{
+	ID: "charge/standing-load", Title: "Avoidable standing loads of the floating supply", Since: first,
+	Equation: "(V_BS/R_GS·t_on + (I_Z + I_other)·T)/Q_B",
+	Limit:    "20 % of the charge per period", Guard: "10 % below the limit", Applies: "every operating point",
+	Needs:   []string{"highSide.gatePullDown", "bootstrap.clamp", "bootstrap.otherLoad", "driver.floatingQuiescentCurrent"},
+	Sources: []string{"hip4086", "common-practice"},
+	Fail:    stage.Minor, Marginal: stage.Note, Open: stage.Minor,
+	Quantity: "Share of avoidable loads in the charge", Against: "permitted share", Dimension: quantity.Ratio, Sense: rule.AtMost,
+	Inapplicable: always,
+	Check: func(c *circuit.Circuit, _ string) rule.Check {
+		if c.Point == nil {
+			return rule.Check{Value: c.Want("stage.operatingPoints")}
+		}
+		ch := rule.Check{Limit: standingShare, Guard: below(c, standingShare)}
+		var pull, clamp, other, total float64
+		if c.Point.HeldOn != nil {
+			l := c.Loads()
+			pull, clamp, other = l.PullDown*c.Need(&c.Point.HeldOn.InitialVoltage), l.ClampLeakage, l.Other
+			total = pull + l.Total()
+		} else {
+			items := c.Budget()
+			total = charge.Total(items)
+			for _, it := range items {
+				switch it.Name {
+				case charge.ItemPullDown:
+					pull = it.Charge
+				case charge.ItemClampLeakage:
+					clamp = it.Charge
+				case charge.ItemOther:
+					other = it.Charge
+				}
+			}
+		}
+		ch.Value = (pull + clamp + other) / total
+		for _, l := range []struct {
+			name   string
+			charge float64
+		}{{"the gate pull-down R_GS", pull}, {"the clamp", clamp}, {"the other load", other}} {
+			if share := l.charge / total; share > standingShare/2 {
+				ch.Notes = append(ch.Notes, fmt.Sprintf("%s takes %.0f %% of the load", l.name, 100*share))
+			}
+		}
+		return ch
+	},
+}

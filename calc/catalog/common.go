@@ -1,0 +1,176 @@
+package catalog
+
+import (
+	"fmt"
+	"math"
+
+	"floatrail/calc/capacitor"
+	"floatrail/calc/circuit"
+	"floatrail/calc/quantity"
+	"floatrail/calc/stage"
+)
+
+// first rule set.
+const first = "2026.12"
+
+// Roles: paths of parts relative to the stage.
+const (
+	roleDriver    = "driver"
+	roleHighSide  = "highSide"
+	roleCapacitor = "bootstrap.capacitor"
+	roleReservoir = "gateSupply.reservoir"
+)
+
+var nan = math.NaN()
+
+// always applies.
+func always(*stage.Stage, *stage.OperatingPoint, string) string { return "" }
+
+// switching applies to operating points that have switching periods.
+func switching(_ *stage.Stage, op *stage.OperatingPoint, _ string) string {
+	if op != nil && op.HeldOn != nil {
+		return "the high side is held on; there is no switching period"
+	}
+	return ""
+}
+
+// withDiode applies where a discrete diode recharges C_B in switching periods.
+func withDiode(s *stage.Stage, op *stage.OperatingPoint, role string) string {
+	if r := discrete(s, op, role); r != "" {
+		return r
+	}
+	return switching(s, op, role)
+}
+
+// discrete applies where a discrete diode recharges C_B.
+func discrete(s *stage.Stage, _ *stage.OperatingPoint, _ string) string {
+	switch s.Bootstrap.Element {
+	case stage.IntegratedDiode, stage.IntegratedSwitch:
+		return "the element is integrated; the driver's own ratings cover it"
+	}
+	return ""
+}
+
+// withResistor applies where R_B is not a link.
+func withResistor(s *stage.Stage, _ *stage.OperatingPoint, _ string) string {
+	if r := &s.Bootstrap.Resistor; r.Presence() == stage.NotFitted || r.Resistance.Max == 0 {
+		return "no bootstrap resistor is fitted"
+	}
+	return ""
+}
+
+// component gives the capacitor of a role.
+func component(c *circuit.Circuit, role string) *stage.Capacitor {
+	if role == roleReservoir {
+		return &c.Stage.GateSupply.Reservoir
+	}
+	return &c.Stage.Bootstrap.Capacitor
+}
+
+// fittedCapacitor applies unless the capacitor of the role is not fitted.
+func fittedCapacitor(s *stage.Stage, _ *stage.OperatingPoint, role string) string {
+	if role == roleReservoir && s.GateSupply.Reservoir.Presence() == stage.NotFitted {
+		return "no reservoir is fitted"
+	}
+	return ""
+}
+
+// present notes a capacitor of which nothing is known.
+func present(c *circuit.Circuit, s *stage.Capacitor) bool {
+	if s.Presence() == stage.PresenceUnknown {
+		c.Want(s.Field)
+		return false
+	}
+	return true
+}
+
+// kind of dielectric; a missing or unknown code is noted.
+func kind(c *circuit.Circuit, s *stage.Capacitor) capacitor.Kind {
+	k := circuit.Kind(s)
+	if k == capacitor.Unspecified {
+		c.Want(s.Field + ".dielectric")
+	}
+	return k
+}
+
+// above adds the guard to a limit that must be exceeded, below subtracts it from one that must not.
+func above(c *circuit.Circuit, limit float64) float64 { return limit * (1 + c.Policy.GuardRatio) }
+func below(c *circuit.Circuit, limit float64) float64 { return limit * (1 - c.Policy.GuardRatio) }
+
+// cancelNote tells, where it holds, that a larger capacitor does not help: the window is short against R·C.
+func cancelNote(c *circuit.Circuit) []string {
+	if !CapacitanceCancels(c) {
+		return nil
+	}
+	p := c.Period()
+	return []string{fmt.Sprintf("the recharge window of %s is short against R·C = %s: the deficit tends to Q_B·R/t_c and C cancels; a larger capacitor is no fix",
+		quantity.Format(p.Window, quantity.Time), quantity.Format(p.Element.Resistance*p.Capacitance, quantity.Time))}
+}
+
+// CapacitanceCancels tells whether the deficit does not depend on C_B.
+func CapacitanceCancels(c *circuit.Circuit) bool {
+	if c.Point == nil || c.Point.FixedDuty == nil {
+		return false
+	}
+	p := c.Period()
+	return p.Window > 0 && p.Window < 0.2*p.Element.Resistance*p.Capacitance
+}
+
+// PeakDetector tells whether V_BS is pumped above what recharge with the low side on would give.
+func PeakDetector(c *circuit.Circuit) bool {
+	if c.Point == nil || c.Point.FixedDuty == nil {
+		return false
+	}
+	p, st := c.Period(), c.Steady()
+	if st.High != st.High || st.HighInterval < 0 || st.HighInterval >= len(p.Names) {
+		return false
+	}
+	n := p.Names[st.HighInterval]
+	return n == circuit.IntervalFirstDead || n == circuit.IntervalSecondDead || n == circuit.IntervalFreewheel
+}
+
+// pumpNote names the interval that makes the highest V_BS, where it is not the low side's on-time.
+func pumpNote(c *circuit.Circuit) []string {
+	if !PeakDetector(c) {
+		return nil
+	}
+	p, st := c.Period(), c.Steady()
+	return []string{fmt.Sprintf("the network is a peak detector: the %s, with the node %s below COM, pumps V_BS above what the low side's on-time gives",
+		p.Names[st.HighInterval], quantity.Format(p.Off[st.HighInterval].Drive-c.Supply(), quantity.Voltage))}
+}
+
+// collapseNote tells that the supply collapses, and how fast.
+func collapseNote(c *circuit.Circuit) []string {
+	if c.Point == nil || c.Point.FixedDuty == nil || !c.Steady().Collapses {
+		return nil
+	}
+	text := "no positive steady state: the supply collapses"
+	if n := Periods(c); n > 0 {
+		text += fmt.Sprintf(" and reaches lockout after %d periods", n)
+	}
+	if c.Period().Window == 0 {
+		text += "; nothing recharges C_B"
+	}
+	return []string{text}
+}
+
+// Periods counts the periods from the settled supply until lockout; 0 where that cannot be told.
+func Periods(c *circuit.Circuit) int {
+	p := c.Period()
+	start := c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
+	n := p.PeriodsUntil(start, c.Need(&c.Stage.Driver.UVLOFalling), 100_000)
+	return max(0, n)
+}
+
+// vanishNotes tells which pulses do not reach the switches.
+func vanishNotes(c *circuit.Circuit) []string {
+	p := c.Period()
+	var out []string
+	if p.LowVanishes {
+		out = append(out, "the low-side pulse is shorter than the driver passes and vanishes")
+	}
+	if p.HighVanishes {
+		out = append(out, "the high-side pulse is shorter than the driver passes and vanishes; the low side stays on")
+	}
+	return out
+}

@@ -1,0 +1,75 @@
+package catalog
+
+import (
+	"fmt"
+	"math"
+
+	"floatrail/calc/charge"
+	"floatrail/calc/circuit"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+// hotLeakageShare is the share of the charge per period that the diode's leakage may take [common-practice].
+const hotLeakageShare = 0.10
+
+var diodeHotLeakage = &rule.Rule{
+	ID: "diode/hot-leakage", Title: "Hot leakage of the bootstrap diode", Since: first,
+	Equation: "I_R(T_j)·T/Q_B, I_R doubling every 10 K, T_j = T_A + R_th·(V_F·I_av + V_R·I_R(T_j)·t_on/T)",
+	Limit:    "10 % of the charge per period; no solution for T_j is thermal runaway and fails", Guard: "10 % below the limit",
+	Applies: "stages with a discrete bootstrap diode, switching",
+	Needs:   []string{"bootstrap.diode.reverseLeakage", "bootstrap.diode.thermalResistance", "operatingPoints.busVoltage", "operatingPoints.ambientTemperature"},
+	Sources: []string{"common-practice", "textbook"},
+	Fail:    stage.Major, Marginal: stage.Minor, Open: stage.Major,
+	Quantity: "Share of the diode's leakage in the charge per period", Against: "permitted share", Dimension: quantity.Ratio, Sense: rule.AtMost,
+	Inapplicable: withDiode,
+	Check: func(c *circuit.Circuit, _ string) rule.Check {
+		p := c.Period()
+		items := c.Budget()
+		ambient := c.Need(&c.Stage.Bootstrap.Diode.ReverseLeakage)
+		average := charge.Consumed(items) / p.T
+		forward := p.Element.Junction.Voltage(average)
+		reverse := c.Need(&c.Point.BusVoltage) * p.OnTime / p.T
+		rise, stable := heating(c.Need(&c.Stage.Bootstrap.Diode.ThermalResistance), forward*average, reverse*ambient)
+		ch := rule.Check{Limit: hotLeakageShare, Guard: below(c, hotLeakageShare)}
+		if !stable {
+			ch.Value, ch.Floor = math.Inf(1), finding.Fail
+			ch.Notes = []string{"thermal runaway: the leakage heats the diode faster than it cools"}
+			return ch
+		}
+		ch.Value = ambient * math.Exp2(rise/10) * p.T / charge.Total(items)
+		if rise > 1 {
+			ch.Notes = []string{fmt.Sprintf("the diode runs %s above its surroundings", quantity.Format(rise, quantity.TemperatureDifference))}
+		}
+		return ch
+	},
+}
+
+// heating solves x = R_th·(P_0 + P_R·2^(x/10)) for the temperature rise x [K] by its lower solution; false where there is none. The right
+// side is convex in x and rises faster than x beyond the point where its slope is 1; there the two must have met.
+func heating(rth, constant, leakage float64) (rise float64, stable bool) {
+	if rth != rth || constant != constant || leakage != leakage {
+		return nan, true
+	}
+	const perKelvin = math.Ln2 / 10
+	f := func(x float64) float64 { return rth*(constant+leakage*math.Exp(perKelvin*x)) - x }
+	if leakage <= 0 {
+		return rth * constant, true
+	}
+	turn := -math.Log(rth*leakage*perKelvin) / perKelvin // slope of f is 0
+	if turn < 0 || f(turn) > 0 {
+		return nan, false
+	}
+	lo, hi := 0.0, turn
+	for range 100 {
+		mid := lo/2 + hi/2
+		if f(mid) > 0 {
+			lo = mid
+		} else {
+			hi = mid
+		}
+	}
+	return hi, true
+}

@@ -1,0 +1,42 @@
+package catalog
+
+import (
+	"slices"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/derive"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+var dutyLargestDuty = &rule.Rule{
+	ID: "duty/largest-duty", Title: "Largest duty that the floating supply holds", Since: first,
+	Equation: "largest d with V_BS,low(d) at or above the required voltage, by root finding on the periodic steady state",
+	Limit:    "largest d", Guard: "10 % of the remaining low-side share below the limit", Applies: "operating points of fixed duty",
+	Needs: []string{"operatingPoints.fixedDuty.duty", "operatingPoints.switchingFrequency", "driver.uvloFalling", "highSide.driveVoltageMin",
+		"bootstrap.capacitor", "bootstrap.resistor", "bootstrap.diode"},
+	Sources: []string{"im393", "common-practice"},
+	Fail:    stage.Major, Marginal: stage.Minor, Open: stage.Major,
+	Quantity: "Duty", Against: "largest duty", Dimension: quantity.Ratio, Sense: rule.AtMost,
+	Inapplicable: switching,
+	Proxy:        func(c *circuit.Circuit, _ string) float64 { return derive.Hold(c) }, ProxyDimension: quantity.Voltage,
+	Check: func(c *circuit.Circuit, _ string) rule.Check {
+		p := c.Period()
+		if !(p.T > 0) {
+			return rule.Check{Value: nan}
+		}
+		d := c.Need(&c.Point.FixedDuty.Duty)
+		l := derive.Limit(c, finding.LargestDuty)
+		limit := l.Value
+		if !l.Found && l.Whole {
+			limit = 1
+		}
+		if !l.Found && !l.Whole {
+			limit = 0
+		}
+		return rule.Check{Value: d, Limit: limit, Guard: limit - c.Policy.GuardRatio*(1-limit),
+			Notes: slices.Concat(collapseNote(c), cancelNote(c), vanishNotes(c))}
+	},
+}

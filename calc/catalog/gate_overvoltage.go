@@ -1,0 +1,29 @@
+package catalog
+
+import (
+	"floatrail/calc/circuit"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+var gateOvervoltage = &rule.Rule{
+	ID: "gate/overvoltage", Title: "Highest floating supply against driver and gate ratings", Since: first,
+	Equation: "V_BS,high of the periodic steady state, dead-time pumping toward V_DD - V_F + V_SD included; at the gate less a bias taken out of V_BS",
+	Limit:    "absolute maximum of V_BS, or of the gate voltage", Guard: "90 % of the limit", Applies: "driver and high-side gate",
+	Needs: []string{"driver.floatingVoltageMax", "highSide.gateVoltageMax", "gateSupply.voltage", "lowSide.reverse.forwardPoints",
+		"operatingPoints.deadTime", "bootstrap.resistor", "bootstrap.clamp"},
+	Sources: []string{"snvaa94", "lmg1210", "snosdg7a", "common-practice"},
+	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
+	Quantity: "Highest V_BS", Against: "absolute maximum", Dimension: quantity.Voltage, Sense: rule.AtMost,
+	Roles:        []string{roleDriver, roleHighSide},
+	Inapplicable: always,
+	Check: func(c *circuit.Circuit, role string) rule.Check {
+		v, limit := c.High(), c.Need(&c.Stage.Driver.FloatingVoltageMax)
+		if role == roleHighSide {
+			v, limit = c.Gate(v), c.Need(&c.Stage.HighSide.GateVoltageMax)
+		}
+		return rule.Check{Value: v, Limit: limit, Guard: limit * c.Policy.GateVoltageRatio, Notes: pumpNote(c),
+			Pending: "this rule set has no model of the charge that a switching event's undershoot adds to C_B"}
+	},
+}

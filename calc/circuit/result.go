@@ -1,0 +1,184 @@
+package circuit
+
+import (
+	"math"
+
+	"floatrail/calc/charge"
+	"floatrail/calc/stage"
+)
+
+// Low is the lowest V_BS of the operating point [V]; -Inf where there is no positive steady state.
+func (c *Circuit) Low() float64 {
+	if c.Point != nil && c.Point.HeldOn != nil {
+		h, t := c.Hold()
+		return h.Voltage(t)
+	}
+	st := c.Steady()
+	if st.Collapses {
+		return math.Inf(-1)
+	}
+	return st.Low
+}
+
+// High is the highest V_BS of the operating point [V], limited by a clamp where one is fitted.
+func (c *Circuit) High() float64 {
+	var v float64
+	switch {
+	case c.Point != nil && c.Point.HeldOn != nil:
+		v = c.Need(&c.Point.HeldOn.InitialVoltage)
+	default:
+		st := c.Steady()
+		if st.Collapses { // what stands before the supply collapses
+			return c.Settled()
+		}
+		v = st.High
+	}
+	switch z := &c.Stage.Bootstrap.Clamp; z.Presence() {
+	case stage.Fitted:
+		v = math.Min(v, c.Need(&z.Voltage))
+	case stage.PresenceUnknown:
+		v = c.Want(z.Field)
+	}
+	return v
+}
+
+// Gate is the drive of the high-side gate at a floating voltage [V].
+func (c *Circuit) Gate(vbs float64) float64 { return c.OffBias(&c.Stage.HighSide).Drive(vbs) }
+
+// Required is the voltage that V_BS must keep, without margin: the falling lockout, or the specified drive where that is higher and the
+// channel carries forward current [V].
+func (c *Circuit) Required() float64 {
+	v := c.Need(&c.Stage.Driver.UVLOFalling)
+	if c.Forward() {
+		drive := c.Need(&c.Stage.HighSide.DriveVoltageMin)
+		if b := c.OffBias(&c.Stage.HighSide); b.Split {
+			drive -= b.Voltage
+		}
+		v = math.Max(v, drive)
+	}
+	return v
+}
+
+// Forward tells whether the high-side channel carries forward current in its on-time.
+func (c *Circuit) Forward() bool { return c.Point != nil && c.peakCurrent() > 0 }
+
+// Margin is the policy's margin on a threshold [V].
+func (c *Circuit) Margin(limit float64) float64 {
+	return math.Max(c.Policy.LockoutMargin, c.Policy.LockoutMarginRatio*math.Abs(limit))
+}
+
+// Budget is the charge budget of one period at the steady state, or where there is none at the settled voltage.
+func (c *Circuit) Budget() []charge.Item {
+	p := c.Period()
+	st := c.Steady()
+	v, rec := st.AfterEdge, st.Recovery
+	if st.Collapses {
+		v, rec = c.Required(), p.RecoverySpec
+	}
+	return charge.Items(c.Loads(), c.EdgeCharges(v, rec), charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
+}
+
+// Drop is the voltage budget of C_B: what recharge leaves above the required voltage with margin, or the permitted ripple where that is
+// smaller [V].
+func (c *Circuit) Drop() float64 {
+	req := c.Required()
+	req += c.Margin(req)
+	if c.Point.HeldOn != nil {
+		return c.Need(&c.Point.HeldOn.InitialVoltage) - req
+	}
+	left := c.recharged(charge.Consumed(c.Budget())) - req
+	return charge.AllowedDrop(left, c.Policy.RippleRatio*c.Settled())
+}
+
+// CycleCharge is what C_B delivers between two recharges [C].
+func (c *Circuit) CycleCharge() float64 {
+	if c.Point.HeldOn != nil {
+		h, t := c.Hold()
+		return h.Loads.Total()*t + h.Loads.PullDown*h.Start*t
+	}
+	return charge.Total(c.Budget())
+}
+
+// MinimumCapacitance is the smallest effective capacitance [F]; +Inf where none suffices.
+func (c *Circuit) MinimumCapacitance() float64 {
+	v, _ := charge.MinimumCapacitance(c.CycleCharge(), c.Drop())
+	return v
+}
+
+// BreakEvenWindow is the shortest recharge window that replaces the charge of a period at the required voltage [s]. The element then
+// delivers the current that it carries at the required voltage and the ripple above it; +Inf where it carries none.
+func (c *Circuit) BreakEvenWindow() float64 {
+	p := c.Period()
+	q := charge.Consumed(c.Budget())
+	best := math.Inf(-1)
+	for i := range p.Off {
+		if p.Off[i].Conducts {
+			best = math.Max(best, p.Off[i].Drive)
+		}
+	}
+	i := p.Element.Current(best - c.Required() - q/p.Capacitance)
+	if !(q == q) || !(p.Capacitance > 0) {
+		return nan
+	}
+	if !(i > p.On.Load) {
+		return math.Inf(1)
+	}
+	return q / i
+}
+
+// RepetitivePeak is the largest current of the element in the steady state [A].
+func (c *Circuit) RepetitivePeak() float64 {
+	p, st := c.Period(), c.Steady()
+	v := st.Low + p.Return/p.Capacitance
+	if st.Collapses {
+		v = 0
+	}
+	peak := 0.0
+	if v != v {
+		return nan
+	}
+	for i := range p.Off {
+		iv := p.Off[i]
+		if iv.Conducts {
+			peak = math.Max(peak, p.Element.Current(iv.Drive-v))
+		}
+		v, _ = p.Element.Advance(v, iv, p.Capacitance)
+	}
+	return peak
+}
+
+// FirstPeak is the element's current when an empty C_B is first charged, the node at 0 V [A].
+func (c *Circuit) FirstPeak() float64 {
+	return c.Element().Current(c.Supply() - c.Need(&c.Stage.Startup.InitialVoltage))
+}
+
+// FirstEnergy is the energy that R_B takes at first charge [J].
+func (c *Circuit) FirstEnergy() float64 {
+	r := c.series(&c.Stage.Bootstrap.Resistor)
+	return c.Element().ResistorEnergy(c.Fresh(), c.Supply(), c.Need(&c.Stage.Startup.InitialVoltage), r)
+}
+
+// ResistorPower is the mean power of R_B in the steady state [W]. With C·dv = (i - I_q)·dt the energy of an interval is exactly
+//
+//	∫i²·R dt = R·C·∫i dv + R·I_q·C·Δv + R·I_q²·t
+//
+// of which the first term is the difference of two first-charge energies.
+func (c *Circuit) ResistorPower() float64 {
+	p, st := c.Period(), c.Steady()
+	r := c.series(&c.Stage.Bootstrap.Resistor)
+	if st.Collapses || st.Low != st.Low {
+		return nan
+	}
+	v := st.Low + p.Return/p.Capacitance
+	energy := 0.0
+	for i := range p.Off {
+		iv := p.Off[i]
+		next, _ := p.Element.Advance(v, iv, p.Capacitance)
+		if iv.Conducts {
+			energy += p.Element.ResistorEnergy(p.Capacitance, iv.Drive, v, r) - p.Element.ResistorEnergy(p.Capacitance, iv.Drive, next, r)
+			energy += r * iv.Load * (p.Capacitance*(next-v) + iv.Load*iv.Duration)
+		}
+		v = next
+	}
+	return energy / p.T
+}

@@ -1,0 +1,177 @@
+package corner
+
+import (
+	"math"
+	"math/bits"
+	"slices"
+
+	"floatrail/calc/stage"
+)
+
+// Bits is a set of input IDs.
+type Bits []uint64
+
+func newBits(n int) Bits { return make(Bits, (n+63)/64) }
+
+func (b Bits) set(i int)      { b[i>>6] |= 1 << (i & 63) }
+func (b Bits) has(i int) bool { return b[i>>6]&(1<<(i&63)) != 0 }
+
+// or adds all of o.
+func (b Bits) or(o Bits) {
+	for i := range o {
+		b[i] |= o[i]
+	}
+}
+
+// each calls f with every member in ascending order.
+func (b Bits) each(f func(i int)) {
+	for w, word := range b {
+		for ; word != 0; word &= word - 1 {
+			f(w<<6 + bits.TrailingZeros64(word))
+		}
+	}
+}
+
+// Trace is what a function read from a draw.
+type Trace struct {
+	used        Bits
+	missing     Bits
+	assumptions []stage.Assumption // made while evaluating, beside those of inputs
+	reasons     []string           // why the function cannot be evaluated
+	wants       []string           // paths of missing components and lists
+}
+
+func newTrace(n int) Trace { return Trace{used: newBits(n), missing: newBits(n)} }
+
+func (t *Trace) reset() {
+	clear(t.used)
+	clear(t.missing)
+	t.assumptions, t.reasons, t.wants = t.assumptions[:0], t.reasons[:0], t.wants[:0]
+}
+
+// Add joins another trace to this one.
+func (t *Trace) Add(o *Trace) {
+	t.used.or(o.used)
+	t.missing.or(o.missing)
+	for _, a := range o.assumptions {
+		if !slices.Contains(t.assumptions, a) {
+			t.assumptions = append(t.assumptions, a)
+		}
+	}
+	for _, r := range o.reasons {
+		if !slices.Contains(t.reasons, r) {
+			t.reasons = append(t.reasons, r)
+		}
+	}
+	for _, w := range o.wants {
+		if !slices.Contains(t.wants, w) {
+			t.wants = append(t.wants, w)
+		}
+	}
+}
+
+// clone copies the trace.
+func (t *Trace) clone() *Trace {
+	return &Trace{slices.Clone(t.used), slices.Clone(t.missing), slices.Clone(t.assumptions), slices.Clone(t.reasons), slices.Clone(t.wants)}
+}
+
+// Complete tells whether nothing was missing and no reason against evaluation was found.
+func (t *Trace) Complete() bool {
+	for _, w := range t.missing {
+		if w != 0 {
+			return false
+		}
+	}
+	return len(t.reasons) == 0 && len(t.wants) == 0
+}
+
+// Draw is one number for every input of a stage at one set.
+type Draw struct {
+	Space *Space
+	x     []float64
+	trace Trace
+	stack []*Trace // traces of memoised parts under way
+	memo  [memoSlots]*memoEntry
+	// Slot is free for what a model keeps with the draw.
+	Slot any
+}
+
+// memoSlots bounds the number of results that models keep with a draw.
+const memoSlots = 24
+
+type memoEntry struct {
+	value any
+	trace *Trace
+}
+
+// Need reads an input. Unknown: NaN, and the field is noted as missing.
+func (d *Draw) Need(q *stage.Quantity) float64 {
+	t := d.current()
+	t.used.set(q.ID)
+	v := d.x[q.ID]
+	if v != v {
+		t.missing.set(q.ID)
+	}
+	return v
+}
+
+// Has reads an input that may be absent without noting it as missing.
+func (d *Draw) Has(q *stage.Quantity) (float64, bool) {
+	v := d.x[q.ID]
+	if v != v {
+		return v, false
+	}
+	d.current().used.set(q.ID)
+	return v, true
+}
+
+// Want notes a missing component or list by its path.
+func (d *Draw) Want(path string) float64 {
+	t := d.current()
+	if !slices.Contains(t.wants, path) {
+		t.wants = append(t.wants, path)
+	}
+	return math.NaN()
+}
+
+// Open notes why the function cannot be evaluated at this draw.
+func (d *Draw) Open(reason string) float64 {
+	t := d.current()
+	if !slices.Contains(t.reasons, reason) {
+		t.reasons = append(t.reasons, reason)
+	}
+	return math.NaN()
+}
+
+// Assume notes an assumption that the evaluation makes.
+func (d *Draw) Assume(a stage.Assumption) {
+	t := d.current()
+	if !slices.Contains(t.assumptions, a) {
+		t.assumptions = append(t.assumptions, a)
+	}
+}
+
+func (d *Draw) current() *Trace {
+	if n := len(d.stack); n > 0 {
+		return d.stack[n-1]
+	}
+	return &d.trace
+}
+
+// Memo returns f's value, evaluated once per draw and slot; what f reads counts as read by every caller.
+func Memo[T any](d *Draw, slot int, f func() T) T {
+	e := d.memo[slot]
+	if e == nil {
+		t := newTrace(len(d.x))
+		d.stack = append(d.stack, &t)
+		v := f()
+		d.stack = d.stack[:len(d.stack)-1]
+		e = &memoEntry{v, &t}
+		d.memo[slot] = e
+	}
+	d.current().Add(e.trace)
+	return e.value.(T)
+}
+
+// Value is the number drawn for an input, without noting it as read.
+func (d *Draw) Value(q *stage.Quantity) float64 { return d.x[q.ID] }

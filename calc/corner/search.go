@@ -1,0 +1,339 @@
+package corner
+
+import (
+	"math"
+	"slices"
+
+	"floatrail/calc/stage"
+)
+
+// Function maps a draw to a number of which the smallest is the worst. NaN: it cannot be evaluated at that draw.
+type Function func(*Draw) float64
+
+// Negative turns a function round, so that its largest value is found.
+func (f Function) Negative() Function { return func(d *Draw) float64 { return -f(d) } }
+
+// Worst is the result of a search over one space.
+type Worst struct {
+	Space   *Space
+	Value   float64 // smallest value found; NaN where the function cannot be evaluated
+	Draw    *Draw   // where
+	Typical float64 // value with every input at its typical value
+	Trace   *Trace  // all that was read anywhere in the search
+	Swings  []Swing // made by Polish, largest first
+}
+
+// Swing tells how far one input moves the function, the others standing at the worst draw.
+type Swing struct {
+	Input *stage.Quantity
+	Range float64
+}
+
+// Evaluate runs a function at a draw and returns what it read.
+func Evaluate(d *Draw, f Function) (float64, *Trace) {
+	d.trace.reset()
+	v := f(d)
+	return v, &d.trace
+}
+
+// usable tells whether a value counts: not NaN, and nothing was missing.
+func usable(v float64, t *Trace) bool { return v == v && t.Complete() }
+
+// tolerance below which two values count as equal, relative.
+const tolerance = 1e-12
+
+func below(a, b float64) bool {
+	return a < b-tolerance*math.Abs(b) || (math.IsInf(a, -1) && !math.IsInf(b, -1))
+}
+
+// Search finds the worst draw of a space by the directions seen from the typical draw.
+func (s *Space) Search(f Function) Worst {
+	d := s.Typical()
+	v, t := Evaluate(d, f)
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone()}
+	if !usable(v, t) {
+		w.Value = math.NaN()
+		return w
+	}
+	x := slices.Clone(s.typ)
+	seen := newBits(len(s.inputs))
+	moved := false
+	for {
+		fresh := slices.Clone(w.Trace.used)
+		for i := range fresh {
+			fresh[i] &^= seen[i]
+		}
+		seen.or(fresh)
+		any := false
+		fresh.each(func(id int) {
+			any = true
+			if !(s.low[id] < s.high[id]) || w.Value != w.Value {
+				return
+			}
+			best, at := v, s.typ[id]
+			try := func(step int8) float64 {
+				p := s.sample(id, step)
+				d := s.probe(id, step, p)
+				u, t := Evaluate(d, f)
+				w.Trace.Add(t)
+				if !usable(u, t) {
+					w.Value = math.NaN()
+					return u
+				}
+				if below(u, best) {
+					best, at = u, p
+				}
+				if w.Value == w.Value && below(u, w.Value) {
+					w.Value, w.Draw = u, d
+				}
+				return u
+			}
+			lo, hi := try(1), try(2)
+			if s.interior.has(id) || (lo-v)*(hi-v) > 0 {
+				for k := int8(3); k < 3+interiorSamples; k++ {
+					try(k)
+				}
+			}
+			if at != s.typ[id] {
+				x[id], moved = at, true
+			}
+		})
+		if !any {
+			break
+		}
+	}
+	if w.Value != w.Value || !moved {
+		return w
+	}
+	s.visit(&w, s.at(x), f)
+	return w
+}
+
+// visit evaluates a draw and keeps it if it is worse.
+func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
+	u, t := Evaluate(d, f)
+	w.Trace.Add(t)
+	if !usable(u, t) {
+		w.Value = math.NaN()
+		return u
+	}
+	if below(u, w.Value) {
+		w.Value, w.Draw = u, d
+	}
+	return u
+}
+
+// Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there.
+func (s *Space) Polish(w *Worst, f Function) {
+	const passes = 4
+	for range passes {
+		start := w.Value
+		w.Swings = w.Swings[:0]
+		s.sweep(w, f)
+		if w.Value != w.Value || !below(w.Value, start) {
+			break
+		}
+	}
+	slices.SortStableFunc(w.Swings, func(a, b Swing) int {
+		switch {
+		case a.Range > b.Range:
+			return -1
+		case a.Range < b.Range:
+			return 1
+		}
+		return a.Input.ID - b.Input.ID
+	})
+}
+
+func (s *Space) sweep(w *Worst, f Function) {
+	slices.Clone(w.Trace.used).each(func(id int) {
+		if w.Value != w.Value {
+			return
+		}
+		q := s.inputs[id]
+		swing, here := 0.0, w.Value
+		try := func(v float64) {
+			if v != v || v == w.Draw.x[id] || w.Value != w.Value {
+				return
+			}
+			u := s.visit(w, s.With(w.Draw, Change{id, v}), f)
+			if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
+				swing = d
+			}
+		}
+		if s.low[id] < s.high[id] {
+			try(s.low[id])
+			try(s.high[id])
+			if s.interior.has(id) {
+				for k := int8(3); k < 3+interiorSamples; k++ {
+					try(s.sample(id, k))
+				}
+			}
+		}
+		if n := q.Naive; n == n && n != w.Draw.x[id] {
+			u, _ := Evaluate(s.With(w.Draw, Change{id, n}), f)
+			if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
+				swing = d
+			}
+		}
+		if swing > 0 {
+			w.Swings = append(w.Swings, Swing{q, swing})
+		}
+	})
+}
+
+// Inputs lists what was read, in the order of the stage.
+func (s *Space) Inputs(t *Trace) []*stage.Quantity {
+	var out []*stage.Quantity
+	t.used.each(func(id int) { out = append(out, s.inputs[id]) })
+	return out
+}
+
+// Missing lists the paths of what was missing: inputs in the order of the stage, then components and lists.
+func (s *Space) Missing(t *Trace) []string {
+	var out []string
+	t.missing.each(func(id int) { out = append(out, s.inputs[id].Field) })
+	for _, w := range t.wants {
+		if !slices.Contains(out, w) {
+			out = append(out, w)
+		}
+	}
+	return out
+}
+
+// Reasons tells why the function could not be evaluated, beside what was missing.
+func (t *Trace) Reasons() []string { return t.reasons }
+
+// Assumptions lists what was assumed among the inputs read and while evaluating.
+func (s *Space) Assumptions(t *Trace) []stage.Assumption {
+	var out []stage.Assumption
+	t.used.each(func(id int) {
+		if a := s.inputs[id].Assumption; a != nil {
+			out = append(out, *a)
+		}
+	})
+	return append(out, t.assumptions...)
+}
+
+// BreakEven finds the value of one input, the others standing at a draw, at which f turns from its sign there, between low and high.
+// The nearest one to the drawn value is sought by widening steps; ok is false where the sign holds throughout.
+func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high float64) (float64, bool) {
+	start := d.x[q.ID]
+	v0, t0 := Evaluate(d, f)
+	if !usable(v0, t0) || start != start {
+		return math.NaN(), false
+	}
+	negative := v0 < 0
+	x := slices.Clone(d.x)
+	at := func(p float64) (bool, bool) { // sign differs, usable
+		x[q.ID] = p
+		u, t := Evaluate(s.at(x), f)
+		if !usable(u, t) {
+			return false, false
+		}
+		return (u < 0) != negative, true
+	}
+	best, found := math.NaN(), false
+	for _, end := range []float64{low, high} {
+		inside, outside, ok := bracket(start, end, at)
+		if !ok {
+			continue
+		}
+		p := bisect(inside, outside, at)
+		if !found || distance(p, start) < distance(best, start) {
+			best, found = p, true
+		}
+	}
+	return best, found
+}
+
+func distance(a, b float64) float64 {
+	return math.Abs(a-b) / (math.Abs(a) + math.Abs(b) + math.SmallestNonzeroFloat64)
+}
+
+// bracket steps from start toward end until the sign turns: an inside and an outside value.
+func bracket(start, end float64, turned func(float64) (bool, bool)) (inside, outside float64, ok bool) {
+	if start == end || math.IsInf(end, 0) {
+		return 0, 0, false
+	}
+	if t, usable := turned(end); !t || !usable { // monotone over the range: one look at the end spares the walk
+		return 0, 0, false
+	}
+	inside = start
+	for _, share := range []float64{0.003, 0.03, 0.2} {
+		p := between(start, end, share)
+		t, usable := turned(p)
+		if !usable {
+			return 0, 0, false
+		}
+		if t {
+			return inside, p, true
+		}
+		inside = p
+	}
+	return inside, end, true
+}
+
+// between goes a share of the way, by ratio where both ends are positive.
+func between(a, b, share float64) float64 {
+	if a > 0 && b > 0 {
+		return a * math.Pow(b/a, share)
+	}
+	return a + share*(b-a)
+}
+
+// bisect narrows a turn to six digits; the value returned lies on the inside.
+func bisect(inside, outside float64, turned func(float64) (bool, bool)) float64 {
+	for range 60 {
+		if math.Abs(outside-inside) <= 1e-7*math.Max(math.Abs(inside), math.Abs(outside)) {
+			break
+		}
+		mid := inside/2 + outside/2
+		if inside > 0 && outside > 4*inside || outside > 0 && inside > 4*outside {
+			mid = math.Sqrt(inside) * math.Sqrt(outside)
+		}
+		t, usable := turned(mid)
+		if !usable {
+			return math.NaN()
+		}
+		if t {
+			outside = mid
+		} else {
+			inside = mid
+		}
+	}
+	return inside
+}
+
+// OnlyMissing is the single input that was missing; nil where none or more was, or where something else stands in the way.
+func (s *Space) OnlyMissing(t *Trace) *stage.Quantity {
+	if len(t.wants) > 0 || len(t.reasons) > 0 {
+		return nil
+	}
+	var only *stage.Quantity
+	n := 0
+	t.missing.each(func(id int) { only, n = s.inputs[id], n+1 })
+	if n != 1 {
+		return nil
+	}
+	return only
+}
+
+// Turn finds the value of one unknown input at which the worst case of f turns its sign within the input's plausible range.
+func (s *Space) Turn(q *stage.Quantity, f Function) (float64, bool) {
+	sign := func(v float64) (negative, ok bool) {
+		w := s.Replace(Replacement{q.ID, stage.Triple{Min: v, Typ: v, Max: v}}).Search(f)
+		return w.Value < 0, w.Value == w.Value
+	}
+	low, okLow := sign(q.Declare.Low)
+	high, okHigh := sign(q.Declare.High)
+	if !okLow || !okHigh || low == high {
+		return math.NaN(), false
+	}
+	inside, outside := q.Declare.Low, q.Declare.High // inside is where the rule holds
+	if low {
+		inside, outside = outside, inside
+	}
+	v := bisect(inside, outside, sign)
+	return v, v == v
+}

@@ -1,0 +1,167 @@
+package corner
+
+import (
+	"math"
+
+	"floatrail/calc/stage"
+)
+
+// Set is one temperature set of an operating point.
+type Set struct {
+	Name     string
+	Junction float64 // of the switches [degC]
+	Ambient  float64 // of everything else [degC]
+}
+
+// Sets forms the temperature sets of an operating point, without repeating equal ones.
+func Sets(p *stage.OperatingPoint) []Set {
+	j, a := p.JunctionTemperature.Triple, p.AmbientTemperature.Triple
+	within := func(t stage.Triple) float64 { return math.Min(math.Max(stage.ReferenceTemperature, t.Min), t.Max) }
+	all := []Set{{"cold", j.Min, a.Min}, {"room", within(j), within(a)}, {"hot", j.Max, a.Max}}
+	out := all[:0]
+	for _, s := range all {
+		same := false
+		for _, o := range out {
+			same = same || (o.Junction == s.Junction && o.Ambient == s.Ambient)
+		}
+		if !same {
+			out = append(out, s)
+		}
+	}
+	return out
+}
+
+// Space is the ranges of all inputs of a stage at one operating point and set.
+type Space struct {
+	Stage  *stage.Stage
+	Policy *stage.Policy
+	Point  *stage.OperatingPoint // nil: none
+	Set    Set
+
+	low, typ, high []float64
+	interior       Bits // inputs that are always sampled between their ends
+	inputs         []*stage.Quantity
+	probes         map[probe]*Draw
+}
+
+type probe struct {
+	id   int
+	step int8 // 0: typical; else sample number
+}
+
+// NewSpace forms the ranges. The stage is complete.
+func NewSpace(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint, set Set) *Space {
+	in := s.Inputs()
+	sp := &Space{
+		Stage: s, Policy: p, Point: op, Set: set, inputs: in,
+		low: make([]float64, len(in)), typ: make([]float64, len(in)), high: make([]float64, len(in)),
+		interior: newBits(len(in)), probes: map[probe]*Draw{},
+	}
+	for id, q := range in {
+		if id == 0 {
+			continue
+		}
+		t := q.Range(sp.Temperature(q))
+		if !t.IsComplete() {
+			t = stage.Missing()
+		}
+		sp.low[id], sp.typ[id], sp.high[id] = t.Min, t.Typ, t.Max
+	}
+	if op != nil {
+		for _, q := range []*stage.Quantity{&op.BusVoltage, &op.LoadCurrent, &op.RippleCurrent, &op.SwitchingFrequency, &op.DeadTime} {
+			sp.interior.set(q.ID)
+		}
+		if op.FixedDuty != nil {
+			sp.interior.set(op.FixedDuty.Duty.ID)
+			sp.interior.set(op.FixedDuty.LowSideOnTime.ID)
+		}
+	}
+	return sp
+}
+
+// Temperature is the temperature that an input's part takes in this set [degC].
+func (s *Space) Temperature(q *stage.Quantity) float64 {
+	if q.Domain == stage.Junction {
+		return s.Set.Junction
+	}
+	return s.Set.Ambient
+}
+
+// Range is the smallest, typical and largest of an input in this set.
+func (s *Space) Range(q *stage.Quantity) stage.Triple {
+	return stage.Triple{Min: s.low[q.ID], Typ: s.typ[q.ID], Max: s.high[q.ID]}
+}
+
+// At makes a draw with given numbers.
+func (s *Space) at(x []float64) *Draw {
+	return &Draw{Space: s, x: x, trace: newTrace(len(x))}
+}
+
+// With makes a draw that differs from another in some inputs.
+func (s *Space) With(d *Draw, changes ...Change) *Draw {
+	x := append([]float64(nil), d.x...)
+	for _, c := range changes {
+		x[c.ID] = c.Value
+	}
+	return s.at(x)
+}
+
+// Change sets one input of a draw.
+type Change struct {
+	ID    int
+	Value float64
+}
+
+// Typical is the draw with every input at its typical value.
+func (s *Space) Typical() *Draw { return s.probe(0, 0, 0) }
+
+// probe is the typical draw with one input moved; kept, so that functions share what models compute there.
+func (s *Space) probe(id int, step int8, v float64) *Draw {
+	key := probe{id, step}
+	if d, ok := s.probes[key]; ok {
+		return d
+	}
+	x := append([]float64(nil), s.typ...)
+	if id > 0 {
+		x[id] = v
+	}
+	d := s.at(x)
+	s.probes[key] = d
+	return d
+}
+
+// samples are the numbers at which an input is tried: its ends, and its interior where asked.
+func (s *Space) sample(id int, step int8) float64 {
+	lo, hi := s.low[id], s.high[id]
+	switch step {
+	case 1:
+		return lo
+	case 2:
+		return hi
+	}
+	// Interior: nine points evenly between the ends; geometric where the range spans decades.
+	w := float64(step-2) / (interiorSamples + 1)
+	if lo > 0 && hi > 8*lo {
+		return lo * math.Pow(hi/lo, w)
+	}
+	return lo + w*(hi-lo)
+}
+
+const interiorSamples = 9
+
+// Replace is the space with other ranges of some inputs.
+func (s *Space) Replace(changes ...Replacement) *Space {
+	o := *s
+	o.low, o.typ, o.high = append([]float64(nil), s.low...), append([]float64(nil), s.typ...), append([]float64(nil), s.high...)
+	for _, c := range changes {
+		o.low[c.ID], o.typ[c.ID], o.high[c.ID] = c.Min, c.Typ, c.Max
+	}
+	o.probes = map[probe]*Draw{}
+	return &o
+}
+
+// Replacement is another range of one input.
+type Replacement struct {
+	ID int
+	stage.Triple
+}

@@ -1,0 +1,149 @@
+// Package derive inverts the periodic steady state: the value of one quantity, the others standing at a draw, at which the floating supply
+// just holds its limits. Limits are solved against the limit itself, not against the guard. The inversion is root finding on the same steady
+// state that the rules judge, so that a limit and a rule cannot disagree.
+package derive
+
+import (
+	"math"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/corner"
+	"floatrail/calc/finding"
+	"floatrail/calc/internal/numeric"
+	"floatrail/calc/stage"
+)
+
+// Hold is the distance of the lowest V_BS to what it must keep: falling lockout, and specified drive while the channel carries forward
+// current [V].
+func Hold(c *circuit.Circuit) float64 { return c.Low() - c.Required() }
+
+// Stand is the smaller distance of the highest V_BS to the driver's rating and of the highest gate voltage to the gate's [V].
+func Stand(c *circuit.Circuit) float64 {
+	v := c.High()
+	return math.Min(c.Need(&c.Stage.Driver.FloatingVoltageMax)-v, c.Need(&c.Stage.HighSide.GateVoltageMax)-c.Gate(v))
+}
+
+// both limits at once.
+func both(c *circuit.Circuit) float64 { return math.Min(Hold(c), Stand(c)) }
+
+// Result is one derived limit at one draw.
+type Result struct {
+	Value float64 // NaN where there is none
+	Found bool    // the limit turns at Value
+	Whole bool    // the whole range holds
+}
+
+// Names lists the limits of a fixed duty, in the order of answers.
+func Names() []string {
+	return []string{finding.LargestDuty, finding.LongestOnTime, finding.ShortestLowSidePulse, finding.LargestResistance,
+		finding.LargestDeadTime, finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq}
+}
+
+// search is how one limit is found: which input moves, from the drawn value, toward where, and what must hold.
+type search struct {
+	input  *stage.Quantity
+	toward float64
+	back   float64 // where to look when the drawn value does not hold
+	holds  func(*circuit.Circuit) float64
+	finish func(c *circuit.Circuit, v float64) float64 // turns the input's value into the limit
+}
+
+func (s search) limit(c *circuit.Circuit, v float64) float64 {
+	if s.finish == nil {
+		return v
+	}
+	return s.finish(c, v)
+}
+
+func plan(c *circuit.Circuit, name string) search {
+	op := c.Point
+	f := c.Value(&op.SwitchingFrequency)
+	period := 1 / f
+	const leastDuty, mostResistance, decades = 1e-3, 1e6, 1e4
+	duty := search{input: &op.FixedDuty.Duty, toward: 1, back: leastDuty, holds: Hold}
+	switch name {
+	case finding.LargestDuty:
+		return duty
+	case finding.LongestOnTime:
+		duty.finish = func(c *circuit.Circuit, d float64) float64 {
+			if d >= 1 {
+				return math.Inf(1)
+			}
+			return math.Max(0, d*period-c.Value(&op.DeadTime))
+		}
+		return duty
+	case finding.ShortestLowSidePulse:
+		duty.finish = func(c *circuit.Circuit, d float64) float64 { return math.Max(0, (1-d)*period-c.Value(&op.DeadTime)) }
+		return duty
+	case finding.LargestResistance:
+		return search{input: &c.Stage.Bootstrap.Resistor.Resistance, toward: mostResistance, back: 0, holds: Hold}
+	case finding.LargestDeadTime:
+		return search{input: &op.DeadTime, toward: period / 2, back: 0, holds: both}
+	case finding.LowestSwitchingFrequency:
+		return search{input: &op.SwitchingFrequency, toward: f / decades, back: f * 30, holds: Hold}
+	}
+	return search{input: &op.SwitchingFrequency, toward: f * decades, back: f / 30, holds: Hold}
+}
+
+// Limit finds a derived limit of a fixed duty at the draw of a circuit.
+func Limit(c *circuit.Circuit, name string) Result {
+	s := plan(c, name)
+	here := c.Value(s.input)
+	at := func(v float64) float64 {
+		return s.holds(circuit.Of(c.Space.With(c.Draw, corner.Change{ID: s.input.ID, Value: v})))
+	}
+	now := s.holds(c)
+	if now != now || here != here {
+		return Result{Value: math.NaN()}
+	}
+	good, bad := here, s.toward
+	if now < 0 {
+		good, bad = s.back, here
+		if !(at(good) >= 0) {
+			return Result{Value: math.NaN()}
+		}
+	} else if !(at(bad) < 0) {
+		return Result{Value: s.limit(c, bad), Whole: true}
+	}
+	v := turn(at, good, bad)
+	return Result{Value: s.limit(c, v), Found: v == v}
+}
+
+// turn finds where a function that is not negative at good becomes negative toward bad, to 1e-7 of the value, on the good side. The search
+// runs over the logarithm where both ends are positive and far apart.
+func turn(f func(float64) float64, good, bad float64) float64 {
+	to := func(u float64) float64 { return u }
+	from := to
+	if good > 0 && bad > 0 && (bad > 4*good || good > 4*bad) {
+		to, from = math.Log, math.Exp
+	}
+	a, b := to(good), to(bad)
+	best := good
+	g := func(u float64) float64 {
+		v := from(u)
+		y := f(v)
+		if y >= 0 && math.Abs(to(v)-b) < math.Abs(to(best)-b) {
+			best = v
+		}
+		return y
+	}
+	scale := math.Max(math.Abs(a), math.Abs(b))
+	if to(2) != 2 {
+		scale = 1
+	}
+	if _, ok := numeric.Root(g, a, b, 1e-7*scale); !ok {
+		return math.NaN()
+	}
+	return best
+}
+
+// Tightest is the binding one of a limit's results at several draws: the smallest where the quantity is limited from above.
+func Tightest(name string, a, b Result) bool {
+	if a.Value != a.Value || b.Value != b.Value {
+		return a.Value != a.Value && b.Value == b.Value // none anywhere is the tightest
+	}
+	if name == finding.ShortestLowSidePulse || name == finding.LowestSwitchingFrequency {
+		return a.Value > b.Value
+	}
+	return a.Value < b.Value
+}

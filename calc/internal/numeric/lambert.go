@@ -1,0 +1,42 @@
+package numeric
+
+import "math"
+
+// LogLambert solves e^l + l = y for l [1]. It is ln W(e^y), Lambert's W in logarithmic form, and so the current of a diode
+// in series with a resistor without the overflow of the exponential. Valid for every y; relative accuracy of e^l and
+// absolute accuracy of l are those of a double.
+func LogLambert(y float64) float64 {
+	l, _ := LogLambertPair(y)
+	return l
+}
+
+// LogLambertPair returns the l of e^l + l = y and w = e^l, which is W(e^y) [1].
+//
+// Start: one step of Halley's method from l = ln y (y > 1) or from l = y, which is within 0.015 of the root. Then two steps
+// of the fourth-order iteration of Fritsch, Shafer and Crowley (Communications of the ACM 16(2), 1973, algorithm 443),
+// w <- w·(1 + e), whose correction e needs only the residual z = y - l - w. The first reaches 1e-9, the second the last digit.
+func LogLambertPair(y float64) (l, w float64) {
+	switch {
+	case y != y || math.IsInf(y, 1):
+		return y, y
+	case y < -37: // e^l is below the last digit of l
+		return y, math.Exp(y)
+	case y > 1:
+		g := math.Log(y)
+		l = g - 2*g*(y+1)/(2*(y+1)*(y+1)-g*y)
+	default:
+		g := math.Exp(y)
+		l = y - 2*g*(1+g)/(2*(1+g)*(1+g)-g*g)
+	}
+	w = math.Exp(l)
+	e := lambertCorrection(y-l-w, w)
+	l += math.Log(1 + e) // absolute accuracy counts
+	w += w * e
+	e = lambertCorrection(y-l-w, w)
+	return l + e, w + w*e
+}
+
+func lambertCorrection(z, w float64) float64 {
+	q := 2 * (1 + w) * (1 + w + 2*z/3)
+	return z / (1 + w) * (q - z) / (q - 2*z)
+}

@@ -1,0 +1,5 @@
+package recharge
+
+import "math"
+
+var nan = math.NaN()

@@ -1,0 +1,193 @@
+// Package result makes the typed results of an answer: what the methods return beside findings. It runs on the same bench as the rules.
+package result
+
+import (
+	"math"
+	"slices"
+
+	"floatrail/calc/catalog"
+	"floatrail/calc/circuit"
+	"floatrail/calc/corner"
+	"floatrail/calc/derive"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+// DutyLimits gives the floating voltage and the derived limits of every operating point.
+func DutyLimits(b *rule.Bench) *finding.DutyLimits {
+	out := &finding.DutyLimits{}
+	for i := range b.Points {
+		if b.Points[i].Operating == nil {
+			continue
+		}
+		out.Points = append(out.Points, dutyPoint(b, &b.Points[i]))
+	}
+	return out
+}
+
+func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
+	out := finding.DutyPoint{OperatingPoint: p.Name()}
+	fail := func(r *rule.Range) {
+		for _, m := range r.Missing {
+			if !slices.Contains(out.Missing, m) {
+				out.Missing = append(out.Missing, m)
+			}
+		}
+		if len(r.Reasons) > 0 && out.Reason == "" {
+			out.Reason = r.Reasons[0]
+		}
+	}
+	span := func(f rule.Number, d quantity.Dimension) (finding.Span, rule.Range) {
+		r := b.Range(p, f, d)
+		fail(&r)
+		return r.Span, r
+	}
+	none := func(d quantity.Dimension) finding.Span {
+		return finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
+	}
+	out.RechargeWindow, out.RechargeRatio, out.Deficit = none(quantity.Time), none(quantity.Ratio), none(quantity.Voltage)
+	out.GateVoltageLow = none(quantity.Voltage)
+	var low rule.Range
+	out.FloatingVoltageLow, low = span(func(c *circuit.Circuit) float64 { return c.Low() }, quantity.Voltage)
+	out.FloatingVoltageHigh, _ = span(func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage)
+	if p.Operating.LoadCurrent.Known() && p.Operating.LoadCurrent.Max+firstKnown(p.Operating.RippleCurrent.Max)/2 > 0 {
+		out.GateVoltageLow, _ = span(func(c *circuit.Circuit) float64 { return c.Gate(c.Low()) }, quantity.Voltage)
+	}
+	if p.Operating.HeldOn != nil {
+		out.Limits = heldLimits(b, p)
+		return out
+	}
+	if p.Operating.FixedDuty == nil || low.Low.Space == nil {
+		return out
+	}
+	out.RechargeWindow, _ = span(func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time)
+	out.RechargeRatio, _ = span(func(c *circuit.Circuit) float64 {
+		q := c.Period()
+		return q.Window / (q.Element.Resistance * q.Capacitance)
+	}, quantity.Ratio)
+	out.Deficit, _ = span(func(c *circuit.Circuit) float64 {
+		if p := c.Period(); p.Window == 0 && p.T > 0 {
+			return math.Inf(1)
+		}
+		return c.Settled() - c.Low()
+	}, quantity.Voltage)
+	worst := circuit.Of(low.Low.Draw)
+	out.CapacitanceCancels = catalog.CapacitanceCancels(worst)
+	if math.IsInf(low.Low.Value, -1) {
+		out.Collapses = &finding.Collapse{Periods: catalog.Periods(worst), Corner: rule.Corner(&low.Low)}
+	}
+	for _, s := range p.Spaces {
+		if c := circuit.Of(s.Typical()); catalog.PeakDetector(c) {
+			out.PeakDetector = true
+			q := c.Period()
+			out.HighInterval = q.Names[c.Steady().HighInterval]
+		}
+	}
+	out.Limits = fixedLimits(b, p)
+	return out
+}
+
+func firstKnown(v float64) float64 {
+	if v != v {
+		return 0
+	}
+	return v
+}
+
+// fixedLimits finds the derived limits of a fixed duty at the worst draws of what must hold, over all sets; the tightest one binds.
+func fixedLimits(b *rule.Bench, p *rule.Point) []finding.DerivedLimit {
+	hold := worstDraws(b, p, derive.Hold)
+	stand := worstDraws(b, p, derive.Stand)
+	var out []finding.DerivedLimit
+	for _, name := range derive.Names() {
+		draws := hold
+		if name == finding.LargestDeadTime {
+			draws = append(slices.Clone(hold), stand...)
+		}
+		out = append(out, bindingLimit(p, name, draws))
+	}
+	return out
+}
+
+func worstDraws(b *rule.Bench, p *rule.Point, f rule.Number) []corner.Worst {
+	var out []corner.Worst
+	for _, s := range p.Spaces {
+		out = append(out, s.Search(func(d *corner.Draw) float64 { return f(circuit.Of(d)) }))
+	}
+	return out
+}
+
+func dimensionOf(name string) quantity.Dimension {
+	switch name {
+	case finding.LargestDuty:
+		return quantity.Ratio
+	case finding.LargestResistance:
+		return quantity.Resistance
+	case finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq:
+		return quantity.Frequency
+	}
+	return quantity.Time
+}
+
+func bindingLimit(p *rule.Point, name string, draws []corner.Worst) finding.DerivedLimit {
+	out := finding.DerivedLimit{Name: name, Measure: finding.Measure{Value: math.NaN(), Dimension: dimensionOf(name)}}
+	var best derive.Result
+	for i := range draws {
+		w := &draws[i]
+		if w.Value != w.Value {
+			m := append(w.Space.Missing(w.Trace), w.Trace.Reasons()...)
+			out.Reason = "cannot be evaluated"
+			if len(m) > 0 {
+				out.Reason += ": " + stage.Relative(m[0])
+			}
+			return out
+		}
+		var r derive.Result
+		_, t := corner.Evaluate(w.Draw, func(d *corner.Draw) float64 {
+			r = derive.Limit(circuit.Of(d), name)
+			return 0
+		})
+		if !t.Complete() {
+			out.Reason = "cannot be evaluated"
+			return out
+		}
+		if i == 0 || derive.Tightest(name, r, best) {
+			best = r
+			out.Corner = rule.Corner(w)
+		}
+	}
+	out.Measure.Value = rule.Significant(best.Value)
+	switch {
+	case best.Value != best.Value:
+		out.Reason = "holds nowhere in the range searched"
+	case math.IsInf(best.Value, 0):
+		out.Measure.Value = math.NaN()
+		out.Reason = "without limit"
+	case best.Whole:
+		out.Reason = "the whole range searched holds"
+	}
+	return out
+}
+
+// heldLimits is the hold time of an operating point with the high side held on.
+func heldLimits(b *rule.Bench, p *rule.Point) []finding.DerivedLimit {
+	out := finding.DerivedLimit{Name: finding.LongestOnTime, Measure: finding.Measure{Value: math.NaN(), Dimension: quantity.Time}}
+	r := b.Range(p, func(c *circuit.Circuit) float64 {
+		h, _ := c.Hold()
+		return h.Time(c.Required())
+	}, quantity.Time)
+	switch {
+	case r.Low.Space == nil:
+		out.Reason = "cannot be evaluated"
+		if len(r.Missing) > 0 {
+			out.Reason += ": " + stage.Relative(r.Missing[0])
+		}
+	case math.IsInf(r.Span.Min, 1):
+		out.Reason = "without limit"
+	default:
+		out.Measure.Value, out.Corner = r.Span.Min, rule.Corner(&r.Low)
+	}
+	return []finding.DerivedLimit{out}
+}

@@ -1,0 +1,75 @@
+package result
+
+import (
+	"math"
+
+	"floatrail/calc/charge"
+	"floatrail/calc/circuit"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+// Sizing gives the charge budget of the stage and the parts that fit it. The trial is a copy of the stage before Complete; parts that the
+// stage does not name yet are put into it.
+func Sizing(b *rule.Bench, trial *stage.Stage, p *stage.Policy) *finding.Sizing {
+	out := &finding.Sizing{}
+	t := newTrial(trial, p)
+	budget(t.bench, out)
+	t.recommend(out)
+	for _, a := range t.bench.Assumptions() {
+		b.Adopt(a)
+	}
+	return out
+}
+
+// budget fills the spans over all operating points.
+func budget(b *rule.Bench, out *finding.Sizing) {
+	over := func(f rule.Number, d quantity.Dimension) (finding.Span, string) {
+		all := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
+		where := ""
+		for i := range b.Points {
+			p := &b.Points[i]
+			if p.Operating == nil {
+				continue
+			}
+			r := b.Range(p, f, d)
+			if r.Low.Space == nil {
+				return finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}, ""
+			}
+			if where == "" || r.Span.Max > all.Max {
+				all.Max, all.Typ, where = r.Span.Max, r.Span.Typ, p.Name()
+			}
+			if !(all.Min <= r.Span.Min) {
+				all.Min = r.Span.Min
+			}
+		}
+		return all, where
+	}
+	for k, name := range charge.ItemNames() {
+		s, where := over(func(c *circuit.Circuit) float64 {
+			if c.Point.HeldOn != nil {
+				h, t := c.Hold()
+				return charge.Items(h.Loads, charge.Edge{}, charge.Interval{Period: t, OnTime: t, Voltage: h.Start})[k].Charge
+			}
+			return c.Budget()[k].Charge
+		}, quantity.Charge)
+		out.Budget = append(out.Budget, finding.BudgetItem{Name: name, Charge: s, OperatingPoint: where})
+	}
+	out.TotalCharge, _ = over(func(c *circuit.Circuit) float64 { return c.CycleCharge() }, quantity.Charge)
+	out.VoltageBudget, _ = over(func(c *circuit.Circuit) float64 { return c.Drop() }, quantity.Voltage)
+	out.MinimumCapacitance, _ = over(func(c *circuit.Circuit) float64 { return c.MinimumCapacitance() }, quantity.Capacitance)
+	out.EffectiveCapacitance, _ = over(func(c *circuit.Circuit) float64 { return c.Capacitance() }, quantity.Capacitance)
+	out.Ripple, _ = over(func(c *circuit.Circuit) float64 {
+		if c.Point.HeldOn != nil {
+			h, t := c.Hold()
+			return h.Start - h.Voltage(t)
+		}
+		st := c.Steady()
+		if st.Collapses {
+			return math.Inf(1)
+		}
+		return st.BeforeEdge - st.Low
+	}, quantity.Voltage)
+}

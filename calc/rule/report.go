@@ -1,0 +1,252 @@
+package rule
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/corner"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/stage"
+)
+
+const (
+	mostRanked     = 8 // inputs in a ranking
+	mostBreakEvens = 4 // inputs for which the break-even is sought
+)
+
+// report words the finding.
+func (b *Bench) report(r *Rule, role, mode string, all []result, best int) finding.Finding {
+	res := &all[best]
+	f := finding.Finding{
+		Rule: r.ID, Role: role, Mode: mode, Outcome: res.outcome, Title: r.Title, Equation: r.Equation, Sources: r.Sources,
+		Severity: r.severity(res.outcome, b.Stage, role, b.Policy), Subjects: b.subjects(role),
+		OperatingPoint: res.point.Name(),
+		Value:          unset(r.Dimension), Limit: unset(r.Dimension), Guard: unset(r.Dimension), Typical: unset(r.Dimension),
+		Margin: finding.Margin{Absolute: unset(r.Dimension), Relative: math.NaN()},
+	}
+	if r.Stagewide && res.outcome == finding.NotApplicable {
+		f.OperatingPoint = ""
+	}
+	b.points(r, &f, all, best)
+	switch res.outcome {
+	case finding.NotApplicable:
+		f.Message = fmt.Sprintf("Not applicable: %s.", res.reason)
+	case finding.Open:
+		b.open(r, role, &f, res)
+	default:
+		b.decided(r, role, &f, res)
+	}
+	finding.Stamp(&f, b.Stage.Identity())
+	return f
+}
+
+func unset(d quantity.Dimension) finding.Measure {
+	return finding.Measure{Value: math.NaN(), Dimension: d}
+}
+
+// subjects names the part of a role.
+func (b *Bench) subjects(role string) []string {
+	if role == "" {
+		return []string{b.Stage.ID}
+	}
+	if h := b.Stage.Part(role); h != nil && h.Refdes != "" {
+		return []string{h.Refdes}
+	}
+	return []string{role}
+}
+
+func (b *Bench) points(r *Rule, f *finding.Finding, all []result, best int) {
+	for i := range all {
+		if i == best {
+			continue
+		}
+		o := &all[i]
+		p := finding.PointResult{OperatingPoint: o.point.Name(), Outcome: o.outcome, Value: unset(r.Dimension), Limit: unset(r.Dimension),
+			Margin: finding.Margin{Absolute: unset(r.Dimension), Relative: math.NaN()}}
+		if o.outcome != finding.Open && o.outcome != finding.NotApplicable {
+			p.Value, p.Limit, p.Margin = b.numbers(r, o)
+		}
+		f.Points = append(f.Points, p)
+	}
+}
+
+// finite makes a measure; infinities are not printed.
+func (r *Rule) finite(v float64) finding.Measure {
+	if math.IsInf(v, 0) {
+		v = math.NaN()
+	}
+	return finding.Measure{Value: significant(v), Dimension: r.Dimension}
+}
+
+func (b *Bench) numbers(r *Rule, o *result) (value, limit finding.Measure, m finding.Margin) {
+	value, limit = r.finite(o.check.Value), r.finite(o.check.Limit)
+	m.Absolute = r.finite(o.margin)
+	if m.Absolute.Dimension == quantity.Temperature {
+		m.Absolute.Dimension = quantity.TemperatureDifference
+	}
+	m.Relative = math.NaN()
+	if l := o.check.Limit; l != 0 && !math.IsInf(o.margin, 0) && !math.IsInf(l, 0) {
+		m.Relative = significant(o.margin / math.Abs(l))
+	}
+	return value, limit, m
+}
+
+func (b *Bench) open(r *Rule, role string, f *finding.Finding, res *result) {
+	w := &res.worst
+	if res.check.Pending != "" {
+		f.Message = fmt.Sprintf("%s cannot be decided: %s.", r.Quantity, res.check.Pending)
+		f.Notes = res.check.Notes
+		if v := r.finite(res.check.Value); v.Value == v.Value {
+			f.Value, f.Limit, f.Margin = b.numbers(r, res)
+			f.Guard = r.finite(res.check.Guard)
+			f.Notes = append([]string{fmt.Sprintf("without it: %s %s against %s %s", r.Quantity, text(v), r.Against, text(f.Limit))}, f.Notes...)
+		}
+		return
+	}
+	if w.Trace == nil {
+		f.Message = r.Quantity + " was not evaluated: the caller no longer waits."
+		return
+	}
+	f.Missing = w.Space.Missing(w.Trace)
+	var parts []string
+	if len(f.Missing) > 0 {
+		names := make([]string, len(f.Missing))
+		for i, m := range f.Missing {
+			names[i] = stage.Relative(m)
+		}
+		parts = append(parts, "missing "+strings.Join(names, ", "))
+	}
+	parts = append(parts, w.Trace.Reasons()...)
+	if len(parts) == 0 {
+		parts = append(parts, "internal: the result is not a number")
+	}
+	f.Message = fmt.Sprintf("%s cannot be evaluated: %s.", r.Quantity, strings.Join(parts, "; "))
+	b.unknownBreakEven(r, role, f, res)
+}
+
+// unknownBreakEven finds, where one value alone is missing, the value of it at which the rule turns.
+func (b *Bench) unknownBreakEven(r *Rule, role string, f *finding.Finding, res *result) {
+	q := res.worst.Space.OnlyMissing(res.worst.Trace)
+	if q == nil || q.Declare == nil || math.IsInf(q.Declare.Low, 0) || math.IsInf(q.Declare.High, 0) {
+		return
+	}
+	if v, ok := res.worst.Space.Turn(q, r.function(role)); ok {
+		f.BreakEven = append(f.BreakEven, finding.BreakEven{Field: q.Field, Measure: finding.Measure{Value: significant(v), Dimension: q.Declare.Dimension}})
+	}
+}
+
+func (b *Bench) decided(r *Rule, role string, f *finding.Finding, res *result) {
+	w := &res.worst
+	f.Value, f.Limit, f.Margin = b.numbers(r, res)
+	f.Guard = r.finite(res.check.Guard)
+	var typical Check
+	_, t := corner.Evaluate(w.Space.Typical(), func(d *corner.Draw) float64 {
+		typical = r.Check(circuit.Of(d), role)
+		return 0
+	})
+	if t.Complete() {
+		f.Typical = r.finite(typical.Value)
+	}
+	f.Notes = res.check.Notes
+	b.corner(f, w)
+	dim := r.Dimension
+	if r.Proxy != nil {
+		dim = r.ProxyDimension
+	}
+	if dim == quantity.Temperature {
+		dim = quantity.TemperatureDifference
+	}
+	for i, s := range w.Swings {
+		if i == mostRanked {
+			break
+		}
+		f.Ranking = append(f.Ranking, finding.Ranking{Field: s.Input.Field, Swing: finding.Measure{Value: significant(s.Range), Dimension: dim}})
+	}
+	b.breakEvens(r, role, f, w)
+	f.Message = message(r, f)
+}
+
+// corner records where each input stands and the inputs behind the number.
+func (b *Bench) corner(f *finding.Finding, w *corner.Worst) {
+	f.Corner = Corner(w)
+	for _, q := range w.Space.Inputs(w.Trace) {
+		if v := w.Draw.Value(q); v == v {
+			f.Inputs = append(f.Inputs, finding.Input{Symbol: q.Symbol(), Field: q.Field, Source: q.Source,
+				Measure: finding.Measure{Value: significant(v), Dimension: q.Declare.Dimension}})
+		}
+	}
+}
+
+func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.Worst) {
+	fn := r.function(role)
+	for _, s := range w.Swings {
+		if len(f.BreakEven) == mostBreakEvens {
+			return
+		}
+		d := s.Input.Declare
+		if d == nil || math.IsInf(d.Low, 0) || math.IsInf(d.High, 0) {
+			continue
+		}
+		if v, ok := w.Space.BreakEven(w.Draw, s.Input, fn, d.Low, d.High); ok {
+			f.BreakEven = append(f.BreakEven, finding.BreakEven{Field: s.Input.Field,
+				Measure: finding.Measure{Value: significant(v), Dimension: d.Dimension}})
+		}
+	}
+}
+
+func text(m finding.Measure) string {
+	if m.Value != m.Value {
+		return "none"
+	}
+	return quantity.Format(m.Value, m.Dimension)
+}
+
+// message is one sentence with the numbers.
+func message(r *Rule, f *finding.Finding) string {
+	var s strings.Builder
+	value := text(f.Value)
+	if f.Value.Value != f.Value.Value {
+		value = "has no value"
+	}
+	fmt.Fprintf(&s, "%s %s", r.Quantity, value)
+	if f.Limit.Value == f.Limit.Value {
+		side := "at most"
+		if r.Sense == AtLeast {
+			side = "at least"
+		}
+		fmt.Fprintf(&s, ", %s %s (%s)", side, text(f.Limit), r.Against)
+	}
+	if g := f.Guard; g.Value == g.Value && f.Outcome == finding.Marginal {
+		fmt.Fprintf(&s, ", guard %s", text(g))
+	}
+	if m := f.Margin.Absolute; m.Value == m.Value {
+		if m.Value < 0 {
+			m.Value = -m.Value
+			fmt.Fprintf(&s, ": beyond it by %s", text(m))
+		} else {
+			fmt.Fprintf(&s, ": margin %s", text(m))
+		}
+	}
+	if f.OperatingPoint != "" {
+		fmt.Fprintf(&s, " at %q, %s", f.OperatingPoint, f.Corner.Name)
+	} else {
+		fmt.Fprintf(&s, ", %s", f.Corner.Name)
+	}
+	s.WriteByte('.')
+	return s.String()
+}
+
+// Broken is the finding of a rule that panicked.
+func (b *Bench) Broken(r *Rule) finding.Finding {
+	f := finding.Finding{
+		Rule: r.ID, Outcome: finding.Open, Title: r.Title, Equation: r.Equation, Sources: r.Sources, Severity: r.Open,
+		Subjects: []string{b.Stage.ID}, Message: r.Quantity + " cannot be evaluated: internal.",
+		Value: unset(r.Dimension), Limit: unset(r.Dimension), Guard: unset(r.Dimension), Typical: unset(r.Dimension),
+		Margin: finding.Margin{Absolute: unset(r.Dimension), Relative: math.NaN()},
+	}
+	finding.Stamp(&f, b.Stage.Identity())
+	return f
+}

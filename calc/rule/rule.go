@@ -1,0 +1,153 @@
+// Package rule defines what a rule is and runs rules over a stage. A rule is a value: it says what it needs, when it applies and how value,
+// limit and guard follow from a circuit. The runner does the rest: worst cases, outcomes, messages, counts. Rules never solve, they compare.
+package rule
+
+import (
+	"fmt"
+	"strings"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/corner"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/source"
+	"floatrail/calc/stage"
+)
+
+// Sense tells on which side of its limit a value must stay.
+type Sense uint8
+
+// Senses.
+const (
+	AtMost  Sense = iota + 1 // the value must not exceed the limit
+	AtLeast                  // the value must not fall below the limit
+)
+
+// Check is value, limit and guard at one draw. Numbers that cannot be had are NaN.
+type Check struct {
+	Value, Limit, Guard float64
+	// Floor is the mildest outcome that the draw allows, whatever the numbers say.
+	Floor finding.Outcome
+	// Pending tells what the value does not contain yet: with it the rule is open where the numbers alone would pass.
+	Pending string
+	// Notes is what a reader must know beside the numbers.
+	Notes []string
+}
+
+// Rule is one rule of the catalogue.
+type Rule struct {
+	ID       string // family/name
+	Title    string
+	Since    string // rule set in which it appeared
+	Equation string
+	Limit    string // in words
+	Guard    string // in words
+	Applies  string // in words
+	Needs    []string
+	Sources  []string // keys of the bibliography
+
+	Fail, Marginal, Open stage.Severity
+
+	Quantity  string // what the value is, in words
+	Against   string // what the limit is, in words
+	Dimension quantity.Dimension
+	Sense     Sense
+	Roles     []string // paths of the parts judged, relative to the stage; none: the stage itself
+	Stagewide bool     // does not depend on the kind of mode: one finding for all operating points
+
+	// Inapplicable tells why the rule has nothing to judge; empty where it applies. The operating point may be nil.
+	Inapplicable func(s *stage.Stage, op *stage.OperatingPoint, role string) string
+	// Check gives value, limit and guard at one draw.
+	Check func(c *circuit.Circuit, role string) Check
+	// Proxy, where set, stands in for the margin in the search for the worst draw: a cheaper number of the same sign and direction.
+	Proxy func(c *circuit.Circuit, role string) float64
+	// ProxyDimension is the dimension of Proxy.
+	ProxyDimension quantity.Dimension
+	// FailSeverity, where set, replaces Fail for a stage.
+	FailSeverity func(s *stage.Stage, role string) stage.Severity
+}
+
+// Family is the first part of the id.
+func (r *Rule) Family() string {
+	family, _, _ := strings.Cut(r.ID, "/")
+	return family
+}
+
+// GuardsDestruction tells whether a failure can destroy hardware, latch the driver or shoot through.
+func (r *Rule) GuardsDestruction() bool { return r.Fail == stage.Critical }
+
+// severity of an outcome.
+func (r *Rule) severity(o finding.Outcome, s *stage.Stage, role string, p *stage.Policy) stage.Severity {
+	switch o {
+	case finding.Fail:
+		for _, v := range p.Severities {
+			if v.Rule == r.ID {
+				return v.Severity
+			}
+		}
+		if r.FailSeverity != nil {
+			return r.FailSeverity(s, role)
+		}
+		return r.Fail
+	case finding.Marginal:
+		return r.Marginal
+	case finding.Open:
+		return r.Open
+	}
+	return stage.NoSeverity
+}
+
+// Validate finds what is wrong with a catalogue: ids, documentation, sources, severities.
+func Validate(rules []*Rule) []error {
+	var out []error
+	seen := map[string]bool{}
+	for _, r := range rules {
+		bad := func(format string, a ...any) {
+			out = append(out, fmt.Errorf("rule %s: "+format, append([]any{r.ID}, a...)...))
+		}
+		family, name, ok := strings.Cut(r.ID, "/")
+		if !ok || family == "" || name == "" || strings.ToLower(r.ID) != r.ID {
+			bad("id is not family/name in lower case")
+		}
+		if seen[r.ID] {
+			bad("id is used twice")
+		}
+		seen[r.ID] = true
+		for _, t := range []struct{ what, text string }{{"title", r.Title}, {"since", r.Since}, {"equation", r.Equation}, {"limit", r.Limit},
+			{"guard", r.Guard}, {"applies", r.Applies}, {"quantity", r.Quantity}, {"against", r.Against}} {
+			if t.text == "" {
+				bad("no %s", t.what)
+			}
+		}
+		if len(r.Needs) == 0 {
+			bad("no needed fields")
+		}
+		if len(r.Sources) == 0 {
+			bad("no source")
+		}
+		for _, k := range r.Sources {
+			if _, ok := source.Lookup(k); !ok {
+				bad("source %q is not in the bibliography", k)
+			}
+		}
+		if r.Fail == stage.NoSeverity || r.Marginal == stage.NoSeverity || r.Open == stage.NoSeverity {
+			bad("a severity is unset")
+		}
+		if r.GuardsDestruction() && r.Open < stage.Major {
+			bad("guards against destruction and is open below MAJOR")
+		}
+		if r.Sense == 0 || r.Check == nil || r.Inapplicable == nil {
+			bad("no sense, check or applicability")
+		}
+	}
+	return out
+}
+
+// Worst is the function whose smallest value is the rule's worst draw.
+func (r *Rule) Worst(role string) corner.Function { return r.function(role) }
+
+// Holds tells whether a circuit keeps the rule's guard.
+func (r *Rule) Holds(c *circuit.Circuit, role string) bool {
+	k := r.Check(c, role)
+	return r.margin(k) >= 0 && r.guardSlack(k) >= 0 && k.Floor < finding.Marginal
+}
