@@ -90,18 +90,10 @@ type Draw struct {
 	Space *Space
 	x     []float64
 	trace Trace
-	stack []*Trace // traces of memoised parts under way
-	memo  [memoSlots]*memoEntry
+	stack []*Trace          // traces of memoised parts under way
+	memo  [memoSlots]*entry // found at this draw
 	// Slot is free for what a model keeps with the draw.
 	Slot any
-}
-
-// memoSlots bounds the number of results that models keep with a draw.
-const memoSlots = 24
-
-type memoEntry struct {
-	value any
-	trace *Trace
 }
 
 // Need reads an input. Unknown: NaN, and the field is noted as missing.
@@ -156,21 +148,6 @@ func (d *Draw) current() *Trace {
 		return d.stack[n-1]
 	}
 	return &d.trace
-}
-
-// Memo returns f's value, evaluated once per draw and slot; what f reads counts as read by every caller.
-func Memo[T any](d *Draw, slot int, f func() T) T {
-	e := d.memo[slot]
-	if e == nil {
-		t := newTrace(len(d.x))
-		d.stack = append(d.stack, &t)
-		v := f()
-		d.stack = d.stack[:len(d.stack)-1]
-		e = &memoEntry{v, &t}
-		d.memo[slot] = e
-	}
-	d.current().Add(e.trace)
-	return e.value.(T)
 }
 
 // Value is the number drawn for an input, without noting it as read.

@@ -4,6 +4,7 @@ import (
 	"math"
 	"slices"
 
+	"floatrail/calc/internal/numeric"
 	"floatrail/calc/stage"
 )
 
@@ -21,6 +22,8 @@ type Worst struct {
 	Typical float64 // value with every input at its typical value
 	Trace   *Trace  // all that was read anywhere in the search
 	Swings  []Swing // made by Polish, largest first
+
+	turning Bits // inputs in which the function turns between their ends
 }
 
 // Swing tells how far one input moves the function, the others standing at the worst draw.
@@ -50,7 +53,7 @@ func below(a, b float64) bool {
 func (s *Space) Search(f Function) Worst {
 	d := s.Typical()
 	v, t := Evaluate(d, f)
-	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone()}
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs))}
 	if !usable(v, t) {
 		w.Value = math.NaN()
 		return w
@@ -89,8 +92,14 @@ func (s *Space) Search(f Function) Worst {
 				return u
 			}
 			lo, hi := try(1), try(2)
-			if s.interior.has(id) || (lo-v)*(hi-v) > 0 {
-				for k := int8(3); k < 3+interiorSamples; k++ {
+			turns := (lo-v)*(hi-v) > 0
+			if s.interior.has(id) && !turns { // look between the ends for a turn
+				a, b := try(lookLow), try(lookHigh)
+				turns = (a-lo)*(hi-lo) < 0 || (b-lo)*(hi-lo) < 0 || (a-hi)*(lo-hi) < 0 || (b-hi)*(lo-hi) < 0 || (b-a)*(hi-lo) < 0
+			}
+			if turns {
+				w.turning.set(id)
+				for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {
 					try(k)
 				}
 			}
@@ -164,8 +173,8 @@ func (s *Space) sweep(w *Worst, f Function) {
 		if s.low[id] < s.high[id] {
 			try(s.low[id])
 			try(s.high[id])
-			if s.interior.has(id) {
-				for k := int8(3); k < 3+interiorSamples; k++ {
+			if w.turning.has(id) {
+				for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {
 					try(s.sample(id, k))
 				}
 			}
@@ -216,70 +225,45 @@ func (s *Space) Assumptions(t *Trace) []stage.Assumption {
 }
 
 // BreakEven finds the value of one input, the others standing at a draw, at which f turns from its sign there, between low and high.
-// The nearest one to the drawn value is sought by widening steps; ok is false where the sign holds throughout.
+// Of two the nearer one is given; ok is false where the sign holds at both ends.
 func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high float64) (float64, bool) {
 	start := d.x[q.ID]
 	v0, t0 := Evaluate(d, f)
 	if !usable(v0, t0) || start != start {
 		return math.NaN(), false
 	}
-	negative := v0 < 0
-	x := slices.Clone(d.x)
-	at := func(p float64) (bool, bool) { // sign differs, usable
-		x[q.ID] = p
-		u, t := Evaluate(s.at(x), f)
+	at := func(p float64) float64 {
+		u, t := Evaluate(s.With(d, Change{q.ID, p}), f)
 		if !usable(u, t) {
-			return false, false
+			return math.NaN()
 		}
-		return (u < 0) != negative, true
+		return u
 	}
 	best, found := math.NaN(), false
 	for _, end := range []float64{low, high} {
-		inside, outside, ok := bracket(start, end, at)
-		if !ok {
+		if v := at(end); start == end || v != v || (v < 0) == (v0 < 0) {
 			continue
 		}
-		p := bisect(inside, outside, at)
-		if !found || distance(p, start) < distance(best, start) {
+		var p float64
+		var ok bool
+		if start > 0 && end > 0 && (end > 4*start || start > 4*end) { // far apart: over the logarithm
+			p, ok = numeric.Root(func(u float64) float64 { return at(math.Exp(u)) }, math.Log(start), math.Log(end), breakEvenDigits)
+			p = math.Exp(p)
+		} else {
+			p, ok = numeric.Root(at, start, end, breakEvenDigits*math.Max(math.Abs(start), math.Abs(end)))
+		}
+		if ok && (!found || distance(p, start) < distance(best, start)) {
 			best, found = p, true
 		}
 	}
 	return best, found
 }
 
+// breakEvenDigits is how exactly a break-even value is found, relative.
+const breakEvenDigits = 1e-6
+
 func distance(a, b float64) float64 {
 	return math.Abs(a-b) / (math.Abs(a) + math.Abs(b) + math.SmallestNonzeroFloat64)
-}
-
-// bracket steps from start toward end until the sign turns: an inside and an outside value.
-func bracket(start, end float64, turned func(float64) (bool, bool)) (inside, outside float64, ok bool) {
-	if start == end || math.IsInf(end, 0) {
-		return 0, 0, false
-	}
-	if t, usable := turned(end); !t || !usable { // monotone over the range: one look at the end spares the walk
-		return 0, 0, false
-	}
-	inside = start
-	for _, share := range []float64{0.003, 0.03, 0.2} {
-		p := between(start, end, share)
-		t, usable := turned(p)
-		if !usable {
-			return 0, 0, false
-		}
-		if t {
-			return inside, p, true
-		}
-		inside = p
-	}
-	return inside, end, true
-}
-
-// between goes a share of the way, by ratio where both ends are positive.
-func between(a, b, share float64) float64 {
-	if a > 0 && b > 0 {
-		return a * math.Pow(b/a, share)
-	}
-	return a + share*(b-a)
 }
 
 // bisect narrows a turn to six digits; the value returned lies on the inside.

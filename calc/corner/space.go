@@ -39,9 +39,10 @@ type Space struct {
 	Set    Set
 
 	low, typ, high []float64
-	interior       Bits // inputs that are always sampled between their ends
+	interior       Bits // inputs in which a turn is looked for between their ends
 	inputs         []*stage.Quantity
 	probes         map[probe]*Draw
+	memory         *memory // shared by the spaces that Replace makes: results do not depend on ranges
 }
 
 type probe struct {
@@ -55,7 +56,7 @@ func NewSpace(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint, set Set
 	sp := &Space{
 		Stage: s, Policy: p, Point: op, Set: set, inputs: in,
 		low: make([]float64, len(in)), typ: make([]float64, len(in)), high: make([]float64, len(in)),
-		interior: newBits(len(in)), probes: map[probe]*Draw{},
+		interior: newBits(len(in)), probes: map[probe]*Draw{}, memory: &memory{},
 	}
 	for id, q := range in {
 		if id == 0 {
@@ -140,14 +141,20 @@ func (s *Space) sample(id int, step int8) float64 {
 		return hi
 	}
 	// Interior: nine points evenly between the ends; geometric where the range spans decades.
-	w := float64(step-2) / (interiorSamples + 1)
+	w := float64(step-firstInterior+1) / (interiorSamples + 1)
 	if lo > 0 && hi > 8*lo {
 		return lo * math.Pow(hi/lo, w)
 	}
 	return lo + w*(hi-lo)
 }
 
-const interiorSamples = 9
+// Sample numbers: the ends are 1 and 2, the interior follows; two of it serve to look for a turn.
+const (
+	firstInterior   = 3
+	interiorSamples = 9
+	lookLow         = 5
+	lookHigh        = 9
+)
 
 // Replace is the space with other ranges of some inputs.
 func (s *Space) Replace(changes ...Replacement) *Space {

@@ -23,6 +23,16 @@ func Stand(c *circuit.Circuit) float64 {
 	return math.Min(c.Need(&c.Stage.Driver.FloatingVoltageMax)-v, c.Need(&c.Stage.HighSide.GateVoltageMax)-c.Gate(v))
 }
 
+// works is a condition that also fails where the high-side pulse no longer reaches the switch.
+func works(f func(*circuit.Circuit) float64) func(*circuit.Circuit) float64 {
+	return func(c *circuit.Circuit) float64 {
+		if p := c.Period(); p.HighVanishes {
+			return math.Inf(-1)
+		}
+		return f(c)
+	}
+}
+
 // both limits at once.
 func both(c *circuit.Circuit) float64 { return math.Min(Hold(c), Stand(c)) }
 
@@ -60,7 +70,7 @@ func plan(c *circuit.Circuit, name string) search {
 	f := c.Value(&op.SwitchingFrequency)
 	period := 1 / f
 	const leastDuty, mostResistance, decades = 1e-3, 1e6, 1e4
-	duty := search{input: &op.FixedDuty.Duty, toward: 1, back: leastDuty, holds: Hold}
+	duty := search{input: &op.FixedDuty.Duty, toward: 1, back: leastDuty, holds: works(Hold)}
 	switch name {
 	case finding.LargestDuty:
 		return duty
@@ -76,13 +86,13 @@ func plan(c *circuit.Circuit, name string) search {
 		duty.finish = func(c *circuit.Circuit, d float64) float64 { return math.Max(0, (1-d)*period-c.Value(&op.DeadTime)) }
 		return duty
 	case finding.LargestResistance:
-		return search{input: &c.Stage.Bootstrap.Resistor.Resistance, toward: mostResistance, back: 0, holds: Hold}
+		return search{input: &c.Stage.Bootstrap.Resistor.Resistance, toward: mostResistance, back: 0, holds: works(Hold)}
 	case finding.LargestDeadTime:
-		return search{input: &op.DeadTime, toward: period / 2, back: 0, holds: both}
+		return search{input: &op.DeadTime, toward: period / 2, back: 0, holds: works(both)}
 	case finding.LowestSwitchingFrequency:
-		return search{input: &op.SwitchingFrequency, toward: f / decades, back: f * 30, holds: Hold}
+		return search{input: &op.SwitchingFrequency, toward: f / decades, back: f * 30, holds: works(Hold)}
 	}
-	return search{input: &op.SwitchingFrequency, toward: f * decades, back: f / 30, holds: Hold}
+	return search{input: &op.SwitchingFrequency, toward: f * decades, back: f / 30, holds: works(Hold)}
 }
 
 // Limit finds a derived limit of a fixed duty at the draw of a circuit.

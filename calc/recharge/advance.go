@@ -85,7 +85,12 @@ func (w *law) decay(s0, logS0, k, tc float64) float64 {
 		return softRise{a: w.r, b: w.slope / k, p: k / s0, k: k, logS0: logS0, bp: w.slope / s0}.solve(tc)
 	}
 	rise := softRise{a: w.slope / k, b: w.r, p: s0 / k, k: k, inverse: true, logS0: logS0, bp: w.r * s0 / k}
-	return rise.soft(rise.solve(tc))
+	u := rise.solve(tc)
+	a := rise.soft(u)
+	if u > bend && rise.a < rise.b*math.Min(a, 1) {
+		return (tc - rise.a*u) / rise.b // the same from (3), but for the cancellation of u and ln p
+	}
+	return a
 }
 
 // softRise is the function h(x) = a·x + b·log1p(p·expm1(x)) with a, b > 0 and 0 <= p <= 1: increasing and convex.
@@ -177,8 +182,11 @@ func (h softRise) solve(y float64) float64 {
 		} else {
 			low = x
 		}
-		step := f * (d*d - f*d2/2) / (d*d*d - f*d*d2 + f*f*d3/6)
-		if !(math.Abs(step) > 1e-4*x) {
+		r := f / d
+		bent := r * d2 / d
+		step := r * (1 - bent/2) / (1 - bent + r*r/6*d3/d)
+		// h bends within 1 of its knee at x = -ln p; beyond it x may be so large that its last digit is all that is left
+		if !(math.Abs(step) > math.Max(1e-4*math.Min(x, 1), 1e-15*x)) {
 			return x - step
 		}
 		next := x - step

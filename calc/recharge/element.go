@@ -107,25 +107,33 @@ func (e Element) TimeTo(c, drive, load, v0, target float64) float64 {
 	k := load + w.is
 	logS0, s0 := w.saturated(drive - v0)
 	logS1, s1 := w.saturated(drive - target)
-	a := math.Log1p((s0 - s1) / (s1 - k))
 	if s1 < 1e-16*k { // both ends block
 		return c * (v0 - target) / k
 	}
-	if s0 > k && !(s1 > k) || s0 < k && !(s1 < k) || s0 == k {
+	if math.IsInf(s0, 1) { // R = 0: (s0 - s1)/s0 is 1
+		return c * w.slope / (s1 - k) * log1pRatio(k/(s1-k))
+	}
+	q := (s0 - s1) / (s1 - k) // e^A - 1
+	if !(q > 0) {
 		return math.Inf(1) // target is equilibrium to the last digit
 	}
-	u := k * (s0 - s1) / ((s1 - k) * s0)
-	switch {
-	case math.IsInf(s0, 1): // R = 0 and a drive beyond any current: s0/(s1 - K) and s0/s0 drop out
-		return c * w.slope / k * math.Log1p(k/(s1-k))
-	case k == 0:
-		return c * (w.r*a + w.slope*(s0-s1)/(s1*s0))
-	case s0 > 1e-290 && u < 1e-5: // log1p(u)/K without the division of two small numbers
-		return c * (w.r*a + w.slope*(s0-s1)/((s1-k)*s0)*(1-u*(0.5-u*(1./3-u/4))))
-	case s0 > 1e-290:
-		return c * (w.r*a + w.slope/k*math.Log1p(u))
+	var a float64 // matters with a resistance only, without one q may be beyond any number
+	if w.r > 0 {
+		a = math.Log1p(q)
 	}
-	return c * (w.r*a + w.slope/k*(a+logS1-logS0))
+	if s0 < 1e-290 {
+		return c * (w.r*a + w.slope/k*(math.Log1p(q)+logS1-logS0))
+	}
+	u := (s0 - s1) / s0 / (s1 - k)
+	return c * (w.r*a + w.slope*u*log1pRatio(k*u))
+}
+
+// log1pRatio returns ln(1 + x)/x, 1 at 0.
+func log1pRatio(x float64) float64 {
+	if math.Abs(x) < 1e-3 {
+		return 1 - x*(1./2-x*(1./3-x*(1./4-x*(1./5-x/6))))
+	}
+	return math.Log1p(x) / x
 }
 
 // ResistorEnergy returns the energy [J] that a resistance [ohm], part of the element's, takes while the capacitor c [F] goes from

@@ -44,6 +44,7 @@ func (p Period) SteadyState() Steady {
 		return p.nothing(0, false)
 	}
 	low, high := 0.0, top
+	zeroRises := false // Map(0) > 0 is known
 	v := math.Min(math.Max(p.guess(&w, emax), low), high)
 	var before node
 	for n := 1; n <= mostIterations; n++ {
@@ -65,7 +66,7 @@ func (p Period) SteadyState() Steady {
 			return p.steady(&w, v, &tr, n)
 		}
 		if here.rise > 0 {
-			low = v
+			low, zeroRises = v, true
 		} else {
 			high = v
 		}
@@ -78,7 +79,7 @@ func (p Period) SteadyState() Steady {
 		}
 		if !(to > low && to < high) {
 			to = low + (high-low)/2
-			if here.rise < 0 && low == 0 {
+			if !zeroRises && v > 0 {
 				to = 0 // does it collapse?
 			} else if to == low || to == high { // the bracket is one digit wide
 				if high == top && here.rise > 0 {

@@ -13,8 +13,9 @@ import (
 )
 
 const (
-	mostRanked     = 8 // inputs in a ranking
-	mostBreakEvens = 4 // inputs for which the break-even is sought
+	mostRanked     = 8    // inputs in a ranking
+	mostBreakEvens = 4    // inputs for which the break-even is sought
+	leastSwing     = 0.01 // of the largest swing; below it an input is not ranked
 )
 
 // report words the finding.
@@ -160,13 +161,13 @@ func (b *Bench) decided(r *Rule, role string, f *finding.Finding, res *result) {
 		dim = quantity.TemperatureDifference
 	}
 	for i, s := range w.Swings {
-		if i == mostRanked {
+		if i == mostRanked || s.Range < leastSwing*w.Swings[0].Range {
 			break
 		}
 		f.Ranking = append(f.Ranking, finding.Ranking{Field: s.Input.Field, Swing: finding.Measure{Value: significant(s.Range), Dimension: dim}})
 	}
 	b.breakEvens(r, role, f, w)
-	f.Message = message(r, f)
+	f.Message = message(r, f, math.IsInf(res.check.Limit, 0))
 }
 
 // corner records where each input stands and the inputs behind the number.
@@ -183,7 +184,7 @@ func (b *Bench) corner(f *finding.Finding, w *corner.Worst) {
 func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.Worst) {
 	fn := r.function(role)
 	for _, s := range w.Swings {
-		if len(f.BreakEven) == mostBreakEvens {
+		if len(f.BreakEven) == mostBreakEvens || s.Range < leastSwing*w.Swings[0].Range {
 			return
 		}
 		d := s.Input.Declare
@@ -205,11 +206,11 @@ func text(m finding.Measure) string {
 }
 
 // message is one sentence with the numbers.
-func message(r *Rule, f *finding.Finding) string {
+func message(r *Rule, f *finding.Finding, unbounded bool) string {
 	var s strings.Builder
 	value := text(f.Value)
 	if f.Value.Value != f.Value.Value {
-		value = "has no value"
+		value = "does not exist"
 	}
 	fmt.Fprintf(&s, "%s %s", r.Quantity, value)
 	if f.Limit.Value == f.Limit.Value {
@@ -234,6 +235,9 @@ func message(r *Rule, f *finding.Finding) string {
 		fmt.Fprintf(&s, " at %q, %s", f.OperatingPoint, f.Corner.Name)
 	} else {
 		fmt.Fprintf(&s, ", %s", f.Corner.Name)
+	}
+	if len(f.Notes) > 0 && (unbounded || f.Value.Value != f.Value.Value) {
+		s.WriteString(": " + f.Notes[0])
 	}
 	s.WriteByte('.')
 	return s.String()

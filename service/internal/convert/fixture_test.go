@@ -1,6 +1,9 @@
 package convert
 
 import (
+	"encoding/json"
+	"strconv"
+	"strings"
 	"testing"
 
 	"google.golang.org/protobuf/encoding/protojson"
@@ -90,4 +93,80 @@ func parseStage(t testing.TB, text string) *pb.Stage {
 		t.Fatal(err)
 	}
 	return st
+}
+
+// edit sets or deletes (value empty) one member of a JSON document; the path has keys and indices.
+func edit(t testing.TB, document, path, value string) string {
+	t.Helper()
+	var root any
+	if err := json.Unmarshal([]byte(document), &root); err != nil {
+		t.Fatal(err)
+	}
+	var to any
+	if value != "" {
+		if err := json.Unmarshal([]byte(value), &to); err != nil {
+			t.Fatalf("%s: %v", value, err)
+		}
+	}
+	keys := strings.Split(path, ".")
+	at := root
+	for i, key := range keys {
+		last := i == len(keys)-1
+		switch node := at.(type) {
+		case map[string]any:
+			switch {
+			case last && value == "":
+				delete(node, key)
+			case last:
+				node[key] = to
+			case node[key] == nil:
+				node[key] = map[string]any{}
+			}
+			at = node[key]
+		case []any:
+			n, err := strconv.Atoi(key)
+			if err != nil || n >= len(node) {
+				t.Fatalf("no element %s of %s", key, path)
+			}
+			if last {
+				node[n] = to
+			}
+			at = node[n]
+		default:
+			t.Fatalf("%s has no member %s", path, key)
+		}
+	}
+	out, err := json.Marshal(root)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return string(out)
+}
+
+// want is one expected fault: its field and phrases of its description.
+type want struct {
+	field   string
+	phrases []string
+}
+
+// compare demands exactly the faults.
+func compare(t *testing.T, got []Fault, wanted ...want) {
+	t.Helper()
+	for i, w := range wanted {
+		if i >= len(got) {
+			t.Errorf("no fault at %s", w.field)
+			continue
+		}
+		if got[i].Field != w.field {
+			t.Errorf("fault at %s (%s), want one at %s", got[i].Field, got[i].Description, w.field)
+		}
+		for _, p := range w.phrases {
+			if !strings.Contains(got[i].Description, p) {
+				t.Errorf("%s: %q lacks %q", got[i].Field, got[i].Description, p)
+			}
+		}
+	}
+	for _, f := range got[min(len(wanted), len(got)):] {
+		t.Errorf("unexpected fault at %s: %s", f.Field, f.Description)
+	}
 }

@@ -41,7 +41,7 @@ func (g *gateway) receive(next runtime.HandlerFunc) runtime.HandlerFunc {
 			return
 		}
 		report := new(wire.Report)
-		r = r.WithContext(withReport(r.Context(), report))
+		r = r.WithContext(wire.WithReport(r.Context(), report))
 		r.URL.RawQuery = query(to, r.URL.RawQuery, params, report)
 		if to.method != http.MethodPost {
 			next(w, r, params)

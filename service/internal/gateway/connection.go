@@ -30,7 +30,7 @@ func Dial(inside *bufconn.Listener) (*grpc.ClientConn, error) {
 		grpc.WithDefaultCallOptions(grpc.MaxCallRecvMsgSize(math.MaxInt32), grpc.MaxCallSendMsgSize(math.MaxInt32)),
 		grpc.WithMaxHeaderListSize(MaxHeader),
 		grpc.WithUnaryInterceptor(func(ctx context.Context, method string, req, reply any, conn *grpc.ClientConn, call grpc.UnaryInvoker, o ...grpc.CallOption) error {
-			return call(wire.Carry(ctx, reportOf(ctx)), method, req, reply, conn, o...)
+			return call(wire.Carry(ctx, wire.ReportOf(ctx)), method, req, reply, conn, o...)
 		}),
 	)
 	if err != nil {
@@ -41,15 +41,3 @@ func Dial(inside *bufconn.Listener) (*grpc.ClientConn, error) {
 
 // MaxHeader bounds the headers and trailers of a call: a full report of faults fits [byte].
 const MaxHeader = 1 << 20
-
-type reportKey struct{}
-
-// withReport lets the walk of the body, which happens later, report to whatever is called with the context.
-func withReport(ctx context.Context, r *wire.Report) context.Context {
-	return context.WithValue(ctx, reportKey{}, r)
-}
-
-func reportOf(ctx context.Context) *wire.Report {
-	r, _ := ctx.Value(reportKey{}).(*wire.Report)
-	return r
-}

@@ -43,7 +43,7 @@ func (g *gateway) open(ctx context.Context, to route, body runtime.Decoder) (*st
 	if err := body.Decode(request); err != nil {
 		return nil, fmt.Errorf("gateway: %w", err)
 	}
-	s, err := g.conn.NewStream(wire.Carry(ctx, reportOf(ctx)), &grpc.StreamDesc{ServerStreams: true}, fullMethod(to))
+	s, err := g.conn.NewStream(wire.Carry(ctx, wire.ReportOf(ctx)), &grpc.StreamDesc{ServerStreams: true}, fullMethod(to))
 	if err != nil {
 		return nil, err
 	}

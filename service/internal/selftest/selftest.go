@@ -26,13 +26,13 @@ const (
 
 const body = `{
   "stage": {
-    "id": "self-test",
-    "driver": {"uvloFalling": {"typ": "8.9 V 0%"}, "floatingQuiescentCurrent": {"typ": "150 uA 0%"}, "offsetLeakage": {"min": "0 A", "max": "0 A"}},
-    "highSide": {"kind": "SI_MOSFET", "gatePullDown": {"resistance": {"typ": "10 kohm 0%"}}, "gateLeakage": {"min": "0 A", "max": "0 A"}},
+    "id": "self-test", "gateSupply": {"voltage": {"typ": "12 V 0%"}},
+    "driver": {"uvloFalling": {"typ": "8.9 V 0%"}, "floatingQuiescentCurrent": {"typ": "150 uA 0%"}, "offsetLeakage": {"typ": "0 A"}},
+    "highSide": {"kind": "SI_MOSFET", "gatePullDown": {"resistance": {"typ": "10 kohm 0%"}}, "gateLeakage": {"typ": "0 A"}},
     "bootstrap": {
-      "element": "DISCRETE_DIODE", "diode": {"reverseLeakage": {"min": "0 A", "max": "0 A"}},
-      "capacitor": {"effectiveCapacitance": {"typ": "6 uF 0%"}, "leakage": {"min": "0 A", "max": "0 A"}},
-      "clamp": {"fit": "NOT_FITTED"}, "otherLoad": {"min": "0 A", "max": "0 A"}
+      "element": "DISCRETE_DIODE", "diode": {"reverseLeakage": {"typ": "0 A"}},
+      "capacitor": {"effectiveCapacitance": {"typ": "6 uF 0%"}, "leakage": {"typ": "0 A"}},
+      "clamp": {"fit": "NOT_FITTED"}, "otherLoad": {"typ": "0 A"}
     },
     "operatingPoints": [{"name": "held", "heldOn": {"duration": {"typ": "10.64 ms"}, "initialVoltage": {"typ": "11 V"}}}]
   }

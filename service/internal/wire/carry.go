@@ -32,3 +32,16 @@ func Carried(ctx context.Context) *Report {
 	}
 	return &r
 }
+
+type reportKey struct{}
+
+// WithReport lets the walk of a body, which may happen later, report to whatever is called with the context.
+func WithReport(ctx context.Context, r *Report) context.Context {
+	return context.WithValue(ctx, reportKey{}, r)
+}
+
+// ReportOf is the report of the context; nil where it has none.
+func ReportOf(ctx context.Context) *Report {
+	r, _ := ctx.Value(reportKey{}).(*Report)
+	return r
+}

@@ -49,7 +49,7 @@ func (r *Report) Explains(path string) bool {
 		}
 	}
 	for _, p := range r.Opaque {
-		if len(path) >= len(p) && path[:len(p)] == p && (len(path) == len(p) || path[len(p)] == '.' || path[len(p)] == '[') {
+		if within(path, p) {
 			return true
 		}
 	}
