@@ -18,6 +18,7 @@ import (
 	"github.com/alecthomas/kong"
 	"google.golang.org/protobuf/proto"
 
+	pb "floatrail/api/floatrail/v1"
 	"floatrail/service/internal/config"
 	"floatrail/service/internal/render"
 	"floatrail/service/internal/rpc"
@@ -118,7 +119,7 @@ func (c *serveCommand) Run(env *environment) error {
 		return &exitError{exitFlags, err}
 	}
 	log := slog.New(slog.NewJSONHandler(env.stderr, &slog.HandlerOptions{Level: valid.LogLevel}))
-	s, err := newServer(valid, log)
+	s, err := newServer(valid, log, func(o rpc.Options) pb.FloatRailServer { return rpc.New(o) })
 	if err != nil {
 		return err
 	}

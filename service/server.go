@@ -43,8 +43,8 @@ type server struct {
 	conn      *grpc.ClientConn
 }
 
-// newServer opens the listeners and puts the service together; nothing is served yet.
-func newServer(c config.Config, log *slog.Logger) (_ *server, err error) {
+// newServer opens the listeners and puts the service together around the handlers that provide returns; nothing is served yet.
+func newServer(c config.Config, log *slog.Logger, provide func(rpc.Options) pb.FloatRailServer) (_ *server, err error) {
 	s := &server{config: c, log: log, ready: &readiness{}, health: health.NewServer(), inside: gateway.Listen()}
 	defer func() {
 		if err != nil {
@@ -67,7 +67,7 @@ func newServer(c config.Config, log *slog.Logger) (_ *server, err error) {
 	limits := guard.Limits{Request: c.MaxRequest, Board: c.MaxBoard, Deadline: c.Deadline}
 	built := build()
 	metrics := telemetry.New(registry, built, rpc.New(rpc.Options{Version: built.Version}).Rules())
-	handlers := rpc.New(rpc.Options{Version: built.Version, Observe: metrics.Observe, Carried: carried})
+	handlers := provide(rpc.Options{Version: built.Version, Observe: metrics.Observe, Carried: carried})
 	s.serveGRPC(handlers, metrics, limits)
 	if s.conn, err = gateway.Dial(s.inside); err != nil {
 		return s, err
@@ -98,6 +98,7 @@ func (s *server) serveGRPC(handlers pb.FloatRailServer, metrics *telemetry.Metri
 		grpc.ChainUnaryInterceptor(recorder.Unary, g.Unary),
 		grpc.ChainStreamInterceptor(recorder.Stream, g.Stream),
 		grpc.MaxRecvMsgSize(max(limits.Request, limits.Board)),
+		grpc.ForceServerCodecV2(rpc.Codec()),
 		grpc.MaxHeaderListSize(gateway.MaxHeader),
 		grpc.ConnectionTimeout(10*time.Second),
 		grpc.KeepaliveEnforcementPolicy(keepalive.EnforcementPolicy{MinTime: 10 * time.Second, PermitWithoutStream: true}),

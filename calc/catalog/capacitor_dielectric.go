@@ -45,13 +45,21 @@ var capacitorDielectric = &rule.Rule{
 		ch := rule.Check{Value: math.Min(t-class.TemperatureLow, class.TemperatureHigh-t)}
 		if class.Kind == capacitor.ClassTwo && math.Max(-class.ChangeLow, class.ChangeHigh) > widestChange+1e-9 {
 			ch.Floor = finding.Fail
-			ch.Notes = append(ch.Notes, fmt.Sprintf("class %s changes by %s to %s over its range", class.Code,
-				quantity.Format(class.ChangeLow, quantity.Ratio), quantity.Format(class.ChangeHigh, quantity.Ratio)))
 		}
 		if class.Kind == capacitor.Aluminium && role == roleCapacitor && c.Set.Ambient < 0 {
 			ch.Floor = max(ch.Floor, finding.Marginal)
-			ch.Notes = append(ch.Notes, "the ESR of an aluminium capacitor rises manifold in the cold")
 		}
 		return ch
+	},
+	Explain: func(c *circuit.Circuit, role string, ch rule.Check) []string {
+		class, _ := capacitor.ParseClass(component(c, role).Dielectric)
+		switch {
+		case ch.Floor == finding.Fail:
+			return []string{fmt.Sprintf("class %s changes by %s to %s over its range", class.Code,
+				quantity.Format(class.ChangeLow, quantity.Ratio), quantity.Format(class.ChangeHigh, quantity.Ratio))}
+		case ch.Floor == finding.Marginal:
+			return []string{"the ESR of an aluminium capacitor rises manifold in the cold"}
+		}
+		return nil
 	},
 }

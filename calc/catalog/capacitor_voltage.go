@@ -27,14 +27,17 @@ var capacitorVoltage = &rule.Rule{
 			return rule.Check{Value: nan}
 		}
 		v := c.Supply()
-		ch := rule.Check{}
 		if role == roleCapacitor {
 			v = c.High()
-			ch.Notes = slices.Concat(collapseNote(c), pumpNote(c))
 		}
 		limit := c.Need(&s.VoltageRating)
-		ch.Value, ch.Limit, ch.Guard = v, limit, capacitor.DeratedVoltage(limit, kind(c, s), VoltagePolicy(c.Policy))
-		return ch
+		return rule.Check{Value: v, Limit: limit, Guard: capacitor.DeratedVoltage(limit, kind(c, s), VoltagePolicy(c.Policy))}
+	},
+	Explain: func(c *circuit.Circuit, role string, _ rule.Check) []string {
+		if role != roleCapacitor {
+			return nil
+		}
+		return slices.Concat(collapseNote(c), pumpNote(c))
 	},
 }
 

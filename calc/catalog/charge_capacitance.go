@@ -24,11 +24,14 @@ var chargeCapacitance = &rule.Rule{
 			return rule.Check{Value: c.Want("stage.operatingPoints"), Limit: nan, Guard: nan}
 		}
 		limit := c.MinimumCapacitance()
-		ch := rule.Check{Value: c.Capacitance(), Limit: limit, Guard: above(c, limit), Notes: slices.Concat(collapseNote(c), cancelNote(c))}
+		return rule.Check{Value: c.Capacitance(), Limit: limit, Guard: above(c, limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		out := slices.Concat(collapseNote(c), cancelNote(c))
 		if drop := c.Drop(); drop <= 0 {
-			ch.Notes = append(ch.Notes, "no capacitance suffices: recharge leaves nothing above the required voltage (budget "+
+			out = append(out, "no capacitance suffices: recharge leaves nothing above the required voltage (budget "+
 				quantity.Format(drop, quantity.Voltage)+")")
 		}
-		return ch
+		return out
 	},
 }

@@ -25,6 +25,7 @@ var chargeDroop = &rule.Rule{
 			v = (p.Charge + p.ChargePerVolt*c.Required() + p.On.Load*p.OnTime) / p.Capacitance
 			limit = c.Policy.RippleRatio * c.Required()
 		}
-		return rule.Check{Value: v, Limit: limit, Guard: below(c, limit), Notes: collapseNote(c)}
+		return rule.Check{Value: v, Limit: limit, Guard: below(c, limit)}
 	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string { return collapseNote(c) },
 }

@@ -32,6 +32,9 @@ var chargeGateSufficiency = &rule.Rule{
 	},
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.HighSide.DriveVoltageMin)
-		return rule.Check{Value: c.Gate(c.Low()), Limit: limit, Guard: limit + c.Margin(limit), Notes: slices.Concat(collapseNote(c), cancelNote(c))}
+		return rule.Check{Value: c.Gate(c.Low()), Limit: limit, Guard: limit + c.Margin(limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		return slices.Concat(collapseNote(c), cancelNote(c))
 	},
 }

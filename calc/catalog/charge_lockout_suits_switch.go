@@ -29,11 +29,13 @@ var chargeLockoutSuitsSwitch = &rule.Rule{
 			c.Want(c.Stage.HighSide.Field + ".kind")
 		}
 		v, limit := c.Need(&c.Stage.Driver.UVLOFalling), c.Need(&c.Stage.HighSide.DriveVoltageMin)
-		ch := rule.Check{Value: c.Gate(v), Limit: limit, Guard: limit + c.Margin(limit)}
-		if ch.Value < limit {
-			ch.Notes = []string{fmt.Sprintf("between %s and %s the driver switches a switch whose on-state is not specified: unprotected",
-				quantity.Format(ch.Value, quantity.Voltage), quantity.Format(limit, quantity.Voltage))}
+		return rule.Check{Value: c.Gate(v), Limit: limit, Guard: limit + c.Margin(limit)}
+	},
+	Explain: func(_ *circuit.Circuit, _ string, ch rule.Check) []string {
+		if ch.Value >= ch.Limit {
+			return nil
 		}
-		return ch
+		return []string{fmt.Sprintf("between %s and %s the driver switches a switch whose on-state is not specified: unprotected",
+			quantity.Format(ch.Value, quantity.Voltage), quantity.Format(ch.Limit, quantity.Voltage))}
 	},
 }

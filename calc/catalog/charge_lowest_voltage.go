@@ -21,6 +21,9 @@ var chargeLowestVoltage = &rule.Rule{
 	Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.Driver.UVLOFalling)
-		return rule.Check{Value: c.Low(), Limit: limit, Guard: limit + c.Margin(limit), Notes: slices.Concat(collapseNote(c), cancelNote(c))}
+		return rule.Check{Value: c.Low(), Limit: limit, Guard: limit + c.Margin(limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		return slices.Concat(collapseNote(c), cancelNote(c))
 	},
 }

@@ -23,23 +23,32 @@ var chargeOversize = &rule.Rule{
 	Stagewide: true, Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		value := c.Fresh()
-		limit, note := math.Inf(1), ""
+		limit := math.Inf(1)
 		if r := &c.Stage.GateSupply.Reservoir; r.Presence() != stage.NotFitted {
 			if !present(c, r) {
 				return rule.Check{Value: nan}
 			}
 			limit = c.Effective(r, c.Supply) / c.Policy.ReservoirRatio
-			note = "the reservoir bounds it"
 		}
-		target := c.Need(&c.Stage.Driver.UVLORising)
-		target += c.Margin(target)
-		available := c.Need(&c.Stage.Startup.TimeAvailable)
-		t := c.Element().TimeTo(value, c.Supply(), c.Loads().Total(), c.Need(&c.Stage.Startup.InitialVoltage), target)
-		byTime := value * available / t
-		if byTime < limit || byTime != byTime {
+		available, t := chargeTime(c, value)
+		if byTime := value * available / t; byTime < limit || byTime != byTime {
 			limit = byTime
-			note = fmt.Sprintf("the first charge bounds it: %s of %s available", quantity.Format(t, quantity.Time), quantity.Format(available, quantity.Time))
 		}
-		return rule.Check{Value: value, Limit: limit, Guard: below(c, limit), Notes: []string{note}}
+		return rule.Check{Value: value, Limit: limit, Guard: below(c, limit)}
 	},
+	Explain: func(c *circuit.Circuit, _ string, ch rule.Check) []string {
+		available, t := chargeTime(c, ch.Value)
+		if ch.Limit < ch.Value*available/t {
+			return []string{"the reservoir bounds it"}
+		}
+		return []string{fmt.Sprintf("the first charge bounds it: %s of %s available", quantity.Format(t, quantity.Time), quantity.Format(available, quantity.Time))}
+	},
+}
+
+// chargeTime is the time available for the first charge and the time that a capacitance takes to the rising lockout with margin [s].
+func chargeTime(c *circuit.Circuit, capacitance float64) (available, taken float64) {
+	target := c.Need(&c.Stage.Driver.UVLORising)
+	target += c.Margin(target)
+	start := &c.Stage.Startup
+	return c.Need(&start.TimeAvailable), c.Element().TimeTo(capacitance, c.Supply(), c.Loads().Total(), c.Need(&start.InitialVoltage), target)
 }

@@ -15,9 +15,9 @@ const standingShare = 0.20
 
 var chargeStandingLoad = &rule.Rule{
 	ID: "charge/standing-load", Title: "Avoidable standing loads of the floating supply", Since: first,
-	Equation: "(V_BS/R_GS·t_on + (I_Z + I_other)·T)/Q_B",
+	Equation: "(∫V_BS/R_GS dt over the on-time + (I_Z + I_other)·T)/Q_B",
 	Limit:    "20 % of the charge per period", Guard: "10 % below the limit", Applies: "every operating point",
-	Needs:   []string{"highSide.gatePullDown", "bootstrap.clamp", "bootstrap.otherLoad", "driver.floatingQuiescentCurrent"},
+	Needs:   []string{"highSide.gatePullDown", "bootstrap.clamp", "bootstrap.otherLoad", "driver.floatingQuiescentCurrent", "bootstrap.capacitor"},
 	Sources: []string{"hip4086", "common-practice"},
 	Fail:    stage.Minor, Marginal: stage.Note, Open: stage.Minor,
 	Quantity: "Share of avoidable loads in the charge", Against: "permitted share", Dimension: quantity.Ratio, Sense: rule.AtMost,
@@ -26,35 +26,41 @@ var chargeStandingLoad = &rule.Rule{
 		if c.Point == nil {
 			return rule.Check{Value: c.Want("stage.operatingPoints")}
 		}
-		ch := rule.Check{Limit: standingShare, Guard: below(c, standingShare)}
-		var pull, clamp, other, total float64
-		if c.Point.HeldOn != nil {
-			l := c.Loads()
-			pull, clamp, other = l.PullDown*c.Need(&c.Point.HeldOn.InitialVoltage), l.ClampLeakage, l.Other
-			total = pull + l.Total()
-		} else {
-			items := c.Budget()
-			total = charge.Total(items)
-			for _, it := range items {
-				switch it.Name {
-				case charge.ItemPullDown:
-					pull = it.Charge
-				case charge.ItemClampLeakage:
-					clamp = it.Charge
-				case charge.ItemOther:
-					other = it.Charge
-				}
-			}
-		}
-		ch.Value = (pull + clamp + other) / total
+		pull, clamp, other, total := standing(c)
+		return rule.Check{Value: (pull + clamp + other) / total, Limit: standingShare, Guard: below(c, standingShare)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		pull, clamp, other, total := standing(c)
+		var out []string
 		for _, l := range []struct {
 			name   string
 			charge float64
 		}{{"the gate pull-down R_GS", pull}, {"the clamp", clamp}, {"the other load", other}} {
 			if share := l.charge / total; share > standingShare/2 {
-				ch.Notes = append(ch.Notes, fmt.Sprintf("%s takes %.0f %% of the load", l.name, 100*share))
+				out = append(out, fmt.Sprintf("%s takes %.0f %% of the load", l.name, 100*share))
 			}
 		}
-		return ch
+		return out
 	},
+}
+
+// standing is the charges of the avoidable loads and of all loads in one period [C]; with the high side held on, the currents [A].
+func standing(c *circuit.Circuit) (pull, clamp, other, total float64) {
+	if c.Point.HeldOn != nil {
+		l := c.Loads()
+		pull = l.PullDown * c.Need(&c.Point.HeldOn.InitialVoltage)
+		return pull, l.ClampLeakage, l.Other, pull + l.Total()
+	}
+	items := c.Budget()
+	for _, it := range items {
+		switch it.Name {
+		case charge.ItemPullDown:
+			pull = it.Charge
+		case charge.ItemClampLeakage:
+			clamp = it.Charge
+		case charge.ItemOther:
+			other = it.Charge
+		}
+	}
+	return pull, clamp, other, charge.Total(items)
 }

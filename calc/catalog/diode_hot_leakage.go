@@ -26,25 +26,42 @@ var diodeHotLeakage = &rule.Rule{
 	Quantity: "Share of the diode's leakage in the charge per period", Against: "permitted share", Dimension: quantity.Ratio, Sense: rule.AtMost,
 	Inapplicable: withDiode,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
-		p := c.Period()
-		items := c.Budget()
-		ambient := c.Need(&c.Stage.Bootstrap.Diode.ReverseLeakage)
-		average := charge.Consumed(items) / p.T
-		forward := p.Element.Junction.Voltage(average)
-		reverse := c.Need(&c.Point.BusVoltage) * p.OnTime / p.T
-		rise, stable := heating(c.Need(&c.Stage.Bootstrap.Diode.ThermalResistance), forward*average, reverse*ambient)
-		ch := rule.Check{Limit: hotLeakageShare, Guard: below(c, hotLeakageShare)}
-		if !stable {
-			ch.Value, ch.Floor = math.Inf(1), finding.Fail
-			ch.Notes = []string{"thermal runaway: the leakage heats the diode faster than it cools"}
-			return ch
+		if c.Point == nil {
+			return rule.Check{Value: c.Want("stage.operatingPoints")}
 		}
-		ch.Value = ambient * math.Exp2(rise/10) * p.T / charge.Total(items)
-		if rise > 1 {
-			ch.Notes = []string{fmt.Sprintf("the diode runs %s above its surroundings", quantity.Format(rise, quantity.TemperatureDifference))}
+		share, rise := leakageShare(c)
+		ch := rule.Check{Value: share, Limit: hotLeakageShare, Guard: below(c, hotLeakageShare)}
+		if math.IsInf(rise, 1) {
+			ch.Floor = finding.Fail
 		}
 		return ch
 	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		_, rise := leakageShare(c)
+		switch {
+		case math.IsInf(rise, 1):
+			return []string{"thermal runaway: the leakage heats the diode faster than it cools"}
+		case rise > 1:
+			return []string{fmt.Sprintf("the diode runs %s above its surroundings", quantity.Format(rise, quantity.TemperatureDifference))}
+		}
+		return nil
+	},
+}
+
+// leakageShare is the share of the diode's leakage in the charge of a period, and the diode's temperature rise [K]; both +Inf at thermal
+// runaway.
+func leakageShare(c *circuit.Circuit) (share, rise float64) {
+	p := c.Period()
+	items := c.Budget()
+	ambient := c.Need(&c.Stage.Bootstrap.Diode.ReverseLeakage)
+	average := charge.Consumed(items) / p.T
+	forward := p.Element.Junction.Voltage(average)
+	reverse := c.Need(&c.Point.BusVoltage) * p.OnTime / p.T
+	rise, stable := heating(c.Need(&c.Stage.Bootstrap.Diode.ThermalResistance), forward*average, reverse*ambient)
+	if !stable {
+		return math.Inf(1), math.Inf(1)
+	}
+	return ambient * math.Exp2(rise/10) * p.T / charge.Total(items), rise
 }
 
 // heating solves x = R_th·(P_0 + P_R·2^(x/10)) for the temperature rise x [K] by its lower solution; false where there is none. The right

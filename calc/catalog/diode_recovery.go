@@ -40,11 +40,13 @@ var diodeRecovery = &rule.Rule{
 			}
 		}
 		limit := recoveryShare * gate
-		ch := rule.Check{Value: v, Limit: limit, Guard: below(c, limit)}
-		if v > 0.5*limit {
-			ch.Notes = []string{fmt.Sprintf("recovery power in the diode at most %s",
-				quantity.Format(v*c.Need(&c.Point.BusVoltage)/p.T, quantity.Power))}
+		return rule.Check{Value: v, Limit: limit, Guard: below(c, limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, ch rule.Check) []string {
+		if ch.Value < ch.Limit/2 {
+			return nil
 		}
-		return ch
+		return []string{fmt.Sprintf("recovery power in the diode at most %s",
+			quantity.Format(ch.Value*c.Need(&c.Point.BusVoltage)/c.Period().T, quantity.Power))}
 	},
 }

@@ -36,7 +36,9 @@ var dutyLargestDuty = &rule.Rule{
 		if !l.Found && !l.Whole {
 			limit = 0
 		}
-		return rule.Check{Value: d, Limit: limit, Guard: limit - c.Policy.GuardRatio*(1-limit),
-			Notes: slices.Concat(collapseNote(c), cancelNote(c), vanishNotes(c))}
+		return rule.Check{Value: d, Limit: limit, Guard: limit - c.Policy.GuardRatio*(1-limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		return slices.Concat(collapseNote(c), cancelNote(c), vanishNotes(c))
 	},
 }

@@ -32,13 +32,17 @@ var dutyRechargeWindow = &rule.Rule{
 		if p.Window == 0 && p.T > 0 { // no recharge whatever the charge
 			limit = math.Max(p.T, limit)
 		}
+		return rule.Check{Value: p.Window, Limit: limit, Guard: above(c, limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		shortest, even := c.Need(&c.Stage.Driver.MinimumPulse), c.BreakEvenWindow()
 		notes := slices.Concat(vanishNotes(c), collapseNote(c), cancelNote(c))
-		if even > shortest && !math.IsInf(even, 0) {
+		switch {
+		case math.IsInf(even, 1):
+			notes = append(notes, "no window suffices: the element carries no charge at the required voltage")
+		case even > shortest:
 			notes = append(notes, fmt.Sprintf("break-even window %s", quantity.Format(even, quantity.Time)))
 		}
-		if math.IsInf(even, 1) {
-			notes = append(notes, "no window suffices: the element carries no charge at the required voltage")
-		}
-		return rule.Check{Value: p.Window, Limit: limit, Guard: above(c, limit), Notes: notes}
+		return notes
 	},
 }

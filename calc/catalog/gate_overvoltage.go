@@ -23,7 +23,8 @@ var gateOvervoltage = &rule.Rule{
 		if role == roleHighSide {
 			v, limit = c.Gate(v), c.Need(&c.Stage.HighSide.GateVoltageMax)
 		}
-		return rule.Check{Value: v, Limit: limit, Guard: limit * c.Policy.GateVoltageRatio, Notes: pumpNote(c),
+		return rule.Check{Value: v, Limit: limit, Guard: limit * c.Policy.GateVoltageRatio,
 			Pending: "this rule set has no model of the charge that a switching event's undershoot adds to C_B"}
 	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string { return pumpNote(c) },
 }

@@ -67,9 +67,12 @@ type Item struct {
 // the charges of the edge first, then each load times the time for which it
 // flows. The junction charge stands with its full value because the drop during
 // the on-time contains it, although the falling edge returns it.
-func Items(loads Loads, edge Edge, over Interval) []Item {
+func Items(loads Loads, edge Edge, over Interval) []Item { return AppendItems(nil, loads, edge, over) }
+
+// AppendItems appends the items to dst.
+func AppendItems(dst []Item, loads Loads, edge Edge, over Interval) []Item {
 	t := over.Period
-	return []Item{
+	return append(dst, []Item{
 		{ItemGate, edge.Gate},
 		{ItemOffBias, edge.OffBias},
 		{ItemLevelShift, edge.LevelShift},
@@ -83,7 +86,7 @@ func Items(loads Loads, edge Edge, over Interval) []Item {
 		{ItemClampLeakage, loads.ClampLeakage * t},
 		{ItemOther, loads.Other * t},
 		{ItemPullDown, loads.PullDown * over.Voltage * over.OnTime},
-	}
+	}...)
 }
 
 // Total returns the per-cycle charge Q_B [C], the sum of the items in their

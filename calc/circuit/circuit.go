@@ -8,6 +8,7 @@ import (
 	"math"
 
 	"floatrail/calc/capacitor"
+	"floatrail/calc/charge"
 	"floatrail/calc/corner"
 	"floatrail/calc/recharge"
 	"floatrail/calc/stage"
@@ -20,6 +21,17 @@ type Circuit struct {
 	Policy *stage.Policy
 	Point  *stage.OperatingPoint
 	Set    corner.Set
+
+	// Results kept with the draw.
+	elementAt     recharge.Element
+	periodAt      Period
+	steadyAt      recharge.Steady
+	loadsAt       charge.Loads
+	capacitanceAt float64
+	edgeAt        edge
+	budgetAt      []charge.Item
+	offAt         [8]recharge.Interval
+	namesAt       [8]string
 }
 
 // Of gives the circuit at a draw, made once per draw.
@@ -40,6 +52,7 @@ const (
 	slotLoads
 	slotCapacitance
 	slotEdge
+	slotBudget
 )
 
 var nan = math.NaN()
@@ -58,7 +71,7 @@ func (c *Circuit) series(r *stage.Resistor) float64 {
 // Element is the recharge branch at the temperature of the set. Resistances: R_B, what the element itself has, R_VS, and the supply's own
 // where no reservoir stands behind it.
 func (c *Circuit) Element() recharge.Element {
-	return corner.Memo(c.Draw, slotElement, c.element)
+	return *corner.Memo(c.Draw, slotElement, false, &c.elementAt, c.element)
 }
 
 func (c *Circuit) element() recharge.Element {
@@ -148,7 +161,7 @@ func (c *Circuit) Ceiling() float64 {
 
 // Capacitance is the effective capacitance of C_B at working voltage [F].
 func (c *Circuit) Capacitance() float64 {
-	return corner.Memo(c.Draw, slotCapacitance, func() float64 { return c.Effective(&c.Stage.Bootstrap.Capacitor, c.Ceiling) })
+	return *corner.Memo(c.Draw, slotCapacitance, false, &c.capacitanceAt, func() float64 { return c.Effective(&c.Stage.Bootstrap.Capacitor, c.Ceiling) })
 }
 
 // Fresh is the capacitance of C_B when new and at no bias, as at first charge [F].

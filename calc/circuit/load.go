@@ -8,7 +8,9 @@ import (
 )
 
 // Loads are the standing loads of the floating supply.
-func (c *Circuit) Loads() charge.Loads { return corner.Memo(c.Draw, slotLoads, c.loads) }
+func (c *Circuit) Loads() charge.Loads {
+	return *corner.Memo(c.Draw, slotLoads, false, &c.loadsAt, c.loads)
+}
 
 func (c *Circuit) loads() charge.Loads {
 	s := c.Stage
@@ -82,7 +84,7 @@ type edge struct {
 	tau         float64 // its time constant [s]
 }
 
-func (c *Circuit) edge() edge { return corner.Memo(c.Draw, slotEdge, c.makeEdge) }
+func (c *Circuit) edge() *edge { return corner.Memo(c.Draw, slotEdge, false, &c.edgeAt, c.makeEdge) }
 
 func (c *Circuit) makeEdge() edge {
 	h, b := &c.Stage.HighSide, &c.Stage.Bootstrap

@@ -53,12 +53,12 @@ func (c *Circuit) ReverseDrop(s *stage.Switch, i float64) float64 {
 		y = c.Need(q)
 		if hemt && len(q.At) == 0 {
 			y += 2e-3 * (c.Set.Junction - stage.ReferenceTemperature) // no junction: the drop does not follow the diode law
+			if c.Set.Junction != stage.ReferenceTemperature {
+				c.Assume(stage.Assumption{Field: s.Reverse.ForwardPoints.Field, Assumed: "the drop at 25 °C", Direction: stage.Optimistic,
+					Reason: "the reverse drop of a HEMT moves with temperature and is given at one only"})
+			}
 		}
 		return c.Need(&points[k].Current), y
-	}
-	if hemt && len(points[0].Voltage.At) == 0 && c.Set.Junction != stage.ReferenceTemperature {
-		c.Assume(stage.Assumption{Field: s.Reverse.ForwardPoints.Field, Assumed: "the drop at 25 °C", Direction: stage.Optimistic,
-			Reason: "the reverse drop of a HEMT moves with temperature and is given at one only"})
 	}
 	x0, y0 := at(0)
 	drop := y0
@@ -174,7 +174,9 @@ func (c *Circuit) outputCharge(s *stage.Switch, v float64) float64 {
 const noModel = "no model of this mode of operation in this rule set"
 
 // Period lays out one switching period [design 4.3]. Only a fixed duty has one.
-func (c *Circuit) Period() Period { return corner.Memo(c.Draw, slotPeriod, c.period) }
+func (c *Circuit) Period() *Period {
+	return corner.Memo(c.Draw, slotPeriod, false, &c.periodAt, c.period)
+}
 
 func (c *Circuit) period() Period {
 	if c.Point == nil || c.Point.FixedDuty == nil {
@@ -218,8 +220,7 @@ func (c *Circuit) period() Period {
 			p.Window += t
 		}
 	}
-	p.Off = make([]recharge.Interval, 0, 6)
-	p.Names = make([]string, 0, 6)
+	p.Off, p.Names = c.offAt[:0], c.namesAt[:0]
 	if p.HighVanishes { // the low side stays on, or its diode carries the current
 		p.OnTime, p.LowOnTime = 0, p.T
 		if diode {
@@ -293,8 +294,8 @@ func (p *Period) complete() bool {
 }
 
 // Steady is the periodic steady state; its numbers are NaN where the period is incomplete.
-func (c *Circuit) Steady() recharge.Steady {
-	return corner.Memo(c.Draw, slotSteady, func() recharge.Steady {
+func (c *Circuit) Steady() *recharge.Steady {
+	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady {
 		p := c.Period()
 		if !p.complete() {
 			return recharge.Steady{Low: nan, High: nan, AfterEdge: nan, BeforeEdge: nan, Deficit: nan, Recovery: nan, Charge: nan}

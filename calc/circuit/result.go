@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"floatrail/calc/charge"
+	"floatrail/calc/corner"
 	"floatrail/calc/stage"
 )
 
@@ -69,13 +70,17 @@ func (c *Circuit) Margin(limit float64) float64 {
 
 // Budget is the charge budget of one period at the steady state, or where there is none at the settled voltage.
 func (c *Circuit) Budget() []charge.Item {
+	return *corner.Memo(c.Draw, slotBudget, false, &c.budgetAt, c.budget)
+}
+
+func (c *Circuit) budget() []charge.Item {
 	p := c.Period()
 	st := c.Steady()
 	v, rec := st.AfterEdge, st.Recovery
 	if st.Collapses {
 		v, rec = c.Required(), p.RecoverySpec
 	}
-	return charge.Items(c.Loads(), c.EdgeCharges(v, rec), charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
+	return charge.AppendItems(c.budgetAt[:0], c.Loads(), c.EdgeCharges(v, rec), charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
 }
 
 // Drop is the voltage budget of C_B: what recharge leaves above the required voltage with margin, or the permitted ripple where that is

@@ -41,7 +41,11 @@ type Trace struct {
 	wants       []string           // paths of missing components and lists
 }
 
-func newTrace(n int) Trace { return Trace{used: newBits(n), missing: newBits(n)} }
+func newTrace(n int) Trace {
+	b := make(Bits, 2*((n+63)/64))
+	k := len(b) / 2
+	return Trace{used: b[:k:k], missing: b[k:]}
+}
 
 func (t *Trace) reset() {
 	clear(t.used)
@@ -75,6 +79,12 @@ func (t *Trace) clone() *Trace {
 	return &Trace{slices.Clone(t.used), slices.Clone(t.missing), slices.Clone(t.assumptions), slices.Clone(t.reasons), slices.Clone(t.wants)}
 }
 
+// copy makes the trace that of another.
+func (t *Trace) copy(o *Trace) {
+	t.reset()
+	t.Add(o)
+}
+
 // Complete tells whether nothing was missing and no reason against evaluation was found.
 func (t *Trace) Complete() bool {
 	for _, w := range t.missing {
@@ -90,8 +100,8 @@ type Draw struct {
 	Space *Space
 	x     []float64
 	trace Trace
-	stack []*Trace          // traces of memoised parts under way
-	memo  [memoSlots]*entry // found at this draw
+	stack []*Trace // traces of memoised parts under way
+	memo  [memoSlots]cell
 	// Slot is free for what a model keeps with the draw.
 	Slot any
 }

@@ -8,6 +8,12 @@ import (
 // memoSlots bounds the number of results that models keep.
 const memoSlots = 8
 
+// cell tells whether a result stands at a draw, and what its evaluation read.
+type cell struct {
+	valid bool
+	trace Trace
+}
+
 // entry is a result with what it was made of: the numbers of all inputs that its evaluation read.
 type entry struct {
 	value  any
@@ -76,21 +82,32 @@ func (m *memory) keep(slot int, x []float64, e *entry) {
 	g.entries[g.hash(x)] = e
 }
 
-// Memo returns f's value at a draw, evaluated once for the numbers that f reads; what f reads counts as read by every caller.
-func Memo[T any](d *Draw, slot int, f func() T) T {
-	e := d.memo[slot]
-	if e == nil {
-		e = d.Space.memory.find(slot, d.x)
+// Memo returns f's value at a draw, evaluated once per draw into the place given; what f reads counts as read by every caller. A shared
+// result is also looked for among those of other draws with the same numbers of all that f reads.
+func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
+	c := &d.memo[slot]
+	if !c.valid {
+		if c.trace.used == nil {
+			c.trace = newTrace(len(d.x))
+		}
+		var e *entry
+		if shared {
+			e = d.Space.memory.find(slot, d.x)
+		}
+		if e != nil {
+			*at = e.value.(T)
+			c.trace.copy(e.trace)
+		} else {
+			c.trace.reset()
+			d.stack = append(d.stack, &c.trace)
+			*at = f()
+			d.stack = d.stack[:len(d.stack)-1]
+			if shared {
+				d.Space.memory.keep(slot, d.x, &entry{value: *at, trace: c.trace.clone()})
+			}
+		}
+		c.valid = true
 	}
-	if e == nil {
-		t := newTrace(len(d.x))
-		d.stack = append(d.stack, &t)
-		v := f()
-		d.stack = d.stack[:len(d.stack)-1]
-		e = &entry{value: v, trace: &t}
-		d.Space.memory.keep(slot, d.x, e)
-	}
-	d.memo[slot] = e
-	d.current().Add(e.trace)
-	return e.value.(T)
+	d.current().Add(&c.trace)
+	return at
 }

@@ -23,7 +23,8 @@ type Worst struct {
 	Trace   *Trace  // all that was read anywhere in the search
 	Swings  []Swing // made by Polish, largest first
 
-	turning Bits // inputs in which the function turns between their ends
+	turning    Bits // inputs in which the function turns between their ends
+	negligible Bits // inputs that move the function, but by less than negligibleShare of what all of them do together
 }
 
 // Swing tells how far one input moves the function, the others standing at the worst draw.
@@ -53,12 +54,13 @@ func below(a, b float64) bool {
 func (s *Space) Search(f Function) Worst {
 	d := s.Typical()
 	v, t := Evaluate(d, f)
-	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs))}
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs)), negligible: newBits(len(s.inputs))}
 	if !usable(v, t) {
 		w.Value = math.NaN()
 		return w
 	}
 	x := slices.Clone(s.typ)
+	var effects []effect
 	seen := newBits(len(s.inputs))
 	moved := false
 	for {
@@ -92,6 +94,7 @@ func (s *Space) Search(f Function) Worst {
 				return u
 			}
 			lo, hi := try(1), try(2)
+			effects = append(effects, effect{id, math.Max(math.Abs(lo-v), math.Abs(hi-v))})
 			turns := (lo-v)*(hi-v) > 0
 			if s.interior.has(id) && !turns { // look between the ends for a turn
 				a, b := try(lookLow), try(lookHigh)
@@ -111,11 +114,38 @@ func (s *Space) Search(f Function) Worst {
 			break
 		}
 	}
+	w.neglect(effects)
 	if w.Value != w.Value || !moved {
 		return w
 	}
 	s.visit(&w, s.at(x), f)
 	return w
+}
+
+// effect is how far one input moves a function from the typical draw.
+type effect struct {
+	id   int
+	size float64
+}
+
+// negligibleShare of the sum of all effects.
+const negligibleShare = 1e-3
+
+// neglect marks the inputs that Polish need not move again: they stand at their worse end and hardly move the function. One that does not
+// move it at all at the typical draw may do so elsewhere and is not marked.
+func (w *Worst) neglect(effects []effect) {
+	sum := 0.0
+	for _, e := range effects {
+		sum += e.size
+	}
+	if math.IsInf(sum, 0) || sum != sum {
+		return
+	}
+	for _, e := range effects {
+		if e.size > 0 && e.size < negligibleShare*sum && !w.turning.has(e.id) {
+			w.negligible.set(e.id)
+		}
+	}
 }
 
 // visit evaluates a draw and keeps it if it is worse.
@@ -156,7 +186,7 @@ func (s *Space) Polish(w *Worst, f Function) {
 
 func (s *Space) sweep(w *Worst, f Function) {
 	slices.Clone(w.Trace.used).each(func(id int) {
-		if w.Value != w.Value {
+		if w.Value != w.Value || w.negligible.has(id) {
 			return
 		}
 		q := s.inputs[id]
@@ -165,7 +195,11 @@ func (s *Space) sweep(w *Worst, f Function) {
 			if v != v || v == w.Draw.x[id] || w.Value != w.Value {
 				return
 			}
-			u := s.visit(w, s.With(w.Draw, Change{id, v}), f)
+			n := s.take(w.Draw, Change{id, v})
+			u := s.visit(w, n, f)
+			if w.Draw != n {
+				s.give(n)
+			}
 			if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
 				swing = d
 			}
@@ -180,7 +214,9 @@ func (s *Space) sweep(w *Worst, f Function) {
 			}
 		}
 		if n := q.Naive; n == n && n != w.Draw.x[id] {
-			u, _ := Evaluate(s.With(w.Draw, Change{id, n}), f)
+			o := s.take(w.Draw, Change{id, n})
+			u, _ := Evaluate(o, f)
+			s.give(o)
 			if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
 				swing = d
 			}
@@ -233,7 +269,9 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 		return math.NaN(), false
 	}
 	at := func(p float64) float64 {
-		u, t := Evaluate(s.With(d, Change{q.ID, p}), f)
+		n := s.take(d, Change{q.ID, p})
+		defer s.give(n)
+		u, t := Evaluate(n, f)
 		if !usable(u, t) {
 			return math.NaN()
 		}
@@ -260,7 +298,7 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 }
 
 // breakEvenDigits is how exactly a break-even value is found, relative.
-const breakEvenDigits = 1e-6
+const breakEvenDigits = 1e-4
 
 func distance(a, b float64) float64 {
 	return math.Abs(a-b) / (math.Abs(a) + math.Abs(b) + math.SmallestNonzeroFloat64)

@@ -42,6 +42,7 @@ type Space struct {
 	interior       Bits // inputs in which a turn is looked for between their ends
 	inputs         []*stage.Quantity
 	probes         map[probe]*Draw
+	spare          []*Draw // draws that nobody holds
 	memory         *memory // shared by the spaces that Replace makes: results do not depend on ranges
 }
 
@@ -107,6 +108,25 @@ func (s *Space) With(d *Draw, changes ...Change) *Draw {
 	return s.at(x)
 }
 
+// take is With for a draw that the space may use again after give.
+func (s *Space) take(d *Draw, c Change) *Draw {
+	n := len(s.spare)
+	if n == 0 {
+		return s.With(d, c)
+	}
+	out := s.spare[n-1]
+	s.spare = s.spare[:n-1]
+	copy(out.x, d.x)
+	out.x[c.ID] = c.Value
+	for i := range out.memo {
+		out.memo[i].valid = false
+	}
+	return out
+}
+
+// give returns a draw that nobody holds.
+func (s *Space) give(d *Draw) { s.spare = append(s.spare, d) }
+
 // Change sets one input of a draw.
 type Change struct {
 	ID    int
@@ -163,7 +183,7 @@ func (s *Space) Replace(changes ...Replacement) *Space {
 	for _, c := range changes {
 		o.low[c.ID], o.typ[c.ID], o.high[c.ID] = c.Min, c.Typ, c.Max
 	}
-	o.probes = map[probe]*Draw{}
+	o.probes, o.spare = map[probe]*Draw{}, nil
 	return &o
 }
 

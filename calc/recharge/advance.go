@@ -12,7 +12,7 @@ type Interval struct {
 }
 
 // Advance returns V_BS [V] at the end of the interval iv from v0 [V] at its start, with the capacitor c [F], and dv1/dv0 [1]. Exact
-// solution of C·dv/dt = i(E - v) - I - G·v: eq. (3) to (8) of the package comment.
+// solution of C·dv/dt = i(E - v) - I - G·v: eq. (3) to (8) of the package comment. A negative load or conductance gives NaN.
 func (e Element) Advance(v0 float64, iv Interval, c float64) (v1, dv1dv0 float64) {
 	w := e.law()
 	v1, dv1dv0, _ = w.advance(v0, &iv, c)
@@ -25,7 +25,7 @@ func (w *law) advance(v0 float64, iv *Interval, c float64) (v1, slope, charge fl
 	switch {
 	case t <= 0:
 		return v0, 1, 0
-	case v0 != v0 || t != t || load < 0 || g < 0 || !(c > 0):
+	case v0 != v0 || t != t || !(load >= 0) || !(g >= 0) || !(c > 0):
 		nan := math.NaN()
 		return nan, nan, nan
 	case !iv.Conducts:
@@ -49,7 +49,7 @@ func (w *law) advance(v0 float64, iv *Interval, c float64) (v1, slope, charge fl
 		return w.advanceLeaky(v0, iv, c)
 	}
 	logS0, s0 := w.saturated(iv.Drive - v0)
-	if s0 == 0 && k == 0 { // no current at all
+	if s0 < 1e-280 && k == 0 { // no current at all
 		return v0, 1, 0
 	}
 	var logS1, s1 float64
@@ -61,7 +61,7 @@ func (w *law) advance(v0 float64, iv *Interval, c float64) (v1, slope, charge fl
 		top := math.Max(grown, fed)
 		logS1 = -(top + math.Log(math.Exp(grown-top)+math.Exp(fed-top)))
 		s1 = math.Exp(logS1)
-		slope = math.Exp(logS1 - logS0 - x)
+		slope = math.Min(math.Exp(logS1-logS0-x), 1)
 	} else {
 		a := w.decay(s0, logS0, k, t/c)
 		var lost float64 // 1 - e^-a

@@ -26,8 +26,7 @@ type law struct {
 func (e Element) law() law {
 	w := law{r: e.Resistance, linear: e.Switch}
 	if !e.Switch {
-		w.slope = math.Max(e.Slope, sharpestSlope)
-		w.logIS = e.LogSaturation
+		w.slope, w.logIS = e.Junction.law()
 		w.is = math.Exp(w.logIS)
 		w.logRn = math.Log(w.r / w.slope)
 	}

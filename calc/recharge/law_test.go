@@ -57,7 +57,9 @@ func TestAdvanceOverTheWholeRange(t *testing.T) {
 		if !(math.Abs(again-v1) <= scale) {
 			bad("two halves %.15g, whole %.15g", again, v1)
 		}
-		if !(math.Abs(d1*d2-d) <= 1e-8*d+1e-12+1e-4*d*math.Abs(math.Log(d1*d2+1e-300))*scale/1e-12/math.Max(e.Slope, sharpestSlope)*1e-12) {
+		// s0 carries the rounding of v over n·V_T
+		grain := 1e-15 * (math.Abs(iv.Drive) + math.Abs(v0) + math.Abs(v1) + 1) / math.Max(e.Slope, idealSlope)
+		if !(math.Abs(d1*d2-d) <= (1e-9+10*grain)*(1-math.Log(math.Max(d, 1e-300)))*d+1e-12) {
 			bad("slopes %g·%g, whole %g", d1, d2, d)
 		}
 		if i := e.Current(iv.Drive - v0); math.IsNaN(i) || math.IsInf(i, -1) {
@@ -105,7 +107,7 @@ func TestTimeToUndoesAdvance(t *testing.T) {
 		volts := math.Abs(iv.Drive) + math.Abs(v0) + math.Abs(v1) + 0.6
 		loose := 3e-15 * volts * c / pull
 		// what the last digit of v is worth as a current
-		grain := 1e-15 * volts / (e.Resistance + math.Max(e.Slope, sharpestSlope)/(pull+iv.Load+math.Exp(e.LogSaturation)))
+		grain := 1e-15 * volts / (e.Resistance + math.Max(e.Slope, idealSlope)/(pull+iv.Load+math.Exp(e.LogSaturation)))
 		if !(loose < 1e-3*iv.Duration) || pull < 1e4*grain {
 			return // at equilibrium, or too short to tell
 		}
@@ -228,8 +230,8 @@ func TestResistorEnergy(t *testing.T) {
 	near(t, "10 of 12 ohm", e.ResistorEnergy(c, drive, 2, 10)/sum, 1, 1e-6)
 	half := c * (drive - 2) * (drive - 2) / 2
 	near(t, "switch", Element{Resistance: 12, Switch: true}.ResistorEnergy(c, drive, 2, 12), half, 1e-18)
-	near(t, "ideal diode", Element{Resistance: 12}.ResistorEnergy(c, drive, 2, 12), half, 1e-12)
-	if got := e.ResistorEnergy(c, drive, 15, 10); got != 0 {
+	near(t, "ideal diode", Element{Resistance: 12}.ResistorEnergy(c, drive, 2, 12), half, 2e-11)
+	if got := e.ResistorEnergy(c, drive, 15, 10); !(math.Abs(got) < 1e-40) {
 		t.Errorf("at equilibrium: %v", got)
 	}
 }
@@ -262,7 +264,7 @@ func TestCurrentInvertsDrop(t *testing.T) {
 		fixedDrop(t, 0.4, 5), {Resistance: 7, Switch: true}, {Junction: linked(0.05, 0.9)},
 	} {
 		for _, i := range []float64{1e-12, 1e-9, 1e-6, 1e-3, 0.1, 4} {
-			near(t, fmt.Sprintf("%+v at %g A", e, i), e.Current(e.Drop(i))/i, 1, 1e-10+2e-16/math.Max(e.Slope, 1e-5)*10)
+			near(t, fmt.Sprintf("%+v at %g A", e, i), e.Current(e.Drop(i))/i, 1, 1e-10+2e-15/math.Max(e.Slope, 1e-5)+1e-14*math.Exp(e.LogSaturation)/i)
 		}
 		if got := e.Current(0); got != 0 {
 			t.Errorf("%+v: %g A at 0 V", e, got)

@@ -39,7 +39,8 @@ func (p Period) SteadyState() Steady {
 	w := p.Element.law()
 	var tr trace
 	emax := p.strongestDrive()
-	top := math.Max(emax, 0) + math.Max(p.Return, 0)/p.Capacitance
+	// no interval lifts v above E_max; the slack is for the rounding of a root there
+	top := (math.Max(emax, 0)+math.Max(p.Return, 0)/p.Capacitance)*(1+1e-6) + 1e-6
 	if top != top {
 		return p.nothing(0, false)
 	}
@@ -57,11 +58,13 @@ func (p Period) SteadyState() Steady {
 			return p.nothing(n, true)
 		}
 		step := -here.rise / here.slope
-		if ratio := tr.carried / tr.drawn; ratio > 2 || ratio > 0 && ratio < 0.5 {
+		if ratio := tr.carried / tr.drawn; tr.drawn > 0 && (ratio > 2 || ratio > 0 && ratio < 0.5) {
 			step = math.Log(ratio) * tr.carried / (-here.slope * p.Capacitance)
 		}
 		settled := math.Abs(p.Capacitance*here.rise) <= 1e-10*tr.drawn && math.Abs(step) <= 1e-10
-		grain := math.Abs(here.rise) <= 4e-15*math.Max(v, 1e-3) && (math.Abs(step) <= 1e-9 || high-low <= 1e-9)
+		// at the last digit of v; with slope 1 nothing is drawn and nothing carried, and any such v stays
+		grain := math.Abs(here.rise) <= 4e-15*math.Max(v, 1e-3) &&
+			(math.Abs(step) <= 1e-9 || high-low <= 1e-9 || here.slope > -1e-13)
 		if v > 0 && (settled || grain) {
 			return p.steady(&w, v, &tr, n)
 		}
@@ -77,7 +80,8 @@ func (p Period) SteadyState() Steady {
 		if !(to > low && to < high) {
 			to = v + step
 		}
-		if !(to > low && to < high) {
+		slow := n > 12 && n%2 == 0 // then every second step halves the bracket
+		if !(to > low && to < high) || slow && zeroRises {
 			to = low + (high-low)/2
 			if !zeroRises && v > 0 {
 				to = 0 // does it collapse?

@@ -15,6 +15,7 @@ import (
 const (
 	mostRanked     = 8    // inputs in a ranking
 	mostBreakEvens = 4    // inputs for which the break-even is sought
+	passBreakEvens = 2    // the same where the rule passes
 	leastSwing     = 0.01 // of the largest swing; below it an input is not ranked
 )
 
@@ -99,7 +100,7 @@ func (b *Bench) open(r *Rule, role string, f *finding.Finding, res *result) {
 	w := &res.worst
 	if res.check.Pending != "" {
 		f.Message = fmt.Sprintf("%s cannot be decided: %s.", r.Quantity, res.check.Pending)
-		f.Notes = res.check.Notes
+		f.Notes = b.notes(r, role, res)
 		if v := r.finite(res.check.Value); v.Value == v.Value {
 			f.Value, f.Limit, f.Margin = b.numbers(r, res)
 			f.Guard = r.finite(res.check.Guard)
@@ -128,6 +129,18 @@ func (b *Bench) open(r *Rule, role string, f *finding.Finding, res *result) {
 	b.unknownBreakEven(r, role, f, res)
 }
 
+// notes explains the check at the worst draw.
+func (b *Bench) notes(r *Rule, role string, res *result) []string {
+	var out []string
+	if r.Explain != nil {
+		corner.Evaluate(res.worst.Draw, func(d *corner.Draw) float64 {
+			out = r.Explain(circuit.Of(d), role, res.check)
+			return 0
+		})
+	}
+	return append(out, res.notes...)
+}
+
 // unknownBreakEven finds, where one value alone is missing, the value of it at which the rule turns.
 func (b *Bench) unknownBreakEven(r *Rule, role string, f *finding.Finding, res *result) {
 	q := res.worst.Space.OnlyMissing(res.worst.Trace)
@@ -151,7 +164,7 @@ func (b *Bench) decided(r *Rule, role string, f *finding.Finding, res *result) {
 	if t.Complete() {
 		f.Typical = r.finite(typical.Value)
 	}
-	f.Notes = res.check.Notes
+	f.Notes = b.notes(r, role, res)
 	b.corner(f, w)
 	dim := r.Dimension
 	if r.Proxy != nil {
@@ -183,8 +196,12 @@ func (b *Bench) corner(f *finding.Finding, w *corner.Worst) {
 
 func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.Worst) {
 	fn := r.function(role)
+	most := mostBreakEvens
+	if f.Outcome == finding.Pass {
+		most = passBreakEvens
+	}
 	for _, s := range w.Swings {
-		if len(f.BreakEven) == mostBreakEvens || s.Range < leastSwing*w.Swings[0].Range {
+		if len(f.BreakEven) == most || s.Range < leastSwing*w.Swings[0].Range {
 			return
 		}
 		d := s.Input.Declare

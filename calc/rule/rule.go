@@ -30,8 +30,6 @@ type Check struct {
 	Floor finding.Outcome
 	// Pending tells what the value does not contain yet: with it the rule is open where the numbers alone would pass.
 	Pending string
-	// Notes is what a reader must know beside the numbers.
-	Notes []string
 }
 
 // Rule is one rule of the catalogue.
@@ -59,6 +57,8 @@ type Rule struct {
 	Inapplicable func(s *stage.Stage, op *stage.OperatingPoint, role string) string
 	// Check gives value, limit and guard at one draw.
 	Check func(c *circuit.Circuit, role string) Check
+	// Explain, where set, tells what a reader must know beside the numbers of a check.
+	Explain func(c *circuit.Circuit, role string, k Check) []string
 	// Proxy, where set, stands in for the margin in the search for the worst draw: a cheaper number of the same sign and direction.
 	Proxy func(c *circuit.Circuit, role string) float64
 	// ProxyDimension is the dimension of Proxy.

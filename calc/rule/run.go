@@ -107,6 +107,7 @@ type result struct {
 	outcome finding.Outcome
 	worst   corner.Worst
 	check   Check
+	notes   []string
 	margin  float64
 	reason  string // why not applicable
 	typical float64
@@ -217,12 +218,12 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 		res.outcome, res.margin = finding.Open, math.NaN()
 		return
 	}
-	var t *corner.Trace
-	_, t = corner.Evaluate(w.Draw, func(d *corner.Draw) float64 {
+	_, t := corner.Evaluate(w.Draw, func(d *corner.Draw) float64 {
 		res.check = r.Check(circuit.Of(d), role)
 		return 0
 	})
 	c := &res.check
+	res.notes = nil
 	w.Trace.Add(t)
 	res.margin = r.margin(*c)
 	switch {
@@ -249,7 +250,7 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 	for _, a := range w.Space.Assumptions(w.Trace) {
 		if a.Direction == stage.Optimistic {
 			res.outcome = finding.Marginal
-			c.Notes = append(c.Notes, fmt.Sprintf("satisfied only under an optimistic assumption: %s: %s", stage.Relative(a.Field), a.Reason))
+			res.notes = append(res.notes, fmt.Sprintf("satisfied only under an optimistic assumption: %s: %s", stage.Relative(a.Field), a.Reason))
 		}
 	}
 }
@@ -258,11 +259,7 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 func (b *Bench) refine(r *Rule, role string, res *result) {
 	f := r.function(role)
 	res.worst.Space.Polish(&res.worst, f)
-	notes := res.check.Notes
 	b.decide(r, role, res)
-	if res.outcome == finding.Open {
-		res.check.Notes = notes
-	}
 }
 
 // significant rounds to six significant digits, as results are before they are compared.

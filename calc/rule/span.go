@@ -51,8 +51,6 @@ func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 		}
 	}
 	if len(p.Spaces) > 0 {
-		out.Low.Space.Polish(&out.Low, fn)
-		out.High.Space.Polish(&out.High, fn.Negative())
 		out.Span.Min, out.Span.Max = significant(out.Low.Value), significant(-out.High.Value)
 	}
 	return out

@@ -132,6 +132,9 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 	a, b = math.Min(a, b), math.Max(a, b)
 	dim := q.Declare.Dimension
 	exact := q.Declare.Spread == SpreadExact
+	if exact && noMin != noMax { // one end was written beside typ: the value has a spread, and the other end is unknown
+		return
+	}
 	if noMin {
 		t.Min = a
 		if !exact && a != t.Typ {

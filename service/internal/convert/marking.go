@@ -12,12 +12,12 @@ import (
 var capacitorType = reflect.TypeFor[stage.Capacitor]()
 
 // marking reads the printed line of a capacitor into the fields that m does not give itself.
-func (w *walk) marking(s *shape, m protoreflect.Message, c *stage.Capacitor) {
+func (w *walk) marking(s *shape, m protoreflect.Message, c *stage.Capacitor, component string) {
 	f := s.field("marking")
 	if !m.Has(f.desc) {
 		return
 	}
-	path := w.paths.member(c.Field, f.name)
+	path := w.paths.member(component, f.name)
 	text := m.Get(f.desc).String()
 	mark, err := quantity.ParseMarking(text)
 	if err != nil {
@@ -30,7 +30,7 @@ func (w *walk) marking(s *shape, m protoreflect.Message, c *stage.Capacitor) {
 	absent := func(name string) bool { return !m.Has(s.field(name).desc) }
 	if f := s.field("capacitance"); absent(f.name) {
 		nominal := mark.Capacitance
-		c.Capacitance = stage.Absent(w.paths.member(c.Field, f.name), f.declare)
+		c.Capacitance = stage.Absent(w.paths.member(component, f.name), f.declare)
 		c.Capacitance.Typ = nominal
 		low, high := nominal, nominal
 		if mark.HasTolerance {
@@ -43,7 +43,7 @@ func (w *walk) marking(s *shape, m protoreflect.Message, c *stage.Capacitor) {
 	}
 	if f := s.field("voltageRating"); absent(f.name) && mark.HasVoltage {
 		v := mark.Voltage
-		c.VoltageRating = stage.Absent(w.paths.member(c.Field, f.name), f.declare)
+		c.VoltageRating = stage.Absent(w.paths.member(component, f.name), f.declare)
 		c.VoltageRating.Triple = stage.Triple{Min: v, Typ: v, Max: v}
 		if !within(v, f.declare) {
 			w.fault(path, refusal(quote(text), f.expect, "the marked voltage is outside the plausible range"))

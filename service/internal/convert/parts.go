@@ -19,8 +19,24 @@ type part struct {
 
 // partSet is the parts of one request.
 type partSet struct {
-	byID map[string]*part
-	ids  []string // in the order of the request
+	byID  map[string]*part
+	ids   []string // in the order of the request
+	hints *int     // searches for the nearest id that are left to the request
+}
+
+// maxHints bounds the searches for the nearest id: each looks at every part.
+const maxHints = 200
+
+// hint names the id that is most like the one that is not there, of the right kind if there is one.
+func (p *partSet) hint(s *shape, id string) string {
+	if *p.hints == 0 {
+		return ""
+	}
+	*p.hints--
+	if hint := suggestion(id, p.of(s)); hint != "" {
+		return hint
+	}
+	return suggestion(id, p.ids)
 }
 
 // of lists the ids of parts of one kind.
@@ -42,7 +58,8 @@ type use struct {
 
 // bindParts binds every part, used or not, so that each fault is told once and where it stands.
 func (w *walk) bindParts(parts []*pb.Part) {
-	w.parts = partSet{byID: make(map[string]*part, min(len(parts), maxParts))}
+	hints := maxHints
+	w.parts = partSet{byID: make(map[string]*part, min(len(parts), maxParts)), hints: &hints}
 	if len(parts) > maxParts {
 		w.fault("parts", tooMany(len(parts), maxParts))
 		return
@@ -102,11 +119,7 @@ func (w *walk) use(s *shape, id, path string) reflect.Value {
 	case p == nil && len(w.parts.ids) == 0:
 		w.fault(own(), refusal(quote(id), "the id of an entry of parts", "there are none"))
 	case p == nil:
-		hint := suggestion(id, w.parts.of(s))
-		if hint == "" {
-			hint = suggestion(id, w.parts.ids)
-		}
-		w.fault(own(), refusal(quote(id), "the id of an entry of parts", hint))
+		w.fault(own(), refusal(quote(id), "the id of an entry of parts", w.parts.hint(s, id)))
 	case p.shape != s:
 		w.fault(own(), refusal(quote(id), "the id of a "+kindOf(s), "it is a "+p.kind))
 	default:

@@ -51,22 +51,23 @@ func (w *walk) message(s *shape, m protoreflect.Message, base, dst reflect.Value
 	if s.header && base.IsValid() && header(base).Fit == notFitted && written(m) {
 		base = reflect.Value{}
 	}
-	if s.header {
-		h := header(dst)
-		h.Field = path
-		h.Present = !absent && (written(m) || base.IsValid() && header(base).Present)
-	}
+	present := s.header && base.IsValid() && header(base).Present
 	for i := range s.fields {
 		f := &s.fields[i]
 		has := m != nil && m.Has(f.desc)
+		present = present || has
 		if has && absent && f.name != "fit" && f.name != "refdes" && f.name != "part" {
 			w.fault(w.paths.member(path, f.name), "read a value beside fit NOT_FITTED, expected none: nothing is there")
 			has = false
 		}
 		w.field(f, m, has, base, dst, path)
 	}
+	if s.header {
+		h := header(dst)
+		h.Field, h.Present = path, present && !absent
+	}
 	if m != nil && !absent && s.typ == capacitorType {
-		w.marking(s, m, dst.Addr().Interface().(*stage.Capacitor))
+		w.marking(s, m, dst.Addr().Interface().(*stage.Capacitor), path)
 	}
 }
 

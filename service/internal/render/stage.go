@@ -141,7 +141,7 @@ func relative(m *pb.Margin) string {
 	if m.Relative == nil {
 		return ""
 	}
-	return " (" + strconv.FormatFloat(100*m.GetRelative(), 'g', 3, 64) + " % of the limit)"
+	return " (" + strconv.FormatFloat(100*m.GetRelative(), 'g', 3, 64) + " %)"
 }
 
 func point(f *pb.Finding) string {

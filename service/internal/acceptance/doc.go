@@ -1,0 +1,2 @@
+// Package acceptance holds tests alone.
+package acceptance

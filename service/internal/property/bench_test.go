@@ -1,0 +1,33 @@
+package property
+
+import (
+	"context"
+	"testing"
+
+	"floatrail/calc"
+)
+
+// BenchmarkReviewStage is a review with the floating voltages of every operating point; the request is bound outside the timer.
+func BenchmarkReviewStage(b *testing.B) { benchmark(b, calc.WithDutyLimits) }
+
+// BenchmarkSizing is a review with the parts that fit.
+func BenchmarkSizing(b *testing.B) { benchmark(b, calc.WithSizing) }
+
+func benchmark(b *testing.B, parts int) {
+	tree := document(b, "buck48")
+	b.ReportAllocs()
+	for range b.N {
+		b.StopTimer()
+		r, faults := bind(b, tree)
+		if r == nil {
+			b.Fatal(faults)
+		}
+		b.StartTimer()
+		if _, err := calc.Review(context.Background(), *r, parts); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
+
+// BenchmarkRules is the rules alone.
+func BenchmarkRules(b *testing.B) { benchmark(b, 0) }

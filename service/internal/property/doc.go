@@ -1,0 +1,12 @@
+// Package property holds tests of the calculation as a whole, on the demo stages: what must hold whatever the numbers are. It has no code of
+// its own; the tests stand here because they read stages as requests, which calc does not know.
+//
+//	deletion    what is not known never makes a rule pass
+//	widening    a wider range never improves an outcome
+//	adverse     worsening an adverse input never improves a margin
+//	draws       no part inside its ranges is worse than the reported worst
+//	coherent    the inputs of a corner belong to one temperature
+//	same        the same request gives the same report
+//	catalogue   every rule passes, is marginal, is open and fails on some stage
+//	sizing      the parts that sizing recommends pass the review
+package property
