@@ -85,3 +85,31 @@ func TestReviewCommandAgreesWithTheService(t *testing.T) {
 		}
 	}
 }
+
+// Faults are told with the paths that they have in the file.
+func TestReviewCommandTellsFaults(t *testing.T) {
+	const driver = `"driver":{"uvloRisng":{},"uvloFalling":{"typ":"8 C"},"floatingVoltageMax":18}`
+	for name, c := range map[string]struct {
+		stdin string
+		want  []string
+	}{
+		"request":    {`{"stage":{` + driver + `}}`, []string{"stage.driver.uvloRisng", "stage.driver.uvloFalling.typ", "stage.driver.floatingVoltageMax"}},
+		"bare stage": {`{` + driver + `}`, []string{"driver.uvloRisng", "driver.uvloFalling.typ", "driver.floatingVoltageMax"}},
+		"board": {`{"stages":[{"id":"a"},{"id":"b",` + driver + `}],"options":{"fixes":true},"polcy":{}}`, []string{"stages[1].driver.uvloRisng", "stages[1].driver.uvloFalling.typ",
+			"stages[1].driver.floatingVoltageMax", "options.fixes", "polcy"}},
+		"malformed": {`{"stage":`, []string{"request"}},
+	} {
+		status, out, errs := runCommand(t, context.Background(), c.stdin, "review", "-")
+		if status != 3 || out != "" {
+			t.Errorf("%s: %d %s", name, status, out)
+		}
+		for _, field := range c.want {
+			if strings.Count(errs, "-: "+field+": ") != 1 {
+				t.Errorf("%s: %s is not told once:\n%s", name, field, errs)
+			}
+		}
+		if n := strings.Count(errs, "\n"); n != len(c.want) {
+			t.Errorf("%s: %d lines:\n%s", name, n, errs)
+		}
+	}
+}

@@ -44,12 +44,16 @@ var chargeStandingLoad = &rule.Rule{
 	},
 }
 
-// standing is the charges of the avoidable loads and of all loads in one period [C]; with the high side held on, the currents [A].
+// standing is the charges of the avoidable loads and of all loads in one period, or in the time for which the high side is held on [C].
 func standing(c *circuit.Circuit) (pull, clamp, other, total float64) {
 	if c.Point.HeldOn != nil {
-		l := c.Loads()
-		pull = l.PullDown * c.Need(&c.Point.HeldOn.InitialVoltage)
-		return pull, l.ClampLeakage, l.Other, pull + l.Total()
+		h, t := c.Hold()
+		total = h.Loads.Total() * t
+		if h.Loads.PullDown != 0 {
+			taken := h.Capacitance * (h.Start - h.Voltage(t))
+			pull, total = taken-total, taken
+		}
+		return pull, h.Loads.ClampLeakage * t, h.Loads.Other * t, total
 	}
 	items := c.Budget()
 	for _, it := range items {

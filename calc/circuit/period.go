@@ -308,8 +308,12 @@ func (c *Circuit) Steady() *recharge.Steady {
 	})
 }
 
-// Settled is the voltage toward which the recharge of the longest conducting interval with the low side on tends at the standing load [V].
+// Settled is the voltage toward which recharge tends [V]: at the drop of the junction alone at the mean recharge current, from which the
+// deficit of the steady state counts. Where there is none, at the drop of the whole element at the standing load.
 func (c *Circuit) Settled() float64 {
+	if st := c.Steady(); st.Deficit == st.Deficit {
+		return st.Low + st.Deficit
+	}
 	p := c.Period()
 	el := p.Element
 	best := nan

@@ -23,8 +23,9 @@ type Worst struct {
 	Trace   *Trace  // all that was read anywhere in the search
 	Swings  []Swing // made by Polish, largest first
 
-	turning    Bits // inputs in which the function turns between their ends
-	negligible Bits // inputs that move the function, but by less than negligibleShare of what all of them do together
+	ends       []end // where each input stands that was moved from its typical value
+	turning    Bits  // inputs in which the function turns between their ends
+	negligible Bits  // inputs that move the function, but by less than negligibleShare of what all of them do together
 }
 
 // Swing tells how far one input moves the function, the others standing at the worst draw.
@@ -59,10 +60,8 @@ func (s *Space) Search(f Function) Worst {
 		w.Value = math.NaN()
 		return w
 	}
-	x := slices.Clone(s.typ)
 	var effects []effect
 	seen := newBits(len(s.inputs))
-	moved := false
 	for {
 		fresh := slices.Clone(w.Trace.used)
 		for i := range fresh {
@@ -75,7 +74,7 @@ func (s *Space) Search(f Function) Worst {
 			if !(s.low[id] < s.high[id]) || w.Value != w.Value {
 				return
 			}
-			best, at := v, s.typ[id]
+			best, at := v, int8(0)
 			try := func(step int8) float64 {
 				p := s.sample(id, step)
 				d := s.probe(id, step, p)
@@ -86,7 +85,7 @@ func (s *Space) Search(f Function) Worst {
 					return u
 				}
 				if below(u, best) {
-					best, at = u, p
+					best, at = u, step
 				}
 				if w.Value == w.Value && below(u, w.Value) {
 					w.Value, w.Draw = u, d
@@ -106,8 +105,8 @@ func (s *Space) Search(f Function) Worst {
 					try(k)
 				}
 			}
-			if at != s.typ[id] {
-				x[id], moved = at, true
+			if at != 0 {
+				w.ends = append(w.ends, end{id, at})
 			}
 		})
 		if !any {
@@ -115,11 +114,61 @@ func (s *Space) Search(f Function) Worst {
 		}
 	}
 	w.neglect(effects)
-	if w.Value != w.Value || !moved {
-		return w
+	if w.Value == w.Value {
+		s.gather(&w, f)
 	}
-	s.visit(&w, s.at(x), f)
 	return w
+}
+
+// end is one input's sample number.
+type end struct {
+	id   int
+	step int8
+}
+
+// gather moves all inputs to their worse ends together.
+func (s *Space) gather(w *Worst, f Function) {
+	if len(w.ends) == 0 {
+		return
+	}
+	x := slices.Clone(s.typ)
+	for _, e := range w.ends {
+		x[e.id] = s.sample(e.id, e.step)
+	}
+	s.visit(w, s.at(x), f)
+}
+
+// SearchSets finds the worst draw of each temperature set of one operating point. The directions are found at the room set, or the first
+// where there is none, and carried over to the others: temperature moves ranges, it does not turn the sense in which an input acts. The set
+// that binds is then polished, which moves every input once more there.
+func SearchSets(sets []*Space, f Function) []Worst {
+	out := make([]Worst, len(sets))
+	home := max(0, slices.IndexFunc(sets, func(s *Space) bool { return s.Set.Name == "room" }))
+	for i := range sets {
+		if i == home {
+			out[i] = sets[i].Search(f)
+		}
+	}
+	ref := &out[home]
+	for i, s := range sets {
+		if i == home {
+			continue
+		}
+		if ref.Value != ref.Value {
+			out[i] = s.Search(f)
+			continue
+		}
+		d := s.Typical()
+		v, t := Evaluate(d, f)
+		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: ref.turning, negligible: ref.negligible}
+		if !usable(v, t) {
+			w.Value = math.NaN()
+		} else {
+			s.gather(&w, f)
+		}
+		out[i] = w
+	}
+	return out
 }
 
 // effect is how far one input moves a function from the typical draw.

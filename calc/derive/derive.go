@@ -39,6 +39,7 @@ func both(c *circuit.Circuit) float64 { return math.Min(Hold(c), Stand(c)) }
 // Result is one derived limit at one draw.
 type Result struct {
 	Value float64 // NaN where there is none
+	Input float64 // of the input that was moved
 	Found bool    // the limit turns at Value
 	Whole bool    // the whole range holds
 }
@@ -104,19 +105,25 @@ func Limit(c *circuit.Circuit, name string) Result {
 	}
 	now := s.holds(c)
 	if now != now || here != here {
-		return Result{Value: math.NaN()}
+		return Result{Value: math.NaN(), Input: math.NaN()}
 	}
 	good, bad := here, s.toward
 	if now < 0 {
 		good, bad = s.back, here
 		if !(at(good) >= 0) {
-			return Result{Value: math.NaN()}
+			return Result{Value: math.NaN(), Input: math.NaN()}
 		}
 	} else if !(at(bad) < 0) {
-		return Result{Value: s.limit(c, bad), Whole: true}
+		return Result{Value: s.limit(c, bad), Input: bad, Whole: true}
 	}
 	v := turn(at, good, bad)
-	return Result{Value: s.limit(c, v), Found: v == v}
+	return Result{Value: s.limit(c, v), Input: v, Found: v == v}
+}
+
+// Holds tells whether the limit's condition holds at another draw with the input of a result found elsewhere.
+func Holds(c *circuit.Circuit, name string, input float64) bool {
+	s := plan(c, name)
+	return s.holds(circuit.Of(c.Space.With(c.Draw, corner.Change{ID: s.input.ID, Value: input}))) >= 0
 }
 
 // turn finds where a function that is not negative at good becomes negative toward bad, to 1e-7 of the value, on the good side. The search

@@ -20,14 +20,14 @@ type Steady struct {
 	TimeConducting float64 // length of the intervals that each bring at least 1 % of Charge [s]
 
 	Collapses        bool // Map(0) <= 0: no positive steady state
-	PeriodsToLockout int  // from Period.Start to below Period.Lockout; 0: not asked, -1: not within 100000 periods
+	PeriodsToLockout int  // from Period.Start to below Period.Lockout; 0: not asked, -1: not within 20000 periods
 	Iterations       int  // evaluations of the map
 	Converged        bool // false: OPEN, never a number
 }
 
 const (
 	mostIterations     = 120
-	mostCountedPeriods = 100_000
+	mostCountedPeriods = 20_000
 )
 
 // SteadyState finds the fixed point of Map on [0, E_max], bracketed. From the second evaluation on, the inverse cubic through the last

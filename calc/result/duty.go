@@ -2,6 +2,7 @@
 package result
 
 import (
+	"cmp"
 	"math"
 	"slices"
 
@@ -85,7 +86,7 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 			out.HighInterval = q.Names[c.Steady().HighInterval]
 		}
 	}
-	out.Limits = fixedLimits(b, p)
+	out.Limits = fixedLimits(p)
 	return out
 }
 
@@ -97,26 +98,23 @@ func firstKnown(v float64) float64 {
 }
 
 // fixedLimits finds the derived limits of a fixed duty at the worst draws of what must hold, over all sets; the tightest one binds.
-func fixedLimits(b *rule.Bench, p *rule.Point) []finding.DerivedLimit {
-	hold := worstDraws(b, p, derive.Hold)
-	stand := worstDraws(b, p, derive.Stand)
+func fixedLimits(p *rule.Point) []finding.DerivedLimit {
+	hold := worstDraws(p, derive.Hold)
+	stand := worstDraws(p, derive.Stand)
+	both := append(slices.Clone(hold), stand...)
 	var out []finding.DerivedLimit
 	for _, name := range derive.Names() {
 		draws := hold
 		if name == finding.LargestDeadTime {
-			draws = append(slices.Clone(hold), stand...)
+			draws = both
 		}
 		out = append(out, bindingLimit(p, name, draws))
 	}
 	return out
 }
 
-func worstDraws(b *rule.Bench, p *rule.Point, f rule.Number) []corner.Worst {
-	var out []corner.Worst
-	for _, s := range p.Spaces {
-		out = append(out, s.Search(func(d *corner.Draw) float64 { return f(circuit.Of(d)) }))
-	}
-	return out
+func worstDraws(p *rule.Point, f rule.Number) []corner.Worst {
+	return corner.SearchSets(p.Spaces, func(d *corner.Draw) float64 { return f(circuit.Of(d)) })
 }
 
 func dimensionOf(name string) quantity.Dimension {
@@ -133,10 +131,8 @@ func dimensionOf(name string) quantity.Dimension {
 
 func bindingLimit(p *rule.Point, name string, draws []corner.Worst) finding.DerivedLimit {
 	out := finding.DerivedLimit{Name: name, Measure: finding.Measure{Value: math.NaN(), Dimension: dimensionOf(name)}}
-	var best derive.Result
 	for i := range draws {
-		w := &draws[i]
-		if w.Value != w.Value {
+		if w := &draws[i]; w.Value != w.Value {
 			m := append(w.Space.Missing(w.Trace), w.Trace.Reasons()...)
 			out.Reason = "cannot be evaluated"
 			if len(m) > 0 {
@@ -144,17 +140,29 @@ func bindingLimit(p *rule.Point, name string, draws []corner.Worst) finding.Deri
 			}
 			return out
 		}
-		var r derive.Result
+	}
+	// The worst draw first; the others need solving only where they do not hold at what was found so far.
+	order := slices.Clone(draws)
+	slices.SortStableFunc(order, func(a, b corner.Worst) int { return cmp.Compare(a.Value, b.Value) })
+	var best derive.Result
+	for i := range order {
+		w := &order[i]
+		tighter := false
 		_, t := corner.Evaluate(w.Draw, func(d *corner.Draw) float64 {
-			r = derive.Limit(circuit.Of(d), name)
+			c := circuit.Of(d)
+			if i > 0 && (best.Value != best.Value || derive.Holds(c, name, best.Input)) {
+				return 0
+			}
+			if r := derive.Limit(c, name); i == 0 || derive.Tightest(name, r, best) {
+				best, tighter = r, true
+			}
 			return 0
 		})
 		if !t.Complete() {
 			out.Reason = "cannot be evaluated"
 			return out
 		}
-		if i == 0 || derive.Tightest(name, r, best) {
-			best = r
+		if tighter {
 			out.Corner = rule.Corner(w)
 		}
 	}

@@ -110,8 +110,8 @@ func (t *trial) enlist(rl *rule.Rule, role string, c, r float64) string {
 		if rl.Inapplicable(t.stage, p.Operating, role) != "" {
 			continue
 		}
-		for _, s := range p.Spaces {
-			w := s.Replace(t.scaled(t.c, c), t.scaled(t.r, r)).Search(rl.Worst(role))
+		for _, w := range corner.SearchSets(t.spaces(p, c, r), rl.Worst(role)) {
+			s := w.Space
 			if w.Value != w.Value {
 				what := append(s.Missing(w.Trace), w.Trace.Reasons()...)
 				what = append(what, "not a number")
@@ -121,6 +121,15 @@ func (t *trial) enlist(rl *rule.Rule, role string, c, r float64) string {
 		}
 	}
 	return ""
+}
+
+// spaces are those of an operating point with other parts.
+func (t *trial) spaces(p *rule.Point, c, r float64) []*corner.Space {
+	out := make([]*corner.Space, len(p.Spaces))
+	for i, s := range p.Spaces {
+		out[i] = s.Replace(t.scaled(t.c, c), t.scaled(t.r, r))
+	}
+	return out
 }
 
 // scaled is an input's range moved to another nominal value.
@@ -134,6 +143,7 @@ func (t *trial) holds(c, r float64) bool {
 		j := &t.judges[i]
 		d := j.draw.Space.With(j.draw, t.moved(j.draw, t.c, c), t.moved(j.draw, t.r, r))
 		if !j.rule.Holds(circuit.Of(d), j.role) {
+			t.judges[0], t.judges[i] = t.judges[i], t.judges[0] // who refused is asked first the next time
 			return false
 		}
 	}
@@ -165,14 +175,18 @@ func ladder(s preferred.Series, low, high float64) []float64 {
 	return out
 }
 
-// window finds the ends of the run of values that hold around one that does.
+// window finds the ends of the run of values that hold around one that does, by halving toward the ends.
 func window(values []float64, at int, holds func(float64) bool) (low, high int) {
 	low, high = at, at
-	for low > 0 && holds(values[low-1]) {
-		low--
+	for reach := at; reach > 0; reach /= 2 {
+		for low-reach >= 0 && holds(values[low-reach]) {
+			low -= reach
+		}
 	}
-	for high+1 < len(values) && holds(values[high+1]) {
-		high++
+	for reach := len(values) - 1 - at; reach > 0; reach /= 2 {
+		for high+reach < len(values) && holds(values[high+reach]) {
+			high += reach
+		}
 	}
 	return low, high
 }
@@ -280,8 +294,7 @@ func (t *trial) ratings(out *finding.Sizing, c, r float64) {
 		v := math.Inf(-1)
 		for i := range t.bench.Points {
 			p := &t.bench.Points[i]
-			for _, s := range p.Spaces {
-				w := s.Replace(t.scaled(t.c, c), t.scaled(t.r, r)).Search(func(d *corner.Draw) float64 { return -f(circuit.Of(d)) })
+			for _, w := range corner.SearchSets(t.spaces(p, c, r), func(d *corner.Draw) float64 { return -f(circuit.Of(d)) }) {
 				if w.Value != w.Value {
 					return math.NaN()
 				}

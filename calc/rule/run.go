@@ -196,12 +196,11 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 	}
 	f := r.function(role)
 	first := true
-	for _, s := range p.Spaces {
-		if b.Interrupted != nil && b.Interrupted() {
-			res.outcome = finding.Open
-			return res
-		}
-		w := s.Search(f)
+	if b.Interrupted != nil && b.Interrupted() {
+		res.outcome = finding.Open
+		return res
+	}
+	for _, w := range corner.SearchSets(p.Spaces, f) {
 		next := result{point: p, worst: w, typical: w.Typical}
 		b.decide(r, role, &next)
 		if first || worse(&next, &res) {

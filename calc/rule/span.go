@@ -28,8 +28,9 @@ type Range struct {
 func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 	out := Range{Span: finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}}
 	fn := corner.Function(func(d *corner.Draw) float64 { return f(circuit.Of(d)) })
+	lows, highs := corner.SearchSets(p.Spaces, fn), corner.SearchSets(p.Spaces, fn.Negative())
 	for i, s := range p.Spaces {
-		low, high := s.Search(fn), s.Search(fn.Negative())
+		low, high := lows[i], highs[i]
 		for _, w := range []*corner.Worst{&low, &high} {
 			b.note(s, w.Trace)
 			if w.Value == w.Value {

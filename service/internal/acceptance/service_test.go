@@ -92,7 +92,7 @@ func ask[M proto.Message](c client, path, body string, answer M) M {
 	c.t.Helper()
 	code, data := c.post(path, body)
 	if code != http.StatusOK {
-		c.t.Fatalf("%s: %d %s\n%s", path, code, data, body)
+		c.t.Fatalf("%s: %d %s", path, code, data)
 	}
 	if err := protojson.Unmarshal(data, answer); err != nil {
 		c.t.Fatal(err)

@@ -25,7 +25,7 @@ const plain = `{"stage": {
   "lowSide": {"refdes": "Q2", "kind": "SI_MOSFET"},
   "bootstrap": {"element": "DISCRETE_DIODE", "diode": {"refdes": "D1", "recoveryTestCurrent": "1 A", "reverseVoltageMax": "1200 V"},
     "resistor": {"refdes": "R1"}, "capacitor": {"refdes": "C1"}, "clamp": {"fit": "NOT_FITTED"}},
-  "layout": {"shunt": {"fit": "NOT_FITTED"}, "nodeResistor": {}},
+  "layout": {},
   "operatingPoints": [{"name": "point"}]
 }}`
 
@@ -37,7 +37,7 @@ type edits map[string]string
 func defaults() edits {
 	return edits{
 		"gateSupply.voltage": "12 V", "gateSupply.seriesResistance": "0 ohm",
-		"driver.uvloFalling": "3 V", "driver.uvloRising": "4 V", "driver.floatingQuiescentCurrent": "0 A", "driver.offsetLeakage": "0 A",
+		"driver.uvloFalling": "3 V", "driver.floatingQuiescentCurrent": "0 A", "driver.offsetLeakage": "0 A",
 		"driver.levelShiftCharge": "0 C", "driver.edgeTime": "0.1 ns",
 		"highSide.gateCharge": "10 nC", "highSide.gateSourceCharge": "5 nC", "highSide.gateDrainCharge": "5 nC", "highSide.plateauVoltage": "5 V",
 		"highSide.gateLeakage": "0 A", "highSide.offBias": "0 V", "highSide.outputCapacitance": `[{"voltage":"0 V","capacitance":{"min":"0.01 pF","typ":"0.01 pF","max":"0.01 pF"}}]`,
@@ -46,8 +46,8 @@ func defaults() edits {
 		"bootstrap.diode.forwardPoints": drops(0.4), "bootstrap.diode.reverseLeakage": "0 A", "bootstrap.diode.recoveryCharge": "0 C",
 		"bootstrap.diode.junctionCapacitance": "0 F", "bootstrap.resistor.resistance": "0 ohm",
 		"bootstrap.capacitor.effectiveCapacitance": "1 uF", "bootstrap.capacitor.leakage": "0 A", "bootstrap.otherLoad": "0 A",
-		"layout.nodeResistor.resistance": "0 ohm",
-		"operatingPoints.0.busVoltage":   "48 V", "operatingPoints.0.loadCurrent": "0 A", "operatingPoints.0.rippleCurrent": "0 A",
+		"layout.nodeResistor.resistance": "0 ohm", "layout.shunt.resistance": "0 ohm",
+		"operatingPoints.0.busVoltage": "48 V", "operatingPoints.0.loadCurrent": "0 A", "operatingPoints.0.rippleCurrent": "0 A",
 		"operatingPoints.0.junctionTemperature": "25 degC", "operatingPoints.0.ambientTemperature": "25 degC",
 	}
 }

@@ -97,47 +97,93 @@ func compileField(shapes map[protoreflect.FullName]*shape, d protoreflect.FieldD
 	if f.declare != nil {
 		f.expect = rangeText(f.declare)
 	}
-	message := d.Kind() == protoreflect.MessageKind
-	declared := f.declare != nil
+	known := false
 	switch {
-	case message && d.IsList() && g.Type.Kind() == reflect.Slice:
-		f.kind, f.limit = kindSlice, listLimit(name)
-		f.shape = compile(shapes, d.Message(), g.Type.Elem())
-	case message && d.IsList() && strings.HasPrefix(g.Type.Name(), "List["):
-		f.kind, f.limit = kindList, listLimit(name)
-		items, _ := g.Type.FieldByName("Items")
-		f.shape = compile(shapes, d.Message(), items.Type.Elem())
-	case message && !d.IsList() && d.Message().FullName() == quantityName && g.Type == quantityType && declared:
-		f.kind = kindQuantity
-	case message && !d.IsList() && g.Type.Kind() == reflect.Pointer && d.ContainingOneof() != nil:
-		f.kind = kindMode
-		f.shape = compile(shapes, d.Message(), g.Type.Elem())
-	case message && !d.IsList() && g.Type.Kind() == reflect.Struct && g.Type != quantityType:
-		f.kind = kindMessage
-		f.shape = compile(shapes, d.Message(), g.Type)
-	case d.Kind() == protoreflect.StringKind && d.IsList() && g.Type == reflect.TypeFor[[]string]():
-		f.kind, f.limit = kindLabels, listLimit(name)
-	case d.Kind() == protoreflect.StringKind && !d.IsList() && declared && g.Type == quantityType:
-		f.kind = kindValue
-	case d.Kind() == protoreflect.StringKind && !d.IsList() && declared && g.Type.Kind() == reflect.Float64:
-		f.kind = kindNumber
-	case d.Kind() == protoreflect.StringKind && !d.IsList() && !declared && g.Type.Kind() == reflect.String:
-		f.kind, f.limit = kindLabel, labelLimit(name)
-	case d.Kind() == protoreflect.EnumKind && !d.IsList():
-		f.kind, f.names = kindEnum, enumNames(d.Enum())
-		if g.Type == severityType {
-			f.kind = kindGrade
-		} else if g.Type.Kind() != reflect.String {
-			panic(fmt.Sprintf("convert: %s cannot become %s", d.FullName(), g.Type))
-		}
-	case d.Kind() == protoreflect.Int32Kind && !d.IsList() && g.Type.Kind() == reflect.Int:
-		f.kind, f.limit = kindCount, countLimit(name)
-	case d.Kind() == protoreflect.BoolKind && !d.IsList() && g.Type.Kind() == reflect.Bool:
-		f.kind = kindFlag
+	case d.Message() != nil && d.IsList():
+		known = f.list(shapes, g.Type)
+	case d.Message() != nil:
+		known = f.message(shapes, g.Type)
+	case d.Kind() == protoreflect.StringKind:
+		known = f.text(g.Type)
 	default:
+		known = f.choice(g.Type)
+	}
+	if !known {
 		panic(fmt.Sprintf("convert: %s cannot become %s", d.FullName(), g.Type))
 	}
 	return f
+}
+
+// list plans a repeated message.
+func (f *field) list(shapes map[protoreflect.FullName]*shape, t reflect.Type) bool {
+	f.limit = listLimit(f.name)
+	switch {
+	case t.Kind() == reflect.Slice:
+		f.kind, f.shape = kindSlice, compile(shapes, f.desc.Message(), t.Elem())
+	case strings.HasPrefix(t.Name(), "List["):
+		items, _ := t.FieldByName("Items")
+		f.kind, f.shape = kindList, compile(shapes, f.desc.Message(), items.Type.Elem())
+	default:
+		return false
+	}
+	return true
+}
+
+// message plans a single message.
+func (f *field) message(shapes map[protoreflect.FullName]*shape, t reflect.Type) bool {
+	isQuantity := f.desc.Message().FullName() == quantityName
+	switch {
+	case isQuantity || t == quantityType:
+		f.kind = kindQuantity
+		return isQuantity && t == quantityType && f.declare != nil
+	case t.Kind() == reflect.Pointer && f.desc.ContainingOneof() != nil:
+		f.kind, f.shape = kindMode, compile(shapes, f.desc.Message(), t.Elem())
+	case t.Kind() == reflect.Struct:
+		f.kind, f.shape = kindMessage, compile(shapes, f.desc.Message(), t)
+	default:
+		return false
+	}
+	return true
+}
+
+// text plans a string: a declared one is a value, any other a label.
+func (f *field) text(t reflect.Type) bool {
+	switch declared := f.declare != nil; {
+	case f.desc.IsList():
+		f.kind, f.limit = kindLabels, listLimit(f.name)
+		return !declared && t == reflect.TypeFor[[]string]()
+	case !declared:
+		f.kind, f.limit = kindLabel, labelLimit(f.name)
+		return t.Kind() == reflect.String
+	case t.Kind() == reflect.Float64:
+		f.kind = kindNumber
+		return true
+	}
+	f.kind = kindValue
+	return t == quantityType
+}
+
+// choice plans an enum, a count or a flag.
+func (f *field) choice(t reflect.Type) bool {
+	if f.desc.IsList() {
+		return false
+	}
+	switch f.desc.Kind() {
+	case protoreflect.EnumKind:
+		f.kind, f.names = kindEnum, enumNames(f.desc.Enum())
+		if t == severityType {
+			f.kind = kindGrade
+			return true
+		}
+		return t.Kind() == reflect.String
+	case protoreflect.Int32Kind:
+		f.kind, f.limit = kindCount, countLimit(f.name)
+		return t.Kind() == reflect.Int
+	case protoreflect.BoolKind:
+		f.kind = kindFlag
+		return t.Kind() == reflect.Bool
+	}
+	return false
 }
 
 func enumNames(d protoreflect.EnumDescriptor) []string {
