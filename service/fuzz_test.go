@@ -20,6 +20,8 @@ func FuzzRESTBody(f *testing.F) {
 	c.Deadline = 2 * time.Second
 	r := start(f, c, realHandlers)
 	f.Fuzz(func(t *testing.T, body []byte) {
+		r := *r
+		r.t = t
 		for _, path := range []string{"/v1/reviews", "/v1/sizing", "/v1/duty-limits"} {
 			answer, data, err := r.do(http.MethodPost, r.http+path, "application/json", bytes.NewReader(body))
 			if err != nil {

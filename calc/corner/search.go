@@ -55,12 +55,11 @@ func below(a, b float64) bool {
 func (s *Space) Search(f Function) Worst {
 	d := s.Typical()
 	v, t := Evaluate(d, f)
-	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs)), negligible: newBits(len(s.inputs))}
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs))}
 	if !usable(v, t) {
 		w.Value = math.NaN()
 		return w
 	}
-	var effects []effect
 	seen := newBits(len(s.inputs))
 	for {
 		fresh := slices.Clone(w.Trace.used)
@@ -93,7 +92,6 @@ func (s *Space) Search(f Function) Worst {
 				return u
 			}
 			lo, hi := try(1), try(2)
-			effects = append(effects, effect{id, math.Max(math.Abs(lo-v), math.Abs(hi-v))})
 			turns := (lo-v)*(hi-v) > 0
 			if s.interior.has(id) && !turns { // look between the ends for a turn
 				a, b := try(lookLow), try(lookHigh)
@@ -113,7 +111,6 @@ func (s *Space) Search(f Function) Worst {
 			break
 		}
 	}
-	w.neglect(effects)
 	if w.Value == w.Value {
 		s.gather(&w, f)
 	}
@@ -160,7 +157,7 @@ func SearchSets(sets []*Space, f Function) []Worst {
 		}
 		d := s.Typical()
 		v, t := Evaluate(d, f)
-		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: ref.turning, negligible: ref.negligible}
+		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: ref.turning}
 		if !usable(v, t) {
 			w.Value = math.NaN()
 		} else {
@@ -169,32 +166,6 @@ func SearchSets(sets []*Space, f Function) []Worst {
 		out[i] = w
 	}
 	return out
-}
-
-// effect is how far one input moves a function from the typical draw.
-type effect struct {
-	id   int
-	size float64
-}
-
-// negligibleShare of the sum of all effects.
-const negligibleShare = 1e-3
-
-// neglect marks the inputs that Polish need not move again: they stand at their worse end and hardly move the function. One that does not
-// move it at all at the typical draw may do so elsewhere and is not marked.
-func (w *Worst) neglect(effects []effect) {
-	sum := 0.0
-	for _, e := range effects {
-		sum += e.size
-	}
-	if math.IsInf(sum, 0) || sum != sum {
-		return
-	}
-	for _, e := range effects {
-		if e.size > 0 && e.size < negligibleShare*sum && !w.turning.has(e.id) {
-			w.negligible.set(e.id)
-		}
-	}
 }
 
 // visit evaluates a draw and keeps it if it is worse.
@@ -235,7 +206,7 @@ func (s *Space) Polish(w *Worst, f Function) {
 
 func (s *Space) sweep(w *Worst, f Function) {
 	slices.Clone(w.Trace.used).each(func(id int) {
-		if w.Value != w.Value || w.negligible.has(id) {
+		if w.Value != w.Value {
 			return
 		}
 		q := s.inputs[id]

@@ -40,7 +40,7 @@ func (r referenceCase) period() Period {
 			Junction:   Junction{Slope: r.Element.Slope, LogSaturation: r.Element.LogSaturation},
 			Resistance: r.Element.Resistance, Switch: r.Element.Switch,
 		},
-		Capacitance: r.Capacitance, On: Interval(r.On.interval()), Charge: r.Charge, ChargePerVolt: r.ChargePerVolt, Return: r.Return,
+		Capacitance: r.Capacitance, On: r.On.interval(), Charge: r.Charge, ChargePerVolt: r.ChargePerVolt, Return: r.Return,
 		RecoverySpec: r.RecoverySpec, RecoveryTau: r.RecoveryTau, Start: r.Start, Lockout: r.Lockout,
 	}
 	for _, iv := range r.Off {

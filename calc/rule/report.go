@@ -255,6 +255,7 @@ func message(r *Rule, f *finding.Finding, unbounded bool) string {
 	}
 	if len(f.Notes) > 0 && (unbounded || f.Value.Value != f.Value.Value) {
 		s.WriteString(": " + f.Notes[0])
+		f.Notes = f.Notes[1:]
 	}
 	s.WriteByte('.')
 	return s.String()

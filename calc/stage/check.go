@@ -234,8 +234,28 @@ func (c *checker) bootstrap(b *Bootstrap) {
 
 func (c *checker) diode(d *Diode) {
 	c.forwardPoints(&d.ForwardPoints)
+	c.seriesResistance(d)
 	c.ordered(&d.AverageCurrentMax, &d.RepetitivePeakCurrentMax)
 	c.ordered(&d.RepetitivePeakCurrentMax, &d.SurgeCurrentMax)
+}
+
+// seriesResistance demands that the drop of the series resistance leaves a junction whose voltage rises: r·(I2 - I1) < V2 - V1, of the
+// typical part and of the most favourable one.
+func (c *checker) seriesResistance(d *Diode) {
+	r := &d.SeriesResistance
+	for i := 1; i < len(d.ForwardPoints.Items); i++ {
+		a, b := &d.ForwardPoints.Items[i-1], &d.ForwardPoints.Items[i]
+		span := b.Current.Typ - a.Current.Typ
+		for _, part := range [...]struct{ r, rise float64 }{
+			{r.Typ, b.Voltage.Typ - a.Voltage.Typ}, {r.Min, b.Voltage.Max - a.Voltage.Min},
+		} {
+			if part.rise > 0 && part.r*span >= part.rise {
+				c.add(r.Field, quantity.Format(part.r, quantity.Resistance)+" where the points allow "+quantity.Format(part.rise/span, quantity.Resistance),
+					"a series resistance that leaves a junction in the forward points")
+				return
+			}
+		}
+	}
 }
 
 // biasRise is how far a capacitance under bias may stand above its value at a lower bias: what the curves of real parts show [1].

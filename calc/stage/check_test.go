@@ -154,6 +154,16 @@ func TestCheck(t *testing.T) {
 		{"a current twice", func(s *Stage) { s.Bootstrap.Diode.ForwardPoints.Items = forward(1, 0.4, 1, 0.9) }, "i", "ascending values, each once"},
 		{"voltage falls", func(s *Stage) { s.Bootstrap.Diode.ForwardPoints.Items = forward(0.01, 0.9, 1, 0.4) }, "v", "rises with current"},
 		{"voltage stands still", func(s *Stage) { s.HighSide.Reverse.ForwardPoints.Items = forward(0.01, 0.9, 1, 0.9) }, "v", "rises with current"},
+		{"series resistance takes the whole slope", func(s *Stage) {
+			s.Bootstrap.Diode.ForwardPoints.Items, s.Bootstrap.Diode.SeriesResistance = forward(0.5, 0.9, 1, 1), typ("rs", quantity.Resistance, 0.2)
+		}, "rs", "200 mΩ where the points allow 200 mΩ"},
+		{"series resistance leaves a junction", func(s *Stage) {
+			s.Bootstrap.Diode.ForwardPoints.Items, s.Bootstrap.Diode.SeriesResistance = forward(0.5, 0.9, 1, 1), typ("rs", quantity.Resistance, 0.19)
+		}, "", ""},
+		{"series resistance of the best part", func(s *Stage) {
+			s.Bootstrap.Diode.ForwardPoints.Items = []ForwardPoint{{exact("i", A, 0.5), value("v", V, 0.8, nan, nan)}, {exact("i", A, 1), value("v", V, nan, nan, 1)}}
+			s.Bootstrap.Diode.SeriesResistance = value("rs", quantity.Resistance, 0.5, nan, 0.6)
+		}, "rs", "500 mΩ where the points allow 400 mΩ"},
 		{"node clamp", func(s *Stage) { s.Layout.NodeClamp.ForwardPoints.Items = forward(0.01, 0.9, 1, 0.8) }, "v", "rises with current"},
 		{"a point without its voltage", func(s *Stage) {
 			s.Bootstrap.Diode.ForwardPoints.Items = []ForwardPoint{{exact("i", A, 1), Absent("v", &Declaration{})}}

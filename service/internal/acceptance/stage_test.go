@@ -132,7 +132,7 @@ func put(t *testing.T, at any, keys []string, text string) {
 
 // drops are the forward points of a diode that drops a fixed voltage [V]: two near-equal points, 0.1 mV to either side.
 func drops(v float64) string {
-	return fmt.Sprintf(`[{"current":"10 mA","voltage":{"min":"%[1]s","typ":"%[1]s","max":"%[1]s"}},{"current":"1 A","voltage":{"min":"%[2]s","typ":"%[2]s","max":"%[2]s"}}]`,
+	return fmt.Sprintf(`[{"current":"1 mA","voltage":{"min":"%[1]s","typ":"%[1]s","max":"%[1]s"}},{"current":"100 A","voltage":{"min":"%[2]s","typ":"%[2]s","max":"%[2]s"}}]`,
 		volts(v-1e-4), volts(v+1e-4))
 }
 

@@ -7,7 +7,6 @@ import (
 	"maps"
 	"os"
 	"path/filepath"
-	"runtime"
 	"slices"
 	"strconv"
 	"strings"
@@ -202,8 +201,8 @@ func set(root any, p path, v any) {
 	}
 }
 
-// bind turns a tree into a request; nil and the faults where it is refused.
-func bind(t testing.TB, tree any) (*calc.Request, []convert.Fault) {
+// bind turns a tree into a request, which must not be refused.
+func bind(t testing.TB, tree any) *calc.Request {
 	t.Helper()
 	raw, err := json.Marshal(tree)
 	if err != nil {
@@ -215,9 +214,9 @@ func bind(t testing.TB, tree any) (*calc.Request, []convert.Fault) {
 	}
 	r, _, faults := binder().ReviewStage(req)
 	if len(faults) > 0 {
-		return nil, faults
+		t.Fatalf("refused: %v", faults)
 	}
-	return &r, nil
+	return &r
 }
 
 var binder = sync.OnceValue(convert.New)
@@ -225,32 +224,12 @@ var binder = sync.OnceValue(convert.New)
 // review reviews a tree; it must not be refused.
 func review(t testing.TB, tree any, parts int) finding.Report {
 	t.Helper()
-	r, faults := bind(t, tree)
-	if r == nil {
-		t.Fatalf("refused: %v", faults)
-	}
-	out, err := calc.Review(context.Background(), *r, parts)
+	out, err := calc.Review(context.Background(), *bind(t, tree), parts)
 	if err != nil {
 		t.Fatal(err)
 	}
 	if out.Internal > 0 {
 		t.Errorf("%d rules panicked", out.Internal)
-	}
-	return out
-}
-
-// key is what findings are matched by.
-type key struct{ rule, role, mode string }
-
-func (k key) String() string { return fmt.Sprintf("%s %s %s", k.rule, k.role, k.mode) }
-
-func keyOf(f *finding.Finding) key { return key{f.Rule, f.Role, f.Mode} }
-
-// byKey sorts the findings of a report.
-func byKey(r *finding.Report) map[key]*finding.Finding {
-	out := make(map[key]*finding.Finding, len(r.Findings))
-	for i := range r.Findings {
-		out[keyOf(&r.Findings[i])] = &r.Findings[i]
 	}
 	return out
 }
@@ -270,59 +249,6 @@ func pick(t testing.TB, r *finding.Report, rule, role string) *finding.Finding {
 	if out == nil {
 		t.Fatalf("no finding of %s %s", rule, role)
 	}
-	return out
-}
-
-// variant is a changed request with the name of the change.
-type variant struct {
-	name string
-	tree any
-}
-
-// reviewed is a variant's report, or nil where the request is refused.
-type reviewed struct {
-	variant
-	report *finding.Report
-}
-
-// reviewAll reviews variants side by side and returns the reports in their order.
-func reviewAll(t *testing.T, variants []variant) []reviewed {
-	t.Helper()
-	out := make([]reviewed, len(variants))
-	var wait sync.WaitGroup
-	next := make(chan int)
-	for range runtime.GOMAXPROCS(0) {
-		wait.Go(func() {
-			for i := range next {
-				out[i].variant = variants[i]
-				raw, err := json.Marshal(variants[i].tree)
-				if err != nil {
-					t.Error(err)
-					continue
-				}
-				req := &pb.ReviewStageRequest{}
-				if err := protojson.Unmarshal(raw, req); err != nil {
-					t.Errorf("%s: %v", variants[i].name, err)
-					continue
-				}
-				r, _, faults := binder().ReviewStage(req)
-				if len(faults) > 0 {
-					continue
-				}
-				rep, err := calc.Review(context.Background(), r, 0)
-				if err != nil || rep.Internal > 0 {
-					t.Errorf("%s: %v, %d rules panicked", variants[i].name, err, rep.Internal)
-					continue
-				}
-				out[i].report = &rep
-			}
-		})
-	}
-	for i := range variants {
-		next <- i
-	}
-	close(next)
-	wait.Wait()
 	return out
 }
 
