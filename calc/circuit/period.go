@@ -63,10 +63,11 @@ func (c *Circuit) ReverseDrop(s *stage.Switch, i float64) float64 {
 	x0, y0 := at(0)
 	drop := y0
 	switch {
-	case i <= x0:
+	case i == x0:
 	case len(points) == 1:
 		c.Assume(stage.Assumption{Field: s.Reverse.ForwardPoints.Field, Assumed: "the drop at the one point given", Direction: stage.Optimistic,
-			Reason: "the current exceeds that of the only point"})
+			Reason: "the current is not that of the only point"})
+	case i < x0:
 	default:
 		k := 1
 		x1, y1 := at(1)

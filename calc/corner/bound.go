@@ -8,6 +8,9 @@ import (
 // Bound tells where in its range an input stands; none where it has no range.
 func (s *Space) Bound(q *stage.Quantity, v float64) finding.Bound {
 	r := s.Range(q)
+	if q.Along > 0 {
+		return finding.NoBound
+	}
 	switch {
 	case !(r.Min < r.Max):
 		return finding.NoBound

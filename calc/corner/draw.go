@@ -36,20 +36,22 @@ func (b Bits) each(f func(i int)) {
 type Trace struct {
 	used        Bits
 	missing     Bits
+	shown       Bits               // points of curves, read through the position of their curve
 	assumptions []stage.Assumption // made while evaluating, beside those of inputs
 	reasons     []string           // why the function cannot be evaluated
 	wants       []string           // paths of missing components and lists
 }
 
 func newTrace(n int) Trace {
-	b := make(Bits, 2*((n+63)/64))
-	k := len(b) / 2
-	return Trace{used: b[:k:k], missing: b[k:]}
+	k := (n + 63) / 64
+	b := make(Bits, 3*k)
+	return Trace{used: b[:k:k], missing: b[k : 2*k : 2*k], shown: b[2*k:]}
 }
 
 func (t *Trace) reset() {
 	clear(t.used)
 	clear(t.missing)
+	clear(t.shown)
 	t.assumptions, t.reasons, t.wants = t.assumptions[:0], t.reasons[:0], t.wants[:0]
 }
 
@@ -57,6 +59,7 @@ func (t *Trace) reset() {
 func (t *Trace) Add(o *Trace) {
 	t.used.or(o.used)
 	t.missing.or(o.missing)
+	t.shown.or(o.shown)
 	for _, a := range o.assumptions {
 		if !slices.Contains(t.assumptions, a) {
 			t.assumptions = append(t.assumptions, a)
@@ -76,7 +79,9 @@ func (t *Trace) Add(o *Trace) {
 
 // clone copies the trace.
 func (t *Trace) clone() *Trace {
-	return &Trace{slices.Clone(t.used), slices.Clone(t.missing), slices.Clone(t.assumptions), slices.Clone(t.reasons), slices.Clone(t.wants)}
+	out := newTrace(64 * len(t.used))
+	out.Add(t)
+	return &out
 }
 
 // copy makes the trace that of another.
@@ -109,8 +114,13 @@ type Draw struct {
 // Need reads an input. Unknown: NaN, and the field is noted as missing.
 func (d *Draw) Need(q *stage.Quantity) float64 {
 	t := d.current()
-	t.used.set(q.ID)
-	v := d.x[q.ID]
+	if q.Along > 0 {
+		t.used.set(q.Along)
+		t.shown.set(q.ID)
+	} else {
+		t.used.set(q.ID)
+	}
+	v := d.Value(q)
 	if v != v {
 		t.missing.set(q.ID)
 	}
@@ -160,5 +170,15 @@ func (d *Draw) current() *Trace {
 	return &d.trace
 }
 
-// Value is the number drawn for an input, without noting it as read.
-func (d *Draw) Value(q *stage.Quantity) float64 { return d.x[q.ID] }
+// Value is the number drawn for an input, without noting it as read. A point of a curve lies where the curve's position says.
+func (d *Draw) Value(q *stage.Quantity) float64 {
+	if q.Along == 0 {
+		return d.x[q.ID]
+	}
+	position := d.x[q.Along]
+	r := d.Space.Range(q)
+	if position >= 0 {
+		return r.Typ + position*(r.Max-r.Typ)
+	}
+	return r.Typ + position*(r.Typ-r.Min)
+}

@@ -23,9 +23,8 @@ type Worst struct {
 	Trace   *Trace  // all that was read anywhere in the search
 	Swings  []Swing // made by Polish, largest first
 
-	ends       []end // where each input stands that was moved from its typical value
-	turning    Bits  // inputs in which the function turns between their ends
-	negligible Bits  // inputs that move the function, but by less than negligibleShare of what all of them do together
+	ends    []end // where each input stands that was moved from its typical value
+	turning Bits  // inputs in which the function turns between their ends
 }
 
 // Swing tells how far one input moves the function, the others standing at the worst draw.
@@ -250,8 +249,15 @@ func (s *Space) sweep(w *Worst, f Function) {
 // Inputs lists what was read, in the order of the stage.
 func (s *Space) Inputs(t *Trace) []*stage.Quantity {
 	var out []*stage.Quantity
-	t.used.each(func(id int) { out = append(out, s.inputs[id]) })
+	s.read(t).each(func(id int) { out = append(out, s.inputs[id]) })
 	return out
+}
+
+// read is all that was read: inputs and points of curves.
+func (s *Space) read(t *Trace) Bits {
+	all := slices.Clone(t.used)
+	all.or(t.shown)
+	return all
 }
 
 // Missing lists the paths of what was missing: inputs in the order of the stage, then components and lists.
@@ -272,7 +278,7 @@ func (t *Trace) Reasons() []string { return t.reasons }
 // Assumptions lists what was assumed among the inputs read and while evaluating.
 func (s *Space) Assumptions(t *Trace) []stage.Assumption {
 	var out []stage.Assumption
-	t.used.each(func(id int) {
+	s.read(t).each(func(id int) {
 		if a := s.inputs[id].Assumption; a != nil {
 			out = append(out, *a)
 		}

@@ -291,5 +291,5 @@ func (c *checker) layout(l *Layout) {
 	c.sum(&l.LowSideInductance, &l.BusLoopInductance, &l.LoopInductance)
 	c.ordered(&l.HighSideCommonSource, &l.BusLoopInductance)
 	c.ordered(&l.LowSideCommonSource, &l.LowSideInductance)
-	c.forwardPoints(&l.NodeClamp.ForwardPoints)
+	c.diode(&l.NodeClamp)
 }

@@ -23,6 +23,7 @@ func (s *Stage) Complete(p *Policy) {
 var (
 	quantityType = reflect.TypeFor[Quantity]()
 	switchType   = reflect.TypeFor[Switch]()
+	pointsType   = reflect.TypeFor[List[OperatingPoint]]() // a list that is no curve
 )
 
 // number walks the stage in the order of its fields.
@@ -48,12 +49,46 @@ func (s *Stage) number(v reflect.Value, d Domain, p *Policy) {
 		if v.Type() == switchType {
 			d = Junction
 		}
+		if c, ok := v.Addr().Interface().(interface{ curve() (*Quantity, string) }); ok && v.Type() != pointsType {
+			s.numberCurve(v, c, d, p)
+			return
+		}
 		for i := range v.NumField() {
 			if f := v.Field(i); f.CanSet() {
 				s.number(f, d, p)
 			}
 		}
 	}
+}
+
+// numberCurve numbers the position of a characteristic and its points, which follow the position.
+func (s *Stage) numberCurve(v reflect.Value, c interface{ curve() (*Quantity, string) }, d Domain, p *Policy) {
+	q, field := c.curve()
+	*q = Absent(field, &Declaration{Dimension: quantity.Ratio, Low: math.Inf(-1), High: math.Inf(1)})
+	q.ID, q.Domain = len(s.inputs), d
+	s.inputs = append(s.inputs, q)
+	first := len(s.inputs)
+	s.number(v.FieldByName("Items"), d, p)
+	q.Triple = Triple{0, 0, 0}
+	for _, point := range s.inputs[first:] {
+		if point.hasSpread() {
+			point.Along = q.ID
+			q.Triple = Triple{-1, 0, 1}
+		}
+	}
+}
+
+// hasSpread tells whether a completed quantity has a range at some temperature.
+func (q *Quantity) hasSpread() bool {
+	if q.Min < q.Max {
+		return true
+	}
+	for _, a := range q.At {
+		if a.Min < a.Max {
+			return true
+		}
+	}
+	return false
 }
 
 func (q *Quantity) complete(p *Policy) {
@@ -115,6 +150,10 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 		return
 	}
 	noMin, noTyp, noMax := math.IsNaN(t.Min), math.IsNaN(t.Typ), math.IsNaN(t.Max)
+	if exact := q.Declare.Spread == SpreadExact; exact && noTyp && noMin != noMax { // exactly as written, whichever end was written
+		t.Typ = firstOf(t.Min, t.Max)
+		noTyp = false
+	}
 	if noTyp {
 		if noMin && !noMax && q.Declare.OneSided {
 			t.Min, noMin = 0, false

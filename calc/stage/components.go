@@ -43,7 +43,14 @@ func (h *Header) Name() string {
 type List[T any] struct {
 	Field string
 	Items []T
+
+	// Position is where a part's characteristic lies between the lower (-1), typical (0) and upper (1) curve: the points of one curve move
+	// together. Made by Complete.
+	Position Quantity
 }
+
+// curve gives the position of a characteristic, its path and number of points.
+func (l *List[T]) curve() (position *Quantity, field string) { return &l.Position, l.Field }
 
 // GateSupply is the supply of the gate drivers.
 type GateSupply struct {

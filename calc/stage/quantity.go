@@ -71,7 +71,7 @@ const (
 	Junction                   // junction temperature of the operating point
 )
 
-// Reference temperature of values given without one [degC].
+// ReferenceTemperature is the temperature of values given without one [degC].
 const ReferenceTemperature = 25
 
 // Triple is the smallest, typical and largest of a value at one temperature; NaN where not given.
@@ -110,6 +110,8 @@ type Quantity struct {
 	// ID numbers the quantity within its stage, from 1 on; 0 before Complete.
 	ID     int
 	Domain Domain
+	// Along is the ID of the position of the curve that the quantity is a point of; 0: it stands alone.
+	Along int
 }
 
 // Absent is an unknown value.

@@ -137,6 +137,8 @@ const (
 	Declaration_NONE Declaration_Absence = 3
 	// The number of the default policy.
 	Declaration_POLICY Declaration_Absence = 4
+	// The value must be there wherever its message is.
+	Declaration_REQUIRED Declaration_Absence = 5
 )
 
 // Enum value maps for Declaration_Absence.
@@ -147,6 +149,7 @@ var (
 		2: "ASSUMED",
 		3: "NONE",
 		4: "POLICY",
+		5: "REQUIRED",
 	}
 	Declaration_Absence_value = map[string]int32{
 		"ABSENCE_UNSPECIFIED": 0,
@@ -154,6 +157,7 @@ var (
 		"ASSUMED":             2,
 		"NONE":                3,
 		"POLICY":              4,
+		"REQUIRED":            5,
 	}
 )
 
@@ -835,9 +839,9 @@ const file_floatrail_v1_value_proto_rawDesc = "" +
 	"\x04_minB\x06\n" +
 	"\x04_typB\x06\n" +
 	"\x04_maxB\t\n" +
-	"\a_source\"\xbf\x01\n" +
-	"\rAtTemperature\x12A\n" +
-	"\vtemperature\x18\x01 \x01(\tB\x1a\xb2\xe1\x18\x16\b\t\x12\b-75 degC\x1a\b300 degCH\x00R\vtemperature\x88\x01\x01\x12\x15\n" +
+	"\a_source\"\xc1\x01\n" +
+	"\rAtTemperature\x12C\n" +
+	"\vtemperature\x18\x01 \x01(\tB\x1c\xb2\xe1\x18\x18\b\t\x12\b-75 degC\x1a\b300 degC \x05H\x00R\vtemperature\x88\x01\x01\x12\x15\n" +
 	"\x03min\x18\x02 \x01(\tH\x01R\x03min\x88\x01\x01\x12\x15\n" +
 	"\x03typ\x18\x03 \x01(\tH\x02R\x03typ\x88\x01\x01\x12\x15\n" +
 	"\x03max\x18\x04 \x01(\tH\x03R\x03max\x88\x01\x01B\x0e\n" +
@@ -855,7 +859,7 @@ const file_floatrail_v1_value_proto_rawDesc = "" +
 	"\x04Span\x12'\n" +
 	"\x03min\x18\x01 \x01(\v2\x15.floatrail.v1.MeasureR\x03min\x12'\n" +
 	"\x03typ\x18\x02 \x01(\v2\x15.floatrail.v1.MeasureR\x03typ\x12'\n" +
-	"\x03max\x18\x03 \x01(\v2\x15.floatrail.v1.MeasureR\x03max\"\xde\v\n" +
+	"\x03max\x18\x03 \x01(\v2\x15.floatrail.v1.MeasureR\x03max\"\xec\v\n" +
 	"\vDeclaration\x12A\n" +
 	"\tdimension\x18\x01 \x01(\x0e2#.floatrail.v1.Declaration.DimensionR\tdimension\x12\x10\n" +
 	"\x03low\x18\x02 \x01(\tR\x03low\x12\x12\n" +
@@ -894,14 +898,15 @@ const file_floatrail_v1_value_proto_rawDesc = "" +
 	"\fCURRENT_SLEW\x10\x10\x12\x16\n" +
 	"\x12THERMAL_RESISTANCE\x10\x11\x12\t\n" +
 	"\x05ANGLE\x10\x12\x12\x1b\n" +
-	"\x17VOLTAGE_PER_TEMPERATURE\x10\x13\"R\n" +
+	"\x17VOLTAGE_PER_TEMPERATURE\x10\x13\"`\n" +
 	"\aAbsence\x12\x17\n" +
 	"\x13ABSENCE_UNSPECIFIED\x10\x00\x12\v\n" +
 	"\aUNKNOWN\x10\x01\x12\v\n" +
 	"\aASSUMED\x10\x02\x12\b\n" +
 	"\x04NONE\x10\x03\x12\n" +
 	"\n" +
-	"\x06POLICY\x10\x04\"H\n" +
+	"\x06POLICY\x10\x04\x12\f\n" +
+	"\bREQUIRED\x10\x05\"H\n" +
 	"\tDirection\x12\x19\n" +
 	"\x15DIRECTION_UNSPECIFIED\x10\x00\x12\x10\n" +
 	"\fCONSERVATIVE\x10\x01\x12\x0e\n" +

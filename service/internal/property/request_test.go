@@ -23,8 +23,6 @@ import (
 
 const stages = "../../../testdata/stages/"
 
-// demos are the stages that every property is tried on.
-var demos = []string{"buck48", "gan650"}
 
 // document reads a demo request as a JSON tree.
 func document(t testing.TB, name string) any {

@@ -8,6 +8,7 @@ import (
 	"runtime"
 	"slices"
 	"sync"
+	"sync/atomic"
 	"testing"
 
 	"google.golang.org/protobuf/encoding/protojson"
@@ -42,19 +43,18 @@ type judged struct {
 	at    map[place]verdict
 }
 
-// judge runs rules on a bound request; a panic fails the test.
-func judge(t testing.TB, r *calc.Request, only func(*rule.Rule) bool) *judged {
+// judge runs rules on a bound request.
+func judge(t testing.TB, r *calc.Request, rules []*rule.Rule) *judged {
 	policy := r.Policy
 	r.Stage.Complete(&policy)
 	out := &judged{bench: rule.NewBench(r.Stage, &policy), at: map[place]verdict{}}
-	for _, rl := range catalog.All() {
-		if only == nil || only(rl) {
-			out.run(t, rl)
-		}
+	for _, rl := range rules {
+		out.run(t, rl)
 	}
 	return out
 }
 
+// run runs one rule; a panic fails the test.
 func (j *judged) run(t testing.TB, rl *rule.Rule) {
 	defer func() {
 		if e := recover(); e != nil {
@@ -82,45 +82,39 @@ func (j *judged) places() []place {
 	})
 }
 
-// variant is a changed request with the name of the change, and the rules that are worth running on it; nil: all.
+// variant is a changed request with the name of the change.
 type variant struct {
 	name string
 	tree any
-	only func(*rule.Rule) bool
 }
 
-// judgeAll judges variants side by side and calls f for each in their order, with nil where the request is refused.
-func judgeAll(t *testing.T, variants []variant, f func(v *variant, j *judged)) (answered int) {
+// eachBench binds variants side by side and calls f with the bench of each; requests that are refused have none. It returns how many have.
+// f may be called from several goroutines at once.
+func eachBench(t *testing.T, variants []variant, f func(v *variant, j *judged)) (answered int) {
 	t.Helper()
-	out := make([]*judged, len(variants))
-	next := make(chan int)
+	var count atomic.Int64
+	next := make(chan *variant)
 	var wait sync.WaitGroup
 	for range runtime.GOMAXPROCS(0) {
 		wait.Go(func() {
-			for i := range next {
-				r, err := request(variants[i].tree)
+			for v := range next {
+				r, err := request(v.tree)
 				if err != nil {
-					t.Errorf("%s: %v", variants[i].name, err)
+					t.Errorf("%s: %v", v.name, err)
 				}
 				if r != nil {
-					out[i] = judge(t, r, variants[i].only)
-					out[i].bench = nil // its memory is not needed any more
+					count.Add(1)
+					f(v, judge(t, r, nil))
 				}
 			}
 		})
 	}
 	for i := range variants {
-		next <- i
+		next <- &variants[i]
 	}
 	close(next)
 	wait.Wait()
-	for i := range variants {
-		if out[i] != nil {
-			answered++
-		}
-		f(&variants[i], out[i])
-	}
-	return answered
+	return int(count.Load())
 }
 
 // request binds a tree; nil without an error where it is refused.
