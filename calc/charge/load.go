@@ -1,6 +1,6 @@
 package charge
 
-import "math"
+import "floatrail/calc/recharge"
 
 // Loads are the standing loads of the floating supply: constant currents, which
 // flow all the time, and the gate pull-down, which loads V_BS only while the
@@ -31,43 +31,20 @@ type Hold struct {
 	Loads       Loads   // loads; PullDown counts for the whole time
 }
 
-// Voltage returns V_BS [V] after time t >= 0 [s], the solution of
-// C·dv/dt = -I_0 - G·v:
+// Voltage returns V_BS [V] after time t >= 0 [s], the solution of C·dv/dt = -I_0 - G·v:
 //
 //	v(t) = (v_0 + I_0/G)·exp(-G·t/C) - I_0/G        G → 0: v_0 - I_0·t/C
 //
-// evaluated as v_0·exp(-x) - I_0·(1 - exp(-x))/G with x = G·t/C, which loses no
-// digits for small G [textbook]. The law is linear and continues below 0 V, where
-// it no longer describes a driver.
+// The law continues below 0 V, where it no longer describes a driver [textbook].
 func (h Hold) Voltage(t float64) float64 {
-	i0, g, c := h.Loads.Total(), h.Loads.PullDown, h.Capacitance
-	x := g * t / c
-	perAmpere := t / c // drop that a constant current of 1 A causes [V/A]
-	if x != 0 {
-		perAmpere = -math.Expm1(-x) / g
-	}
-	return h.Start*math.Exp(-x) - i0*perAmpere
+	return recharge.Hold(h.Start, h.Loads.Total(), h.Loads.PullDown, h.Capacitance, t)
 }
 
-// Time returns the time [s] for which V_BS stays at or above limit [V], the
-// inverse of Voltage:
+// Time returns the time [s] for which V_BS stays at or above limit [V], the inverse of Voltage:
 //
 //	t = (C/G)·ln((v_0 + I_0/G)/(v_limit + I_0/G))    G → 0: C·(v_0 - v_limit)/I_0
 //
-// It is 0 when V_BS starts at or below the limit and +Inf when the loads never
-// bring it there.
+// It is 0 when V_BS starts at or below the limit and +Inf when the loads never bring it there.
 func (h Hold) Time(limit float64) float64 {
-	i0, g, c := h.Loads.Total(), h.Loads.PullDown, h.Capacitance
-	drop := h.Start - limit
-	if drop <= 0 {
-		return 0
-	}
-	atLimit := i0 + g*limit // current still drawn when V_BS reaches the limit
-	if atLimit <= 0 {
-		return math.Inf(1)
-	}
-	if x := g * drop / atLimit; x != 0 {
-		return c / g * math.Log1p(x)
-	}
-	return c * drop / atLimit
+	return recharge.HoldTime(h.Start, h.Loads.Total(), h.Loads.PullDown, h.Capacitance, limit)
 }
