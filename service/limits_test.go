@@ -120,6 +120,23 @@ func TestDeadlines(t *testing.T) {
 	if _, err := r.client.SizeSupply(ctx, parse(t, small, new(pb.SizeSupplyRequest))); status.Code(err) != codes.DeadlineExceeded || time.Since(began) > 120*time.Millisecond {
 		t.Errorf("%v after %v", err, time.Since(began))
 	}
+	for timeout, want := range map[string]int{"20m": http.StatusGatewayTimeout, "soon": http.StatusBadRequest} {
+		q, err := http.NewRequest(http.MethodPost, r.http+"/v1/sizing", strings.NewReader(small))
+		if err != nil {
+			t.Fatal(err)
+		}
+		q.Header.Set("Content-Type", "application/json")
+		q.Header.Set("Grpc-Timeout", timeout)
+		began = time.Now()
+		a, err := http.DefaultClient.Do(q)
+		if err != nil {
+			t.Fatal(err)
+		}
+		_ = a.Body.Close()
+		if a.StatusCode != want || time.Since(began) > 120*time.Millisecond {
+			t.Errorf("Grpc-Timeout %s: %d after %v", timeout, a.StatusCode, time.Since(began))
+		}
+	}
 	within(t, time.Second, "the lane is empty", func() bool { return r.metric("floatrail_lane_running") == 0 })
 }
 

@@ -77,6 +77,9 @@ func TestMetricsCountAndTellNoNames(t *testing.T) {
 			t.Errorf("the log tells %s:\n%s", secret, r.log)
 		}
 	}
+	if !strings.Contains(r.log.String(), `"msg":"refused","route":"none","status":404`) {
+		t.Errorf("log:\n%s", r.log)
+	}
 	if !strings.Contains(r.log.String(), `"msg":"call","method":"ReviewStage","transport":"rest","code":"OK","duration_ms":`) {
 		t.Errorf("log:\n%s", r.log)
 	}

@@ -72,7 +72,7 @@ func newServer(c config.Config, log *slog.Logger, provide func(rpc.Options) pb.F
 	if s.conn, err = gateway.Dial(s.inside); err != nil {
 		return s, err
 	}
-	api, err := gateway.New(s.conn, gateway.Options{Limits: limits, Metrics: metrics})
+	api, err := gateway.New(s.conn, gateway.Options{Limits: limits, Metrics: metrics, Log: log})
 	if err != nil {
 		return s, err
 	}

@@ -5,13 +5,14 @@ import "strings"
 // Kind is the family of a dielectric. The zero value is no kind.
 type Kind int
 
+// Kinds of dielectric.
 const (
-	Unspecified Kind = iota
-	ClassOne         // temperature-compensating ceramic
-	ClassTwo         // high-permittivity ceramic
-	Film             // plastic film
-	Aluminium        // aluminium electrolytic
-	Tantalum         // solid tantalum
+	Unspecified Kind = iota // no kind
+	ClassOne                // temperature-compensating ceramic
+	ClassTwo                // high-permittivity ceramic
+	Film                    // plastic film
+	Aluminium               // aluminium electrolytic
+	Tantalum                // solid tantalum
 )
 
 // String returns the name of the kind.

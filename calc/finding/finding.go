@@ -216,7 +216,7 @@ type DerivedLimit struct {
 	Reason  string
 }
 
-// Collapse: no positive steady state.
+// Collapse tells that there is no positive steady state, and how fast lockout is reached.
 type Collapse struct {
 	Periods int
 	Corner  Corner

@@ -61,11 +61,7 @@ func (p Period) SteadyState() Steady {
 		if ratio := tr.carried / tr.drawn; tr.drawn > 0 && (ratio > 2 || ratio > 0 && ratio < 0.5) {
 			step = math.Log(ratio) * tr.carried / (-here.slope * p.Capacitance)
 		}
-		settled := math.Abs(p.Capacitance*here.rise) <= 1e-10*tr.drawn && math.Abs(step) <= 1e-10
-		// at the last digit of v; with slope 1 nothing is drawn and nothing carried, and any such v stays
-		grain := math.Abs(here.rise) <= 4e-15*math.Max(v, 1e-3) &&
-			(math.Abs(step) <= 1e-9 || high-low <= 1e-9 || here.slope > -1e-13)
-		if v > 0 && (settled || grain) {
+		if v > 0 && p.atRoot(here, step, tr.drawn, high-low) {
 			return p.steady(&w, v, &tr, n)
 		}
 		if here.rise > 0 {
@@ -95,6 +91,15 @@ func (p Period) SteadyState() Steady {
 		before, v = here, to
 	}
 	return p.nothing(mostIterations, false)
+}
+
+// atRoot tells whether the iteration may end at a node: the charge of the period balances and the next step [V] is nothing, or the rise is at
+// the last digit of v, in a bracket of a width [V]. With slope 1 nothing is drawn and nothing carried, and any such v stays.
+func (p *Period) atRoot(here node, step, drawn, width float64) bool {
+	if math.Abs(p.Capacitance*here.rise) <= 1e-10*drawn && math.Abs(step) <= 1e-10 {
+		return true
+	}
+	return math.Abs(here.rise) <= 4e-15*math.Max(here.v, 1e-3) && (math.Abs(step) <= 1e-9 || width <= 1e-9 || here.slope > -1e-13)
 }
 
 // node is Map(v) - v and its derivative at v.

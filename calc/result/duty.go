@@ -108,7 +108,7 @@ func fixedLimits(p *rule.Point) []finding.DerivedLimit {
 		if name == finding.LargestDeadTime {
 			draws = both
 		}
-		out = append(out, bindingLimit(p, name, draws))
+		out = append(out, bindingLimit(name, draws))
 	}
 	return out
 }
@@ -129,7 +129,7 @@ func dimensionOf(name string) quantity.Dimension {
 	return quantity.Time
 }
 
-func bindingLimit(p *rule.Point, name string, draws []corner.Worst) finding.DerivedLimit {
+func bindingLimit(name string, draws []corner.Worst) finding.DerivedLimit {
 	out := finding.DerivedLimit{Name: name, Measure: finding.Measure{Value: math.NaN(), Dimension: dimensionOf(name)}}
 	for i := range draws {
 		if w := &draws[i]; w.Value != w.Value {

@@ -327,12 +327,7 @@ func TestDiodeOverTemperature(t *testing.T) {
 	c := serve(t)
 	at := func(temperature string) (leakage float64, high *pb.Span) {
 		body := request(t, switching("10 kHz", "50 %", "0 s"), edits{"bootstrap.diode.reverseLeakage": "1 nA", "operatingPoints.0.ambientTemperature": temperature})
-		for _, item := range c.size(body).GetBudget() {
-			if item.GetName() == "diode leakage" {
-				leakage = item.GetCharge().GetMax().GetValue()
-			}
-		}
-		return leakage, c.duty(body).GetFloatingVoltageHigh()
+		return item(t, c.size(body), "diode leakage").GetMax().GetValue(), c.duty(body).GetFloatingVoltageHigh()
 	}
 	cold, warm := at("25 degC")
 	hot, hotter := at("125 degC")
@@ -382,11 +377,20 @@ func TestPublishedCapacitorLeakage(t *testing.T) {
 		vdd                     float64 // [V]
 		leakage                 float64 // [A]
 	}{{"X7R", "1 uF", 25, 50e-9}, {"X7R", "0.1 uF", 25, 5e-9}, {"ALUMINIUM", "100 uF", 10, 10e-6}, {"ALUMINIUM", "10 uF", 25, 3e-6}} {
-		for _, item := range c.size(request(t, supply(z.vdd), capacitance(z.capacitance), switching("1 kHz", "50 %", "0 s"), edits{
-			"bootstrap.capacitor.leakage": "", "bootstrap.capacitor.dielectric": `"` + z.dielectric + `"`})).GetBudget() {
-			if item.GetName() == "capacitor leakage" {
-				near(t, z.dielectric+" "+z.capacitance, item.GetCharge().GetMax(), z.leakage*1e-3, 1e-6*z.leakage*1e-3)
-			}
+		s := c.size(request(t, supply(z.vdd), capacitance(z.capacitance), switching("1 kHz", "50 %", "0 s"), edits{
+			"bootstrap.capacitor.leakage": "", "bootstrap.capacitor.dielectric": `"` + z.dielectric + `"`}))
+		near(t, z.dielectric+" "+z.capacitance, item(t, s, "capacitor leakage").GetMax(), z.leakage*1e-3, 1e-6*z.leakage*1e-3)
+	}
+}
+
+// item is the charge of one line of the budget.
+func item(t *testing.T, s *pb.SizingResult, name string) *pb.Span {
+	t.Helper()
+	for _, i := range s.GetBudget() {
+		if i.GetName() == name {
+			return i.GetCharge()
 		}
 	}
+	t.Fatalf("no %q in the budget", name)
+	return nil
 }

@@ -163,5 +163,5 @@ func TestPartsAreUsedAndOverridden(t *testing.T) {
 	refused(t, c, "/v1/reviews", edit(t, base, edits{"/parts.1.id": `"sw"`, "bootstrap.capacitor.use": `"sw"`}),
 		at("parts[1].id", `read "sw"`, "parts[0] has it already"), at("stage.bootstrap.capacitor.use", "id of a capacitor", "it is a switch"))
 	refused(t, c, "/v1/reviews", edit(t, base, edits{"/parts.0.switch.gateCharge.max": `"63"`}), at("parts[0].switch.gateCharge.max", "unit is missing"))
-	refused(t, c, "/v1/reviews", edit(t, base, edits{"highSide.gateSourceCharge": "90 nC"}), at("stage.highSide.gateCharge", "above gateCharge"))
+	refused(t, c, "/v1/reviews", edit(t, base, edits{"highSide.gateSourceCharge": "60 nC"}), at("stage.highSide.gateCharge", "above gateCharge"))
 }

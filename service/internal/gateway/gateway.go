@@ -9,6 +9,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"log/slog"
 	"net/http"
 	"strconv"
 	"strings"
@@ -30,6 +31,7 @@ import (
 type Options struct {
 	Limits  guard.Limits
 	Metrics *telemetry.Metrics
+	Log     *slog.Logger
 }
 
 // New returns the REST interface in front of the gRPC server at the other end of the connection, which Dial made.
@@ -61,11 +63,16 @@ type gateway struct {
 	decoder *wire.Decoder
 }
 
-// serve answers one request and counts its response.
+// serve answers one request and counts its response. A request that reaches a method is logged there; one that does not is logged here.
 func (g *gateway) serve(w http.ResponseWriter, r *http.Request) {
 	route, methods := match(g.routes, r.URL.Path)
-	out := &response{ResponseWriter: w, metrics: g.Metrics, route: route}
-	defer out.count()
+	out := &response{ResponseWriter: w}
+	defer func() {
+		g.Metrics.Response(route, strconv.Itoa(out.code()))
+		if out.code() >= http.StatusBadRequest && out.Header().Get(telemetry.RequestID) == "" {
+			g.Log.LogAttrs(r.Context(), slog.LevelInfo, "refused", slog.String("route", route), slog.Int("status", out.code()))
+		}
+	}()
 	h := out.Header()
 	h.Set("X-Content-Type-Options", "nosniff")
 	h.Set("Cache-Control", "no-store")

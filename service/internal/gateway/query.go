@@ -9,7 +9,6 @@ import (
 
 	"google.golang.org/protobuf/reflect/protoreflect"
 
-	"floatrail/service/internal/telemetry"
 	"floatrail/service/internal/wire"
 )
 
@@ -60,38 +59,4 @@ func unknownParameter(name string, names []string) string {
 		text += "; the nearest is " + near
 	}
 	return text
-}
-
-// response counts the status of a response.
-type response struct {
-	http.ResponseWriter
-	metrics *telemetry.Metrics
-	route   string
-	status  int
-}
-
-// WriteHeader notes the status.
-func (r *response) WriteHeader(status int) {
-	if r.status == 0 {
-		r.status = status
-	}
-	r.ResponseWriter.WriteHeader(status)
-}
-
-// Write writes a part of the body.
-func (r *response) Write(data []byte) (int, error) {
-	if r.status == 0 {
-		r.status = http.StatusOK
-	}
-	return r.ResponseWriter.Write(data)
-}
-
-// Unwrap gives access to the controls of the response below.
-func (r *response) Unwrap() http.ResponseWriter { return r.ResponseWriter }
-
-func (r *response) count() {
-	if r.status == 0 {
-		r.status = http.StatusOK
-	}
-	r.metrics.Response(r.route, strconv.Itoa(r.status))
 }

@@ -93,11 +93,7 @@ func TestDeletionNeverPasses(t *testing.T) {
 // mayPass tells whether a rule might pass, or not apply, anywhere where it did not before. The search without polishing never finds worse
 // than the rule itself does, so that what does not hold there cannot pass. It counts the places that became open.
 func mayPass(b *rule.Bench, rl *rule.Rule, base *judged) (suspect bool, opened int) {
-	roles := rl.Roles
-	if len(roles) == 0 {
-		roles = []string{""}
-	}
-	for _, role := range roles {
+	for _, role := range rolesOf(rl) {
 		for i := range b.Points {
 			p := &b.Points[i]
 			was := base.at[place{rl.ID, role, p.Name()}].outcome

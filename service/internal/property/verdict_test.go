@@ -155,11 +155,7 @@ func readers(j *judged) map[string]map[string]bool {
 
 // eachSearch calls f for every space in which a rule is searched.
 func eachSearch(b *rule.Bench, rl *rule.Rule, f func(p *rule.Point, s *corner.Space, role string)) {
-	roles := rl.Roles
-	if len(roles) == 0 {
-		roles = []string{""}
-	}
-	for _, role := range roles {
+	for _, role := range rolesOf(rl) {
 		for i := range b.Points {
 			p := &b.Points[i]
 			if rl.Inapplicable(b.Stage, p.Operating, role) != "" {
@@ -170,6 +166,14 @@ func eachSearch(b *rule.Bench, rl *rule.Rule, f func(p *rule.Point, s *corner.Sp
 			}
 		}
 	}
+}
+
+// rolesOf are the roles in which a rule judges; one without a name where it has none.
+func rolesOf(rl *rule.Rule) []string {
+	if len(rl.Roles) == 0 {
+		return []string{""}
+	}
+	return rl.Roles
 }
 
 // noise is how far two numbers of six significant digits may differ by rounding alone.

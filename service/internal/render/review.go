@@ -158,7 +158,7 @@ func (r *run) file(ctx context.Context, file string) bool {
 		return true
 	}
 	for _, item := range r.items(file, data) {
-		answer, err := r.reviewer.ReviewStage(wire.WithReport(ctx, item.report), r.request(item.request))
+		answer, err := r.answer(wire.WithReport(ctx, item.report), r.request(item.request))
 		switch status.Code(err) {
 		case codes.OK:
 			r.answered(file, answer)
@@ -173,6 +173,16 @@ func (r *run) file(ctx context.Context, file string) bool {
 		}
 	}
 	return true
+}
+
+// answer asks the reviewer; a panic is an error of this stage alone.
+func (r *run) answer(ctx context.Context, q *pb.ReviewStageRequest) (a *pb.ReviewStageResponse, err error) {
+	defer func() {
+		if p := recover(); p != nil {
+			err = status.Errorf(codes.Internal, "internal error: %v", p)
+		}
+	}()
+	return r.reviewer.ReviewStage(ctx, q)
 }
 
 // request applies the flags.

@@ -34,6 +34,8 @@ func (s *scripted) ReviewStage(ctx context.Context, q *pb.ReviewStageRequest) (*
 		a.Verdict = pb.Verdict_FAIL
 	case "incomplete":
 		a.Verdict = pb.Verdict_INCOMPLETE
+	case "panic":
+		panic("broken")
 	default:
 		return nil, errors.New("broken")
 	}
@@ -74,6 +76,7 @@ func TestExitStatus(t *testing.T) {
 		{ExitIncomplete, []string{incomplete, pass}},
 		{ExitFault, []string{fail, `{`}},
 		{ExitInternal, []string{`{"id":"?"}`, `{`, fail}},
+		{ExitInternal, []string{`{"id":"panic"}`, pass}},
 		{ExitFail, []string{`{"stages":[{"id":"pass"},{"id":"fail"}]}`}},
 		{ExitFault, []string{`{"stages":[{"id":"pass"},{"id":"pass"}]}`}},
 		{ExitFault, []string{`{"stages":[]}`}},
