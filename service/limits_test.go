@@ -108,7 +108,7 @@ func TestDeadlines(t *testing.T) {
 	g, handlers := newGated()
 	defer close(g.release)
 	c := settings()
-	c.Deadline = 150 * time.Millisecond
+	c.Deadline = slowdown * 150 * time.Millisecond
 	r := start(t, c, handlers)
 	answer, data := r.post("/v1/sizing", small)
 	if answer.StatusCode != http.StatusGatewayTimeout {
@@ -117,7 +117,7 @@ func TestDeadlines(t *testing.T) {
 	ctx, cancel := context.WithTimeout(context.Background(), 20*time.Millisecond)
 	defer cancel()
 	began := time.Now()
-	if _, err := r.client.SizeSupply(ctx, parse(t, small, new(pb.SizeSupplyRequest))); status.Code(err) != codes.DeadlineExceeded || time.Since(began) > 120*time.Millisecond {
+	if _, err := r.client.SizeSupply(ctx, parse(t, small, new(pb.SizeSupplyRequest))); status.Code(err) != codes.DeadlineExceeded || time.Since(began) > slowdown*120*time.Millisecond {
 		t.Errorf("%v after %v", err, time.Since(began))
 	}
 	for timeout, want := range map[string]int{"20m": http.StatusGatewayTimeout, "soon": http.StatusBadRequest} {
@@ -133,7 +133,7 @@ func TestDeadlines(t *testing.T) {
 			t.Fatal(err)
 		}
 		_ = a.Body.Close()
-		if a.StatusCode != want || time.Since(began) > 120*time.Millisecond {
+		if a.StatusCode != want || time.Since(began) > slowdown*120*time.Millisecond {
 			t.Errorf("Grpc-Timeout %s: %d after %v", timeout, a.StatusCode, time.Since(began))
 		}
 	}
@@ -167,9 +167,26 @@ func wide(t testing.TB) string {
 	return string(text)
 }
 
-// A client that leaves stops the computation, on both transports.
+// timed tells when ReviewStage begins and ends.
+type timed struct {
+	pb.FloatRailServer
+	began chan struct{}
+	ended chan time.Time
+}
+
+func (h *timed) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.ReviewStageResponse, error) {
+	h.began <- struct{}{}
+	defer func() { h.ended <- time.Now() }()
+	return h.FloatRailServer.ReviewStage(ctx, r)
+}
+
+// A client that leaves stops the computation within 100 ms, on both transports.
 func TestCancelStopsTheComputation(t *testing.T) {
-	r := start(t, settings(), realHandlers)
+	h := &timed{began: make(chan struct{}, 1), ended: make(chan time.Time, 1)}
+	r := start(t, settings(), func(o rpc.Options) pb.FloatRailServer {
+		h.FloatRailServer = rpc.New(o)
+		return h
+	})
 	body := wide(t)
 	request := parse(t, body, new(pb.ReviewStageRequest))
 	calls := map[string]func(context.Context) error{
@@ -196,23 +213,22 @@ func TestCancelStopsTheComputation(t *testing.T) {
 			ctx, cancel := context.WithCancel(context.Background())
 			done := make(chan error, 1)
 			go func() { done <- call(ctx) }()
-			within(t, 10*time.Second, "it runs", func() bool { return r.metric("floatrail_lane_running") == 1 })
-			time.Sleep(50 * time.Millisecond)
-			began := time.Now()
+			<-h.began
+			time.Sleep(slowdown * 50 * time.Millisecond)
+			left := time.Now()
 			cancel()
 			if err := <-done; err == nil {
 				t.Fatal("the stage is too small for this test: it was answered")
 			}
-			within(t, 10*time.Second, "it stops", func() bool { return r.metric("floatrail_lane_running") == 0 })
-			took = append(took, time.Since(began))
+			took = append(took, (<-h.ended).Sub(left))
 		}
 		slices.Sort(took)
 		t.Logf("%s: stopped after %v", transport, took)
-		if took[2] > 100*time.Millisecond {
+		if took[len(took)/2] > slowdown*100*time.Millisecond {
 			t.Errorf("%s: the computation went on for %v", transport, took)
 		}
 	}
-	within(t, time.Second, "the cancelled calls are counted", func() bool {
+	within(t, 5*time.Second, "the cancelled calls are counted", func() bool {
 		return r.metric("floatrail_requests_total", `method="ReviewStage"`, `code="Canceled"`) == 10
 	})
 }

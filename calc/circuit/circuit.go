@@ -71,7 +71,7 @@ func (c *Circuit) series(r *stage.Resistor) float64 {
 // Element is the recharge branch at the temperature of the set. Resistances: R_B, what the element itself has, R_VS, and the supply's own
 // where no reservoir stands behind it.
 func (c *Circuit) Element() recharge.Element {
-	return *corner.Memo(c.Draw, slotElement, false, &c.elementAt, c.element)
+	return *corner.Memo(c.Draw, slotElement, true, &c.elementAt, c.element)
 }
 
 func (c *Circuit) element() recharge.Element {

@@ -157,10 +157,11 @@ func (c *Circuit) gateLine(bias charge.OffBias) (atZero, perVolt float64) {
 	}
 	drive := bias.Drive(c.Supply())
 	slope, _ := g.Slope(drive)
-	if slope*g.SpecifiedAt > g.Specified { // the line would be negative at 0 V: take the charge at the drive itself
-		return g.At(drive), 0
+	atZero = g.Specified + slope*(bias.Drive(0)-g.SpecifiedAt)
+	if atZero < 0 { // no charge is negative at 0 V: the chord from there, which lies above the line up to the supply
+		return 0, g.At(drive) / c.Supply()
 	}
-	return g.Specified + slope*(bias.Drive(0)-g.SpecifiedAt), slope
+	return atZero, slope
 }
 
 // EdgeCharges are the charges of the rising edge at a floating voltage after it [V] and a recovery charge [C].

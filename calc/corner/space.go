@@ -108,16 +108,25 @@ func (s *Space) With(d *Draw, changes ...Change) *Draw {
 	return s.at(x)
 }
 
+// Try runs f at a draw that differs from another in some inputs. The draw is used again afterwards: f must not keep it.
+func (s *Space) Try(d *Draw, f func(*Draw), changes ...Change) {
+	n := s.take(d, changes...)
+	defer s.give(n)
+	f(n)
+}
+
 // take is With for a draw that the space may use again after give.
-func (s *Space) take(d *Draw, c Change) *Draw {
+func (s *Space) take(d *Draw, changes ...Change) *Draw {
 	n := len(s.spare)
 	if n == 0 {
-		return s.With(d, c)
+		return s.With(d, changes...)
 	}
 	out := s.spare[n-1]
 	s.spare = s.spare[:n-1]
 	copy(out.x, d.x)
-	out.x[c.ID] = c.Value
+	for _, c := range changes {
+		out.x[c.ID] = c.Value
+	}
 	for i := range out.memo {
 		out.memo[i].valid = false
 	}

@@ -66,6 +66,12 @@ func (s search) limit(c *circuit.Circuit, v float64) float64 {
 	return s.finish(c, v)
 }
 
+// at is the condition with the input moved.
+func (s *search) at(c *circuit.Circuit, v float64) (out float64) {
+	c.Space.Try(c.Draw, func(d *corner.Draw) { out = s.holds(circuit.Of(d)) }, corner.Change{ID: s.input.ID, Value: v})
+	return out
+}
+
 func plan(c *circuit.Circuit, name string) search {
 	op := c.Point
 	f := c.Value(&op.SwitchingFrequency)
@@ -100,9 +106,7 @@ func plan(c *circuit.Circuit, name string) search {
 func Limit(c *circuit.Circuit, name string) Result {
 	s := plan(c, name)
 	here := c.Value(s.input)
-	at := func(v float64) float64 {
-		return s.holds(circuit.Of(c.Space.With(c.Draw, corner.Change{ID: s.input.ID, Value: v})))
-	}
+	at := func(v float64) float64 { return s.at(c, v) }
 	now := s.holds(c)
 	if now != now || here != here {
 		return Result{Value: math.NaN(), Input: math.NaN()}
@@ -123,7 +127,7 @@ func Limit(c *circuit.Circuit, name string) Result {
 // Holds tells whether the limit's condition holds at another draw with the input of a result found elsewhere.
 func Holds(c *circuit.Circuit, name string, input float64) bool {
 	s := plan(c, name)
-	return s.holds(circuit.Of(c.Space.With(c.Draw, corner.Change{ID: s.input.ID, Value: input}))) >= 0
+	return s.at(c, input) >= 0
 }
 
 // turn finds where a function that is not negative at good becomes negative toward bad, to 1e-7 of the value, on the good side. The search

@@ -141,13 +141,18 @@ func (t *trial) scaled(q *stage.Quantity, v float64) corner.Replacement {
 func (t *trial) holds(c, r float64) bool {
 	for i := range t.judges {
 		j := &t.judges[i]
-		d := j.draw.Space.With(j.draw, t.moved(j.draw, t.c, c), t.moved(j.draw, t.r, r))
-		if !j.rule.Holds(circuit.Of(d), j.role) {
+		if !t.agrees(j, c, r) {
 			t.judges[0], t.judges[i] = t.judges[i], t.judges[0] // who refused is asked first the next time
 			return false
 		}
 	}
 	return true
+}
+
+// agrees tells whether one judge's guard holds with given parts.
+func (t *trial) agrees(j *judge, c, r float64) (ok bool) {
+	j.draw.Space.Try(j.draw, func(d *corner.Draw) { ok = j.rule.Holds(circuit.Of(d), j.role) }, t.moved(j.draw, t.c, c), t.moved(j.draw, t.r, r))
+	return ok
 }
 
 // moved keeps an input's distance from its nominal value.
@@ -279,8 +284,7 @@ func (t *trial) possible(c float64) bool {
 		if j.rule.ID != "charge/droop" {
 			continue
 		}
-		d := j.draw.Space.With(j.draw, t.moved(j.draw, t.c, c), t.moved(j.draw, t.r, resistances[0]))
-		if !j.rule.Holds(circuit.Of(d), j.role) {
+		if !t.agrees(j, c, resistances[0]) {
 			return false
 		}
 	}

@@ -15,7 +15,7 @@ import (
 const (
 	mostRanked     = 8    // inputs in a ranking
 	mostBreakEvens = 4    // inputs for which the break-even is sought
-	passBreakEvens = 2    // the same where the rule passes
+	passBreakEvens = 1    // the same where the rule passes
 	leastSwing     = 0.01 // of the largest swing; below it an input is not ranked
 )
 

@@ -55,7 +55,8 @@ func TestDiag(t *testing.T) {
 				if is.margin-B > 1e-6*scale {
 					t.Logf("%s %s bind=%v reported %.6g | sets-unpolished %.6g | search+polish %.6g %s | multistart %.6g %s | %s", s.name, p, is.binding, is.margin, R, A, setA, B, setB, is.text)
 					if A-B > 1e-6*scale && dA!=nil {
-						for _, q := range j.bench.Stage.Inputs()[1:] { if dA.Value(q) != dB.Value(q) { r := dB.Space.Range(q); t.Logf("      %s polish %.6g multi %.6g range %.6g..%.6g..%.6g", q.Field, dA.Value(q), dB.Value(q), r.Min,r.Typ,r.Max) } }
+						_,ta := corner.Evaluate(dA,f); read := map[string]bool{}; for _,q := range dA.Space.Inputs(ta) { read[q.Field]=true }; _,tb := corner.Evaluate(dB,f); for _,q := range dB.Space.Inputs(tb) { read[q.Field]=true }
+for _, q := range j.bench.Stage.Inputs()[1:] { a,b := dA.Value(q), dB.Value(q); if read[q.Field] && a != b && a==a { r := dB.Space.Range(q); t.Logf("      %s polish %.6g multi %.6g range %.6g..%.6g..%.6g", q.Field, a, b, r.Min,r.Typ,r.Max) } }
 					}
 				}
 			}
