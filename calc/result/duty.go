@@ -86,7 +86,9 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 			out.HighInterval = q.Names[c.Steady().HighInterval]
 		}
 	}
-	out.Limits = fixedLimits(p)
+	if !b.Stopped() {
+		out.Limits = fixedLimits(p)
+	}
 	return out
 }
 

@@ -16,6 +16,7 @@ import (
 func Sizing(b *rule.Bench, trial *stage.Stage, p *stage.Policy) *finding.Sizing {
 	out := &finding.Sizing{}
 	t := newTrial(trial, p)
+	t.bench.Interrupted = b.Interrupted
 	budget(t.bench, out)
 	t.recommend(out)
 	for _, a := range t.bench.Assumptions() {

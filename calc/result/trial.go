@@ -107,6 +107,9 @@ func (t *trial) prepare(c, r float64) {
 func (t *trial) enlist(rl *rule.Rule, role string, c, r float64) string {
 	for i := range t.bench.Points {
 		p := &t.bench.Points[i]
+		if t.bench.Stopped() {
+			return "the caller no longer waits"
+		}
 		if rl.Inapplicable(t.stage, p.Operating, role) != "" {
 			continue
 		}
@@ -139,6 +142,9 @@ func (t *trial) scaled(q *stage.Quantity, v float64) corner.Replacement {
 
 // holds tells whether every guard holds with given parts, each judge standing at the corner it was found at.
 func (t *trial) holds(c, r float64) bool {
+	if t.bench.Stopped() {
+		return false
+	}
 	for i := range t.judges {
 		j := &t.judges[i]
 		if !t.agrees(j, c, r) {

@@ -62,6 +62,9 @@ func NewBench(s *stage.Stage, p *stage.Policy) *Bench {
 	return b
 }
 
+// Stopped tells whether the caller no longer waits; what is returned from then on is not used.
+func (b *Bench) Stopped() bool { return b.Interrupted != nil && b.Interrupted() }
+
 // Run gives the findings of one rule: one for each role and kind of mode.
 func (b *Bench) Run(r *Rule) []finding.Finding {
 	roles := r.Roles
@@ -196,7 +199,7 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 	}
 	f := r.function(role)
 	first := true
-	if b.Interrupted != nil && b.Interrupted() {
+	if b.Stopped() {
 		res.outcome = finding.Open
 		return res
 	}

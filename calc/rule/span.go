@@ -27,6 +27,9 @@ type Range struct {
 // be evaluated the number is unset, with what was missing.
 func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 	out := Range{Span: finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}}
+	if b.Stopped() {
+		return out
+	}
 	fn := corner.Function(func(d *corner.Draw) float64 { return f(circuit.Of(d)) })
 	lows, highs := corner.SearchSets(p.Spaces, fn), corner.SearchSets(p.Spaces, fn.Negative())
 	for i, s := range p.Spaces {
