@@ -1,6 +1,7 @@
 package catalog
 
 import (
+	"math"
 	"slices"
 
 	"floatrail/calc/circuit"
@@ -12,7 +13,7 @@ import (
 var chargeCapacitance = &rule.Rule{
 	ID: "charge/capacitance", Title: "Bootstrap capacitance", Since: first,
 	Equation: "C_min = Q_B/ΔV, ΔV = V_DD - V_F - V_LS - I·R - V_required at the mean recharge current, or the permitted ripple where smaller",
-	Limit:    "C_min", Guard: "10 % above the limit", Applies: "every operating point",
+	Limit:    "C_min to the required voltage", Guard: "10 % above the limit, or C_min to the required voltage with margin where larger", Applies: "every operating point",
 	Needs: []string{"bootstrap.capacitor", "gateSupply.voltage", "driver.uvloFalling", "highSide.driveVoltageMin", "highSide.gateCharge",
 		"driver.levelShiftCharge", "bootstrap.diode", "bootstrap.resistor"},
 	Sources: []string{"an6076", "ir2114", "slus486b"},
@@ -23,12 +24,12 @@ var chargeCapacitance = &rule.Rule{
 		if c.Point == nil {
 			return rule.Check{Value: c.Want("stage.operatingPoints"), Limit: nan, Guard: nan}
 		}
-		limit := c.MinimumCapacitance()
-		return rule.Check{Value: c.Capacitance(), Limit: limit, Guard: above(c, limit)}
+		limit := c.MinimumCapacitance(c.Required())
+		return rule.Check{Value: c.Capacitance(), Limit: limit, Guard: math.Max(above(c, limit), c.MinimumCapacitance(c.Kept()))}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		out := slices.Concat(collapseNote(c), cancelNote(c))
-		if drop := c.Drop(); drop <= 0 {
+		if drop := c.Drop(c.Required()); drop <= 0 {
 			out = append(out, "no capacitance suffices: recharge leaves nothing above the required voltage (budget "+
 				quantity.Format(drop, quantity.Voltage)+")")
 		}

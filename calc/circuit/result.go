@@ -83,30 +83,43 @@ func (c *Circuit) budget() []charge.Item {
 	return charge.AppendItems(c.budgetAt[:0], c.Loads(), c.EdgeCharges(v, rec), charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
 }
 
-// Drop is the voltage budget of C_B: what recharge leaves above the required voltage with margin, or the permitted ripple where that is
+// Drop is the voltage budget of C_B: what recharge leaves above a voltage that V_BS must keep, or the permitted ripple where that is
 // smaller [V].
-func (c *Circuit) Drop() float64 {
-	req := c.Required()
-	req += c.Margin(req)
+func (c *Circuit) Drop(keep float64) float64 {
 	if c.Point.HeldOn != nil {
-		return c.Need(&c.Point.HeldOn.InitialVoltage) - req
+		return c.Need(&c.Point.HeldOn.InitialVoltage) - keep
 	}
-	left := c.recharged(charge.Consumed(c.Budget())) - req
+	left := c.recharged(charge.Consumed(c.Budget())) - keep
 	return charge.AllowedDrop(left, c.Policy.RippleRatio*c.Settled())
 }
 
-// CycleCharge is what C_B delivers between two recharges [C].
+// Kept is Required with the policy's margin [V].
+func (c *Circuit) Kept() float64 {
+	v := c.Required()
+	return v + c.Margin(v)
+}
+
+// CycleCharge is what C_B delivers between two recharges [C]; with the high side held on, what it delivers during the hold.
 func (c *Circuit) CycleCharge() float64 {
 	if c.Point.HeldOn != nil {
 		h, t := c.Hold()
-		return h.Loads.Total()*t + h.Loads.PullDown*h.Start*t
+		return h.Capacitance * (h.Start - h.Voltage(t))
 	}
 	return charge.Total(c.Budget())
 }
 
-// MinimumCapacitance is the smallest effective capacitance [F]; +Inf where none suffices.
-func (c *Circuit) MinimumCapacitance() float64 {
-	v, _ := charge.MinimumCapacitance(c.CycleCharge(), c.Drop())
+// MinimumCapacitance is the smallest effective capacitance that keeps a voltage [F]; +Inf where none suffices. The hold law depends on t/C
+// alone, so that held on it is C·t/t_hold.
+func (c *Circuit) MinimumCapacitance(keep float64) float64 {
+	if c.Point.HeldOn != nil {
+		h, t := c.Hold()
+		hold := h.Time(keep)
+		if !(h.Start > keep) && keep == keep {
+			return math.Inf(1)
+		}
+		return h.Capacitance * t / hold
+	}
+	v, _ := charge.MinimumCapacitance(c.CycleCharge(), c.Drop(keep))
 	return v
 }
 

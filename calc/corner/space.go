@@ -18,13 +18,10 @@ func Sets(p *stage.OperatingPoint) []Set {
 	j, a := p.JunctionTemperature.Triple, p.AmbientTemperature.Triple
 	within := func(t stage.Triple) float64 { return math.Min(math.Max(stage.ReferenceTemperature, t.Min), t.Max) }
 	all := []Set{{"cold", j.Min, a.Min}, {"room", within(j), within(a)}, {"hot", j.Max, a.Max}}
-	out := all[:0]
-	for _, s := range all {
-		same := false
-		for _, o := range out {
-			same = same || (o.Junction == s.Junction && o.Ambient == s.Ambient)
-		}
-		if !same {
+	var out []Set
+	for i, s := range all {
+		same := func(o Set) bool { return o.Junction == s.Junction && o.Ambient == s.Ambient }
+		if i == 1 || !same(all[1]) { // the room set stands for its equals
 			out = append(out, s)
 		}
 	}

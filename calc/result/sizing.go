@@ -16,11 +16,13 @@ import (
 func Sizing(b *rule.Bench, trial *stage.Stage, p *stage.Policy) *finding.Sizing {
 	out := &finding.Sizing{}
 	t := newTrial(trial, p)
-	t.bench.Interrupted = b.Interrupted
-	budget(t.bench, out)
+	t.bench.Interrupted, t.asGiven.Interrupted = b.Interrupted, b.Interrupted
+	budget(t.asGiven, out)
 	t.recommend(out)
-	for _, a := range t.bench.Assumptions() {
-		b.Adopt(a)
+	for _, from := range []*rule.Bench{t.asGiven, t.bench} {
+		for _, a := range from.Assumptions() {
+			b.Adopt(a)
+		}
 	}
 	return out
 }
@@ -52,15 +54,19 @@ func budget(b *rule.Bench, out *finding.Sizing) {
 		s, where := over(func(c *circuit.Circuit) float64 {
 			if c.Point.HeldOn != nil {
 				h, t := c.Hold()
-				return charge.Items(h.Loads, charge.Edge{}, charge.Interval{Period: t, OnTime: t, Voltage: h.Start})[k].Charge
+				mean := h.Start // mean V_BS over the hold, at which the pull-down takes what the law says
+				if h.Loads.PullDown > 0 {
+					mean = (c.CycleCharge() - h.Loads.Total()*t) / (h.Loads.PullDown * t)
+				}
+				return charge.Items(h.Loads, charge.Edge{}, charge.Interval{Period: t, OnTime: t, Voltage: mean})[k].Charge
 			}
 			return c.Budget()[k].Charge
 		}, quantity.Charge)
 		out.Budget = append(out.Budget, finding.BudgetItem{Name: name, Charge: s, OperatingPoint: where})
 	}
 	out.TotalCharge, _ = over(func(c *circuit.Circuit) float64 { return c.CycleCharge() }, quantity.Charge)
-	out.VoltageBudget, _ = over(func(c *circuit.Circuit) float64 { return c.Drop() }, quantity.Voltage)
-	out.MinimumCapacitance, _ = over(func(c *circuit.Circuit) float64 { return c.MinimumCapacitance() }, quantity.Capacitance)
+	out.VoltageBudget, _ = over(func(c *circuit.Circuit) float64 { return c.Drop(c.Kept()) }, quantity.Voltage)
+	out.MinimumCapacitance, _ = over(func(c *circuit.Circuit) float64 { return c.MinimumCapacitance(c.Kept()) }, quantity.Capacitance)
 	out.EffectiveCapacitance, _ = over(func(c *circuit.Circuit) float64 { return c.Capacitance() }, quantity.Capacitance)
 	out.Ripple, _ = over(func(c *circuit.Circuit) float64 {
 		if c.Point.HeldOn != nil {

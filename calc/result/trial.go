@@ -17,13 +17,14 @@ import (
 
 // trial is a stage in which C_B and R_B take trial values.
 type trial struct {
-	stage  *stage.Stage
-	policy *stage.Policy
-	bench  *rule.Bench
-	c, r   *stage.Quantity
-	judges []judge
-	notes  []string
-	lacks  []string // what keeps an essential rule from being evaluated
+	stage   *stage.Stage
+	policy  *stage.Policy
+	bench   *rule.Bench // with a resistor that can be scaled
+	asGiven *rule.Bench // with the resistor as given, a link included
+	c, r    *stage.Quantity
+	judges  []judge
+	notes   []string
+	lacks   []string // what keeps an essential rule from being evaluated
 }
 
 // judge is one rule at one operating point and set, with its worst draw.
@@ -71,11 +72,13 @@ func newTrial(s *stage.Stage, p *stage.Policy) *trial {
 	}
 	s.Bootstrap.Resistor.Present, s.Bootstrap.Resistor.Fit = true, ""
 	s.Complete(p)
+	t.asGiven = rule.NewBench(s, p)
+	t.bench = t.asGiven
 	if t.r.Typ == 0 { // a link has no spread to scale
 		t.r.Triple = stage.Triple{Min: trialResistance * 0.99, Typ: trialResistance, Max: trialResistance * 1.01}
 		t.r.At = nil
+		t.bench = rule.NewBench(s, p)
 	}
-	t.bench = rule.NewBench(s, p)
 	return t
 }
 

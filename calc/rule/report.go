@@ -253,7 +253,7 @@ func message(r *Rule, f *finding.Finding, unbounded bool) string {
 	} else {
 		fmt.Fprintf(&s, ", %s", f.Corner.Name)
 	}
-	if len(f.Notes) > 0 && (unbounded || f.Value.Value != f.Value.Value) {
+	if len(f.Notes) > 0 && (f.Outcome != finding.Pass || unbounded || f.Value.Value != f.Value.Value) {
 		s.WriteString(": " + f.Notes[0])
 		f.Notes = f.Notes[1:]
 	}

@@ -99,8 +99,8 @@ func (q *Quantity) complete(p *Policy) {
 		if q.Declare.Absence != Assumed {
 			return
 		}
-		q.Triple = Triple{q.Declare.AssumedMin, q.Declare.AssumedTyp, q.Declare.AssumedMax}
-		q.fill(&q.Triple, p, "")
+		typ := q.Declare.AssumedTyp
+		q.Triple = Triple{firstOf(q.Declare.AssumedMin, typ), typ, firstOf(q.Declare.AssumedMax, typ)}
 		q.assume(describe(q.Triple, q.Declare.Dimension), q.Declare.Direction, q.Declare.Reason)
 		return
 	}

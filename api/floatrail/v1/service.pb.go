@@ -848,12 +848,10 @@ type ReviewStageResponse struct {
 	UnusedWaivers []*Waiver `protobuf:"bytes,8,rep,name=unused_waivers,json=unusedWaivers,proto3" json:"unused_waivers,omitempty"`
 	// What to keep in mind before the answer is used.
 	Caution *string `protobuf:"bytes,9,opt,name=caution,proto3,oneof" json:"caution,omitempty"`
-	// Charge budget and parts to fit.
-	Sizing *SizingResult `protobuf:"bytes,10,opt,name=sizing,proto3" json:"sizing,omitempty"`
 	// Floating voltage and derived limits of each operating point.
-	DutyLimits *DutyLimitsResult `protobuf:"bytes,11,opt,name=duty_limits,json=dutyLimits,proto3" json:"duty_limits,omitempty"`
+	DutyLimits *DutyLimitsResult `protobuf:"bytes,10,opt,name=duty_limits,json=dutyLimits,proto3" json:"duty_limits,omitempty"`
 	// Switching events.
-	TransientStress *TransientStressResult `protobuf:"bytes,12,opt,name=transient_stress,json=transientStress,proto3" json:"transient_stress,omitempty"`
+	TransientStress *TransientStressResult `protobuf:"bytes,11,opt,name=transient_stress,json=transientStress,proto3" json:"transient_stress,omitempty"`
 	unknownFields   protoimpl.UnknownFields
 	sizeCache       protoimpl.SizeCache
 }
@@ -949,13 +947,6 @@ func (x *ReviewStageResponse) GetCaution() string {
 		return *x.Caution
 	}
 	return ""
-}
-
-func (x *ReviewStageResponse) GetSizing() *SizingResult {
-	if x != nil {
-		return x.Sizing
-	}
-	return nil
 }
 
 func (x *ReviewStageResponse) GetDutyLimits() *DutyLimitsResult {
@@ -2624,7 +2615,7 @@ const file_floatrail_v1_service_proto_rawDesc = "" +
 	"\awaivers\x18\x04 \x03(\v2\x14.floatrail.v1.WaiverR\awaivers\x12\x18\n" +
 	"\x05as_of\x18\x05 \x01(\tH\x00R\x04asOf\x88\x01\x01\x12/\n" +
 	"\aoptions\x18\x06 \x01(\v2\x15.floatrail.v1.OptionsR\aoptionsB\b\n" +
-	"\x06_as_of\"\xaa\x05\n" +
+	"\x06_as_of\"\xf6\x04\n" +
 	"\x13ReviewStageResponse\x12,\n" +
 	"\x06engine\x18\x01 \x01(\v2\x14.floatrail.v1.EngineR\x06engine\x12\x1e\n" +
 	"\bstage_id\x18\x02 \x01(\tH\x00R\astageId\x88\x01\x01\x125\n" +
@@ -2634,12 +2625,11 @@ const file_floatrail_v1_service_proto_rawDesc = "" +
 	"\vassumptions\x18\x06 \x03(\v2\x18.floatrail.v1.AssumptionR\vassumptions\x121\n" +
 	"\breadings\x18\a \x03(\v2\x15.floatrail.v1.ReadingR\breadings\x12;\n" +
 	"\x0eunused_waivers\x18\b \x03(\v2\x14.floatrail.v1.WaiverR\runusedWaivers\x12\x1d\n" +
-	"\acaution\x18\t \x01(\tH\x01R\acaution\x88\x01\x01\x122\n" +
-	"\x06sizing\x18\n" +
-	" \x01(\v2\x1a.floatrail.v1.SizingResultR\x06sizing\x12?\n" +
-	"\vduty_limits\x18\v \x01(\v2\x1e.floatrail.v1.DutyLimitsResultR\n" +
+	"\acaution\x18\t \x01(\tH\x01R\acaution\x88\x01\x01\x12?\n" +
+	"\vduty_limits\x18\n" +
+	" \x01(\v2\x1e.floatrail.v1.DutyLimitsResultR\n" +
 	"dutyLimits\x12N\n" +
-	"\x10transient_stress\x18\f \x01(\v2#.floatrail.v1.TransientStressResultR\x0ftransientStressB\v\n" +
+	"\x10transient_stress\x18\v \x01(\v2#.floatrail.v1.TransientStressResultR\x0ftransientStressB\v\n" +
 	"\t_stage_idB\n" +
 	"\n" +
 	"\b_caution\"\x9e\x02\n" +
@@ -2910,84 +2900,83 @@ var file_floatrail_v1_service_proto_depIdxs = []int32{
 	40,  // 45: floatrail.v1.ReviewStageResponse.assumptions:type_name -> floatrail.v1.Assumption
 	41,  // 46: floatrail.v1.ReviewStageResponse.readings:type_name -> floatrail.v1.Reading
 	42,  // 47: floatrail.v1.ReviewStageResponse.unused_waivers:type_name -> floatrail.v1.Waiver
-	43,  // 48: floatrail.v1.ReviewStageResponse.sizing:type_name -> floatrail.v1.SizingResult
-	44,  // 49: floatrail.v1.ReviewStageResponse.duty_limits:type_name -> floatrail.v1.DutyLimitsResult
-	45,  // 50: floatrail.v1.ReviewStageResponse.transient_stress:type_name -> floatrail.v1.TransientStressResult
-	33,  // 51: floatrail.v1.ReviewBoardRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 52: floatrail.v1.ReviewBoardRequest.stages:type_name -> floatrail.v1.Stage
-	35,  // 53: floatrail.v1.ReviewBoardRequest.policy:type_name -> floatrail.v1.Policy
-	42,  // 54: floatrail.v1.ReviewBoardRequest.waivers:type_name -> floatrail.v1.Waiver
-	36,  // 55: floatrail.v1.ReviewBoardRequest.options:type_name -> floatrail.v1.Options
-	9,   // 56: floatrail.v1.ReviewBoardResponse.stage:type_name -> floatrail.v1.ReviewStageResponse
-	12,  // 57: floatrail.v1.ReviewBoardResponse.faults:type_name -> floatrail.v1.StageFaults
-	14,  // 58: floatrail.v1.ReviewBoardResponse.summary:type_name -> floatrail.v1.BoardSummary
-	13,  // 59: floatrail.v1.StageFaults.faults:type_name -> floatrail.v1.Fault
-	37,  // 60: floatrail.v1.BoardSummary.verdict:type_name -> floatrail.v1.Verdict.Value
-	33,  // 61: floatrail.v1.CompareRevisionsRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 62: floatrail.v1.CompareRevisionsRequest.before:type_name -> floatrail.v1.Stage
-	34,  // 63: floatrail.v1.CompareRevisionsRequest.after:type_name -> floatrail.v1.Stage
-	35,  // 64: floatrail.v1.CompareRevisionsRequest.policy:type_name -> floatrail.v1.Policy
-	36,  // 65: floatrail.v1.CompareRevisionsRequest.options:type_name -> floatrail.v1.Options
-	1,   // 66: floatrail.v1.CompareRevisionsResponse.engine:type_name -> floatrail.v1.Engine
-	32,  // 67: floatrail.v1.CompareRevisionsResponse.items:type_name -> floatrail.v1.CompareRevisionsResponse.Item
-	33,  // 68: floatrail.v1.StudyAlternatesRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 69: floatrail.v1.StudyAlternatesRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 70: floatrail.v1.StudyAlternatesRequest.policy:type_name -> floatrail.v1.Policy
-	18,  // 71: floatrail.v1.StudyAlternatesRequest.alternates:type_name -> floatrail.v1.AlternateList
-	1,   // 72: floatrail.v1.StudyAlternatesResponse.engine:type_name -> floatrail.v1.Engine
-	37,  // 73: floatrail.v1.StudyAlternatesResponse.verdict:type_name -> floatrail.v1.Verdict.Value
-	39,  // 74: floatrail.v1.StudyAlternatesResponse.findings:type_name -> floatrail.v1.Finding
-	18,  // 75: floatrail.v1.StudyAlternatesResponse.binding:type_name -> floatrail.v1.AlternateList
-	33,  // 76: floatrail.v1.StudyTolerancesRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 77: floatrail.v1.StudyTolerancesRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 78: floatrail.v1.StudyTolerancesRequest.policy:type_name -> floatrail.v1.Policy
-	1,   // 79: floatrail.v1.StudyTolerancesResponse.engine:type_name -> floatrail.v1.Engine
-	22,  // 80: floatrail.v1.StudyTolerancesResponse.yields:type_name -> floatrail.v1.RuleYield
-	46,  // 81: floatrail.v1.RuleYield.percentiles:type_name -> floatrail.v1.Measure
-	33,  // 82: floatrail.v1.ListDataGapsRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 83: floatrail.v1.ListDataGapsRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 84: floatrail.v1.ListDataGapsRequest.policy:type_name -> floatrail.v1.Policy
-	1,   // 85: floatrail.v1.ListDataGapsResponse.engine:type_name -> floatrail.v1.Engine
-	25,  // 86: floatrail.v1.ListDataGapsResponse.gaps:type_name -> floatrail.v1.DataGap
-	1,   // 87: floatrail.v1.ListRulesResponse.engine:type_name -> floatrail.v1.Engine
-	30,  // 88: floatrail.v1.ListRulesResponse.rules:type_name -> floatrail.v1.Rule
-	1,   // 89: floatrail.v1.GetRuleResponse.engine:type_name -> floatrail.v1.Engine
-	30,  // 90: floatrail.v1.GetRuleResponse.rule:type_name -> floatrail.v1.Rule
-	47,  // 91: floatrail.v1.Rule.sources:type_name -> floatrail.v1.Reference
-	48,  // 92: floatrail.v1.Rule.severity_fail:type_name -> floatrail.v1.Severity.Value
-	48,  // 93: floatrail.v1.Rule.severity_marginal:type_name -> floatrail.v1.Severity.Value
-	48,  // 94: floatrail.v1.Rule.severity_open:type_name -> floatrail.v1.Severity.Value
-	0,   // 95: floatrail.v1.CompareRevisionsResponse.Item.change:type_name -> floatrail.v1.CompareRevisionsResponse.Change.Value
-	39,  // 96: floatrail.v1.CompareRevisionsResponse.Item.before:type_name -> floatrail.v1.Finding
-	39,  // 97: floatrail.v1.CompareRevisionsResponse.Item.after:type_name -> floatrail.v1.Finding
-	49,  // 98: floatrail.v1.CompareRevisionsResponse.Item.causes:type_name -> floatrail.v1.Change
-	2,   // 99: floatrail.v1.FloatRail.SizeSupply:input_type -> floatrail.v1.SizeSupplyRequest
-	4,   // 100: floatrail.v1.FloatRail.CheckDutyLimits:input_type -> floatrail.v1.CheckDutyLimitsRequest
-	6,   // 101: floatrail.v1.FloatRail.CheckTransientStress:input_type -> floatrail.v1.CheckTransientStressRequest
-	8,   // 102: floatrail.v1.FloatRail.ReviewStage:input_type -> floatrail.v1.ReviewStageRequest
-	10,  // 103: floatrail.v1.FloatRail.ReviewBoard:input_type -> floatrail.v1.ReviewBoardRequest
-	15,  // 104: floatrail.v1.FloatRail.CompareRevisions:input_type -> floatrail.v1.CompareRevisionsRequest
-	17,  // 105: floatrail.v1.FloatRail.StudyAlternates:input_type -> floatrail.v1.StudyAlternatesRequest
-	20,  // 106: floatrail.v1.FloatRail.StudyTolerances:input_type -> floatrail.v1.StudyTolerancesRequest
-	23,  // 107: floatrail.v1.FloatRail.ListDataGaps:input_type -> floatrail.v1.ListDataGapsRequest
-	26,  // 108: floatrail.v1.FloatRail.ListRules:input_type -> floatrail.v1.ListRulesRequest
-	28,  // 109: floatrail.v1.FloatRail.GetRule:input_type -> floatrail.v1.GetRuleRequest
-	3,   // 110: floatrail.v1.FloatRail.SizeSupply:output_type -> floatrail.v1.SizeSupplyResponse
-	5,   // 111: floatrail.v1.FloatRail.CheckDutyLimits:output_type -> floatrail.v1.CheckDutyLimitsResponse
-	7,   // 112: floatrail.v1.FloatRail.CheckTransientStress:output_type -> floatrail.v1.CheckTransientStressResponse
-	9,   // 113: floatrail.v1.FloatRail.ReviewStage:output_type -> floatrail.v1.ReviewStageResponse
-	11,  // 114: floatrail.v1.FloatRail.ReviewBoard:output_type -> floatrail.v1.ReviewBoardResponse
-	16,  // 115: floatrail.v1.FloatRail.CompareRevisions:output_type -> floatrail.v1.CompareRevisionsResponse
-	19,  // 116: floatrail.v1.FloatRail.StudyAlternates:output_type -> floatrail.v1.StudyAlternatesResponse
-	21,  // 117: floatrail.v1.FloatRail.StudyTolerances:output_type -> floatrail.v1.StudyTolerancesResponse
-	24,  // 118: floatrail.v1.FloatRail.ListDataGaps:output_type -> floatrail.v1.ListDataGapsResponse
-	27,  // 119: floatrail.v1.FloatRail.ListRules:output_type -> floatrail.v1.ListRulesResponse
-	29,  // 120: floatrail.v1.FloatRail.GetRule:output_type -> floatrail.v1.GetRuleResponse
-	110, // [110:121] is the sub-list for method output_type
-	99,  // [99:110] is the sub-list for method input_type
-	99,  // [99:99] is the sub-list for extension type_name
-	99,  // [99:99] is the sub-list for extension extendee
-	0,   // [0:99] is the sub-list for field type_name
+	44,  // 48: floatrail.v1.ReviewStageResponse.duty_limits:type_name -> floatrail.v1.DutyLimitsResult
+	45,  // 49: floatrail.v1.ReviewStageResponse.transient_stress:type_name -> floatrail.v1.TransientStressResult
+	33,  // 50: floatrail.v1.ReviewBoardRequest.parts:type_name -> floatrail.v1.Part
+	34,  // 51: floatrail.v1.ReviewBoardRequest.stages:type_name -> floatrail.v1.Stage
+	35,  // 52: floatrail.v1.ReviewBoardRequest.policy:type_name -> floatrail.v1.Policy
+	42,  // 53: floatrail.v1.ReviewBoardRequest.waivers:type_name -> floatrail.v1.Waiver
+	36,  // 54: floatrail.v1.ReviewBoardRequest.options:type_name -> floatrail.v1.Options
+	9,   // 55: floatrail.v1.ReviewBoardResponse.stage:type_name -> floatrail.v1.ReviewStageResponse
+	12,  // 56: floatrail.v1.ReviewBoardResponse.faults:type_name -> floatrail.v1.StageFaults
+	14,  // 57: floatrail.v1.ReviewBoardResponse.summary:type_name -> floatrail.v1.BoardSummary
+	13,  // 58: floatrail.v1.StageFaults.faults:type_name -> floatrail.v1.Fault
+	37,  // 59: floatrail.v1.BoardSummary.verdict:type_name -> floatrail.v1.Verdict.Value
+	33,  // 60: floatrail.v1.CompareRevisionsRequest.parts:type_name -> floatrail.v1.Part
+	34,  // 61: floatrail.v1.CompareRevisionsRequest.before:type_name -> floatrail.v1.Stage
+	34,  // 62: floatrail.v1.CompareRevisionsRequest.after:type_name -> floatrail.v1.Stage
+	35,  // 63: floatrail.v1.CompareRevisionsRequest.policy:type_name -> floatrail.v1.Policy
+	36,  // 64: floatrail.v1.CompareRevisionsRequest.options:type_name -> floatrail.v1.Options
+	1,   // 65: floatrail.v1.CompareRevisionsResponse.engine:type_name -> floatrail.v1.Engine
+	32,  // 66: floatrail.v1.CompareRevisionsResponse.items:type_name -> floatrail.v1.CompareRevisionsResponse.Item
+	33,  // 67: floatrail.v1.StudyAlternatesRequest.parts:type_name -> floatrail.v1.Part
+	34,  // 68: floatrail.v1.StudyAlternatesRequest.stage:type_name -> floatrail.v1.Stage
+	35,  // 69: floatrail.v1.StudyAlternatesRequest.policy:type_name -> floatrail.v1.Policy
+	18,  // 70: floatrail.v1.StudyAlternatesRequest.alternates:type_name -> floatrail.v1.AlternateList
+	1,   // 71: floatrail.v1.StudyAlternatesResponse.engine:type_name -> floatrail.v1.Engine
+	37,  // 72: floatrail.v1.StudyAlternatesResponse.verdict:type_name -> floatrail.v1.Verdict.Value
+	39,  // 73: floatrail.v1.StudyAlternatesResponse.findings:type_name -> floatrail.v1.Finding
+	18,  // 74: floatrail.v1.StudyAlternatesResponse.binding:type_name -> floatrail.v1.AlternateList
+	33,  // 75: floatrail.v1.StudyTolerancesRequest.parts:type_name -> floatrail.v1.Part
+	34,  // 76: floatrail.v1.StudyTolerancesRequest.stage:type_name -> floatrail.v1.Stage
+	35,  // 77: floatrail.v1.StudyTolerancesRequest.policy:type_name -> floatrail.v1.Policy
+	1,   // 78: floatrail.v1.StudyTolerancesResponse.engine:type_name -> floatrail.v1.Engine
+	22,  // 79: floatrail.v1.StudyTolerancesResponse.yields:type_name -> floatrail.v1.RuleYield
+	46,  // 80: floatrail.v1.RuleYield.percentiles:type_name -> floatrail.v1.Measure
+	33,  // 81: floatrail.v1.ListDataGapsRequest.parts:type_name -> floatrail.v1.Part
+	34,  // 82: floatrail.v1.ListDataGapsRequest.stage:type_name -> floatrail.v1.Stage
+	35,  // 83: floatrail.v1.ListDataGapsRequest.policy:type_name -> floatrail.v1.Policy
+	1,   // 84: floatrail.v1.ListDataGapsResponse.engine:type_name -> floatrail.v1.Engine
+	25,  // 85: floatrail.v1.ListDataGapsResponse.gaps:type_name -> floatrail.v1.DataGap
+	1,   // 86: floatrail.v1.ListRulesResponse.engine:type_name -> floatrail.v1.Engine
+	30,  // 87: floatrail.v1.ListRulesResponse.rules:type_name -> floatrail.v1.Rule
+	1,   // 88: floatrail.v1.GetRuleResponse.engine:type_name -> floatrail.v1.Engine
+	30,  // 89: floatrail.v1.GetRuleResponse.rule:type_name -> floatrail.v1.Rule
+	47,  // 90: floatrail.v1.Rule.sources:type_name -> floatrail.v1.Reference
+	48,  // 91: floatrail.v1.Rule.severity_fail:type_name -> floatrail.v1.Severity.Value
+	48,  // 92: floatrail.v1.Rule.severity_marginal:type_name -> floatrail.v1.Severity.Value
+	48,  // 93: floatrail.v1.Rule.severity_open:type_name -> floatrail.v1.Severity.Value
+	0,   // 94: floatrail.v1.CompareRevisionsResponse.Item.change:type_name -> floatrail.v1.CompareRevisionsResponse.Change.Value
+	39,  // 95: floatrail.v1.CompareRevisionsResponse.Item.before:type_name -> floatrail.v1.Finding
+	39,  // 96: floatrail.v1.CompareRevisionsResponse.Item.after:type_name -> floatrail.v1.Finding
+	49,  // 97: floatrail.v1.CompareRevisionsResponse.Item.causes:type_name -> floatrail.v1.Change
+	2,   // 98: floatrail.v1.FloatRail.SizeSupply:input_type -> floatrail.v1.SizeSupplyRequest
+	4,   // 99: floatrail.v1.FloatRail.CheckDutyLimits:input_type -> floatrail.v1.CheckDutyLimitsRequest
+	6,   // 100: floatrail.v1.FloatRail.CheckTransientStress:input_type -> floatrail.v1.CheckTransientStressRequest
+	8,   // 101: floatrail.v1.FloatRail.ReviewStage:input_type -> floatrail.v1.ReviewStageRequest
+	10,  // 102: floatrail.v1.FloatRail.ReviewBoard:input_type -> floatrail.v1.ReviewBoardRequest
+	15,  // 103: floatrail.v1.FloatRail.CompareRevisions:input_type -> floatrail.v1.CompareRevisionsRequest
+	17,  // 104: floatrail.v1.FloatRail.StudyAlternates:input_type -> floatrail.v1.StudyAlternatesRequest
+	20,  // 105: floatrail.v1.FloatRail.StudyTolerances:input_type -> floatrail.v1.StudyTolerancesRequest
+	23,  // 106: floatrail.v1.FloatRail.ListDataGaps:input_type -> floatrail.v1.ListDataGapsRequest
+	26,  // 107: floatrail.v1.FloatRail.ListRules:input_type -> floatrail.v1.ListRulesRequest
+	28,  // 108: floatrail.v1.FloatRail.GetRule:input_type -> floatrail.v1.GetRuleRequest
+	3,   // 109: floatrail.v1.FloatRail.SizeSupply:output_type -> floatrail.v1.SizeSupplyResponse
+	5,   // 110: floatrail.v1.FloatRail.CheckDutyLimits:output_type -> floatrail.v1.CheckDutyLimitsResponse
+	7,   // 111: floatrail.v1.FloatRail.CheckTransientStress:output_type -> floatrail.v1.CheckTransientStressResponse
+	9,   // 112: floatrail.v1.FloatRail.ReviewStage:output_type -> floatrail.v1.ReviewStageResponse
+	11,  // 113: floatrail.v1.FloatRail.ReviewBoard:output_type -> floatrail.v1.ReviewBoardResponse
+	16,  // 114: floatrail.v1.FloatRail.CompareRevisions:output_type -> floatrail.v1.CompareRevisionsResponse
+	19,  // 115: floatrail.v1.FloatRail.StudyAlternates:output_type -> floatrail.v1.StudyAlternatesResponse
+	21,  // 116: floatrail.v1.FloatRail.StudyTolerances:output_type -> floatrail.v1.StudyTolerancesResponse
+	24,  // 117: floatrail.v1.FloatRail.ListDataGaps:output_type -> floatrail.v1.ListDataGapsResponse
+	27,  // 118: floatrail.v1.FloatRail.ListRules:output_type -> floatrail.v1.ListRulesResponse
+	29,  // 119: floatrail.v1.FloatRail.GetRule:output_type -> floatrail.v1.GetRuleResponse
+	109, // [109:120] is the sub-list for method output_type
+	98,  // [98:109] is the sub-list for method input_type
+	98,  // [98:98] is the sub-list for extension type_name
+	98,  // [98:98] is the sub-list for extension extendee
+	0,   // [0:98] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_service_proto_init() }

@@ -7,6 +7,8 @@ import (
 	"strings"
 	"testing"
 
+	"google.golang.org/protobuf/proto"
+
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/calc/recharge"
 )
@@ -306,10 +308,8 @@ func TestPublishedFirstCharge(t *testing.T) {
 		"/policy": `{"lockoutMargin":"0 V","lockoutMarginRatio":"0"}`, "bootstrap.diode.forwardPoints": drops(0.5), "bootstrap.resistor.resistance": "20 ohm",
 		"driver.uvloRising": "13 V", "startup.timeAvailable": fmt.Sprintf("%g ms", available*1e3), "startup.initialVoltage": "0 V",
 	})).GetFindings(), "charge/oversize", "")
-	near(t, "time of the first charge at δ 0.5", &pb.Measure{Value: ptr(2 * 22e-6 * available / f.GetLimit().GetValue())}, 2.506e-3, 0.0015e-3)
+	near(t, "time of the first charge at δ 0.5", &pb.Measure{Value: proto.Float64(2 * 22e-6 * available / f.GetLimit().GetValue())}, 2.506e-3, 0.0015e-3)
 }
-
-func ptr(v float64) *float64 { return &v }
 
 // Thermal voltage kT/q from the exact SI constants, -40 °C 20.091, 25 °C 25.693, 300 K 25.852, 125 °C 34.310, 150 °C 36.464 mV: a single
 // forward point takes the emission coefficient 1.5, so that n·V_T is 1.5 of them.

@@ -135,7 +135,7 @@ func TestPartsAreUsedAndOverridden(t *testing.T) {
 		"bootstrap.capacitor": `{"use":"cap","refdes":"C1"}`, "bootstrap.capacitor.effectiveCapacitance": "", "bootstrap.capacitor.leakage": "",
 	})
 	answer := c.review(base)
-	all(t, "Q_B", answer.GetSizing().GetTotalCharge(), 80e-9, 1e-13)
+	all(t, "Q_B", c.size(base).GetTotalCharge(), 80e-9, 1e-13)
 	f := find(t, answer.GetFindings(), "charge/droop", "")
 	near(t, "droop", f.GetValue(), 80e-9/470e-9, 1e-6)
 	named := false

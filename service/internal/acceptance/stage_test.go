@@ -44,7 +44,7 @@ func defaults() edits {
 		"lowSide.onResistance": "10 uohm", "lowSide.offBias": "0 V", "lowSide.outputCapacitance": `[{"voltage":"0 V","capacitance":{"min":"0.01 pF","typ":"0.01 pF","max":"0.01 pF"}}]`,
 		"lowSide.reverse.forwardPoints": drops(0.8),
 		"bootstrap.diode.forwardPoints": drops(0.4), "bootstrap.diode.reverseLeakage": "0 A", "bootstrap.diode.recoveryCharge": "0 C",
-		"bootstrap.diode.junctionCapacitance": "0 F", "bootstrap.resistor.resistance": "1 uohm",
+		"bootstrap.diode.junctionCapacitance": "0 F", "bootstrap.resistor.resistance": "0 ohm",
 		"bootstrap.capacitor.effectiveCapacitance": "1 uF", "bootstrap.capacitor.leakage": "0 A", "bootstrap.otherLoad": "0 A",
 		"layout.nodeResistor.resistance": "0 ohm", "layout.shunt.resistance": "0 ohm",
 		"operatingPoints.0.busVoltage": "48 V", "operatingPoints.0.loadCurrent": "0 A", "operatingPoints.0.rippleCurrent": "0 A",

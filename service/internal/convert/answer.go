@@ -41,7 +41,6 @@ func ReviewStageResponse(e Engine, r *finding.Report, readings []Reading) *pb.Re
 		Readings:      each(readings, wireReading),
 		UnusedWaivers: each(r.UnusedWaivers, wireWaiver),
 		Caution:       proto.String(Caution),
-		Sizing:        wireSizing(r.Sizing),
 		DutyLimits:    wireDutyLimits(r.DutyLimits),
 	}
 }
@@ -51,7 +50,7 @@ func SizeSupplyResponse(e Engine, r *finding.Report, readings []Reading) *pb.Siz
 	a := ReviewStageResponse(e, r, readings)
 	return &pb.SizeSupplyResponse{
 		Engine: a.Engine, StageId: a.StageId, Verdict: a.Verdict, Coverage: a.Coverage, Findings: a.Findings, Assumptions: a.Assumptions,
-		Readings: a.Readings, UnusedWaivers: a.UnusedWaivers, Caution: a.Caution, Sizing: a.Sizing,
+		Readings: a.Readings, UnusedWaivers: a.UnusedWaivers, Caution: a.Caution, Sizing: wireSizing(r.Sizing),
 	}
 }
 

@@ -10,6 +10,7 @@ import (
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/calc"
 	"floatrail/calc/stage"
+	"floatrail/service/internal/wire"
 )
 
 func review(t testing.TB, request string) (calc.Request, []Reading) {
@@ -117,7 +118,7 @@ func TestMarkingFillsWhatIsAbsent(t *testing.T) {
 func TestNearest(t *testing.T) {
 	names := []string{"drv-100", "fet", "cap-1"}
 	for text, want := range map[string]string{"drv-10": "drv-100", "FET": "fet", "cap_2": "cap-1", "wholly different": "", "": ""} {
-		if got := nearest(text, names); got != want {
+		if got := wire.Nearest(text, names); got != want {
 			t.Errorf("%q: %q, want %q", text, got, want)
 		}
 	}

@@ -169,7 +169,7 @@ func pointResult(o *pb.PointResult) string {
 	return text
 }
 
-// numbers writes the floating voltage of each operating point and the parts to fit.
+// numbers writes the floating voltage of each operating point.
 func (p *page) numbers(a *pb.ReviewStageResponse) {
 	points := a.GetDutyLimits().GetPoints()
 	longest := 0
@@ -182,10 +182,6 @@ func (p *page) numbers(a *pb.ReviewStageResponse) {
 	}
 	for _, o := range points {
 		p.paragraph("    "+pad(o.GetOperatingPoint(), longest)+"  ", voltages(o))
-	}
-	if fit := parts(a.GetSizing().GetRecommended()); len(fit) > 0 {
-		p.blank()
-		p.paragraph("  Parts to fit: ", strings.Join(fit, "; "))
 	}
 }
 
@@ -216,26 +212,6 @@ func orUnknown(m *pb.Measure) string {
 		return "unknown"
 	}
 	return m.GetText()
-}
-
-func parts(r *pb.RecommendedParts) []string {
-	var fit []string
-	add := func(name string, measures ...*pb.Measure) {
-		var texts []string
-		for _, m := range measures {
-			if m != nil {
-				texts = append(texts, m.GetText())
-			}
-		}
-		if len(texts) > 0 {
-			fit = append(fit, name+" "+strings.Join(texts, ", "))
-		}
-	}
-	add("C_B", r.GetCapacitance(), r.GetCapacitorVoltage())
-	add("R_B", r.GetResistance())
-	add("D_B", r.GetDiodeReverseVoltage(), r.GetDiodeAverageCurrent(), r.GetDiodePeakCurrent())
-	add("C_VDD", r.GetReservoirCapacitance())
-	return fit
 }
 
 // assumptions counts what was assumed and lists what may be optimistic.

@@ -61,6 +61,7 @@ func New(o Options) *Handlers {
 // SizeSupply answers with the charge budget and the parts that fit it.
 func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb.SizeSupplyResponse, error) {
 	request, readings, faults := h.binder.SizeSupply(r)
+	own(&request, "charge", "capacitor", "diode", "resistor")
 	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithSizing)
 	if err != nil {
 		return nil, err
@@ -71,6 +72,7 @@ func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb
 // CheckDutyLimits answers with the floating voltage of each operating point.
 func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsRequest) (*pb.CheckDutyLimitsResponse, error) {
 	request, readings, faults := h.binder.CheckDutyLimits(r)
+	own(&request, "charge", "duty")
 	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits)
 	if err != nil {
 		return nil, err
@@ -81,11 +83,18 @@ func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsReq
 // ReviewStage answers with every rule on one stage.
 func (h *Handlers) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.ReviewStageResponse, error) {
 	request, readings, faults := h.binder.ReviewStage(r)
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithSizing|calc.WithDutyLimits)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits)
 	if err != nil {
 		return nil, err
 	}
 	return convert.ReviewStageResponse(h.engine, report, readings), nil
+}
+
+// own limits a check to the families it is about, where the request names none.
+func own(r *calc.Request, families ...string) {
+	if len(r.Options.Families) == 0 {
+		r.Options.Families = families
+	}
 }
 
 // review computes a request that has no faults.
