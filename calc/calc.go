@@ -59,16 +59,10 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 	bench := rule.NewBench(r.Stage, &policy)
 	bench.Interrupted = func() bool { return ctx.Err() != nil }
 	out := finding.Report{StageID: r.Stage.ID}
-	for _, rl := range catalog.All() {
-		if len(r.Options.Families) > 0 && !slices.Contains(r.Options.Families, rl.Family()) {
-			continue
-		}
-		findings, broken := run(bench, rl)
-		if broken {
-			out.Internal++
-		}
-		out.Findings = append(out.Findings, findings...)
-	}
+	rules := slices.DeleteFunc(catalog.All(), func(rl *rule.Rule) bool {
+		return len(r.Options.Families) > 0 && !slices.Contains(r.Options.Families, rl.Family())
+	})
+	out.Findings, out.Internal = bench.Run(rules...)
 	if !r.Options.PerPoint {
 		for i := range out.Findings {
 			out.Findings[i].Points = nil
@@ -86,14 +80,4 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 	out.Assumptions = bench.Assumptions()
 	finding.Conclude(&out, &policy, r.Waivers, r.AsOf)
 	return out, nil
-}
-
-// run runs one rule; a panic leaves that rule open and the others intact.
-func run(b *rule.Bench, r *rule.Rule) (out []finding.Finding, broken bool) {
-	defer func() {
-		if recover() != nil {
-			out, broken = []finding.Finding{b.Broken(r)}, true
-		}
-	}()
-	return b.Run(r), false
 }

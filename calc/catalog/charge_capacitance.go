@@ -4,6 +4,7 @@ import (
 	"math"
 	"slices"
 
+	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -27,6 +28,20 @@ var chargeCapacitance = &rule.Rule{
 		limit := c.MinimumCapacitance(c.Required())
 		return rule.Check{Value: c.Capacitance(), Limit: limit, Guard: math.Max(above(c, limit), c.MinimumCapacitance(c.Kept()))}
 	},
+	Alternatives: []func(*circuit.Circuit, string) float64{
+		func(c *circuit.Circuit, _ string) float64 { return spare(c, (*circuit.Circuit).Required) },
+		func(c *circuit.Circuit, _ string) float64 { return spare(c, (*circuit.Circuit).Kept) },
+		func(c *circuit.Circuit, _ string) float64 {
+			switch {
+			case c.Point == nil:
+				return c.Want("stage.operatingPoints")
+			case c.Point.HeldOn != nil: // no period, no ripple
+				return math.Inf(1)
+			}
+			least, _ := charge.MinimumCapacitance(c.CycleCharge(), c.PermittedRipple())
+			return c.Capacitance() - least
+		},
+	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		out := slices.Concat(collapseNote(c), cancelNote(c))
 		if drop := c.Drop(c.Required()); drop <= 0 {
@@ -35,4 +50,16 @@ var chargeCapacitance = &rule.Rule{
 		}
 		return out
 	},
+}
+
+// spare is the distance of the effective capacitance to the smallest that keeps a voltage, whatever ripple is permitted [F].
+func spare(c *circuit.Circuit, keep func(*circuit.Circuit) float64) float64 {
+	switch {
+	case c.Point == nil:
+		return c.Want("stage.operatingPoints")
+	case c.Point.HeldOn != nil:
+		return c.Capacitance() - c.MinimumCapacitance(keep(c))
+	}
+	least, _ := charge.MinimumCapacitance(c.CycleCharge(), c.Left(keep(c)))
+	return c.Capacitance() - least
 }

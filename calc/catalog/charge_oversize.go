@@ -22,19 +22,12 @@ var chargeOversize = &rule.Rule{
 	Quantity: "Largest bootstrap capacitance", Against: "largest permitted capacitance", Dimension: quantity.Capacitance, Sense: rule.AtMost,
 	Stagewide: true, Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
-		value := c.Fresh()
-		limit := math.Inf(1)
-		if r := &c.Stage.GateSupply.Reservoir; r.Presence() != stage.NotFitted {
-			if !present(c, r) {
-				return rule.Check{Value: nan}
-			}
-			limit = c.Effective(r, c.Supply) / c.Policy.ReservoirRatio
-		}
-		available, t := chargeTime(c, value)
-		if byTime := value * available / t; byTime < limit || byTime != byTime {
-			limit = byTime
-		}
-		return rule.Check{Value: value, Limit: limit, Guard: below(c, limit)}
+		limit := math.Min(byReservoir(c), byTime(c))
+		return rule.Check{Value: c.Fresh(), Limit: limit, Guard: below(c, limit)}
+	},
+	Alternatives: []func(*circuit.Circuit, string) float64{
+		func(c *circuit.Circuit, _ string) float64 { return byReservoir(c) - c.Fresh() },
+		func(c *circuit.Circuit, _ string) float64 { return byTime(c) - c.Fresh() },
 	},
 	Explain: func(c *circuit.Circuit, _ string, ch rule.Check) []string {
 		available, t := chargeTime(c, ch.Value)
@@ -43,6 +36,25 @@ var chargeOversize = &rule.Rule{
 		}
 		return []string{fmt.Sprintf("the first charge bounds it: %s of %s available", quantity.Format(t, quantity.Time), quantity.Format(available, quantity.Time))}
 	},
+}
+
+// byReservoir is the capacitance that the reservoir permits; +Inf without one [F].
+func byReservoir(c *circuit.Circuit) float64 {
+	r := &c.Stage.GateSupply.Reservoir
+	switch {
+	case r.Presence() == stage.NotFitted:
+		return math.Inf(1)
+	case !present(c, r):
+		return nan
+	}
+	return c.Effective(r, c.Supply) / c.Policy.ReservoirRatio
+}
+
+// byTime is the capacitance that the time available charges [F].
+func byTime(c *circuit.Circuit) float64 {
+	value := c.Fresh()
+	available, t := chargeTime(c, value)
+	return value * available / t
 }
 
 // chargeTime is the time available for the first charge and the time that a capacitance takes to the rising lockout with margin [s].

@@ -34,6 +34,12 @@ var dutyRechargeWindow = &rule.Rule{
 		}
 		return rule.Check{Value: p.Window, Limit: limit, Guard: above(c, limit)}
 	},
+	Alternatives: []func(*circuit.Circuit, string) float64{
+		func(c *circuit.Circuit, _ string) float64 {
+			return c.Period().Window - c.Need(&c.Stage.Driver.MinimumPulse)
+		},
+		func(c *circuit.Circuit, _ string) float64 { return c.Period().Window - c.BreakEvenWindow() },
+	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		shortest, even := c.Need(&c.Stage.Driver.MinimumPulse), c.BreakEvenWindow()
 		notes := slices.Concat(vanishNotes(c), collapseNote(c), cancelNote(c))

@@ -89,9 +89,14 @@ func (c *Circuit) Drop(keep float64) float64 {
 	if c.Point.HeldOn != nil {
 		return c.Need(&c.Point.HeldOn.InitialVoltage) - keep
 	}
-	left := c.recharged(charge.Consumed(c.Budget())) - keep
-	return charge.AllowedDrop(left, c.Policy.RippleRatio*c.Settled())
+	return charge.AllowedDrop(c.Left(keep), c.PermittedRipple())
 }
+
+// Left is what recharge leaves above a voltage that V_BS must keep [V].
+func (c *Circuit) Left(keep float64) float64 { return c.recharged(charge.Consumed(c.Budget())) - keep }
+
+// PermittedRipple is the policy's share of the settled V_BS [V].
+func (c *Circuit) PermittedRipple() float64 { return c.Policy.RippleRatio * c.Settled() }
 
 // Kept is Required with the policy's margin [V].
 func (c *Circuit) Kept() float64 {

@@ -127,11 +127,27 @@ func (s *Space) gather(w *Worst, f Function) {
 	if len(w.ends) == 0 {
 		return
 	}
+	s.visit(w, s.corner(w.ends), f)
+}
+
+// corner is the draw with inputs at given ends; kept, so that functions with the same worst ends share what models compute there.
+func (s *Space) corner(ends []end) *Draw {
 	x := slices.Clone(s.typ)
-	for _, e := range w.ends {
+	for _, e := range ends {
 		x[e.id] = s.sample(e.id, e.step)
 	}
-	s.visit(w, s.at(x), f)
+	h := uint64(0)
+	for _, v := range x {
+		h = (h ^ math.Float64bits(v)) * 1099511628211
+	}
+	for _, d := range s.corners[h] {
+		if slices.EqualFunc(d.x, x, func(a, b float64) bool { return math.Float64bits(a) == math.Float64bits(b) }) {
+			return d
+		}
+	}
+	d := s.at(x)
+	s.corners[h] = append(s.corners[h], d)
+	return d
 }
 
 // SearchSets finds the worst draw of each temperature set of one operating point. The directions are found at the room set, or the first

@@ -39,8 +39,9 @@ type Space struct {
 	interior       Bits // inputs in which a turn is looked for between their ends
 	inputs         []*stage.Quantity
 	probes         map[probe]*Draw
-	spare          []*Draw // draws that nobody holds
-	memory         *memory // shared by the spaces that Replace makes: results do not depend on ranges
+	corners        map[uint64][]*Draw // by the hash of their numbers
+	spare          []*Draw            // draws that nobody holds
+	memory         *memory            // shared by the spaces that Replace makes: results do not depend on ranges
 }
 
 type probe struct {
@@ -54,7 +55,7 @@ func NewSpace(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint, set Set
 	sp := &Space{
 		Stage: s, Policy: p, Point: op, Set: set, inputs: in,
 		low: make([]float64, len(in)), typ: make([]float64, len(in)), high: make([]float64, len(in)),
-		interior: newBits(len(in)), probes: map[probe]*Draw{}, memory: &memory{},
+		interior: newBits(len(in)), probes: map[probe]*Draw{}, corners: map[uint64][]*Draw{}, memory: &memory{},
 	}
 	for id, q := range in {
 		if id == 0 {
@@ -189,7 +190,7 @@ func (s *Space) Replace(changes ...Replacement) *Space {
 	for _, c := range changes {
 		o.low[c.ID], o.typ[c.ID], o.high[c.ID] = c.Min, c.Typ, c.Max
 	}
-	o.probes, o.spare = map[probe]*Draw{}, nil
+	o.probes, o.corners, o.spare = map[probe]*Draw{}, map[uint64][]*Draw{}, nil
 	return &o
 }
 

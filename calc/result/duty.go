@@ -19,12 +19,11 @@ import (
 // DutyLimits gives the floating voltage and the derived limits of every operating point.
 func DutyLimits(b *rule.Bench) *finding.DutyLimits {
 	out := &finding.DutyLimits{}
-	for i := range b.Points {
-		if b.Points[i].Operating == nil {
-			continue
-		}
-		out.Points = append(out.Points, dutyPoint(b, &b.Points[i]))
+	if b.Points[0].Operating == nil {
+		return out
 	}
+	out.Points = make([]finding.DutyPoint, len(b.Points))
+	b.SideBySide(func(i int) { out.Points[i] = dutyPoint(b, &b.Points[i]) })
 	return out
 }
 

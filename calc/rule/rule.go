@@ -61,6 +61,9 @@ type Rule struct {
 	Explain func(c *circuit.Circuit, role string, k Check) []string
 	// Proxy, where set, stands in for the margin in the search for the worst draw: a cheaper number of the same sign and direction.
 	Proxy func(c *circuit.Circuit, role string) float64
+	// Alternatives, where set, are margins of which Check's is the smallest. The worst draw of each is searched for: at the typical draw the
+	// smallest hides what the others read.
+	Alternatives []func(c *circuit.Circuit, role string) float64
 	// ProxyDimension is the dimension of Proxy.
 	ProxyDimension quantity.Dimension
 	// FailSeverity, where set, replaces Fail for a stage.
@@ -139,6 +142,18 @@ func Validate(rules []*Rule) []error {
 		if r.Sense == 0 || r.Check == nil || r.Inapplicable == nil {
 			bad("no sense, check or applicability")
 		}
+	}
+	return out
+}
+
+// Searches are the functions among whose worst draws is the rule's.
+func (r *Rule) Searches(role string) []corner.Function {
+	if len(r.Alternatives) == 0 {
+		return []corner.Function{r.function(role)}
+	}
+	out := make([]corner.Function, len(r.Alternatives))
+	for i, f := range r.Alternatives {
+		out[i] = func(d *corner.Draw) float64 { return f(circuit.Of(d), role) }
 	}
 	return out
 }

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"sync"
 
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
@@ -19,6 +20,7 @@ type Bench struct {
 	// Interrupted, where set, tells that the caller no longer waits.
 	Interrupted func() bool
 
+	mu      sync.Mutex
 	assumed []stage.Assumption
 }
 
@@ -65,24 +67,123 @@ func NewBench(s *stage.Stage, p *stage.Policy) *Bench {
 // Stopped tells whether the caller no longer waits; what is returned from then on is not used.
 func (b *Bench) Stopped() bool { return b.Interrupted != nil && b.Interrupted() }
 
-// Run gives the findings of one rule: one for each role and kind of mode.
-func (b *Bench) Run(r *Rule) []finding.Finding {
-	roles := r.Roles
-	if len(roles) == 0 {
-		roles = []string{""}
-	}
-	var out []finding.Finding
-	for _, role := range roles {
-		for _, group := range b.groups(r) {
-			out = append(out, b.judge(r, role, group.mode, group.points))
+// Run gives the findings of rules, in their order: one for each role and kind of mode. Operating points are worked on side by side, each
+// with its spaces by one goroutine, so that the answer does not depend on how they are scheduled. A panic leaves the rule open and the others
+// intact; broken counts such rules.
+func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
+	var jobs []*job
+	for _, r := range rules {
+		roles := r.Roles
+		if len(roles) == 0 {
+			roles = []string{""}
+		}
+		for _, role := range roles {
+			for _, g := range b.groups(r) {
+				jobs = append(jobs, &job{rule: r, role: role, group: g, results: make([]result, len(g.points))})
+			}
 		}
 	}
-	return out
+	b.eachPoint(jobs, func(j *job, k int) { j.results[k] = b.at(j.rule, j.role, &b.Points[j.group.points[k]]) })
+	for _, j := range jobs {
+		for i := range j.results {
+			if w := &j.results[i].worst; w.Trace != nil {
+				b.note(w.Space, w.Trace)
+			}
+		}
+	}
+	binding := func(f func(*job)) {
+		b.eachPoint(jobs, func(j *job, k int) {
+			if k == j.worst() {
+				f(j)
+			}
+		})
+	}
+	binding(func(j *job) { b.refine(j.rule, j.role, &j.results[j.best]) })
+	for _, j := range jobs {
+		b.settle(j)
+	}
+	binding(func(j *job) { j.finding = b.report(j.rule, j.role, j.group.mode, j.results, j.best) })
+	for _, j := range jobs {
+		if j.panicked {
+			if broken == 0 || findings[len(findings)-1].Rule != j.rule.ID {
+				findings = append(findings, b.Broken(j.rule))
+				broken++
+			}
+			continue
+		}
+		findings = append(findings, j.finding)
+	}
+	return findings, broken
 }
 
+// job is one finding under way.
+type job struct {
+	rule     *Rule
+	role     string
+	group    group
+	results  []result // of the points of the group
+	best     int      // index of the worst result
+	finding  finding.Finding
+	panicked bool
+}
+
+// worst finds the worst result and keeps it.
+func (j *job) worst() int {
+	j.best = 0
+	for i := range j.results {
+		if worse(&j.results[i], &j.results[j.best]) {
+			j.best = i
+		}
+	}
+	return j.best
+}
+
+// settle refines what is worse than the refined worst result; refining may have turned the order.
+func (b *Bench) settle(j *job) {
+	for range j.results {
+		if i := j.worst(); j.results[i].refined || !j.results[i].decided() {
+			return
+		}
+		b.refine(j.rule, j.role, &j.results[j.best])
+	}
+}
+
+// eachPoint calls f for every job and point of its group, side by side for different points.
+func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
+	b.SideBySide(func(i int) {
+		for _, j := range jobs {
+			if k := slices.Index(j.group.points, i); k >= 0 {
+				b.guarded(j, func() { f(j, k) })
+			}
+		}
+	})
+}
+
+// guarded runs f; a panic is kept in the job.
+func (b *Bench) guarded(j *job, f func()) {
+	defer func() {
+		if recover() != nil {
+			b.mu.Lock()
+			j.panicked = true
+			b.mu.Unlock()
+		}
+	}()
+	f()
+}
+
+// SideBySide calls f with the index of every operating point, each in a goroutine of its own.
+func (b *Bench) SideBySide(f func(point int)) {
+	var wg sync.WaitGroup
+	for i := range b.Points {
+		wg.Go(func() { f(i) })
+	}
+	wg.Wait()
+}
+
+// group is the operating points of one kind of mode, by their index.
 type group struct {
 	mode   string
-	points []*Point
+	points []int
 }
 
 // groups sorts the operating points by kind of mode, in the order of their first appearance.
@@ -99,7 +200,7 @@ func (b *Bench) groups(r *Rule) []group {
 			out = append(out, group{mode: mode})
 			k = len(out) - 1
 		}
-		out[k].points = append(out[k].points, p)
+		out[k].points = append(out[k].points, i)
 	}
 	return out
 }
@@ -113,37 +214,12 @@ type result struct {
 	notes   []string
 	margin  float64
 	reason  string // why not applicable
-	typical float64
+	refined bool
 }
 
-func (b *Bench) judge(r *Rule, role, mode string, points []*Point) finding.Finding {
-	var all []result
-	for _, p := range points {
-		all = append(all, b.at(r, role, p))
-	}
-	for i := range all {
-		if w := &all[i].worst; w.Trace != nil {
-			b.note(w.Space, w.Trace)
-		}
-	}
-	best := 0
-	for i := 1; i < len(all); i++ {
-		if worse(&all[i], &all[best]) {
-			best = i
-		}
-	}
-	if w := &all[best]; w.outcome != finding.NotApplicable && w.outcome != finding.Open {
-		b.refine(r, role, w)
-		for i := range all { // refining may have turned the order
-			if i != best && worse(&all[i], w) && all[i].outcome != finding.Open {
-				b.refine(r, role, &all[i])
-				if worse(&all[i], &all[best]) {
-					best = i
-				}
-			}
-		}
-	}
-	return b.report(r, role, mode, all, best)
+// decided tells whether the result has numbers.
+func (r *result) decided() bool {
+	return r.outcome != finding.NotApplicable && r.outcome != finding.Open
 }
 
 // worse orders results: by outcome, then by the margin's share of the limit.
@@ -161,13 +237,17 @@ func relative(margin, limit float64) float64 {
 	return margin / math.Abs(limit)
 }
 
-// margin of a check: distance to the limit, negative beyond it.
+// margin of a check as it is judged and reported: of value and limit at six digits.
 func (r *Rule) margin(c Check) float64 {
-	v, l := significant(c.Value), significant(c.Limit)
+	return r.distance(significant(c.Value), significant(c.Limit))
+}
+
+// distance of a value to its limit, negative beyond it.
+func (r *Rule) distance(value, limit float64) float64 {
 	if r.Sense == AtMost {
-		return minus(l, v)
+		return minus(limit, value)
 	}
-	return minus(v, l)
+	return minus(value, limit)
 }
 
 // minus subtracts; equal infinities are no distance apart.
@@ -187,7 +267,10 @@ func (r *Rule) function(role string) corner.Function {
 	if r.Proxy != nil {
 		return func(d *corner.Draw) float64 { return r.Proxy(circuit.Of(d), role) }
 	}
-	return func(d *corner.Draw) float64 { return r.margin(r.Check(circuit.Of(d), role)) }
+	return func(d *corner.Draw) float64 { // unrounded: rounding hides inputs of little effect
+		c := r.Check(circuit.Of(d), role)
+		return r.distance(c.Value, c.Limit)
+	}
 }
 
 // at searches the worst over the sets of one operating point.
@@ -197,17 +280,21 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 		res.outcome, res.reason = finding.NotApplicable, reason
 		return res
 	}
-	f := r.function(role)
 	first := true
 	if b.Stopped() {
 		res.outcome = finding.Open
 		return res
 	}
-	for _, w := range corner.SearchSets(p.Spaces, f) {
-		next := result{point: p, worst: w, typical: w.Typical}
-		b.decide(r, role, &next)
-		if first || worse(&next, &res) {
-			res, first = next, false
+	for _, f := range r.Searches(role) {
+		for _, w := range corner.SearchSets(p.Spaces, f) {
+			next := result{point: p, worst: w}
+			b.decide(r, role, &next)
+			if len(r.Alternatives) > 0 && w.Value == w.Value {
+				next.worst.Value, _ = corner.Evaluate(w.Draw, r.function(role))
+			}
+			if first || worse(&next, &res) {
+				res, first = next, false
+			}
 		}
 	}
 	return res
@@ -259,6 +346,10 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 
 // refine polishes the worst draw, so that the swings are known and the corner is checked.
 func (b *Bench) refine(r *Rule, role string, res *result) {
+	if res.refined || !res.decided() {
+		return
+	}
+	res.refined = true
 	f := r.function(role)
 	res.worst.Space.Polish(&res.worst, f)
 	b.decide(r, role, res)

@@ -62,6 +62,8 @@ func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 
 // note collects the assumptions behind what was read.
 func (b *Bench) note(s *corner.Space, t *corner.Trace) {
+	b.mu.Lock()
+	defer b.mu.Unlock()
 	for _, a := range s.Assumptions(t) {
 		if !slices.Contains(b.assumed, a) {
 			b.assumed = append(b.assumed, a)

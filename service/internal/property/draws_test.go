@@ -6,6 +6,7 @@ import (
 	"testing"
 
 	"floatrail/calc/catalog"
+	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
 	"floatrail/calc/finding"
 	"floatrail/calc/rule"
@@ -70,14 +71,20 @@ func TestNoDrawIsWorseThanReported(t *testing.T) {
 					t.Errorf("%s is evaluated but not at a draw inside the ranges", p)
 					return
 				}
+				if c := circuit.Of(d); is.outcome == finding.Pass && !rl.Holds(c, p.role) {
+					t.Errorf("%s passes, but a draw does not hold its guard: %s", p, is.text)
+				}
 				if rl.Proxy != nil {
 					return
+				}
+				if m < -1e-6*(math.Abs(is.value)+math.Abs(is.limit)) && is.outcome != finding.Fail {
+					t.Errorf("%s is %s, but a draw is beyond the limit by %g", p, is.outcome, -m)
 				}
 				worst := is.margin
 				if worst != worst { // infinite: nothing is worse
 					return
 				}
-				scale := math.Max(math.Abs(is.value), math.Abs(is.limit))
+				scale := math.Abs(is.value) + math.Abs(is.limit)
 				if e := (worst - m) / scale; e > 1e-6 && e > excess[p] {
 					excess[p] = e
 				}

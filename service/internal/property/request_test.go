@@ -23,7 +23,6 @@ import (
 
 const stages = "../../../testdata/stages/"
 
-
 // document reads a demo request as a JSON tree.
 func document(t testing.TB, name string) any {
 	t.Helper()

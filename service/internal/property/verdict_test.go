@@ -56,12 +56,11 @@ func judge(t testing.TB, r *calc.Request, rules []*rule.Rule) *judged {
 
 // run runs one rule; a panic fails the test.
 func (j *judged) run(t testing.TB, rl *rule.Rule) {
-	defer func() {
-		if e := recover(); e != nil {
-			t.Errorf("%s panics: %v", rl.ID, e)
-		}
-	}()
-	for _, f := range j.bench.Run(rl) {
+	findings, broken := j.bench.Run(rl)
+	if broken > 0 {
+		t.Errorf("%s panics", rl.ID)
+	}
+	for _, f := range findings {
 		point := f.OperatingPoint
 		if point == "" { // a stagewide rule that does not apply names no point
 			point = j.bench.Points[0].Name()
