@@ -109,7 +109,7 @@ func start(t testing.TB, c config.Config, handlers func(rpc.Options) pb.FloatRai
 		r.transport.CloseIdleConnections()
 	}
 	r.client = pb.NewFloatRailClient(conn)
-	t.Cleanup(func() { r.stop() })
+	t.Cleanup(func() { _ = r.stop() })
 	for deadline := time.Now().Add(20 * time.Second); ; time.Sleep(5 * time.Millisecond) {
 		if status, _, _ := r.get(r.ops + "/readyz"); status == http.StatusOK {
 			return r

@@ -141,7 +141,7 @@ func (j *job) worst() int {
 // settle refines what is worse than the refined worst result; refining may have turned the order.
 func (b *Bench) settle(j *job) {
 	for range j.results {
-		if i := j.worst(); j.results[i].refined || !j.results[i].decided() {
+		if i := j.worst(); j.results[i].refined || !j.results[i].numbered() {
 			return
 		}
 		b.refine(j.rule, j.role, &j.results[j.best])
@@ -217,10 +217,8 @@ type result struct {
 	refined bool
 }
 
-// decided tells whether the result has numbers.
-func (r *result) decided() bool {
-	return r.outcome != finding.NotApplicable && r.outcome != finding.Open
-}
+// numbered tells whether the result has numbers, be it open for what they do not contain yet.
+func (r *result) numbered() bool { return r.outcome != finding.NotApplicable && r.margin == r.margin }
 
 // worse orders results: by outcome, then by the margin's share of the limit.
 func worse(a, b *result) bool {
@@ -287,10 +285,12 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 	}
 	for _, f := range r.Searches(role) {
 		for _, w := range corner.SearchSets(p.Spaces, f) {
-			next := result{point: p, worst: w}
-			b.decide(r, role, &next)
-			if len(r.Alternatives) > 0 && w.Value == w.Value {
-				next.worst.Value, _ = corner.Evaluate(w.Draw, r.function(role))
+			next := b.found(r, role, p, w)
+			if b.near(r, &next) { // with directions of its own, and polished
+				if own := b.found(r, role, p, w.Space.Search(f)); !worse(&next, &own) {
+					next = own
+				}
+				b.refine(r, role, &next)
 			}
 			if first || worse(&next, &res) {
 				res, first = next, false
@@ -298,6 +298,29 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 		}
 	}
 	return res
+}
+
+// found is the result of a search.
+func (b *Bench) found(r *Rule, role string, p *Point, w corner.Worst) result {
+	res := result{point: p, worst: w}
+	b.decide(r, role, &res)
+	if len(r.Alternatives) > 0 && w.Value == w.Value {
+		res.worst.Value, _ = corner.Evaluate(w.Draw, r.function(role))
+	}
+	return res
+}
+
+// nearShare is the part of what all inputs together take off the typical margin that moving them once more is trusted to take off at most.
+const nearShare = 0.5
+
+// near tells whether polishing may turn an outcome. Every set of every operating point that is so near its guard is polished, whether it
+// binds or not.
+func (b *Bench) near(r *Rule, res *result) bool {
+	slack := r.guardSlack(res.check)
+	if r.Proxy != nil {
+		slack = res.worst.Value
+	}
+	return !(slack > nearShare*(res.worst.Typical-res.worst.Value))
 }
 
 // decide turns the worst draw into an outcome.
@@ -346,7 +369,7 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 
 // refine polishes the worst draw, so that the swings are known and the corner is checked.
 func (b *Bench) refine(r *Rule, role string, res *result) {
-	if res.refined || !res.decided() {
+	if res.refined || !res.numbered() {
 		return
 	}
 	res.refined = true
