@@ -23,7 +23,7 @@ var chargeCapacitance = &rule.Rule{
 	Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		if c.Point == nil {
-			return rule.Check{Value: c.Want("stage.operatingPoints"), Limit: nan, Guard: nan}
+			return rule.Check{Value: c.NoPoint(), Limit: nan, Guard: nan}
 		}
 		limit := c.MinimumCapacitance(c.Required())
 		return rule.Check{Value: c.Capacitance(), Limit: limit, Guard: math.Max(above(c, limit), c.MinimumCapacitance(c.Kept()))}
@@ -34,7 +34,7 @@ var chargeCapacitance = &rule.Rule{
 		func(c *circuit.Circuit, _ string) float64 {
 			switch {
 			case c.Point == nil:
-				return c.Want("stage.operatingPoints")
+				return c.NoPoint()
 			case c.Point.HeldOn != nil: // no period, no ripple
 				return math.Inf(1)
 			}
@@ -56,7 +56,7 @@ var chargeCapacitance = &rule.Rule{
 func spare(c *circuit.Circuit, keep func(*circuit.Circuit) float64) float64 {
 	switch {
 	case c.Point == nil:
-		return c.Want("stage.operatingPoints")
+		return c.NoPoint()
 	case c.Point.HeldOn != nil:
 		return c.Capacitance() - c.MinimumCapacitance(keep(c))
 	}

@@ -30,9 +30,13 @@ var chargeGateSufficiency = &rule.Rule{
 		}
 		return ""
 	},
+	Proxy: func(c *circuit.Circuit, _ string) float64 {
+		return c.Gate(c.Low()) - c.Need(&c.Stage.HighSide.DriveVoltageMin)
+	},
+	ProxyDimension: quantity.Voltage,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.HighSide.DriveVoltageMin)
-		return rule.Check{Value: c.Gate(c.Low()), Limit: limit, Guard: limit + c.Margin(limit)}
+		return rule.Check{Value: circuit.Empty(c.Gate(c.Low())), Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		return slices.Concat(collapseNote(c), cancelNote(c))

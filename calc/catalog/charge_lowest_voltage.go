@@ -18,10 +18,12 @@ var chargeLowestVoltage = &rule.Rule{
 	Sources: []string{"an6076", "im393", "textbook"},
 	Fail:    stage.Major, Marginal: stage.Minor, Open: stage.Major,
 	Quantity: "Lowest V_BS", Against: "falling lockout threshold", Dimension: quantity.Voltage, Sense: rule.AtLeast,
-	Inapplicable: always,
+	Inapplicable:   always,
+	Proxy:          func(c *circuit.Circuit, _ string) float64 { return c.Low() - c.Need(&c.Stage.Driver.UVLOFalling) },
+	ProxyDimension: quantity.Voltage,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.Driver.UVLOFalling)
-		return rule.Check{Value: c.Low(), Limit: limit, Guard: limit + c.Margin(limit)}
+		return rule.Check{Value: circuit.Empty(c.Low()), Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		return slices.Concat(collapseNote(c), cancelNote(c))

@@ -24,7 +24,7 @@ var chargeStandingLoad = &rule.Rule{
 	Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		if c.Point == nil {
-			return rule.Check{Value: c.Want("stage.operatingPoints")}
+			return rule.Check{Value: c.NoPoint()}
 		}
 		pull, clamp, other, total := standing(c)
 		return rule.Check{Value: (pull + clamp + other) / total, Limit: standingShare, Guard: below(c, standingShare)}

@@ -27,7 +27,7 @@ var diodeHotLeakage = &rule.Rule{
 	Inapplicable: withDiode,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		if c.Point == nil {
-			return rule.Check{Value: c.Want("stage.operatingPoints")}
+			return rule.Check{Value: c.NoPoint()}
 		}
 		share, rise := leakageShare(c)
 		ch := rule.Check{Value: share, Limit: hotLeakageShare, Guard: below(c, hotLeakageShare)}

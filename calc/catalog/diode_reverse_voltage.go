@@ -18,7 +18,7 @@ var diodeReverseVoltage = &rule.Rule{
 	Stagewide: true, Inapplicable: discrete,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		if c.Point == nil {
-			return rule.Check{Value: c.Want("stage.operatingPoints")}
+			return rule.Check{Value: c.NoPoint()}
 		}
 		limit := c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax)
 		return rule.Check{Value: c.Need(&c.Point.BusVoltage) + c.High() - c.Supply(), Limit: limit, Guard: limit * c.Policy.DiodeReverseRatio,

@@ -57,6 +57,9 @@ const (
 
 var nan = math.NaN()
 
+// NoPoint notes that the stage has no operating point.
+func (c *Circuit) NoPoint() float64 { return c.Want(c.Stage.OperatingPoints.Field) }
+
 // Supply is V_DD [V].
 func (c *Circuit) Supply() float64 { return c.Need(&c.Stage.GateSupply.Voltage) }
 

@@ -117,7 +117,7 @@ func (c *Circuit) makeEdge() edge {
 
 func (c *Circuit) bus() float64 {
 	if c.Point == nil {
-		return c.Want("stage.operatingPoints")
+		return c.NoPoint()
 	}
 	return c.Need(&c.Point.BusVoltage)
 }

@@ -180,7 +180,11 @@ func (c *Circuit) Period() *Period {
 }
 
 func (c *Circuit) period() Period {
-	if c.Point == nil || c.Point.FixedDuty == nil {
+	if c.Point == nil {
+		c.NoPoint()
+		return Period{}
+	}
+	if c.Point.FixedDuty == nil {
 		c.Open(noModel)
 		return Period{}
 	}

@@ -21,6 +21,14 @@ func (c *Circuit) Low() float64 {
 	return st.Low
 }
 
+// Empty cuts a voltage at 0: the hold law continues below, where C_B is empty. A collapse stays what it is [V].
+func Empty(v float64) float64 {
+	if v < 0 && !math.IsInf(v, -1) {
+		return 0
+	}
+	return v
+}
+
 // High is the highest V_BS of the operating point [V], limited by a clamp where one is fitted.
 func (c *Circuit) High() float64 {
 	var v float64

@@ -50,10 +50,10 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	out.RechargeWindow, out.RechargeRatio, out.Deficit = none(quantity.Time), none(quantity.Ratio), none(quantity.Voltage)
 	out.GateVoltageLow = none(quantity.Voltage)
 	var low rule.Range
-	out.FloatingVoltageLow, low = span(func(c *circuit.Circuit) float64 { return c.Low() }, quantity.Voltage)
+	out.FloatingVoltageLow, low = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage)
 	out.FloatingVoltageHigh, _ = span(func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage)
 	if p.Operating.LoadCurrent.Known() && p.Operating.LoadCurrent.Max+firstKnown(p.Operating.RippleCurrent.Max)/2 > 0 {
-		out.GateVoltageLow, _ = span(func(c *circuit.Circuit) float64 { return c.Gate(c.Low()) }, quantity.Voltage)
+		out.GateVoltageLow, _ = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage)
 	}
 	if p.Operating.HeldOn != nil {
 		out.Limits = heldLimits(b, p)

@@ -225,7 +225,11 @@ func worse(a, b *result) bool {
 	if a.outcome != b.outcome {
 		return a.outcome > b.outcome
 	}
-	return relative(a.margin, a.check.Limit) < relative(b.margin, b.check.Limit)
+	x, y := relative(a.margin, a.check.Limit), relative(b.margin, b.check.Limit)
+	if x == y { // where the judged numbers agree, what was searched decides
+		return a.worst.Value < b.worst.Value
+	}
+	return x < y
 }
 
 func relative(margin, limit float64) float64 {
@@ -286,11 +290,14 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 	for _, f := range r.Searches(role) {
 		for _, w := range corner.SearchSets(p.Spaces, f) {
 			next := b.found(r, role, p, w)
-			if b.near(r, &next) { // with directions of its own, and polished
-				if own := b.found(r, role, p, w.Space.Search(f)); !worse(&next, &own) {
-					next = own
-				}
+			if b.near(r, &next) { // with directions of its own as well, and polished
 				b.refine(r, role, &next)
+				if own := b.found(r, role, p, w.Space.Search(f)); own.worst.Value != w.Value {
+					b.refine(r, role, &own)
+					if worse(&own, &next) {
+						next = own
+					}
+				}
 			}
 			if first || worse(&next, &res) {
 				res, first = next, false
