@@ -1,6 +1,8 @@
 package circuit
 
 import (
+	"math"
+
 	"floatrail/calc/capacitor"
 	"floatrail/calc/charge"
 	"floatrail/calc/corner"
@@ -62,7 +64,7 @@ func (c *Circuit) CapacitorLeakage(s *stage.Capacitor, v float64) float64 {
 	kind := Kind(s)
 	switch {
 	case given:
-		return capacitor.InsulationLeakage(value, v, rc)
+		return c.hotInsulation() * capacitor.InsulationLeakage(value, v, rc)
 	case kind == capacitor.Aluminium || kind == capacitor.Tantalum:
 		c.Assume(stage.Assumption{Field: s.Leakage.Field, Assumed: "0.01·C·V or 3 µA, the greater", Direction: stage.Optimistic,
 			Reason: "the usual limit at 20 °C; no leakage is given"})
@@ -70,7 +72,13 @@ func (c *Circuit) CapacitorLeakage(s *stage.Capacitor, v float64) float64 {
 	}
 	c.Assume(stage.Assumption{Field: s.Leakage.Field, Assumed: "insulation of 500 MΩ·µF or 10 GΩ, the lower", Direction: stage.Conservative,
 		Reason: "the usual limit of ceramics; no leakage or insulation is given"})
-	return capacitor.InsulationLeakage(value, v, nan)
+	return c.hotInsulation() * capacitor.InsulationLeakage(value, v, nan)
+}
+
+// hotInsulation is the growth of a ceramic's leakage with temperature: tenfold from 25 to 125 °C, in proportion in the logarithm
+// [common-practice].
+func (c *Circuit) hotInsulation() float64 {
+	return math.Pow(10, math.Max(0, c.Set.Ambient-stage.ReferenceTemperature)/100)
 }
 
 // edge is what leaves C_B at the rising edge, as a line over V_BS after the edge.
