@@ -3,8 +3,10 @@ package rule
 import (
 	"fmt"
 	"math"
+	"runtime"
 	"slices"
 	"sync"
+	"sync/atomic"
 
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
@@ -91,16 +93,19 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 			}
 		}
 	}
-	binding := func(f func(*job)) {
+	binding := func(f func(*job)) { // which point binds is found before any of them is worked on
+		for _, j := range jobs {
+			j.worst()
+		}
 		b.eachPoint(jobs, func(j *job, k int) {
-			if k == j.worst() {
+			if k == j.best {
 				f(j)
 			}
 		})
 	}
 	binding(func(j *job) { b.refine(j.rule, j.role, &j.results[j.best]) })
 	for _, j := range jobs {
-		b.settle(j)
+		b.guarded(j, func() { b.settle(j) })
 	}
 	binding(func(j *job) { j.finding = b.report(j.rule, j.role, j.group.mode, j.results, j.best) })
 	for _, j := range jobs {
@@ -127,24 +132,25 @@ type job struct {
 	panicked bool
 }
 
-// worst finds the worst result and keeps it.
-func (j *job) worst() int {
+// worst finds the worst result and keeps its index.
+func (j *job) worst() *result {
 	j.best = 0
 	for i := range j.results {
 		if worse(&j.results[i], &j.results[j.best]) {
 			j.best = i
 		}
 	}
-	return j.best
+	return &j.results[j.best]
 }
 
 // settle refines what is worse than the refined worst result; refining may have turned the order.
 func (b *Bench) settle(j *job) {
 	for range j.results {
-		if i := j.worst(); j.results[i].refined || !j.results[i].numbered() {
+		w := j.worst()
+		if w.refined || !w.numbered() {
 			return
 		}
-		b.refine(j.rule, j.role, &j.results[j.best])
+		b.refine(j.rule, j.role, w)
 	}
 }
 
@@ -152,6 +158,9 @@ func (b *Bench) settle(j *job) {
 func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
 	b.SideBySide(func(i int) {
 		for _, j := range jobs {
+			if b.Stopped() {
+				return
+			}
 			if k := slices.Index(j.group.points, i); k >= 0 {
 				b.guarded(j, func() { f(j, k) })
 			}
@@ -171,11 +180,16 @@ func (b *Bench) guarded(j *job, f func()) {
 	f()
 }
 
-// SideBySide calls f with the index of every operating point, each in a goroutine of its own.
+// SideBySide calls f with the index of every operating point, as many at once as there are processors.
 func (b *Bench) SideBySide(f func(point int)) {
 	var wg sync.WaitGroup
-	for i := range b.Points {
-		wg.Go(func() { f(i) })
+	var next atomic.Int64
+	for range min(runtime.GOMAXPROCS(0), len(b.Points)) {
+		wg.Go(func() {
+			for i := int(next.Add(1)) - 1; i < len(b.Points); i = int(next.Add(1)) - 1 {
+				f(i)
+			}
+		})
 	}
 	wg.Wait()
 }
@@ -225,16 +239,26 @@ func worse(a, b *result) bool {
 	if a.outcome != b.outcome {
 		return a.outcome > b.outcome
 	}
-	x, y := relative(a.margin, a.check.Limit), relative(b.margin, b.check.Limit)
-	if x == y { // where the judged numbers agree, what was searched decides
+	x, y := a.margin, b.margin
+	if a.check.Limit != 0 || b.check.Limit != 0 {
+		x, y = relative(x, a.check.Limit), relative(y, b.check.Limit)
+	}
+	switch { // where the judged numbers agree, what was searched decides; at last the name, so that the order of a request does not
+	case x < y || x > y:
+		return x < y
+	case a.worst.Value < b.worst.Value || a.worst.Value > b.worst.Value:
 		return a.worst.Value < b.worst.Value
 	}
-	return x < y
+	return a.point != nil && b.point != nil && a.point.Name() < b.point.Name()
 }
 
+// relative is a margin as a share of its limit; of a limit of 0, which other draws do not have, it is infinite.
 func relative(margin, limit float64) float64 {
-	if limit == 0 || math.IsInf(limit, 0) || limit != limit {
+	switch {
+	case math.IsInf(limit, 0) || limit != limit || margin == 0:
 		return margin
+	case limit == 0:
+		return math.Inf(1) * margin
 	}
 	return margin / math.Abs(limit)
 }

@@ -154,7 +154,8 @@ func (s *sheet) compare(r row, live any) error {
 }
 
 // find reads the number of a row: `rule`, `rule of subject`, either with ` limit`, ` guard`, ` typical` or ` margin`; or the path of a result.
-// A place is `operating point; corner`, or the operating point alone where a finding has no corner.
+// A place is `operating point; corner`, or the operating point alone where a finding has no corner; `any; corner` where the rule reads nothing
+// of an operating point but its temperatures.
 func find(r row, live any) (float64, error) {
 	if !strings.Contains(r.key, "/") {
 		v, ok := lookUp(live, r.key+".value").(float64)
@@ -180,7 +181,8 @@ func find(r row, live any) (float64, error) {
 		if corner, ok := lookUp(f, "corner.name").(string); ok {
 			place += "; " + corner
 		}
-		if place != r.place {
+		_, corner, _ := strings.Cut(place, "; ")
+		if place != r.place && "any; "+corner != r.place {
 			return 0, fmt.Errorf("binds at %s", place)
 		}
 		if attribute == "margin" {
@@ -248,7 +250,8 @@ func TestSheetFaults(t *testing.T) {
 		good bool
 	}{
 		{row{"a/b", "p; hot", "x = 2 V", "0.1 %", "exact"}, true}, {row{"a/b of U1", "p; hot", "x = 2 V", "0.1 %", "exact"}, true},
-		{row{"a/b margin", "p; hot", "y = -1 V", "0.1 %", "exact"}, true}, {row{"sizing.points[p].low", "p", "z = 3 V", "0.1 %", "exact"}, true},
+		{row{"a/b margin", "p; hot", "y = -1 V", "0.1 %", "exact"}, true}, {row{"a/b", "any; hot", "x = 2 V", "0.1 %", "exact"}, true},
+		{row{"a/b", "any; cold", "x = 2 V", "0.1 %", "exact"}, false}, {row{"sizing.points[p].low", "p", "z = 3 V", "0.1 %", "exact"}, true},
 		{row{"a/b of U2", "p; hot", "x = 2 V", "0.1 %", "exact"}, false}, {row{"a/b", "p; cold", "x = 2 V", "0.1 %", "exact"}, false},
 		{row{"a/b", "p; hot", "x = 2.1 V", "0.1 %", "exact"}, false}, {row{"a/b", "p; hot", "z = 3 V", "0.1 %", "exact"}, false},
 		{row{"a/b", "p; hot", "x = 2 V", "5 %", "wide"}, false}, {row{"a/b", "p; hot", "x = 2 V", "0.1 %", ""}, false},

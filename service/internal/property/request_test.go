@@ -250,3 +250,8 @@ func pick(t testing.TB, r *finding.Report, rule, role string) *finding.Finding {
 }
 
 func sorted(m map[string]any) []string { return slices.Sorted(maps.Keys(m)) }
+
+// key is what findings are matched by.
+type key struct{ rule, role, mode string }
+
+func (k key) String() string { return k.rule + " " + k.role + " " + k.mode }

@@ -3,7 +3,6 @@ package property
 import (
 	"encoding/json"
 	"fmt"
-	"maps"
 	"math"
 	"runtime"
 	"slices"
@@ -15,9 +14,6 @@ import (
 
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/calc"
-	"floatrail/calc/catalog"
-	"floatrail/calc/circuit"
-	"floatrail/calc/corner"
 	"floatrail/calc/finding"
 	"floatrail/calc/rule"
 )
@@ -29,25 +25,37 @@ func (p place) String() string { return fmt.Sprintf("%s %s at %q", p.rule, p.rol
 
 // verdict is what a rule found at a place.
 type verdict struct {
-	outcome       finding.Outcome
-	value, limit  float64
-	margin        float64 // absolute
-	relative      float64
-	binding       bool // this place decided the finding
-	missing, text string
+	outcome      finding.Outcome
+	value, limit float64
+	margin       float64 // absolute; NaN where infinite
+	binding      bool    // this place decided the finding
+	interior     bool    // an input of the binding corner stands inside its range
+	text         string
+}
+
+// order is the number by which findings are ordered: the margin as a share of the limit.
+func (v verdict) order() float64 {
+	switch {
+	case v.limit != v.limit || v.margin == 0:
+		return v.margin
+	case v.limit == 0:
+		return math.Inf(1) * v.margin
+	}
+	return v.margin / math.Abs(v.limit)
 }
 
 // judged is a bench with the verdicts of rules on it.
 type judged struct {
-	bench *rule.Bench
-	at    map[place]verdict
+	bench   *rule.Bench
+	at      map[place]verdict
+	binding map[key]verdict
 }
 
 // judge runs rules on a bound request.
 func judge(t testing.TB, r *calc.Request, rules []*rule.Rule) *judged {
 	policy := r.Policy
 	r.Stage.Complete(&policy)
-	out := &judged{bench: rule.NewBench(r.Stage, &policy), at: map[place]verdict{}}
+	out := &judged{bench: rule.NewBench(r.Stage, &policy), at: map[place]verdict{}, binding: map[key]verdict{}}
 	for _, rl := range rules {
 		out.run(t, rl)
 	}
@@ -62,23 +70,22 @@ func (j *judged) run(t testing.TB, rl *rule.Rule) {
 	}
 	for _, f := range findings {
 		point := f.OperatingPoint
-		if point == "" { // a stagewide rule that does not apply names no point
-			point = j.bench.Points[0].Name()
+		for k := range j.bench.Points { // a stagewide rule that does not apply names no point: it is the one not listed
+			name := j.bench.Points[k].Name()
+			if point == "" && !slices.ContainsFunc(f.Points, func(p finding.PointResult) bool { return p.OperatingPoint == name }) {
+				point = name
+			}
 		}
-		j.at[place{f.Rule, f.Role, point}] = verdict{f.Outcome, f.Value.Value, f.Limit.Value, f.Margin.Absolute.Value, f.Margin.Relative, true,
-			fmt.Sprint(f.Missing), f.Message}
+		v := verdict{outcome: f.Outcome, value: f.Value.Value, limit: f.Limit.Value, margin: f.Margin.Absolute.Value, binding: true, text: f.Message}
+		for _, c := range f.Corner.Settings {
+			v.interior = v.interior || c.Bound == finding.Interior
+		}
+		j.at[place{f.Rule, f.Role, point}], j.binding[key{f.Rule, f.Role, f.Mode}] = v, v
 		for _, p := range f.Points {
 			j.at[place{f.Rule, f.Role, p.OperatingPoint}] = verdict{outcome: p.Outcome, value: p.Value.Value, limit: p.Limit.Value,
-				margin: p.Margin.Absolute.Value, relative: p.Margin.Relative}
+				margin: p.Margin.Absolute.Value}
 		}
 	}
-}
-
-// places lists the places in a fixed order.
-func (j *judged) places() []place {
-	return slices.SortedFunc(maps.Keys(j.at), func(a, b place) int {
-		return slices.Compare([]string{a.rule, a.role, a.point}, []string{b.rule, b.role, b.point})
-	})
 }
 
 // variant is a changed request with the name of the change.
@@ -133,55 +140,10 @@ func request(tree any) (*calc.Request, error) {
 	return &r, nil
 }
 
-// readers tells, for each input by its path, which rules read it anywhere in their searches.
-func readers(j *judged) map[string]map[string]bool {
-	out := map[string]map[string]bool{}
-	for _, rl := range catalog.All() {
-		eachSearch(j.bench, rl, func(_ *rule.Point, s *corner.Space, role string) {
-			w := s.Search(rl.Worst(role))
-			_, t := corner.Evaluate(w.Draw, func(d *corner.Draw) float64 { return rl.Check(circuit.Of(d), role).Value })
-			w.Trace.Add(t)
-			for _, q := range s.Inputs(w.Trace) {
-				if out[q.Field] == nil {
-					out[q.Field] = map[string]bool{}
-				}
-				out[q.Field][rl.ID] = true
-			}
-		})
-	}
-	return out
-}
-
-// eachSearch calls f for every space in which a rule is searched.
-func eachSearch(b *rule.Bench, rl *rule.Rule, f func(p *rule.Point, s *corner.Space, role string)) {
-	for _, role := range rolesOf(rl) {
-		for i := range b.Points {
-			p := &b.Points[i]
-			if rl.Inapplicable(b.Stage, p.Operating, role) != "" {
-				continue
-			}
-			for _, s := range p.Spaces {
-				f(p, s, role)
-			}
-		}
-	}
-}
-
 // rolesOf are the roles in which a rule judges; one without a name where it has none.
 func rolesOf(rl *rule.Rule) []string {
 	if len(rl.Roles) == 0 {
 		return []string{""}
 	}
 	return rl.Roles
-}
-
-// noise is how far two numbers of six significant digits may differ by rounding alone.
-func noise(values ...float64) float64 {
-	most := 0.0
-	for _, v := range values {
-		if v == v && !math.IsInf(v, 0) {
-			most = math.Max(most, math.Abs(v))
-		}
-	}
-	return 1e-6 * most
 }
