@@ -34,6 +34,10 @@ var chargeOversize = &rule.Rule{
 		if ch.Limit < ch.Value*available/t {
 			return []string{"the reservoir bounds it"}
 		}
+		if math.IsInf(t, 1) {
+			return []string{"no capacitance is charged in time: V_BS never reaches the rising lockout threshold with margin; it settles at " +
+				quantity.Format(c.Element().Settled(c.Supply(), c.Loads().Total()), quantity.Voltage)}
+		}
 		return []string{fmt.Sprintf("the first charge bounds it: %s of %s available", quantity.Format(t, quantity.Time), quantity.Format(available, quantity.Time))}
 	},
 }

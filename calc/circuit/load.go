@@ -163,11 +163,12 @@ func (c *Circuit) gateLine(bias charge.OffBias) (atZero, perVolt float64) {
 			Reason: "the gate voltage at which the gate charge was specified is not given"})
 		return g.Specified, 0
 	}
-	drive := bias.Drive(c.Supply())
+	top := c.Ceiling()
+	drive := bias.Drive(top)
 	slope, _ := g.Slope(drive)
 	atZero = g.Specified + slope*(bias.Drive(0)-g.SpecifiedAt)
-	if atZero < 0 { // no charge is negative at 0 V: the chord from there, which lies above the line up to the supply
-		return 0, g.At(drive) / c.Supply()
+	if atZero < 0 { // no charge is negative at 0 V: the chord from there, which lies above the line up to the highest V_BS that can be
+		return 0, g.At(drive) / top
 	}
 	return atZero, slope
 }

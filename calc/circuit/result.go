@@ -103,8 +103,14 @@ func (c *Circuit) Drop(keep float64) float64 {
 // Left is what recharge leaves above a voltage that V_BS must keep [V].
 func (c *Circuit) Left(keep float64) float64 { return c.recharged(charge.Consumed(c.Budget())) - keep }
 
-// PermittedRipple is the policy's share of the settled V_BS [V].
-func (c *Circuit) PermittedRipple() float64 { return c.Policy.RippleRatio * c.Settled() }
+// PermittedRipple is the policy's share of V_BS before the rising edge, or of the required voltage where there is no steady state [V].
+func (c *Circuit) PermittedRipple() float64 {
+	v := c.Steady().BeforeEdge
+	if c.Steady().Collapses {
+		v = c.Required()
+	}
+	return c.Policy.RippleRatio * v
+}
 
 // Kept is Required with the policy's margin [V].
 func (c *Circuit) Kept() float64 {
@@ -136,25 +142,26 @@ func (c *Circuit) MinimumCapacitance(keep float64) float64 {
 	return v
 }
 
-// BreakEvenWindow is the shortest recharge window that replaces the charge of a period at the required voltage [s]. The element then
-// delivers the current that it carries at the required voltage and the ripple above it; +Inf where it carries none.
+// BreakEvenWindow is the shortest recharge window, of the same make-up as the present one, that replaces the charge of a period at the
+// required voltage [s]. The element then delivers the mean of the currents that it carries in the parts of the window at the required voltage
+// and the ripple above it; +Inf where they carry none.
 func (c *Circuit) BreakEvenWindow() float64 {
 	p := c.Period()
 	q := charge.Consumed(c.Budget())
-	best := math.Inf(-1)
-	for i := range p.Off {
-		if p.Off[i].Conducts {
-			best = math.Max(best, p.Off[i].Drive)
-		}
-	}
-	i := p.Element.Current(best - c.Required() - q/p.Capacitance)
-	if !(q == q) || !(p.Capacitance > 0) {
+	v := c.Required() + q/p.Capacitance
+	if v != v || !(p.Capacitance > 0) {
 		return nan
 	}
-	if !(i > p.On.Load) {
-		return math.Inf(1)
+	sum := 0.0 // charge that the window would bring
+	for i := range p.Off {
+		if iv := &p.Off[i]; iv.Conducts {
+			sum += iv.Duration * math.Max(0, p.Element.Current(iv.Drive-v))
+		}
 	}
-	return q / i
+	if mean := sum / p.Window; mean > p.On.Load {
+		return q / mean
+	}
+	return math.Inf(1)
 }
 
 // RepetitivePeak is the largest current of the element in the steady state [A].

@@ -1,6 +1,7 @@
 package corner
 
 import (
+	"cmp"
 	"math"
 	"slices"
 
@@ -173,14 +174,29 @@ func SearchSets(sets []*Space, f Function) []Worst {
 		d := s.Typical()
 		v, t := Evaluate(d, f)
 		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: ref.turning}
-		if !usable(v, t) {
+		switch {
+		case !usable(v, t):
 			w.Value = math.NaN()
-		} else {
+		case s.moves(ref, t):
+			w = s.Search(f)
+		default:
 			s.gather(&w, f)
 		}
 		out[i] = w
 	}
 	return out
+}
+
+// moves tells whether a function reads an input that has a range here but was not moved in a reference search: it had no range there, or was
+// not read.
+func (s *Space) moves(ref *Worst, t *Trace) (yes bool) {
+	all := slices.Clone(t.used)
+	all.or(ref.Trace.used)
+	all.each(func(id int) {
+		moved := ref.Trace.used.has(id) && ref.Space.low[id] < ref.Space.high[id]
+		yes = yes || s.low[id] < s.high[id] && !moved
+	})
+	return yes
 }
 
 // visit evaluates a draw and keeps it if it is worse.
@@ -200,66 +216,73 @@ func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
 // Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there.
 func (s *Space) Polish(w *Worst, f Function) {
 	const passes = 4
-	for range passes {
+	var ids []int
+	w.Trace.used.each(func(id int) { ids = append(ids, id) })
+	swings := make([]float64, len(ids))
+	calm := 0 // inputs moved in a row without getting worse; all of them: done
+	for k := 0; calm < len(ids) && k < passes*len(ids); k++ {
 		start := w.Value
-		w.Swings = w.Swings[:0]
-		s.sweep(w, f)
-		if w.Value != w.Value || !below(w.Value, start) {
-			break
+		swings[k%len(ids)] = s.move(w, f, ids[k%len(ids)])
+		if w.Value != w.Value {
+			return
+		}
+		if calm++; below(w.Value, start) {
+			calm = 1 // this input's swing was measured from the new worst draw's own end
+			w.Trace.used.each(func(id int) {
+				if !slices.Contains(ids, id) { // read for the first time
+					ids, swings = append(ids, id), append(swings, 0)
+				}
+			})
 		}
 	}
-	slices.SortStableFunc(w.Swings, func(a, b Swing) int {
-		switch {
-		case a.Range > b.Range:
-			return -1
-		case a.Range < b.Range:
-			return 1
+	w.Swings = w.Swings[:0]
+	for i, id := range ids {
+		if swings[i] > 0 {
+			w.Swings = append(w.Swings, Swing{s.inputs[id], swings[i]})
+		}
+	}
+	slices.SortFunc(w.Swings, func(a, b Swing) int {
+		if c := cmp.Compare(b.Range, a.Range); c != 0 {
+			return c
 		}
 		return a.Input.ID - b.Input.ID
 	})
 }
 
-func (s *Space) sweep(w *Worst, f Function) {
-	slices.Clone(w.Trace.used).each(func(id int) {
-		if w.Value != w.Value {
+// move tries the other ends of one input at the worst draw, and its interior where the function turns in it. It returns the largest change.
+func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
+	here := w.Value
+	changed := func(u float64) {
+		if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
+			swing = d
+		}
+	}
+	try := func(v float64) {
+		if v == w.Draw.x[id] || w.Value != w.Value {
 			return
 		}
-		q := s.inputs[id]
-		swing, here := 0.0, w.Value
-		try := func(v float64) {
-			if v != v || v == w.Draw.x[id] || w.Value != w.Value {
-				return
-			}
-			n := s.take(w.Draw, Change{id, v})
-			u := s.visit(w, n, f)
-			if w.Draw != n {
-				s.give(n)
-			}
-			if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
-				swing = d
+		n := s.take(w.Draw, Change{id, v})
+		changed(s.visit(w, n, f))
+		if w.Draw != n {
+			s.give(n)
+		}
+	}
+	if s.low[id] < s.high[id] {
+		try(s.low[id])
+		try(s.high[id])
+		if w.turning.has(id) {
+			for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {
+				try(s.sample(id, k))
 			}
 		}
-		if s.low[id] < s.high[id] {
-			try(s.low[id])
-			try(s.high[id])
-			if w.turning.has(id) {
-				for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {
-					try(s.sample(id, k))
-				}
-			}
-		}
-		if n := q.Naive; n == n && n != w.Draw.x[id] {
-			o := s.take(w.Draw, Change{id, n})
-			u, _ := Evaluate(o, f)
-			s.give(o)
-			if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
-				swing = d
-			}
-		}
-		if swing > 0 {
-			w.Swings = append(w.Swings, Swing{q, swing})
-		}
-	})
+	}
+	if n := s.inputs[id].Naive; n == n && n != w.Draw.x[id] {
+		s.Try(w.Draw, func(d *Draw) {
+			u, _ := Evaluate(d, f)
+			changed(u)
+		}, Change{id, n})
+	}
+	return swing
 }
 
 // Inputs lists what was read, in the order of the stage.

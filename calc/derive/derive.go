@@ -114,6 +114,9 @@ func Limit(c *circuit.Circuit, name string) Result {
 	good, bad := here, s.toward
 	if now < 0 {
 		good, bad = s.back, here
+		for k := 1; k <= backSteps && !(at(good) >= 0); k++ { // it may hold in between only: pulses vanish at the far end
+			good = between(here, s.back, float64(k)/(backSteps+1))
+		}
 		if !(at(good) >= 0) {
 			return Result{Value: math.NaN(), Input: math.NaN()}
 		}
@@ -122,6 +125,29 @@ func Limit(c *circuit.Circuit, name string) Result {
 	}
 	v := turn(at, good, bad)
 	return Result{Value: s.limit(c, v), Input: v, Found: v == v}
+}
+
+// OfDuty tells whether a limit follows from the largest duty; From then spares solving again.
+func OfDuty(name string) bool {
+	return name == finding.LargestDuty || name == finding.LongestOnTime || name == finding.ShortestLowSidePulse
+}
+
+// From is the limit that follows from the largest duty found at the same draw.
+func From(c *circuit.Circuit, name string, duty Result) Result {
+	s := plan(c, name)
+	duty.Value = s.limit(c, duty.Input)
+	return duty
+}
+
+// backSteps is the number of values tried on the way back where neither the drawn value holds nor the far end.
+const backSteps = 24
+
+// between is a value on the way from one to another, geometric where both are positive.
+func between(from, to, share float64) float64 {
+	if from > 0 && to > 0 {
+		return from * math.Pow(to/from, share)
+	}
+	return from + share*(to-from)
 }
 
 // Holds tells whether the limit's condition holds at another draw with the input of a result found elsewhere.

@@ -39,8 +39,9 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 			out.Reason = r.Reasons[0]
 		}
 	}
-	span := func(f rule.Number, d quantity.Dimension) (finding.Span, rule.Range) {
-		r := b.Range(p, f, d)
+	const smallest, largest = false, true
+	span := func(f rule.Number, d quantity.Dimension, adverse bool) (finding.Span, rule.Range) {
+		r := b.Adverse(p, f, d, adverse)
 		fail(&r)
 		return r.Span, r
 	}
@@ -50,10 +51,10 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	out.RechargeWindow, out.RechargeRatio, out.Deficit = none(quantity.Time), none(quantity.Ratio), none(quantity.Voltage)
 	out.GateVoltageLow = none(quantity.Voltage)
 	var low rule.Range
-	out.FloatingVoltageLow, low = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage)
-	out.FloatingVoltageHigh, _ = span(func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage)
+	out.FloatingVoltageLow, low = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage, smallest)
+	out.FloatingVoltageHigh, _ = span(func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage, largest)
 	if p.Operating.LoadCurrent.Known() && p.Operating.LoadCurrent.Max+firstKnown(p.Operating.RippleCurrent.Max)/2 > 0 {
-		out.GateVoltageLow, _ = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage)
+		out.GateVoltageLow, _ = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage, smallest)
 	}
 	if p.Operating.HeldOn != nil {
 		out.Limits = heldLimits(b, p)
@@ -62,17 +63,17 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	if p.Operating.FixedDuty == nil || low.Low.Space == nil {
 		return out
 	}
-	out.RechargeWindow, _ = span(func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time)
+	out.RechargeWindow, _ = span(func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time, smallest)
 	out.RechargeRatio, _ = span(func(c *circuit.Circuit) float64 {
 		q := c.Period()
 		return q.Window / (q.Element.Resistance * q.Capacitance)
-	}, quantity.Ratio)
+	}, quantity.Ratio, smallest)
 	out.Deficit, _ = span(func(c *circuit.Circuit) float64 {
 		if p := c.Period(); p.Window == 0 && p.T > 0 {
 			return math.Inf(1)
 		}
 		return c.Settled() - c.Low()
-	}, quantity.Voltage)
+	}, quantity.Voltage, largest)
 	worst := circuit.Of(low.Low.Draw)
 	out.CapacitanceCancels = catalog.CapacitanceCancels(worst)
 	if math.IsInf(low.Low.Value, -1) {
@@ -103,15 +104,31 @@ func fixedLimits(p *rule.Point) []finding.DerivedLimit {
 	hold := worstDraws(p, derive.Hold)
 	stand := worstDraws(p, derive.Stand)
 	both := append(slices.Clone(hold), stand...)
+	duties := duties{}
 	var out []finding.DerivedLimit
 	for _, name := range derive.Names() {
 		draws := hold
 		if name == finding.LargestDeadTime {
 			draws = both
 		}
-		out = append(out, bindingLimit(name, draws))
+		out = append(out, bindingLimit(name, draws, duties))
 	}
 	return out
+}
+
+// duties keeps the largest duty found at a draw: other limits follow from it.
+type duties map[*corner.Draw]derive.Result
+
+func (k duties) limit(c *circuit.Circuit, name string) derive.Result {
+	if !derive.OfDuty(name) {
+		return derive.Limit(c, name)
+	}
+	r, ok := k[c.Draw]
+	if !ok {
+		r = derive.Limit(c, finding.LargestDuty)
+		k[c.Draw] = r
+	}
+	return derive.From(c, name, r)
 }
 
 func worstDraws(p *rule.Point, f rule.Number) []corner.Worst {
@@ -130,7 +147,7 @@ func dimensionOf(name string) quantity.Dimension {
 	return quantity.Time
 }
 
-func bindingLimit(name string, draws []corner.Worst) finding.DerivedLimit {
+func bindingLimit(name string, draws []corner.Worst, known duties) finding.DerivedLimit {
 	out := finding.DerivedLimit{Name: name, Measure: finding.Measure{Value: math.NaN(), Dimension: dimensionOf(name)}}
 	for i := range draws {
 		if w := &draws[i]; w.Value != w.Value {
@@ -154,7 +171,7 @@ func bindingLimit(name string, draws []corner.Worst) finding.DerivedLimit {
 			if i > 0 && (best.Value != best.Value || derive.Holds(c, name, best.Input)) {
 				return 0
 			}
-			if r := derive.Limit(c, name); i == 0 || derive.Tightest(name, r, best) {
+			if r := known.limit(c, name); i == 0 || derive.Tightest(name, r, best) {
 				best, tighter = r, true
 			}
 			return 0

@@ -116,14 +116,16 @@ func (t *trial) enlist(rl *rule.Rule, role string, c, r float64) string {
 		if rl.Inapplicable(t.stage, p.Operating, role) != "" {
 			continue
 		}
-		for _, w := range corner.SearchSets(t.spaces(p, c, r), rl.Worst(role)) {
-			s := w.Space
-			if w.Value != w.Value {
-				what := append(s.Missing(w.Trace), w.Trace.Reasons()...)
-				what = append(what, "not a number")
-				return fmt.Sprintf("%s: %s", rl.ID, stage.Relative(what[0]))
+		for _, f := range rl.Searches(role) {
+			for _, w := range corner.SearchSets(t.spaces(p, c, r), f) {
+				s := w.Space
+				if w.Value != w.Value {
+					what := append(s.Missing(w.Trace), w.Trace.Reasons()...)
+					what = append(what, "not a number")
+					return fmt.Sprintf("%s: %s", rl.ID, stage.Relative(what[0]))
+				}
+				t.judges = append(t.judges, judge{rl, role, w.Draw})
 			}
-			t.judges = append(t.judges, judge{rl, role, w.Draw})
 		}
 	}
 	return ""

@@ -54,8 +54,22 @@ func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 			out.High = high
 		}
 	}
-	if len(p.Spaces) > 0 {
-		out.Span.Min, out.Span.Max = significant(out.Low.Value), significant(-out.High.Value)
+	out.Span.Min, out.Span.Max = significant(out.Low.Value), significant(-out.High.Value)
+	return out
+}
+
+// Adverse is Range with the end that matters polished, as the rules' worst draws are: the smallest, or with high the largest.
+func (b *Bench) Adverse(p *Point, f Number, d quantity.Dimension, high bool) Range {
+	out := b.Range(p, f, d)
+	fn := corner.Function(func(d *corner.Draw) float64 { return f(circuit.Of(d)) })
+	switch {
+	case out.Low.Space == nil:
+	case high:
+		out.High.Space.Polish(&out.High, fn.Negative())
+		out.Span.Max = significant(-out.High.Value)
+	default:
+		out.Low.Space.Polish(&out.Low, fn)
+		out.Span.Min = significant(out.Low.Value)
 	}
 	return out
 }

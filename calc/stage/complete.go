@@ -150,9 +150,11 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 		return
 	}
 	noMin, noTyp, noMax := math.IsNaN(t.Min), math.IsNaN(t.Typ), math.IsNaN(t.Max)
-	if exact := q.Declare.Spread == SpreadExact; exact && noTyp && noMin != noMax { // exactly as written, whichever end was written
-		t.Typ = firstOf(t.Min, t.Max)
-		noTyp = false
+	exact := q.Declare.Spread == SpreadExact
+	if exact && noTyp && noMin != noMax { // exactly as written, whichever end was written
+		v := firstOf(t.Min, t.Max)
+		*t = Triple{v, v, v}
+		return
 	}
 	if noTyp {
 		if noMin && !noMax && q.Declare.OneSided {
@@ -170,7 +172,6 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 	a, b := t.Typ*low, t.Typ*high
 	a, b = math.Min(a, b), math.Max(a, b)
 	dim := q.Declare.Dimension
-	exact := q.Declare.Spread == SpreadExact
 	if exact && noMin != noMax { // one end was written beside typ: the value has a spread, and the other end is unknown
 		return
 	}

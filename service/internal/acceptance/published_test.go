@@ -82,8 +82,9 @@ func TestPublishedSizing(t *testing.T) {
 		{"A15 without the resistor", a15, 164.1e-9, 0.05e-9, 0.5, 1e-4, 0.33e-6, 0.005e-6, 1},
 		// A16, Texas Instruments SLUS486B, eq. 1: 31 nC, 3 % of 6.0 V: 172 nF.
 		{"A16", join(gate(31), ripple(0.03), supply(6.4), switching("100 kHz", "50 %", "0 s")), 31e-9, 0, 0.18, 1e-5, 172e-9, 0.5e-9, 1},
-		// A11, Allegro A3946 data sheet 29319.150: C = 20·Q/V at 160 nC and 12 V: 0.266 µF (0.2667), which is 5 % of 12 V.
-		{"A11", join(gate(160), ripple(0.05), supply(12.4), switching("20 kHz", "50 %", "0 s")), 160e-9, 0, 0.6, 1e-5, 0.2667e-6, 0.00005e-6, 1},
+		// A11, Allegro A3946 data sheet 29319.150: C = 20·Q/V at 160 nC and 12 V: 0.266 µF (0.2667), which is 5 % of 12 V. The two points of
+		// the fixed drop leave it 0.3 mV of freedom at small currents, and the budget 5 % of that.
+		{"A11", join(gate(160), ripple(0.05), supply(12.4), switching("20 kHz", "50 %", "0 s")), 160e-9, 0, 0.6, 1.5e-5, 0.2667e-6, 0.00005e-6, 1},
 		// A22, International Rectifier DT98-2a (derived): it counts Q_G twice, and the sum twice again as its safety factor.
 		{"A22", join(gate(126), sinking("1.5 V"), noMargin, supply(12), switching("20 kHz", "50 %", "0 s"), edits{
 			"driver.floatingQuiescentCurrent": "230 uA", "driver.levelShiftCharge": "5 nC", "driver.uvloFalling": "8 V", "bootstrap.diode.forwardPoints": drops(1.3),

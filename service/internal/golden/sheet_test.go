@@ -108,8 +108,12 @@ func (s *sheet) line(line string, request any) error {
 			return fmt.Errorf("the stage has no %s", field)
 		}
 		text, _, _ = strings.Cut(text, " ±")
-		if in, err := evaluate(text, nil); err != nil || math.Abs(in/value-1) > 1e-12 {
-			return fmt.Errorf("%s stands in the stage as %s (%v)", field, text, err)
+		in, err := evaluate(text, nil)
+		if err != nil {
+			return err
+		}
+		if math.Abs(in/value-1) > 1e-12 {
+			return fmt.Errorf("%s stands in the stage as %s", field, text)
 		}
 	}
 	return nil
