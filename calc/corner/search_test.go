@@ -50,6 +50,9 @@ func TestSearch(t *testing.T) {
 		{"coupling seen only at the corner", func(b *bench, d *corner.Draw) float64 {
 			return -10*d.Need(b.a) - (d.Need(b.a)-3)*d.Need(b.c)
 		}, -15, -45, -50},
+		{"coupling in two steps", func(b *bench, d *corner.Draw) float64 { // c turns where a is largest, then b where c is
+			return -100*d.Need(b.a) - 20*(d.Need(b.a)-3)*d.Need(b.c) - (d.Need(b.c)-6)*(d.Need(b.b)-20)
+		}, -100, -500, -640},
 		{"infinite at an end", func(b *bench, d *corner.Draw) float64 {
 			if d.Need(b.a) < 1.5 {
 				return math.Inf(-1)

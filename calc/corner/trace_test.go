@@ -27,6 +27,8 @@ func TestMissing(t *testing.T) {
 		{"a list", func(b *bench, d *corner.Draw) float64 { return d.Want("stage.list") + d.Want("stage.list") }, []string{"stage.list"}, nil, false},
 		{"a list and an input", func(b *bench, d *corner.Draw) float64 { return d.Want("stage.list") + d.Need(b.absent) },
 			[]string{"stage.absent", "stage.list"}, nil, false},
+		{"an input by two names of one path", func(b *bench, d *corner.Draw) float64 { return d.Want("stage.absent") + d.Need(b.absent) },
+			[]string{"stage.absent"}, nil, false},
 		{"a reason", func(b *bench, d *corner.Draw) float64 {
 			d.Open("first")
 			d.Open("second")
@@ -135,7 +137,10 @@ func TestEvaluateAfresh(t *testing.T) {
 	b := newBench(nil)
 	sp := b.space(room)
 	d := sp.Typical()
-	_, first := corner.Evaluate(d, func(d *corner.Draw) float64 { return d.Need(b.absent) + d.Open("x") + d.Want("y") })
+	_, first := corner.Evaluate(d, func(d *corner.Draw) float64 { return d.Need(b.absent) + d.Open("x") + d.Open("x") + d.Want("y") })
+	if got := first.Reasons(); !slices.Equal(got, []string{"x"}) {
+		t.Errorf("reasons %v", got)
+	}
 	if first.Complete() {
 		t.Error("complete although an input is unknown")
 	}

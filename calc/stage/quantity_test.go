@@ -130,7 +130,7 @@ func TestSymbol(t *testing.T) {
 func TestRelative(t *testing.T) {
 	for path, want := range map[string]string{
 		"stage.driver.uvloFalling": "driver.uvloFalling", "stages[3].driver": "driver", "driver.uvloFalling": "driver.uvloFalling",
-		"stage": "stage", "": "", "stageless.driver": "stageless.driver", "stage.operatingPoints[0].name": "operatingPoints[0].name",
+		"stage": "stage", "": "", "stageless.driver": "stageless.driver", "parts[0].diode": "parts[0].diode", "stage.operatingPoints[0].name": "operatingPoints[0].name",
 	} {
 		if got := Relative(path); got != want {
 			t.Errorf("%q: %q, want %q", path, got, want)

@@ -82,62 +82,6 @@ func TestGoldenAnswers(t *testing.T) {
 	}
 }
 
-// outcomes is a table of the outcome and severity of every finding on every demo stage, so that any shift is a difference to read.
-func outcomes(t *testing.T) []byte {
-	t.Helper()
-	type key struct{ rule, role string }
-	var order []key
-	all := names(t)
-	cells := map[key][]string{}
-	for i, name := range all {
-		var a struct {
-			Verdict  string
-			Findings []struct{ Rule, Role, Outcome, Severity string }
-		}
-		if err := json.Unmarshal(answer(t, name), &a); err != nil {
-			t.Fatal(err)
-		}
-		verdict := key{rule: "verdict"}
-		put := func(k key, text string) {
-			if cells[k] == nil {
-				order = append(order, k)
-				cells[k] = make([]string, len(all))
-			}
-			cells[k][i] = text
-		}
-		put(verdict, a.Verdict)
-		for _, f := range a.Findings {
-			put(key{f.Rule, f.Role}, strings.TrimSpace(f.Outcome+" "+f.Severity))
-		}
-	}
-	var out bytes.Buffer
-	out.WriteString("# Outcomes on the demo stages\n\nWritten by a test; not to be edited.\n\n| rule | part | " + strings.Join(all, " | ") + " |\n|---|---|" +
-		strings.Repeat("---|", len(all)) + "\n")
-	for _, k := range order {
-		out.WriteString("| " + k.rule + " | " + k.role + " | " + strings.Join(cells[k], " | ") + " |\n")
-	}
-	return out.Bytes()
-}
-
-func TestGoldenOutcomes(t *testing.T) {
-	const file = stages + "outcomes.md"
-	live := outcomes(t)
-	if *update {
-		if err := os.WriteFile(file, live, 0o644); err != nil {
-			t.Fatal(err)
-		}
-		return
-	}
-	table, err := os.ReadFile(file)
-	if err != nil {
-		t.Fatal(err)
-	}
-	if !bytes.Equal(table, live) {
-		t.Errorf("%s differs; where that is meant, read the difference and renew it with the golden answers\n%s", file,
-			difference(string(table), string(live)))
-	}
-}
-
 // Answers stand the same however often they are asked for.
 func TestAnswersDoNotVary(t *testing.T) {
 	for _, name := range names(t) {

@@ -39,7 +39,7 @@ var examples = []example{
 	{rule: "charge/gate-sufficiency", fail: list(to("stage.highSide.driveVoltageMin", `"9 V"`)),
 		marginal: list(to("stage.highSide.driveVoltageMin", `"8.4 V"`)), open: list(to("stage.highSide.driveVoltageMin", ``))},
 	{rule: "charge/capacitance", fail: list(to("stage.bootstrap.capacitor.capacitance.typ", `"100 nF ±10 %"`)),
-		marginal: list(to("stage.bootstrap.capacitor.capacitance.typ", `"200 nF ±10 %"`)), open: list(to("stage.bootstrap.diode.forwardPoints", ``))},
+		marginal: list(to("stage.bootstrap.capacitor.capacitance.typ", `"220 nF ±10 %"`)), open: list(to("stage.bootstrap.diode.forwardPoints", ``))},
 	{rule: "charge/oversize", fail: list(to("stage.gateSupply.reservoir.capacitance.typ", `"10 uF ±10 %"`)),
 		marginal: list(to("stage.gateSupply.reservoir.capacitance.typ", `"15 uF ±10 %"`)), open: list(to("stage.startup.timeAvailable", ``))},
 	{rule: "charge/standing-load", fail: list(to("stage.bootstrap.otherLoad.max", `"8 mA"`)),
@@ -88,7 +88,7 @@ var examples = []example{
 		open: list(to("stage.bootstrap.resistor.power", ``))},
 	{rule: "duty/recharge-window", fail: list(to("stage.operatingPoints.0.fixedDuty.duty.max", `"0.98"`), to("stage.bootstrap.element", `"INTEGRATED_SWITCH"`),
 		to("stage.bootstrap.switchResistance", `{"min": "1 ohm", "typ": "2 ohm", "max": "3 ohm"}`)),
-		marginal: list(to("stage.operatingPoints.1.fixedDuty.duty.max", `"0.968"`), to("stage.bootstrap.resistor.resistance.typ", `"3R3 ±1 %"`)),
+		marginal: list(to("stage.operatingPoints.1.fixedDuty.duty.max", `"0.968"`)),
 		open:     list(to("stage.driver.minimumPulse", ``))},
 	{rule: "duty/largest-duty", fail: list(to("stage.operatingPoints.0.fixedDuty.duty.max", `"0.998"`)),
 		marginal: list(to("stage.operatingPoints.0.fixedDuty.duty.max", `"0.9916"`)), open: list(to("stage.operatingPoints.0.fixedDuty.duty", ``))},
@@ -130,7 +130,7 @@ func TestEveryRuleHasEveryOutcome(t *testing.T) {
 			}{
 				{nil, finding.Pass, x.neverPasses}, {x.marginal, finding.Marginal, ""}, {x.fail, finding.Fail, ""}, {x.open, finding.Open, x.neverOpen},
 			} {
-				if c.edits == nil && c.want != finding.Pass {
+				if c.edits == nil && c.want != finding.Pass { // the rule has no guard of its own in this role
 					continue
 				}
 				got := judged(c.edits)

@@ -6,7 +6,9 @@
 //	adverse     worsening an adverse input never improves a margin
 //	draws       no part inside its ranges is worse than the reported worst
 //	coherent    the inputs of a corner belong to one temperature
-//	same        the same request gives the same report
+//	same        the same request gives the same report, whatever the order of its parts and operating points
+//	derive      derived limits turn where they say; spaces that rules share change no number
 //	catalogue   every rule passes, is marginal, is open and fails on some stage
+//	outcomes    the table of outcomes over the corpus
 //	sizing      the parts that sizing recommends pass the review
 package property

@@ -7,6 +7,7 @@ import (
 	"maps"
 	"os"
 	"path/filepath"
+	"runtime/debug"
 	"slices"
 	"strconv"
 	"strings"
@@ -20,6 +21,12 @@ import (
 	"floatrail/calc/finding"
 	"floatrail/service/internal/convert"
 )
+
+// TestMain lets garbage grow: thousands of stages are reviewed, and each is thrown away whole.
+func TestMain(m *testing.M) {
+	debug.SetGCPercent(400)
+	os.Exit(m.Run())
+}
 
 const stages = "../../../testdata/stages/"
 

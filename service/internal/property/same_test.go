@@ -16,8 +16,12 @@ func TestSameRequestSameReport(t *testing.T) {
 	for _, s := range subjects(t) {
 		t.Run(s.name, func(t *testing.T) {
 			t.Parallel()
+			times := 50 / every
+			if s.name == "buck48 strained" {
+				times = 5
+			}
 			first := review(t, s.tree, calc.WithDutyLimits)
-			for range 50 {
+			for range times {
 				if d := cmp.Diff(first, review(t, s.tree, calc.WithDutyLimits), cmpopts.EquateNaNs()); d != "" {
 					t.Fatal(d)
 				}
