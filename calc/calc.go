@@ -57,6 +57,7 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 	}
 	r.Stage.Complete(&policy)
 	bench := rule.NewBench(r.Stage, &policy)
+	bench.EveryPoint = r.Options.PerPoint
 	bench.Interrupted = func() bool { return ctx.Err() != nil }
 	out := finding.Report{StageID: r.Stage.ID}
 	rules := slices.DeleteFunc(catalog.All(), func(rl *rule.Rule) bool {

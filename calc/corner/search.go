@@ -23,10 +23,15 @@ type Worst struct {
 	Typical float64 // value with every input at its typical value
 	Trace   *Trace  // all that was read anywhere in the search
 	Swings  []Swing // made by Polish, largest first
+	// Partial tells that the function could not be evaluated at some draw of the search; Value is the smallest of the others.
+	Partial bool
 
 	ends    []end // where each input stands that was moved from its typical value
 	turning Bits  // inputs in which the function turns between their ends
 }
+
+// Decided tells whether the function could be evaluated at every draw of the search.
+func (w *Worst) Decided() bool { return w.Value == w.Value && !w.Partial }
 
 // Swing tells how far one input moves the function, the others standing at the worst draw.
 type Swing struct {
@@ -70,7 +75,7 @@ func (s *Space) Search(f Function) Worst {
 		any := false
 		fresh.each(func(id int) {
 			any = true
-			if !(s.low[id] < s.high[id]) || w.Value != w.Value {
+			if !(s.low[id] < s.high[id]) {
 				return
 			}
 			best, at := v, int8(0)
@@ -80,13 +85,13 @@ func (s *Space) Search(f Function) Worst {
 				u, t := Evaluate(d, f)
 				w.Trace.Add(t)
 				if !usable(u, t) {
-					w.Value = math.NaN()
-					return u
+					w.Partial = true
+					return math.NaN()
 				}
 				if below(u, best) {
 					best, at = u, step
 				}
-				if w.Value == w.Value && below(u, w.Value) {
+				if below(u, w.Value) {
 					w.Value, w.Draw = u, d
 				}
 				return u
@@ -111,9 +116,7 @@ func (s *Space) Search(f Function) Worst {
 			break
 		}
 	}
-	if w.Value == w.Value {
-		s.gather(&w, f)
-	}
+	s.gather(&w, f)
 	return w
 }
 
@@ -204,8 +207,8 @@ func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
 	u, t := Evaluate(d, f)
 	w.Trace.Add(t)
 	if !usable(u, t) {
-		w.Value = math.NaN()
-		return u
+		w.Partial = true
+		return math.NaN()
 	}
 	if below(u, w.Value) {
 		w.Value, w.Draw = u, d
@@ -223,9 +226,6 @@ func (s *Space) Polish(w *Worst, f Function) {
 	for k := 0; calm < len(ids) && k < passes*len(ids); k++ {
 		start := w.Value
 		swings[k%len(ids)] = s.move(w, f, ids[k%len(ids)])
-		if w.Value != w.Value {
-			return
-		}
 		if calm++; below(w.Value, start) {
 			calm = 1 // this input's swing was measured from the new worst draw's own end
 			w.Trace.used.each(func(id int) {
@@ -258,7 +258,7 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 		}
 	}
 	try := func(v float64) {
-		if v == w.Draw.x[id] || w.Value != w.Value {
+		if v == w.Draw.x[id] {
 			return
 		}
 		n := s.take(w.Draw, Change{id, v})
@@ -410,7 +410,7 @@ func (s *Space) OnlyMissing(t *Trace) *stage.Quantity {
 func (s *Space) Turn(q *stage.Quantity, f Function) (float64, bool) {
 	sign := func(v float64) (negative, ok bool) {
 		w := s.Replace(Replacement{q.ID, stage.Triple{Min: v, Typ: v, Max: v}}).Search(f)
-		return w.Value < 0, w.Value == w.Value
+		return w.Value < 0, w.Decided()
 	}
 	low, okLow := sign(q.Declare.Low)
 	high, okHigh := sign(q.Declare.High)

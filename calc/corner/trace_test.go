@@ -53,7 +53,9 @@ func TestMissing(t *testing.T) {
 		b := newBench(func(b *bench) { *b.c = stage.Between("stage.c", 1, nan, nan) })
 		sp := b.space(room)
 		w := sp.Search(func(d *corner.Draw) float64 { return c.f(b, d) })
-		near(t, c.name, w.Value, nan)
+		if w.Decided() {
+			t.Errorf("%s: decided, %g", c.name, w.Value)
+		}
 		if got := sp.Missing(w.Trace); !slices.Equal(got, c.missing) {
 			t.Errorf("%s: missing %v, want %v", c.name, got, c.missing)
 		}
@@ -69,11 +71,13 @@ func TestMissing(t *testing.T) {
 			t.Errorf("%s: only missing %s", c.name, q.Field)
 		}
 		sp.Polish(&w, func(d *corner.Draw) float64 { return c.f(b, d) })
-		near(t, c.name+", polished", w.Value, nan)
+		if w.Decided() {
+			t.Errorf("%s, polished: decided, %g", c.name, w.Value)
+		}
 	}
 }
 
-// Polishing that comes to a draw where something is missing leaves no number.
+// Polishing that comes to a draw where something is missing leaves the function undecided, and keeps the worst of the other draws.
 func TestMissingInPolish(t *testing.T) {
 	b := newBench(nil)
 	sp := b.space(room)
@@ -87,7 +91,10 @@ func TestMissingInPolish(t *testing.T) {
 	w := sp.Search(f)
 	near(t, "found", w.Value, -40)
 	sp.Polish(&w, f)
-	near(t, "polished", w.Value, nan)
+	near(t, "polished", w.Value, -40)
+	if w.Decided() {
+		t.Error("decided although something is missing at a draw")
+	}
 	if got := sp.Missing(w.Trace); !slices.Equal(got, []string{"stage.absent"}) {
 		t.Errorf("missing %v", got)
 	}

@@ -39,9 +39,7 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 			out.Reason = r.Reasons[0]
 		}
 	}
-	const smallest, largest = false, true
-	span := func(f rule.Number, d quantity.Dimension, adverse bool) (finding.Span, rule.Range) {
-		r := b.Adverse(p, f, d, adverse)
+	span := func(r rule.Range) (finding.Span, rule.Range) {
 		fail(&r)
 		return r.Span, r
 	}
@@ -51,10 +49,10 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	out.RechargeWindow, out.RechargeRatio, out.Deficit = none(quantity.Time), none(quantity.Ratio), none(quantity.Voltage)
 	out.GateVoltageLow = none(quantity.Voltage)
 	var low rule.Range
-	out.FloatingVoltageLow, low = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage, smallest)
-	out.FloatingVoltageHigh, _ = span(func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage, largest)
+	out.FloatingVoltageLow, low = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage, false))
+	out.FloatingVoltageHigh, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage, true))
 	if p.Operating.LoadCurrent.Known() && p.Operating.LoadCurrent.Max+firstKnown(p.Operating.RippleCurrent.Max)/2 > 0 {
-		out.GateVoltageLow, _ = span(func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage, smallest)
+		out.GateVoltageLow, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage, false))
 	}
 	if p.Operating.HeldOn != nil {
 		out.Limits = heldLimits(b, p)
@@ -63,17 +61,17 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	if p.Operating.FixedDuty == nil || low.Low.Space == nil {
 		return out
 	}
-	out.RechargeWindow, _ = span(func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time, smallest)
-	out.RechargeRatio, _ = span(func(c *circuit.Circuit) float64 {
+	out.RechargeWindow, _ = span(b.Range(p, func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time))
+	out.RechargeRatio, _ = span(b.Range(p, func(c *circuit.Circuit) float64 {
 		q := c.Period()
 		return q.Window / (q.Element.Resistance * q.Capacitance)
-	}, quantity.Ratio, smallest)
-	out.Deficit, _ = span(func(c *circuit.Circuit) float64 {
+	}, quantity.Ratio))
+	out.Deficit, _ = span(b.Range(p, func(c *circuit.Circuit) float64 {
 		if p := c.Period(); p.Window == 0 && p.T > 0 {
 			return math.Inf(1)
 		}
 		return c.Settled() - c.Low()
-	}, quantity.Voltage, largest)
+	}, quantity.Voltage))
 	worst := circuit.Of(low.Low.Draw)
 	out.CapacitanceCancels = catalog.CapacitanceCancels(worst)
 	if math.IsInf(low.Low.Value, -1) {
@@ -150,7 +148,7 @@ func dimensionOf(name string) quantity.Dimension {
 func bindingLimit(name string, draws []corner.Worst, known duties) finding.DerivedLimit {
 	out := finding.DerivedLimit{Name: name, Measure: finding.Measure{Value: math.NaN(), Dimension: dimensionOf(name)}}
 	for i := range draws {
-		if w := &draws[i]; w.Value != w.Value {
+		if w := &draws[i]; !w.Decided() {
 			m := append(w.Space.Missing(w.Trace), w.Trace.Reasons()...)
 			out.Reason = "cannot be evaluated"
 			if len(m) > 0 {

@@ -119,7 +119,7 @@ func (t *trial) enlist(rl *rule.Rule, role string, c, r float64) string {
 		for _, f := range rl.Searches(role) {
 			for _, w := range corner.SearchSets(t.spaces(p, c, r), f) {
 				s := w.Space
-				if w.Value != w.Value {
+				if !w.Decided() {
 					what := append(s.Missing(w.Trace), w.Trace.Reasons()...)
 					what = append(what, "not a number")
 					return fmt.Sprintf("%s: %s", rl.ID, stage.Relative(what[0]))
@@ -310,7 +310,7 @@ func (t *trial) ratings(out *finding.Sizing, c, r float64) {
 		for i := range t.bench.Points {
 			p := &t.bench.Points[i]
 			for _, w := range corner.SearchSets(t.spaces(p, c, r), func(d *corner.Draw) float64 { return -f(circuit.Of(d)) }) {
-				if w.Value != w.Value {
+				if !w.Decided() {
 					return math.NaN()
 				}
 				v = math.Max(v, -w.Value)

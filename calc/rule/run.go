@@ -21,6 +21,8 @@ type Bench struct {
 	Points []Point
 	// Interrupted, where set, tells that the caller no longer waits.
 	Interrupted func() bool
+	// EveryPoint asks for the worst draws of all operating points as exactly as for those that bind.
+	EveryPoint bool
 
 	mu      sync.Mutex
 	assumed []stage.Assumption
@@ -85,7 +87,12 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 			}
 		}
 	}
-	b.eachPoint(jobs, func(j *job, k int) { j.results[k] = b.at(j.rule, j.role, &b.Points[j.group.points[k]]) })
+	b.eachPoint(jobs, func(j *job, k int) {
+		j.results[k] = b.at(j.rule, j.role, &b.Points[j.group.points[k]])
+		if b.EveryPoint {
+			b.refine(j.rule, j.role, &j.results[k])
+		}
+	})
 	for _, j := range jobs {
 		for i := range j.results {
 			if w := &j.results[i].worst; w.Trace != nil {
@@ -93,16 +100,7 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 			}
 		}
 	}
-	binding := func(f func(*job)) { // which point binds is found before any of them is worked on
-		for _, j := range jobs {
-			j.worst()
-		}
-		b.eachPoint(jobs, func(j *job, k int) {
-			if k == j.best {
-				f(j)
-			}
-		})
-	}
+	binding := func(f func(*job)) { b.eachSpace(jobs, f) }
 	binding(func(j *job) { b.refine(j.rule, j.role, &j.results[j.best]) })
 	for _, j := range jobs {
 		b.guarded(j, func() { b.settle(j) })
@@ -168,6 +166,28 @@ func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
 	})
 }
 
+// eachSpace calls f for every job, side by side for jobs whose worst results lie in different spaces. Which result is the worst is found
+// before any of them is worked on.
+func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
+	var spaces []*corner.Space
+	groups := map[*corner.Space][]*job{}
+	for _, j := range jobs {
+		s := j.worst().worst.Space // nil where nothing was searched
+		if groups[s] == nil {
+			spaces = append(spaces, s)
+		}
+		groups[s] = append(groups[s], j)
+	}
+	sideBySide(len(spaces), func(i int) {
+		for _, j := range groups[spaces[i]] {
+			if b.Stopped() {
+				return
+			}
+			b.guarded(j, func() { f(j) })
+		}
+	})
+}
+
 // guarded runs f; a panic is kept in the job.
 func (b *Bench) guarded(j *job, f func()) {
 	defer func() {
@@ -181,12 +201,15 @@ func (b *Bench) guarded(j *job, f func()) {
 }
 
 // SideBySide calls f with the index of every operating point, as many at once as there are processors.
-func (b *Bench) SideBySide(f func(point int)) {
+func (b *Bench) SideBySide(f func(point int)) { sideBySide(len(b.Points), f) }
+
+// sideBySide calls f with the numbers below n.
+func sideBySide(n int, f func(i int)) {
 	var wg sync.WaitGroup
 	var next atomic.Int64
-	for range min(runtime.GOMAXPROCS(0), len(b.Points)) {
+	for range min(runtime.GOMAXPROCS(0), n) {
 		wg.Go(func() {
-			for i := int(next.Add(1)) - 1; i < len(b.Points); i = int(next.Add(1)) - 1 {
+			for i := int(next.Add(1)) - 1; i < n; i = int(next.Add(1)) - 1 {
 				f(i)
 			}
 		})
@@ -382,6 +405,10 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 	}
 	if c.Floor > res.outcome && c.Floor != finding.Open {
 		res.outcome = c.Floor
+	}
+	if w.Partial && res.outcome != finding.Fail { // elsewhere it may be worse; a failure is one wherever it stands
+		res.outcome, res.margin = finding.Open, math.NaN()
+		return
 	}
 	if res.outcome != finding.Pass {
 		return

@@ -36,7 +36,7 @@ func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 		low, high := lows[i], highs[i]
 		for _, w := range []*corner.Worst{&low, &high} {
 			b.note(s, w.Trace)
-			if w.Value == w.Value {
+			if w.Decided() {
 				continue
 			}
 			out.Span.Min, out.Span.Typ, out.Span.Max = math.NaN(), math.NaN(), math.NaN()
