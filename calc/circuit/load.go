@@ -163,14 +163,9 @@ func (c *Circuit) gateLine(bias charge.OffBias) (atZero, perVolt float64) {
 			Reason: "the gate voltage at which the gate charge was specified is not given"})
 		return g.Specified, 0
 	}
-	top := c.Ceiling()
-	drive := bias.Drive(top)
-	slope, _ := g.Slope(drive)
-	atZero = g.Specified + slope*(bias.Drive(0)-g.SpecifiedAt)
-	if atZero < 0 { // no charge is negative at 0 V: the chord from there, which lies above the line up to the highest V_BS that can be
-		return 0, g.At(drive) / top
-	}
-	return atZero, slope
+	// The line may be negative near 0 V, far below the plateau, where it does not describe the curve; no supply that holds comes there.
+	slope, _ := g.Slope(bias.Drive(c.Ceiling()))
+	return g.Specified + slope*(bias.Drive(0)-g.SpecifiedAt), slope
 }
 
 // EdgeCharges are the charges of the rising edge at a floating voltage after it [V] and a recovery charge [C].

@@ -156,7 +156,7 @@ func Holds(c *circuit.Circuit, name string, input float64) bool {
 	return s.at(c, input) >= 0
 }
 
-// turn finds where a function that is not negative at good becomes negative toward bad, to 1e-6 of the value, on the good side. The search
+// turn finds where a function that is not negative at good becomes negative toward bad, to 1e-7 of the value, on the good side. The search
 // runs over the logarithm where both ends are positive and far apart.
 func turn(f func(float64) float64, good, bad float64) float64 {
 	to := func(u float64) float64 { return u }
@@ -178,7 +178,7 @@ func turn(f func(float64) float64, good, bad float64) float64 {
 	if to(2) != 2 {
 		scale = 1
 	}
-	if _, ok := numeric.Root(g, a, b, 1e-6*scale); !ok {
+	if _, ok := numeric.Root(g, a, b, 1e-7*scale); !ok {
 		return math.NaN()
 	}
 	return best

@@ -88,7 +88,7 @@ type Policy struct {
 	Severities []*SeverityOverride `protobuf:"bytes,31,rep,name=severities,proto3" json:"severities,omitempty"`
 	// Severity from which a FAIL fails the verdict and an OPEN leaves it incomplete; absent: MAJOR.
 	FailAt Severity_Value `protobuf:"varint,32,opt,name=fail_at,json=failAt,proto3,enum=floatrail.v1.Severity_Value" json:"fail_at,omitempty"`
-	// Whether MARGINAL counts as FAIL in the verdict.
+	// Whether every MARGINAL counts as FAIL in the verdict, whatever its severity.
 	CountMarginal *bool `protobuf:"varint,33,opt,name=count_marginal,json=countMarginal,proto3,oneof" json:"count_marginal,omitempty"`
 	// Least share of applicable rules that must be evaluated; below it the verdict is INCOMPLETE.
 	MinimumCoverage *string `protobuf:"bytes,34,opt,name=minimum_coverage,json=minimumCoverage,proto3,oneof" json:"minimum_coverage,omitempty"`
