@@ -38,8 +38,8 @@ var capacitorDielectric = &rule.Rule{
 		t, given := c.Has(&s.Temperature)
 		if !given {
 			t = c.Set.Ambient
-			if c.Point != nil {
-				c.Need(&c.Point.AmbientTemperature)
+			if c.Point != nil && t != t {
+				c.Want(c.Point.AmbientTemperature.Field)
 			}
 		}
 		ch := rule.Check{Value: math.Min(t-class.TemperatureLow, class.TemperatureHigh-t)}

@@ -75,6 +75,7 @@ func (s *Space) Search(f Function) Worst {
 		any := false
 		fresh.each(func(id int) {
 			any = true
+			s.beyond(&w, s.Typical(), f, v, id)
 			if !(s.low[id] < s.high[id]) {
 				return
 			}
@@ -180,7 +181,7 @@ func SearchSets(sets []*Space, f Function) []Worst {
 		switch {
 		case !usable(v, t):
 			w.Value = math.NaN()
-		case s.moves(ref, t):
+		case ref.Partial || s.moves(ref, t):
 			w = s.Search(f)
 		default:
 			s.gather(&w, f)
@@ -200,6 +201,34 @@ func (s *Space) moves(ref *Worst, t *Trace) (yes bool) {
 		yes = yes || s.low[id] < s.high[id] && !moved
 	})
 	return yes
+}
+
+// openStep is how far beyond a given value an open side is looked at, as a share of the value.
+const openStep = 0.1
+
+// beyond looks at the open sides of an input at a draw: where the function gets worse there, the missing end is missing for it.
+func (s *Space) beyond(w *Worst, d *Draw, f Function, here float64, id int) {
+	q := s.inputs[id]
+	if !q.OpenBelow && !q.OpenAbove {
+		return
+	}
+	look := func(open bool, v float64) {
+		if !open {
+			return
+		}
+		s.Try(d, func(n *Draw) {
+			if u, t := Evaluate(n, f); usable(u, t) && below(u, here) {
+				w.Trace.missing.set(id)
+				w.Partial = true
+			}
+		}, Change{id, math.Min(math.Max(v, q.Declare.Low), q.Declare.High)})
+	}
+	step := openStep * math.Abs(d.x[id])
+	if span := q.Declare.High - q.Declare.Low; step == 0 && !math.IsInf(span, 0) {
+		step = openStep * span
+	}
+	look(q.OpenBelow, d.x[id]-step)
+	look(q.OpenAbove, d.x[id]+step)
 }
 
 // visit evaluates a draw and keeps it if it is worse.
@@ -252,6 +281,7 @@ func (s *Space) Polish(w *Worst, f Function) {
 // move tries the other ends of one input at the worst draw, and its interior where the function turns in it. It returns the largest change.
 func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 	here := w.Value
+	s.beyond(w, w.Draw, f, here, id)
 	changed := func(u float64) {
 		if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
 			swing = d
@@ -302,13 +332,44 @@ func (s *Space) read(t *Trace) Bits {
 // Missing lists the paths of what was missing: inputs in the order of the stage, then components and lists.
 func (s *Space) Missing(t *Trace) []string {
 	var out []string
-	t.missing.each(func(id int) { out = append(out, s.inputs[id].Field) })
+	t.missing.each(func(id int) {
+		q := s.inputs[id]
+		if t := s.temperature(q); q.Known() && t != nil && (t.OpenBelow || t.OpenAbove) && s.low[id] != s.low[id] { // what is missing is the temperature that moves it
+			q = t
+		}
+		names := []string{q.Field}
+		if q.OpenBelow || q.OpenAbove {
+			names = names[:0]
+		}
+		if q.OpenBelow {
+			names = append(names, q.Field+".min")
+		}
+		if q.OpenAbove {
+			names = append(names, q.Field+".max")
+		}
+		for _, n := range names {
+			if !slices.Contains(out, n) {
+				out = append(out, n)
+			}
+		}
+	})
 	for _, w := range t.wants {
 		if !slices.Contains(out, w) {
 			out = append(out, w)
 		}
 	}
 	return out
+}
+
+// temperature is the quantity by which an input's temperature is given; nil without an operating point.
+func (s *Space) temperature(q *stage.Quantity) *stage.Quantity {
+	switch {
+	case s.Point == nil:
+		return nil
+	case q.Domain == stage.Junction:
+		return &s.Point.JunctionTemperature
+	}
+	return &s.Point.AmbientTemperature
 }
 
 // Reasons tells why the function could not be evaluated, beside what was missing.
@@ -400,7 +461,7 @@ func (s *Space) OnlyMissing(t *Trace) *stage.Quantity {
 	var only *stage.Quantity
 	n := 0
 	t.missing.each(func(id int) { only, n = s.inputs[id], n+1 })
-	if n != 1 {
+	if n != 1 || only.OpenBelow || only.OpenAbove {
 		return nil
 	}
 	return only

@@ -15,7 +15,7 @@ type Set struct {
 
 // Sets forms the temperature sets of an operating point, without repeating equal ones.
 func Sets(p *stage.OperatingPoint) []Set {
-	j, a := p.JunctionTemperature.Triple, p.AmbientTemperature.Triple
+	j, a := known(&p.JunctionTemperature), known(&p.AmbientTemperature)
 	within := func(t stage.Triple) float64 { return math.Min(math.Max(stage.ReferenceTemperature, t.Min), t.Max) }
 	all := []Set{{"cold", j.Min, a.Min}, {"room", within(j), within(a)}, {"hot", j.Max, a.Max}}
 	var out []Set
@@ -26,6 +26,18 @@ func Sets(p *stage.OperatingPoint) []Set {
 		}
 	}
 	return out
+}
+
+// known is a temperature's triple, unknown at its open sides.
+func known(q *stage.Quantity) stage.Triple {
+	t := q.Triple
+	if q.OpenBelow {
+		t.Min = math.NaN()
+	}
+	if q.OpenAbove {
+		t.Max = math.NaN()
+	}
+	return t
 }
 
 // Space is the ranges of all inputs of a stage at one operating point and set.

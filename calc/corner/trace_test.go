@@ -1,6 +1,7 @@
 package corner_test
 
 import (
+	"math"
 	"slices"
 	"testing"
 
@@ -47,7 +48,7 @@ func TestMissing(t *testing.T) {
 			return 1
 		}, []string{"stage.absent"}, nil, true},
 		{"not a number", func(b *bench, d *corner.Draw) float64 { return d.Need(b.a) * nan }, nil, nil, false},
-		{"an incomplete range", func(b *bench, d *corner.Draw) float64 { return d.Need(b.c) }, []string{"stage.c"}, nil, true},
+		{"an open side that is worse", func(b *bench, d *corner.Draw) float64 { return -d.Need(b.c) }, []string{"stage.c.max"}, nil, false},
 	}
 	for _, c := range cases {
 		b := newBench(func(b *bench) { *b.c = stage.Between("stage.c", 1, nan, nan) })
@@ -155,5 +156,41 @@ func TestEvaluateAfresh(t *testing.T) {
 	near(t, "typical", v, 5)
 	if got := fields(sp.Inputs(second)); !slices.Equal(got, []string{"stage.c"}) || !second.Complete() {
 		t.Errorf("read %v, complete %v", got, second.Complete())
+	}
+}
+
+// Of a value with one end alone the other side is open: what gets worse there cannot be decided, what does not is not hindered.
+func TestOpenSides(t *testing.T) {
+	for _, c := range []struct {
+		name           string
+		low, typ, high float64
+		sign           float64
+		missing        []string
+	}{
+		{"min alone, more is worse", 1, nan, nan, -1, []string{"stage.c.max"}},
+		{"min alone, less is worse", 1, nan, nan, 1, nil},
+		{"max alone, less is worse", nan, nan, 1, 1, []string{"stage.c.min"}},
+		{"max alone, more is worse", nan, nan, 1, -1, nil},
+		{"zero alone", nan, nan, 0, 1, nil}, // no step is known where no range is declared
+	} {
+		b := newBench(func(b *bench) { *b.c = stage.Between("stage.c", c.low, c.typ, c.high) })
+		sp := b.space(room)
+		f := corner.Function(func(d *corner.Draw) float64 { return c.sign * d.Need(b.c) })
+		w := sp.Search(f)
+		if w.Decided() != (len(c.missing) == 0) || !slices.Equal(sp.Missing(w.Trace), c.missing) {
+			t.Errorf("%s: decided %v, missing %v, want %v", c.name, w.Decided(), sp.Missing(w.Trace), c.missing)
+		}
+	}
+	// At the worst draw a side may matter that does not at the typical one.
+	b := newBench(func(b *bench) { *b.c = stage.Between("stage.c", 1, nan, nan) })
+	sp := b.space(room)
+	f := corner.Function(func(d *corner.Draw) float64 {
+		a := d.Need(b.a)
+		return -a - math.Max(0, a-3)*d.Need(b.c)
+	})
+	w := sp.Search(f)
+	sp.Polish(&w, f)
+	if w.Decided() || !slices.Equal(sp.Missing(w.Trace), []string{"stage.c.max"}) {
+		t.Errorf("at the worst draw: decided %v, missing %v", w.Decided(), sp.Missing(w.Trace))
 	}
 }

@@ -3,6 +3,7 @@ package rule
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"floatrail/calc/circuit"
@@ -138,7 +139,7 @@ func (b *Bench) notes(r *Rule, role string, res *result) []string {
 			return 0
 		})
 	}
-	return append(out, res.notes...)
+	return append(slices.Clone(res.notes), out...) // what keeps the rule from passing comes first
 }
 
 // unknownBreakEven finds, where one value alone is missing, the value of it at which the rule turns.

@@ -144,7 +144,8 @@ func (q *Quantity) assume(text string, d Direction, reason string) {
 	q.Assumption = &Assumption{Field: q.Field, Assumed: text, Direction: d, Reason: reason}
 }
 
-// fill completes one triple: ends from typ by the class of spread, 0 below a one-sided maximum, typ in the middle of given ends.
+// fill completes one triple: ends from typ by the class of spread, 0 below a one-sided maximum, typ in the middle of given ends. What is not
+// known even then stands at what is given, and the quantity is open on that side.
 func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 	if t.IsComplete() || t.IsMissing() {
 		return
@@ -162,19 +163,19 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 		}
 		if !noMin && !noMax {
 			t.Typ = t.Min/2 + t.Max/2
+			return
 		}
+		q.stand(t, firstOf(t.Min, t.Max), noMin, noMax)
 		return
 	}
 	low, high, ok := p.ends(q.Declare.Spread)
-	if !ok {
+	if !ok || exact && noMin != noMax { // of an exact value with one end beside typ the other end is unknown
+		q.stand(t, t.Typ, noMin, noMax)
 		return
 	}
 	a, b := t.Typ*low, t.Typ*high
 	a, b = math.Min(a, b), math.Max(a, b)
 	dim := q.Declare.Dimension
-	if exact && noMin != noMax { // one end was written beside typ: the value has a spread, and the other end is unknown
-		return
-	}
 	if noMin {
 		t.Min = a
 		if !exact && a != t.Typ {
@@ -187,6 +188,12 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 			q.assume("max "+quantity.Format(b, dim)+where, Conservative, "no such end of the spread is given; the policy's spread is taken")
 		}
 	}
+}
+
+// stand puts what is not known at a given value and notes the sides that are open.
+func (q *Quantity) stand(t *Triple, v float64, noMin, noMax bool) {
+	*t = Triple{firstOf(t.Min, v), firstOf(t.Typ, v), firstOf(t.Max, v)}
+	q.OpenBelow, q.OpenAbove = q.OpenBelow || noMin, q.OpenAbove || noMax
 }
 
 func describe(t Triple, d quantity.Dimension) string {

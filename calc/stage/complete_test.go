@@ -35,7 +35,7 @@ func TestFill(t *testing.T) {
 		{"resistor", SpreadResistor, false, Triple{nan, 10, nan}, Triple{9, 10, 11}, "min 9 V, max 11 V"},
 		{"capacitor", SpreadCapacitor, false, Triple{nan, 10, nan}, Triple{8, 10, 12}, "min 8 V, max 12 V"},
 
-		{"no class", NoSpread, false, Triple{nan, 10, nan}, Triple{nan, 10, nan}, ""},
+		{"no class", NoSpread, false, Triple{nan, 10, nan}, Triple{10, 10, 10}, ""},
 		{"negative, by share", SpreadSupply, false, Triple{nan, -10, nan}, Triple{-11, -10, -9}, "min -11 V, max -9 V"},
 		{"negative, by factor", SpreadResistance, false, Triple{nan, -10, nan}, Triple{-15, -10, -10 / 1.5}, "min -15 V, max -6.667 V"},
 		{"zero", SpreadCurrent, false, Triple{nan, 0, nan}, Triple{0, 0, 0}, ""},
@@ -44,10 +44,10 @@ func TestFill(t *testing.T) {
 		{"all three", SpreadCharge, false, Triple{9, 10, 14}, Triple{9, 10, 14}, ""},
 		{"both ends", SpreadCharge, false, Triple{8, nan, 14}, Triple{8, 11, 14}, ""},
 		{"both ends, no class", NoSpread, false, Triple{-14, nan, 8}, Triple{-14, -3, 8}, ""},
-		{"max alone", SpreadCurrent, false, Triple{nan, nan, 14}, Triple{nan, nan, 14}, ""},
-		{"min alone", SpreadCurrent, false, Triple{8, nan, nan}, Triple{8, nan, nan}, ""},
+		{"max alone", SpreadCurrent, false, Triple{nan, nan, 14}, Triple{14, 14, 14}, ""},
+		{"min alone", SpreadCurrent, false, Triple{8, nan, nan}, Triple{8, 8, 8}, ""},
 		{"leakage, max alone", SpreadCurrent, true, Triple{nan, nan, 14}, Triple{0, 7, 14}, ""},
-		{"leakage, min alone", SpreadCurrent, true, Triple{8, nan, nan}, Triple{8, nan, nan}, ""},
+		{"leakage, min alone", SpreadCurrent, true, Triple{8, nan, nan}, Triple{8, 8, 8}, ""},
 		{"leakage, typ alone", SpreadCurrent, true, Triple{nan, 10, nan}, Triple{5, 10, 20}, "min 5 V, max 20 V"},
 		{"leakage, typ and max", SpreadCurrent, true, Triple{nan, 10, 11}, Triple{5, 10, 11}, "min 5 V"},
 		{"exact, typ", SpreadExact, false, Triple{nan, 10, nan}, Triple{10, 10, 10}, ""},
@@ -55,8 +55,8 @@ func TestFill(t *testing.T) {
 		{"exact, max alone", SpreadExact, false, Triple{nan, nan, 14}, Triple{14, 14, 14}, ""},
 		{"exact, min alone", SpreadExact, false, Triple{8, nan, nan}, Triple{8, 8, 8}, ""},
 		{"exact, both ends", SpreadExact, false, Triple{8, nan, 14}, Triple{8, 11, 14}, ""},
-		{"exact, typ and max", SpreadExact, false, Triple{nan, 10, 14}, Triple{nan, 10, 14}, ""},
-		{"exact, typ and min", SpreadExact, false, Triple{8, 10, nan}, Triple{8, 10, nan}, ""},
+		{"exact, typ and max", SpreadExact, false, Triple{nan, 10, 14}, Triple{10, 10, 14}, ""},
+		{"exact, typ and min", SpreadExact, false, Triple{8, 10, nan}, Triple{8, 10, 10}, ""},
 	}
 	p := DefaultPolicy()
 	for _, c := range cases {
@@ -67,7 +67,20 @@ func TestFill(t *testing.T) {
 			t.Errorf("%s: %v, want %v", c.name, q.Triple, c.want)
 		}
 		checkAssumption(t, c.name, &q, c.assumed, Conservative)
+		// A side is open where its end was not given and nothing fills it.
+		below, above := open(c.given.Min, c.want.Min, c.want.Typ, c.given), open(c.given.Max, c.want.Max, c.want.Typ, c.given)
+		if c.spread == SpreadExact && math.IsNaN(c.given.Min) == math.IsNaN(c.given.Max) || c.spread == SpreadExact && math.IsNaN(c.given.Typ) {
+			below, above = false, false
+		}
+		if q.OpenBelow != below || q.OpenAbove != above {
+			t.Errorf("%s: open below %v and above %v, want %v and %v", c.name, q.OpenBelow, q.OpenAbove, below, above)
+		}
 	}
+}
+
+// open tells whether an end that was not given stands at the value beside it.
+func open(given, end, typ float64, t Triple) bool {
+	return math.IsNaN(given) && end == typ && typ != 0 && !t.IsComplete()
 }
 
 // checkAssumption compares what was assumed; empty: nothing.

@@ -110,6 +110,9 @@ type Quantity struct {
 	// ID numbers the quantity within its stage, from 1 on; 0 before Complete.
 	ID     int
 	Domain Domain
+	// OpenBelow and OpenAbove tell that the end of the spread on that side is unknown: the value stands at what was given, and a result that
+	// gets worse beyond it cannot be decided.
+	OpenBelow, OpenAbove bool
 	// Along is the ID of the position of the curve that the quantity is a point of; 0: it stands alone.
 	Along int
 }

@@ -62,8 +62,11 @@ func (m *Metrics) Field(path string) string {
 			return undeclared
 		}
 	}
-	if name := b.String(); m.fields[name] {
-		return name
+	name := b.String()
+	for _, end := range []string{"", ".min", ".max"} { // of a value with one end alone the other is missing
+		if declared := strings.TrimSuffix(name, end); m.fields[declared] {
+			return declared
+		}
 	}
 	return undeclared
 }
