@@ -12,8 +12,7 @@ import (
 // model is a function in two steps of which each may be kept with its draw.
 type model struct {
 	*bench
-	sum, all       float64 // where results are kept
-	sums, products int     // evaluations
+	sums, products int // evaluations
 }
 
 const (
