@@ -1,0 +1,119 @@
+package corner
+
+import (
+	"cmp"
+	"math"
+	"slices"
+)
+
+// openStep is how far beyond a given value an open side is looked at, as a share of the value.
+const openStep = 0.1
+
+// beyond looks at the open sides of an input at a draw: where the function gets worse there, the missing end is missing for it.
+func (s *Space) beyond(w *Worst, d *Draw, f Function, here float64, id int) {
+	q := s.inputs[id]
+	if !q.OpenBelow && !q.OpenAbove {
+		return
+	}
+	look := func(open bool, v float64) {
+		if !open {
+			return
+		}
+		s.Try(d, func(n *Draw) {
+			if u, t := Evaluate(n, f); usable(u, t) && below(u, here) {
+				w.Trace.missing.set(id)
+				w.Partial = true
+			}
+		}, Change{id, math.Min(math.Max(v, q.Declare.Low), q.Declare.High)})
+	}
+	step := openStep * math.Abs(d.x[id])
+	if span := q.Declare.High - q.Declare.Low; step == 0 && !math.IsInf(span, 0) {
+		step = openStep * span
+	}
+	look(q.OpenBelow, d.x[id]-step)
+	look(q.OpenAbove, d.x[id]+step)
+}
+
+// visit evaluates a draw and keeps it if it is worse.
+func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
+	u, t := Evaluate(d, f)
+	w.Trace.Add(t)
+	if !usable(u, t) {
+		w.Partial = true
+		return math.NaN()
+	}
+	if below(u, w.Value) {
+		w.Value, w.Draw = u, d
+	}
+	return u
+}
+
+// Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there.
+func (s *Space) Polish(w *Worst, f Function) {
+	const passes = 4
+	var ids []int
+	w.Trace.used.each(func(id int) { ids = append(ids, id) })
+	swings := make([]float64, len(ids))
+	calm := 0 // inputs moved in a row without getting worse; all of them: done
+	for k := 0; calm < len(ids) && k < passes*len(ids); k++ {
+		start := w.Value
+		swings[k%len(ids)] = s.move(w, f, ids[k%len(ids)])
+		if calm++; below(w.Value, start) {
+			calm = 1 // this input's swing was measured from the new worst draw's own end
+			w.Trace.used.each(func(id int) {
+				if !slices.Contains(ids, id) { // read for the first time
+					ids, swings = append(ids, id), append(swings, 0)
+				}
+			})
+		}
+	}
+	w.Swings = w.Swings[:0]
+	for i, id := range ids {
+		if swings[i] > 0 {
+			w.Swings = append(w.Swings, Swing{s.inputs[id], swings[i]})
+		}
+	}
+	slices.SortFunc(w.Swings, func(a, b Swing) int {
+		if c := cmp.Compare(b.Range, a.Range); c != 0 {
+			return c
+		}
+		return a.Input.ID - b.Input.ID
+	})
+}
+
+// move tries the other ends of one input at the worst draw, and its interior where the function turns in it. It returns the largest change.
+func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
+	here := w.Value
+	s.beyond(w, w.Draw, f, here, id)
+	changed := func(u float64) {
+		if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
+			swing = d
+		}
+	}
+	try := func(v float64) {
+		if v == w.Draw.x[id] {
+			return
+		}
+		n := s.take(w.Draw, Change{id, v})
+		changed(s.visit(w, n, f))
+		if w.Draw != n {
+			s.give(n)
+		}
+	}
+	if s.low[id] < s.high[id] {
+		try(s.low[id])
+		try(s.high[id])
+		if w.turning.has(id) {
+			for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {
+				try(s.sample(id, k))
+			}
+		}
+	}
+	if n := s.inputs[id].Naive; n == n && n != w.Draw.x[id] {
+		s.Try(w.Draw, func(d *Draw) {
+			u, _ := Evaluate(d, f)
+			changed(u)
+		}, Change{id, n})
+	}
+	return swing
+}

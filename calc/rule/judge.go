@@ -1,0 +1,217 @@
+package rule
+
+import (
+	"fmt"
+	"math"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/corner"
+	"floatrail/calc/finding"
+	"floatrail/calc/stage"
+)
+
+// result is what a rule found at one operating point.
+type result struct {
+	point   *Point
+	outcome finding.Outcome
+	worst   corner.Worst
+	check   Check
+	notes   []string
+	margin  float64
+	reason  string // why not applicable
+	refined bool
+}
+
+// numbered tells whether the result has numbers, be it open for what they do not contain yet.
+func (r *result) numbered() bool { return r.outcome != finding.NotApplicable && r.margin == r.margin }
+
+// worse orders results: by outcome, then by the margin's share of the limit.
+func worse(a, b *result) bool {
+	if a.outcome != b.outcome {
+		return a.outcome > b.outcome
+	}
+	x, y := a.margin, b.margin
+	if a.check.Limit != 0 || b.check.Limit != 0 {
+		x, y = relative(x, a.check.Limit), relative(y, b.check.Limit)
+	}
+	switch { // where the judged numbers agree, what was searched decides; at last the name, so that the order of a request does not
+	case x < y || x > y:
+		return x < y
+	case a.worst.Value < b.worst.Value || a.worst.Value > b.worst.Value:
+		return a.worst.Value < b.worst.Value
+	}
+	return a.point != nil && b.point != nil && a.point.Name() < b.point.Name()
+}
+
+// relative is a margin as a share of its limit; of a limit of 0, which other draws do not have, it is infinite.
+func relative(margin, limit float64) float64 {
+	switch {
+	case math.IsInf(limit, 0) || limit != limit || margin == 0:
+		return margin
+	case limit == 0:
+		return math.Inf(1) * margin
+	}
+	return margin / math.Abs(limit)
+}
+
+// margin of a check as it is judged and reported: of value and limit at six digits.
+func (r *Rule) margin(c Check) float64 {
+	return r.distance(significant(c.Value), significant(c.Limit))
+}
+
+// distance of a value to its limit, negative beyond it.
+func (r *Rule) distance(value, limit float64) float64 {
+	if r.Sense == AtMost {
+		return minus(limit, value)
+	}
+	return minus(value, limit)
+}
+
+// minus subtracts; equal infinities are no distance apart.
+func minus(a, b float64) float64 {
+	if math.IsInf(a, 0) && a == b {
+		return 0
+	}
+	return a - b
+}
+
+func (r *Rule) guardSlack(c Check) float64 {
+	return r.margin(Check{Value: c.Value, Limit: c.Guard})
+}
+
+// function is the rule as the search sees it.
+func (r *Rule) function(role string) corner.Function {
+	if r.Proxy != nil {
+		return func(d *corner.Draw) float64 { return r.Proxy(circuit.Of(d), role) }
+	}
+	return func(d *corner.Draw) float64 { // unrounded: rounding hides inputs of little effect
+		c := r.Check(circuit.Of(d), role)
+		return r.distance(c.Value, c.Limit)
+	}
+}
+
+// at searches the worst over the sets of one operating point.
+func (b *Bench) at(r *Rule, role string, p *Point) result {
+	res := result{point: p, margin: math.NaN()}
+	if reason := r.Inapplicable(b.Stage, p.Operating, role); reason != "" {
+		res.outcome, res.reason = finding.NotApplicable, reason
+		return res
+	}
+	first := true
+	if b.Stopped() {
+		res.outcome = finding.Open
+		return res
+	}
+	for _, f := range r.Searches(role) {
+		for _, w := range corner.SearchSets(p.Spaces, f) {
+			next := b.found(r, role, p, w)
+			if b.near(r, &next) { // with directions of its own as well, and polished
+				b.refine(r, role, &next)
+				if own := b.found(r, role, p, w.Space.Search(f)); own.worst.Value != w.Value {
+					b.refine(r, role, &own)
+					if worse(&own, &next) {
+						next = own
+					}
+				}
+			}
+			if first || worse(&next, &res) {
+				res, first = next, false
+			}
+		}
+	}
+	return res
+}
+
+// found is the result of a search.
+func (b *Bench) found(r *Rule, role string, p *Point, w corner.Worst) result {
+	res := result{point: p, worst: w}
+	b.decide(r, role, &res)
+	if len(r.Alternatives) > 0 && w.Value == w.Value {
+		res.worst.Value, _ = corner.Evaluate(w.Draw, r.function(role))
+	}
+	return res
+}
+
+// nearShare is the part of what all inputs together take off the typical margin that moving them once more is trusted to take off at most.
+const nearShare = 0.5
+
+// near tells whether polishing may turn an outcome. Every set of every operating point that is so near its guard is polished, whether it
+// binds or not.
+func (b *Bench) near(r *Rule, res *result) bool {
+	slack := r.guardSlack(res.check)
+	if r.Proxy != nil {
+		slack = res.worst.Value
+	}
+	return !(slack > nearShare*(res.worst.Typical-res.worst.Value))
+}
+
+// decide turns the worst draw into an outcome.
+func (b *Bench) decide(r *Rule, role string, res *result) {
+	w := &res.worst
+	if w.Value != w.Value {
+		res.outcome, res.margin = finding.Open, math.NaN()
+		return
+	}
+	_, t := corner.Evaluate(w.Draw, func(d *corner.Draw) float64 {
+		res.check = r.Check(circuit.Of(d), role)
+		return 0
+	})
+	c := &res.check
+	res.notes = nil
+	w.Trace.Add(t)
+	res.margin = r.margin(*c)
+	switch {
+	case res.margin != res.margin || !t.Complete():
+		res.outcome = finding.Open
+		return
+	case res.margin < 0:
+		res.outcome = finding.Fail
+	case r.guardSlack(*c) < 0:
+		res.outcome = finding.Marginal
+	default:
+		res.outcome = finding.Pass
+	}
+	if c.Floor > res.outcome && c.Floor != finding.Open {
+		res.outcome = c.Floor
+	}
+	if w.Partial && res.outcome != finding.Fail { // elsewhere it may be worse; a failure is one wherever it stands
+		res.outcome, res.margin = finding.Open, math.NaN()
+		return
+	}
+	if res.outcome != finding.Pass {
+		return
+	}
+	if c.Pending != "" {
+		res.outcome = finding.Open
+		return
+	}
+	for _, a := range w.Space.Assumptions(w.Trace) {
+		if a.Direction == stage.Optimistic {
+			res.outcome = finding.Marginal
+			res.notes = append(res.notes, fmt.Sprintf("satisfied only under an optimistic assumption: %s: %s", stage.Relative(a.Field), a.Reason))
+		}
+	}
+}
+
+// refine polishes the worst draw, so that the swings are known and the corner is checked.
+func (b *Bench) refine(r *Rule, role string, res *result) {
+	if res.refined || !res.numbered() {
+		return
+	}
+	res.refined = true
+	f := r.function(role)
+	res.worst.Space.Polish(&res.worst, f)
+	b.decide(r, role, res)
+}
+
+// significant rounds to six significant digits, as results are before they are compared.
+func significant(v float64) float64 {
+	if v == 0 || v != v || math.IsInf(v, 0) {
+		return v
+	}
+	scale := math.Pow(10, 5-math.Floor(math.Log10(math.Abs(v))))
+	if math.IsInf(scale, 0) || scale == 0 {
+		return v
+	}
+	return math.Round(v*scale) / scale
+}
