@@ -117,3 +117,21 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 	}
 	return swing
 }
+
+// Stretch moves every input that stands at an end filled by the policy as far again: by the same ratio where all is positive, else by the same
+// distance. What holds only short of that rests on the policy's spread.
+func (s *Space) Stretch(d *Draw, t *Trace) (changes []Change, fields []string) {
+	t.used.each(func(id int) {
+		q, v, typ := s.inputs[id], d.x[id], s.typ[id]
+		if !(q.FilledAbove && v == s.high[id] && v > typ) && !(q.FilledBelow && v == s.low[id] && v < typ) {
+			return
+		}
+		far := 2*v - typ
+		if v > 0 && typ > 0 {
+			far = v * (v / typ)
+		}
+		changes = append(changes, Change{id, math.Min(math.Max(far, q.Declare.Low), q.Declare.High)})
+		fields = append(fields, q.Field)
+	})
+	return changes, fields
+}

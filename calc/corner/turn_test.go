@@ -103,3 +103,38 @@ func TestTurn(t *testing.T) {
 		}
 	}
 }
+
+// Ends that the policy filled are moved as far again, and only those: by ratio where all is positive, else by distance, within what is plausible.
+func TestStretch(t *testing.T) {
+	for _, c := range []struct {
+		name           string
+		low, typ, high float64
+		sign           float64 // of the function: which end is the worse
+		spread         stage.Spread
+		want           float64 // NaN: not moved
+	}{
+		{"filled above", nan, 10, nan, -1, stage.SpreadResistance, 22.5},
+		{"filled below", nan, 10, nan, 1, stage.SpreadResistance, 10 / 2.25},
+		{"given above", nan, 10, 14, -1, stage.SpreadResistance, nan},
+		{"given above, filled below", nan, 10, 14, 1, stage.SpreadResistance, 10 / 2.25},
+		{"as far as is plausible", nan, 60, nan, -1, stage.SpreadResistance, 100},
+	} {
+		b := newBench(func(b *bench) {
+			*b.c = between("stage.c", c.low, c.typ, c.high)
+			b.c.Declare.Spread = c.spread
+		})
+		sp := b.space(room)
+		w := sp.Search(func(d *corner.Draw) float64 { return c.sign * d.Need(b.c) })
+		changes, fields := sp.Stretch(w.Draw, w.Trace)
+		switch {
+		case c.want != c.want:
+			if len(changes) != 0 {
+				t.Errorf("%s: moved to %v", c.name, changes)
+			}
+		case len(changes) != 1 || len(fields) != 1 || fields[0] != "stage.c":
+			t.Errorf("%s: %v %v", c.name, changes, fields)
+		default:
+			near(t, c.name, changes[0].Value, c.want)
+		}
+	}
+}

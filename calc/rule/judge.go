@@ -3,6 +3,7 @@ package rule
 import (
 	"fmt"
 	"math"
+	"strings"
 
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
@@ -185,12 +186,37 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 		res.outcome = finding.Open
 		return
 	}
+	b.stretch(r, role, res)
 	for _, a := range w.Space.Assumptions(w.Trace) {
 		if a.Direction == stage.Optimistic {
 			res.outcome = finding.Marginal
 			res.notes = append(res.notes, fmt.Sprintf("satisfied only under an optimistic assumption: %s: %s", stage.Relative(a.Field), a.Reason))
 		}
 	}
+}
+
+// stretch makes a pass MARGINAL where it holds only within the spread that the policy puts for ends nobody gave.
+func (b *Bench) stretch(r *Rule, role string, res *result) {
+	w := &res.worst
+	changes, fields := w.Space.Stretch(w.Draw, w.Trace)
+	if len(changes) == 0 {
+		return
+	}
+	w.Space.Try(w.Draw, func(d *corner.Draw) {
+		var c Check
+		corner.Evaluate(d, func(d *corner.Draw) float64 {
+			c = r.Check(circuit.Of(d), role)
+			return 0
+		})
+		if r.margin(c) >= 0 && r.guardSlack(c) >= 0 {
+			return
+		}
+		for i, f := range fields {
+			fields[i] = stage.Relative(f)
+		}
+		res.outcome = finding.Marginal
+		res.notes = append(res.notes, "satisfied only within the policy's spread of "+strings.Join(fields, ", ")+", of which no such end is given")
+	}, changes...)
 }
 
 // refine polishes the worst draw, so that the swings are known and the corner is checked.

@@ -73,6 +73,7 @@ func (s *Stage) numberCurve(v reflect.Value, c interface{ curve() (*Quantity, st
 	for _, point := range s.inputs[first:] {
 		if point.hasSpread() {
 			point.Along = q.ID
+			q.FilledBelow, q.FilledAbove = q.FilledBelow || point.FilledBelow, q.FilledAbove || point.FilledAbove
 			q.Triple = Triple{-1, 0, 1}
 		}
 	}
@@ -179,12 +180,14 @@ func (q *Quantity) fill(t *Triple, p *Policy, where string) {
 	if noMin {
 		t.Min = a
 		if !exact && a != t.Typ {
+			q.FilledBelow = true
 			q.assume("min "+quantity.Format(a, dim)+where, Conservative, "no such end of the spread is given; the policy's spread is taken")
 		}
 	}
 	if noMax {
 		t.Max = b
 		if !exact && b != t.Typ {
+			q.FilledAbove = true
 			q.assume("max "+quantity.Format(b, dim)+where, Conservative, "no such end of the spread is given; the policy's spread is taken")
 		}
 	}

@@ -113,6 +113,8 @@ type Quantity struct {
 	// OpenBelow and OpenAbove tell that the end of the spread on that side is unknown: the value stands at what was given, and a result that
 	// gets worse beyond it cannot be decided.
 	OpenBelow, OpenAbove bool
+	// FilledBelow and FilledAbove tell that the end of the spread on that side is the policy's.
+	FilledBelow, FilledAbove bool
 	// Along is the ID of the position of the curve that the quantity is a point of; 0: it stands alone.
 	Along int
 }
