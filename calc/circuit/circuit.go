@@ -157,7 +157,7 @@ func (c *Circuit) Ceiling() float64 {
 		return v
 	}
 	if i := c.peakCurrent(); i > 0 {
-		v += c.ReverseDrop(&c.Stage.LowSide, i)
+		v -= c.freewheelNode(i)
 	}
 	return v
 }

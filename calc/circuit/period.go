@@ -26,9 +26,9 @@ type Period struct {
 	OnTime       float64  // the high side conducts [s]
 	LowOnTime    float64  // the low-side gate is on [s]
 	Window       float64  // the element can recharge C_B [s]
+	Edges        bool     // the node rises and falls; without a high-side pulse it does not
 	HighVanishes bool     // the high-side pulse is shorter than the driver passes
 	LowVanishes  bool     // the low-side pulse is shorter than the driver passes
-	PeakDrop     float64  // drop of the low side in reverse conduction at the peak current; 0 where it does not conduct [V]
 }
 
 func (c *Circuit) peakCurrent() float64 {
@@ -229,7 +229,7 @@ func (c *Circuit) period() Period {
 	if p.HighVanishes { // the low side stays on, or its diode carries the current
 		p.OnTime, p.LowOnTime = 0, p.T
 		if diode {
-			add(IntervalFreewheel, p.T, -c.reverseIf(load), load > 0)
+			add(IntervalFreewheel, p.T, c.freewheelNode(load), load > 0)
 		} else {
 			add(IntervalLowSide, p.T, c.LowSideNode(load), true)
 		}
@@ -239,8 +239,10 @@ func (c *Circuit) period() Period {
 	fall := 0.0
 	if peak > 0 {
 		fall = (c.outputCharge(&s.HighSide, bus) + c.outputCharge(&s.LowSide, bus)) / peak
-		p.PeakDrop = c.ReverseDrop(&s.LowSide, peak)
 	}
+	// A period begins as the node rises. Where it rises before the high side turns on, the loads of the time between are drawn with the edge:
+	// the element is blocked, and V_BS is lowest after both.
+	blocked := 0.0
 	free := !el.Switch // a diode conducts whenever the node is low
 	switch {
 	case d >= 1:
@@ -253,37 +255,41 @@ func (c *Circuit) period() Period {
 			t = math.Min(t, p.T-p.OnTime)
 		}
 		fall = math.Min(fall, t)
+		blocked = rest
 		add(IntervalNone, fall, bus, false)
-		add(IntervalFreewheel, t-fall, -c.reverseIf(load), load > 0 && free)
-		add(IntervalNone, rest, bus, false)
+		add(IntervalFreewheel, t-fall, c.freewheelNode(load), load > 0 && free)
 	default:
 		p.LowOnTime = low
+		held := valley > 0 && rest == 0
+		if !held {
+			blocked = rest + dead
+		}
 		if peak > 0 {
 			t := math.Min(fall, dead)
 			add(IntervalNone, t, bus, false)
-			add(IntervalFirstDead, dead-t, -p.PeakDrop, free)
+			add(IntervalFirstDead, dead-t, c.freewheelNode(peak), free)
 		} else {
 			add(IntervalNone, dead, bus, false)
 		}
 		add(IntervalLowSide, low, c.LowSideNode(load), true)
-		add(IntervalNone, rest, bus, false)
-		if valley > 0 && rest == 0 {
-			add(IntervalSecondDead, dead, -c.ReverseDrop(&s.LowSide, valley), free)
-		} else {
-			add(IntervalNone, dead, bus, false)
+		if held {
+			add(IntervalSecondDead, dead, c.freewheelNode(valley), free)
 		}
 	}
 	p.On = recharge.Interval{Duration: p.OnTime, Drive: vdd - bus, Conducts: free && bus < vdd, Load: i0, Conductance: loads.PullDown}
-	p.Charge = e.gate + e.offBias + e.levelShift + e.junction
+	p.Edges = true
+	p.Charge = e.gate + e.offBias + e.levelShift + e.junction + i0*blocked
 	p.ChargePerVolt = e.gatePerVolt
 	p.Return = e.junction
 	p.RecoverySpec, p.RecoveryTau = e.recovery, e.tau
 	return p
 }
 
-func (c *Circuit) reverseIf(i float64) float64 {
+// freewheelNode is the node voltage while a current out of the node flows through the low side in reverse, and the shunt [V]; 0 where it
+// does not flow out.
+func (c *Circuit) freewheelNode(i float64) float64 {
 	if i > 0 {
-		return c.ReverseDrop(&c.Stage.LowSide, i)
+		return -c.ReverseDrop(&c.Stage.LowSide, i) - i*c.shunt()
 	}
 	return 0
 }

@@ -88,7 +88,11 @@ func (c *Circuit) budget() []charge.Item {
 	if st.Collapses {
 		v, rec = c.Required(), p.RecoverySpec
 	}
-	return charge.AppendItems(c.budgetAt[:0], c.Loads(), c.EdgeCharges(v, rec), charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
+	edge := charge.Edge{}
+	if p.Edges {
+		edge = c.EdgeCharges(v, rec)
+	}
+	return charge.AppendItems(c.budgetAt[:0], c.Loads(), edge, charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
 }
 
 // Drop is the voltage budget of C_B: what recharge leaves above a voltage that V_BS must keep, or the permitted ripple where that is
