@@ -338,7 +338,7 @@ func (c *Circuit) Settled() float64 {
 	return best
 }
 
-// settledDrop is what the recharge loses in the longest conducting interval at the mean recharge current of a charge per period [V].
+// recharged is the voltage that the longest conducting interval reaches when it carries the mean recharge current of a charge per period [V].
 func (c *Circuit) recharged(q float64) float64 {
 	p := c.Period()
 	best, at := 0.0, -1

@@ -76,7 +76,7 @@ func (c *Circuit) Margin(limit float64) float64 {
 	return math.Max(c.Policy.LockoutMargin, c.Policy.LockoutMarginRatio*math.Abs(limit))
 }
 
-// Budget is the charge budget of one period at the steady state, or where there is none at the settled voltage.
+// Budget is the charge budget of one period at the steady state, or where there is none at the required voltage.
 func (c *Circuit) Budget() []charge.Item {
 	return *corner.Memo(c.Draw, slotBudget, false, &c.budgetAt, c.budget)
 }

@@ -10,5 +10,8 @@
 // once more one at a time until nothing gets worse. Inputs in which the function turns, and the values of operating points, are also
 // sampled between their ends. The search keeps the worst of everything it has seen.
 //
+// A function that cannot be evaluated at some draw of the search is not decided there, but what it was found to violate elsewhere stands. So is
+// one that gets worse beyond an end that nobody gave. Points of one curve move together, by one input between -1 and 1.
+//
 // Functions read inputs only through Draw.Need, which records what was read and what was missing. Nothing here knows models or rules.
 package corner
