@@ -6,7 +6,7 @@
 //	stage     the request as a valid stage: every value with its spread, its source, and its path
 //	corner    worst-case sets per operating point and temperature; the search for the worst draw
 //	circuit   the stage at one draw, as the models take it
-//	models    charge, capacitor, recharge: equations with their sources
+//	models    charge, capacitor, recharge, startup, transient, loss: equations with their sources
 //	derive    inverse problems on the same models: derived limits
 //	rule      value against limit and guard; outcome, message, corner, ranking, break-even
 //	catalog   the rules, one a file
@@ -46,6 +46,7 @@ type Request struct {
 const (
 	WithSizing     = 1 << iota // charge budget and parts to fit
 	WithDutyLimits             // floating voltage and derived limits
+	WithTransient              // switching events
 )
 
 // Review evaluates the rules on one stage. It returns an error only when the context ends first.
@@ -60,10 +61,15 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 	bench.EveryPoint = r.Options.PerPoint
 	bench.Interrupted = func() bool { return ctx.Err() != nil }
 	out := finding.Report{StageID: r.Stage.ID}
-	rules := slices.DeleteFunc(catalog.All(), func(rl *rule.Rule) bool {
-		return len(r.Options.Families) > 0 && !slices.Contains(r.Options.Families, rl.Family())
-	})
+	asked := func(id string) bool {
+		return len(r.Options.Families) == 0 || slices.Contains(r.Options.Families, rule.FamilyOf(id))
+	}
+	rules := catalog.All()
+	if !slices.ContainsFunc(rules, func(rl *rule.Rule) bool { return rl.Tally != nil && asked(rl.ID) }) { // one that judges all others needs them
+		rules = slices.DeleteFunc(rules, func(rl *rule.Rule) bool { return !asked(rl.ID) })
+	}
 	out.Findings, out.Internal = bench.Run(rules...)
+	out.Findings = slices.DeleteFunc(out.Findings, func(f finding.Finding) bool { return !asked(f.Rule) })
 	if !r.Options.PerPoint {
 		for i := range out.Findings {
 			out.Findings[i].Points = nil
@@ -71,6 +77,9 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 	}
 	if parts&WithDutyLimits != 0 && ctx.Err() == nil {
 		out.DutyLimits = result.DutyLimits(bench)
+	}
+	if parts&WithTransient != 0 && ctx.Err() == nil {
+		out.Transient = result.Transient(bench)
 	}
 	if parts&WithSizing != 0 && ctx.Err() == nil {
 		out.Sizing = result.Sizing(bench, trial, &policy)

@@ -47,7 +47,7 @@ func TestDependenciesPointOneWay(t *testing.T) {
 	layers := [][]string{ // each may import the ones above it in this list, and none of its own line
 		{"quantity", "source", "internal/numeric"},
 		{"capacitor", "recharge", "preferred"},
-		{"charge"},
+		{"charge", "startup", "transient", "loss"},
 		{"stage"},
 		{"finding"},
 		{"corner"},

@@ -4,7 +4,7 @@ package catalog
 import "floatrail/calc/rule"
 
 // RuleSet is the version of the catalogue. It changes whenever a rule's verdict on some stage may change.
-const RuleSet = "2026.12"
+const RuleSet = "2026.12.2"
 
 // All lists the rules in their order.
 func All() []*rule.Rule {
@@ -14,8 +14,13 @@ func All() []*rule.Rule {
 		capacitorVoltage, capacitorDielectric, capacitorEffectiveValue, capacitorLeakage, capacitorESRDrop,
 		diodeReverseVoltage, diodePeakCurrent, diodeAverageCurrent, diodeRecovery, diodeHotLeakage,
 		resistorPulseEnergy, resistorPower,
-		dutyRechargeWindow, dutyLargestDuty, dutyLongestOnTime,
-		gateOvervoltage,
+		supplyReservoirSag, supplyCurrent, supplyFloatingSlew,
+		dutyRechargeWindow, dutyLargestDuty, dutyLongestOnTime, dutyShortestPulse, dutyDeadTime, dutyIdleRefresh, dutyPreCharge,
+		gateOvervoltage, gateClampWindow, gateMillerLow, gateMillerHigh, gateNodeResistor, gateNegative, gateDriveCurrent, gateDamping,
+		nodeUndershootStatic, nodeUndershootPulse, nodeRailBelowCOM, nodeOperationalRange, nodeRailOvershoot, nodeSwitchOvershoot, nodeSlew,
+		nodeOverload,
+		thermalDriver, thermalDiode,
+		dataAssumption,
 	}
 }
 

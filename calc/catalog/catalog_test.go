@@ -22,7 +22,7 @@ func fileOf(id string) string { return strings.NewReplacer("/", "_", "-", "_").R
 
 // TestOneFileARule finds every rule in the file of its name, and no other rule there.
 func TestOneFileARule(t *testing.T) {
-	expected := map[string]bool{"catalog.go": true, "common.go": true}
+	expected := map[string]bool{"catalog.go": true, "common.go": true, "events.go": true}
 	for _, r := range catalog.All() {
 		name := fileOf(r.ID)
 		expected[name] = true
@@ -59,7 +59,7 @@ func TestFind(t *testing.T) {
 	if _, ok := catalog.Find("charge/no-such-rule"); ok {
 		t.Error("a rule that does not exist is found")
 	}
-	want := []string{"charge", "capacitor", "diode", "resistor", "duty", "gate"}
+	want := []string{"charge", "capacitor", "diode", "resistor", "supply", "duty", "gate", "node", "thermal", "data"}
 	if got := catalog.Families(); !slices.Equal(got, want) {
 		t.Errorf("families %q, want %q", got, want)
 	}

@@ -30,13 +30,13 @@ var chargeOversize = &rule.Rule{
 		func(c *circuit.Circuit, _ string) float64 { return byTime(c) - c.Fresh() },
 	},
 	Explain: func(c *circuit.Circuit, _ string, ch rule.Check) []string {
-		available, t := chargeTime(c, ch.Value)
+		available, t := chargeTime(c)
 		if ch.Limit < ch.Value*available/t {
 			return []string{"the reservoir bounds it"}
 		}
 		if math.IsInf(t, 1) {
 			return []string{"no capacitance is charged in time: V_BS never reaches the rising lockout threshold with margin; it settles at " +
-				quantity.Format(c.Element().Settled(c.Supply(), c.Loads().Total()), quantity.Voltage)}
+				quantity.Format(c.FirstSettled(), quantity.Voltage)}
 		}
 		return []string{fmt.Sprintf("the first charge bounds it: %s of %s available", quantity.Format(t, quantity.Time), quantity.Format(available, quantity.Time))}
 	},
@@ -57,14 +57,12 @@ func byReservoir(c *circuit.Circuit) float64 {
 // byTime is the capacitance that the time available charges [F].
 func byTime(c *circuit.Circuit) float64 {
 	value := c.Fresh()
-	available, t := chargeTime(c, value)
+	available, t := chargeTime(c)
 	return value * available / t
 }
 
-// chargeTime is the time available for the first charge and the time that a capacitance takes to the rising lockout with margin [s].
-func chargeTime(c *circuit.Circuit, capacitance float64) (available, taken float64) {
-	target := c.Need(&c.Stage.Driver.UVLORising)
-	target += c.Margin(target)
-	start := &c.Stage.Startup
-	return c.Need(&start.TimeAvailable), c.Element().TimeTo(capacitance, c.Supply(), c.Loads().Total(), c.Need(&start.InitialVoltage), target)
+// chargeTime is the time available for the first charge and the time that C_B takes to the rising lockout with margin [s].
+func chargeTime(c *circuit.Circuit) (available, taken float64) {
+	taken, _ = c.FirstChargeTime()
+	return c.Need(&c.Stage.Startup.TimeAvailable), taken
 }

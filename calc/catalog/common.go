@@ -10,8 +10,11 @@ import (
 	"floatrail/calc/stage"
 )
 
-// first rule set.
-const first = "2026.12"
+// Rule sets in which rules appeared.
+const (
+	first  = "2026.12"
+	second = "2026.12.2"
+)
 
 // Roles: paths of parts relative to the stage.
 const (

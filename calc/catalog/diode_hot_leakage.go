@@ -17,7 +17,7 @@ const hotLeakageShare = 0.10
 
 var diodeHotLeakage = &rule.Rule{
 	ID: "diode/hot-leakage", Title: "Hot leakage of the bootstrap diode", Since: first,
-	Equation: "I_R(T_j)·T/Q_B, I_R doubling every 10 K, T_j = T_A + R_th·(V_F·I_av + V_R·I_R(T_j)·t_on/T)",
+	Equation: "I_R(T_j)·T/Q_B, I_R doubling every 10 K, T_j = T_A + R_th·(V_F·I_av + Q_rr·V_R·f + V_R·I_R(T_j)·t_on/T)",
 	Limit:    "10 % of the charge per period; no solution for T_j is thermal runaway and fails", Guard: "10 % below the limit",
 	Applies: "stages with a discrete bootstrap diode, switching",
 	Needs:   []string{"bootstrap.diode.reverseLeakage", "bootstrap.diode.thermalResistance", "operatingPoints.busVoltage", "operatingPoints.ambientTemperature"},
@@ -51,42 +51,10 @@ var diodeHotLeakage = &rule.Rule{
 // leakageShare is the share of the diode's leakage in the charge of a period, and the diode's temperature rise [K]; both +Inf at thermal
 // runaway.
 func leakageShare(c *circuit.Circuit) (share, rise float64) {
-	p := c.Period()
-	items := c.Budget()
-	ambient := c.Need(&c.Stage.Bootstrap.Diode.ReverseLeakage)
-	average := charge.Consumed(items) / p.T
-	forward := p.Element.Junction.Voltage(average)
-	reverse := c.Need(&c.Point.BusVoltage) * p.OnTime / p.T
-	rise, stable := heating(c.Need(&c.Stage.Bootstrap.Diode.ThermalResistance), forward*average, reverse*ambient)
+	ambient, items := c.Need(&c.Stage.Bootstrap.Diode.ReverseLeakage), c.Budget()
+	rise, stable := c.DiodeRise()
 	if !stable {
 		return math.Inf(1), math.Inf(1)
 	}
-	return ambient * math.Exp2(rise/10) * p.T / charge.Total(items), rise
-}
-
-// heating solves x = R_th·(P_0 + P_R·2^(x/10)) for the temperature rise x [K] by its lower solution; false where there is none. The right
-// side is convex in x and rises faster than x beyond the point where its slope is 1; there the two must have met.
-func heating(rth, constant, leakage float64) (rise float64, stable bool) {
-	if rth != rth || constant != constant || leakage != leakage {
-		return nan, true
-	}
-	const perKelvin = math.Ln2 / 10
-	f := func(x float64) float64 { return rth*(constant+leakage*math.Exp(perKelvin*x)) - x }
-	if leakage <= 0 {
-		return rth * constant, true
-	}
-	turn := -math.Log(rth*leakage*perKelvin) / perKelvin // slope of f is 0
-	if turn < 0 || f(turn) > 0 {
-		return nan, false
-	}
-	lo, hi := 0.0, turn
-	for range 100 {
-		mid := lo/2 + hi/2
-		if f(mid) > 0 {
-			lo = mid
-		} else {
-			hi = mid
-		}
-	}
-	return hi, true
+	return ambient * math.Exp2(rise/10) * c.Period().T / charge.Total(items), rise
 }

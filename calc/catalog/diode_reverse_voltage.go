@@ -9,9 +9,10 @@ import (
 
 var diodeReverseVoltage = &rule.Rule{
 	ID: "diode/reverse-voltage", Title: "Reverse voltage of the bootstrap diode", Since: first,
-	Equation: "V_BUS + overshoot + V_BS - V_DD",
+	Equation: "V_BUS + overshoot of the node + V_BS - V_DD",
 	Limit:    "rated repetitive reverse voltage", Guard: "70 % of the rating", Applies: "stages with a discrete bootstrap diode",
-	Needs:   []string{"bootstrap.diode.reverseVoltageMax", "operatingPoints.busVoltage", "gateSupply.voltage"},
+	Needs: []string{"bootstrap.diode.reverseVoltageMax", "operatingPoints.busVoltage", "gateSupply.voltage",
+		"layout.busLoopInductance", "layout.measured", "highSide.reverse", "lowSide.reverse"},
 	Sources: []string{"nasa-eee-inst-002", "src-derating", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Reverse voltage of the bootstrap diode", Against: "rated reverse voltage", Dimension: quantity.Voltage, Sense: rule.AtMost,
@@ -21,7 +22,9 @@ var diodeReverseVoltage = &rule.Rule{
 			return rule.Check{Value: c.NoPoint()}
 		}
 		limit := c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax)
-		return rule.Check{Value: c.Need(&c.Point.BusVoltage) + c.High() - c.Supply(), Limit: limit, Guard: limit * c.Policy.DiodeReverseRatio,
-			Pending: "this rule set has no model of the node's overshoot, which adds to the static reverse voltage"}
+		return rule.Check{Value: c.NodeHigh() + c.Highest() - c.Supply(), Limit: limit, Guard: limit * c.Policy.DiodeReverseRatio}
 	},
+	Alternatives: each(everyEvent, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
+		return c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax) - c.NodePeak(e) - c.Highest() + c.Supply()
+	}),
 }

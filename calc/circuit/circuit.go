@@ -12,6 +12,7 @@ import (
 	"floatrail/calc/corner"
 	"floatrail/calc/recharge"
 	"floatrail/calc/stage"
+	"floatrail/calc/transient"
 )
 
 // Circuit is a stage at one draw.
@@ -32,6 +33,13 @@ type Circuit struct {
 	budgetAt      []charge.Item
 	offAt         [8]recharge.Interval
 	namesAt       [8]string
+	curveAt       [curves][curvePoints]transient.CurvePoint
+	swingAt       [eventCount]transient.Swing
+	slopeAt       [eventCount]float64
+	pumpedAt      Period
+	pumpedSteady  recharge.Steady
+	pumpedOff     [10]recharge.Interval
+	pumpedNames   [10]string
 }
 
 // Of gives the circuit at a draw, made once per draw.
@@ -53,6 +61,10 @@ const (
 	slotCapacitance
 	slotEdge
 	slotBudget
+	slotPumped
+	slotPumpedSteady
+	slotSwing // one for each event
+	slotSlope = slotSwing + int(eventCount)
 )
 
 var nan = math.NaN()

@@ -139,9 +139,8 @@ func (c *Circuit) OffBias(s *stage.Switch) charge.OffBias {
 	return b
 }
 
-// GateCharge is the gate charge curve of one high-side device.
-func (c *Circuit) GateCharge() charge.GateCharge {
-	h := &c.Stage.HighSide
+// GateCharge is the gate charge curve of one device of a position.
+func (c *Circuit) GateCharge(h *stage.Switch) charge.GateCharge {
 	optional := func(q *stage.Quantity) float64 {
 		if v, ok := c.Has(q); ok {
 			return v
@@ -157,7 +156,7 @@ func (c *Circuit) GateCharge() charge.GateCharge {
 
 // gateLine is the gate charge of one device over V_BS as a line: charge at V_BS = 0 and slope.
 func (c *Circuit) gateLine(bias charge.OffBias) (atZero, perVolt float64) {
-	g := c.GateCharge()
+	g := c.GateCharge(&c.Stage.HighSide)
 	if g.SpecifiedAt != g.SpecifiedAt {
 		c.Assume(stage.Assumption{Field: c.Stage.HighSide.GateChargeVoltage.Field, Assumed: "the drive in use", Direction: stage.Optimistic,
 			Reason: "the gate voltage at which the gate charge was specified is not given"})

@@ -148,27 +148,12 @@ func (c *Circuit) channelDrop(s *stage.Switch, i float64) float64 {
 	return y0
 }
 
-// outputCharge is Q_oss of a switch up to the DC-link voltage, all devices in parallel [C]: the integral of C_oss over its points, linear
-// between them and level outside.
+// outputCharge is Q_oss of a switch up to the DC-link voltage, all devices in parallel [C].
 func (c *Circuit) outputCharge(s *stage.Switch, v float64) float64 {
-	points := s.OutputCapacitance.Items
-	if len(points) == 0 {
+	if len(s.OutputCapacitance.Items) == 0 {
 		return c.Need(&s.CommutationCharge)
 	}
-	q, x0, y0 := 0.0, 0.0, c.Need(&points[0].Capacitance)
-	for i := range points {
-		x1, y1 := c.Need(&points[i].Voltage), c.Need(&points[i].Capacitance)
-		if x1 >= v {
-			if x1 > x0 {
-				y1 = y0 + (y1-y0)*(v-x0)/(x1-x0)
-			}
-			q += (v - x0) * (y0 + y1) / 2
-			return q * s.Count()
-		}
-		q += (x1 - x0) * (y0 + y1) / 2
-		x0, y0 = x1, y1
-	}
-	return (q + (v-x0)*y0) * s.Count()
+	return c.output(s).Charge(v)
 }
 
 // Modes that this rule set has no model for.
@@ -306,17 +291,19 @@ func (p *Period) complete() bool {
 
 // Steady is the periodic steady state; its numbers are NaN where the period is incomplete.
 func (c *Circuit) Steady() *recharge.Steady {
-	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady {
-		p := c.Period()
-		if !p.complete() {
-			return recharge.Steady{Low: nan, High: nan, AfterEdge: nan, BeforeEdge: nan, Deficit: nan, Recovery: nan, Charge: nan}
-		}
-		st := p.SteadyState()
-		if !st.Converged && !st.Collapses {
-			c.Open("the periodic steady state was not found")
-		}
-		return st
-	})
+	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady { return c.solve(c.Period()) })
+}
+
+// solve finds the periodic steady state of a period.
+func (c *Circuit) solve(p *Period) recharge.Steady {
+	if !p.complete() {
+		return recharge.Steady{Low: nan, High: nan, AfterEdge: nan, BeforeEdge: nan, Deficit: nan, Recovery: nan, Charge: nan}
+	}
+	st := p.SteadyState()
+	if !st.Converged && !st.Collapses {
+		c.Open("the periodic steady state was not found")
+	}
+	return st
 }
 
 // Settled is the voltage toward which recharge tends [V]: at the drop of the junction alone at the mean recharge current, from which the
@@ -357,4 +344,21 @@ func (c *Circuit) recharged(q float64) float64 {
 func (c *Circuit) Hold() (h charge.Hold, duration float64) {
 	m := c.Point.HeldOn
 	return charge.Hold{Start: c.Need(&m.InitialVoltage), Capacitance: c.Capacitance(), Loads: c.Loads()}, c.Need(&m.Duration)
+}
+
+// HighPulse is the pulse that the high side is commanded for in a period, whether the driver passes it or not [s].
+func (c *Circuit) HighPulse() float64 {
+	switch {
+	case c.Point == nil:
+		return c.NoPoint()
+	case c.Point.FixedDuty == nil:
+		return c.Open(noModel)
+	case c.Stage.LowSide.Kind == "":
+		return c.Want(c.Stage.LowSide.Field + ".kind")
+	}
+	pulse := c.Need(&c.Point.FixedDuty.Duty) / c.Need(&c.Point.SwitchingFrequency)
+	if c.Stage.LowSide.Kind != stage.DiodeOnly {
+		pulse -= c.Need(&c.Point.DeadTime)
+	}
+	return math.Max(0, pulse)
 }

@@ -5,7 +5,8 @@ import (
 
 	"floatrail/calc/charge"
 	"floatrail/calc/corner"
-	"floatrail/calc/stage"
+	"floatrail/calc/loss"
+	"floatrail/calc/recharge"
 )
 
 // Low is the lowest V_BS of the operating point [V]; -Inf where there is no positive steady state.
@@ -42,13 +43,7 @@ func (c *Circuit) High() float64 {
 		}
 		v = st.High
 	}
-	switch z := &c.Stage.Bootstrap.Clamp; z.Presence() {
-	case stage.Fitted:
-		v = math.Min(v, c.Need(&z.Voltage))
-	case stage.PresenceUnknown:
-		v = c.Want(z.Field)
-	}
-	return v
+	return c.clamped(v)
 }
 
 // Gate is the drive of the high-side gate at a floating voltage [V].
@@ -169,8 +164,10 @@ func (c *Circuit) BreakEvenWindow() float64 {
 }
 
 // RepetitivePeak is the largest current of the element in the steady state [A].
-func (c *Circuit) RepetitivePeak() float64 {
-	p, st := c.Period(), c.Steady()
+func (c *Circuit) RepetitivePeak() float64 { return c.peak(c.Period(), c.Steady()) }
+
+// peak is the largest current of the element over a period in its steady state [A].
+func (c *Circuit) peak(p *Period, st *recharge.Steady) float64 {
 	v := st.Low + p.Return/p.Capacitance
 	if st.Collapses {
 		v = 0
@@ -189,38 +186,22 @@ func (c *Circuit) RepetitivePeak() float64 {
 	return peak
 }
 
-// FirstPeak is the element's current when an empty C_B is first charged, the node at 0 V [A].
-func (c *Circuit) FirstPeak() float64 {
-	return c.Element().Current(c.Supply() - c.Need(&c.Stage.Startup.InitialVoltage))
-}
-
-// FirstEnergy is the energy that R_B takes at first charge [J].
-func (c *Circuit) FirstEnergy() float64 {
-	r := c.series(&c.Stage.Bootstrap.Resistor)
-	return c.Element().ResistorEnergy(c.Fresh(), c.Supply(), c.Need(&c.Stage.Startup.InitialVoltage), r)
-}
-
-// ResistorPower is the mean power of R_B in the steady state [W]. With C·dv = (i - I_q)·dt the energy of an interval is exactly
-//
-//	∫i²·R dt = R·C·∫i dv + R·I_q·C·Δv + R·I_q²·t
-//
-// of which the first term is the difference of two first-charge energies.
+// ResistorPower is the mean power of R_B in the steady state [W].
 func (c *Circuit) ResistorPower() float64 {
+	return c.elementPower(c.series(&c.Stage.Bootstrap.Resistor))
+}
+
+// elementPower is the mean power of a resistance r [ohm] of the element in the steady state [W].
+func (c *Circuit) elementPower(r float64) float64 {
 	p, st := c.Period(), c.Steady()
-	r := c.series(&c.Stage.Bootstrap.Resistor)
 	if st.Collapses || st.Low != st.Low {
 		return nan
 	}
 	v := st.Low + p.Return/p.Capacitance
 	energy := 0.0
 	for i := range p.Off {
-		iv := p.Off[i]
-		next, _ := p.Element.Advance(v, iv, p.Capacitance)
-		if iv.Conducts {
-			energy += p.Element.ResistorEnergy(p.Capacitance, iv.Drive, v, r) - p.Element.ResistorEnergy(p.Capacitance, iv.Drive, next, r)
-			energy += r * iv.Load * (p.Capacitance*(next-v) + iv.Load*iv.Duration)
-		}
-		v = next
+		energy += loss.ResistorEnergy(p.Element, p.Off[i], p.Capacitance, v, r)
+		v, _ = p.Element.Advance(v, p.Off[i], p.Capacitance)
 	}
 	return energy / p.T
 }

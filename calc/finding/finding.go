@@ -169,6 +169,7 @@ type Report struct {
 	UnusedWaivers []Waiver
 	Sizing        *Sizing
 	DutyLimits    *DutyLimits
+	Transient     *TransientStress
 	// Internal counts rules that panicked and are open for that reason.
 	Internal int
 }
@@ -251,7 +252,52 @@ const (
 	HighestSwitchingFreq     = "highest switching frequency"
 )
 
-// DutyLimits is the floating voltage of each operating point.
+// DutyLimits is the floating voltage of each operating point, and the first charge.
 type DutyLimits struct {
-	Points []DutyPoint
+	Points    []DutyPoint
+	Precharge Precharge
+}
+
+// Precharge is the first charge of C_B.
+type Precharge struct {
+	Time           Span // to the rising lockout with margin, enable delay included
+	Pulses         int  // most pulses of a pulsed first charge; 0: the low side is held on, or not known
+	PeakCurrent    Span
+	ResistorEnergy Span
+	ReservoirLow   Span
+	SettledVoltage Span
+}
+
+// TransientStress is the switching events of each operating point.
+type TransientStress struct {
+	Events []TransientEvent
+}
+
+// TransientEvent is one event at one operating point.
+type TransientEvent struct {
+	Event               string // name in the contract
+	OperatingPoint      string
+	NodeMin             Span
+	PinMin              Span
+	RailToCOMMin        Span
+	Undershoots         []Undershoot // one for each row of the driver's table
+	FloatingVoltageGain Span
+	NodeMax             Span
+	RailMax             Span
+	HighSidePeak        Span
+	LowSidePeak         Span
+	SlewPeak            Span
+	Slew10To90          Span
+	MillerLow           Span
+	MillerHigh          Span
+	GateMin             Span
+	CurrentSlope        Span
+	RingFrequency       Span
+	RingDamping         Span
+}
+
+// Undershoot is the time below one level.
+type Undershoot struct {
+	Level    Measure
+	Duration Span
 }

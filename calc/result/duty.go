@@ -24,6 +24,7 @@ func DutyLimits(b *rule.Bench) *finding.DutyLimits {
 	}
 	out.Points = make([]finding.DutyPoint, len(b.Points))
 	b.SideBySide(func(i int) { out.Points[i] = dutyPoint(b, &b.Points[i]) })
+	out.Precharge = precharge(b)
 	return out
 }
 

@@ -107,34 +107,57 @@ func TestOutcome(t *testing.T) {
 	}
 }
 
-// TestFloorAndPending covers what a draw adds to its numbers: the mildest outcome that it allows, and what the numbers do not contain yet.
-func TestFloorAndPending(t *testing.T) {
+// TestFloor covers the mildest outcome that a draw allows.
+func TestFloor(t *testing.T) {
 	for _, c := range []struct {
-		name    string
-		value   float64 // against limit 10, guard 9
-		floor   finding.Outcome
-		pending string
-		want    finding.Outcome
+		name  string
+		value float64 // against limit 10, guard 9
+		floor finding.Outcome
+		want  finding.Outcome
 	}{
-		{"no floor", 8, finding.NoOutcome, "", finding.Pass},
-		{"a marginal floor", 8, finding.Marginal, "", finding.Marginal},
-		{"a failing floor", 8, finding.Fail, "", finding.Fail},
-		{"a floor below the numbers", 12, finding.Marginal, "", finding.Fail},
-		{"an open floor is none", 8, finding.Open, "", finding.Pass},
-		{"pending", 8, finding.NoOutcome, "there is no model", finding.Open},
-		{"pending beyond the limit", 12, finding.NoOutcome, "there is no model", finding.Fail},
-		{"pending with a failing floor", 8, finding.Fail, "there is no model", finding.Fail},
+		{"no floor", 8, finding.NoOutcome, finding.Pass},
+		{"a marginal floor", 8, finding.Marginal, finding.Marginal},
+		{"a failing floor", 8, finding.Fail, finding.Fail},
+		{"a floor below the numbers", 12, finding.Marginal, finding.Fail},
+		{"an open floor is none", 8, finding.Open, finding.Pass},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			r := made(rule.AtMost, func(*circuit.Circuit, string) rule.Check {
-				return rule.Check{Value: c.value, Limit: 10, Guard: 9, Floor: c.floor, Pending: c.pending}
+				return rule.Check{Value: c.value, Limit: 10, Guard: 9, Floor: c.floor}
 			})
-			f := run(t, bench(nil, "p"), r)
-			if f.Outcome != c.want {
+			if f := run(t, bench(nil, "p"), r); f.Outcome != c.want {
 				t.Errorf("%s, want %s: %s", f.Outcome, c.want, f.Message)
 			}
-			if c.want == finding.Open && (!strings.Contains(f.Message, c.pending) || f.Value.Value != c.value) {
-				t.Errorf("the message does not say what is pending, or the number is lost: %q, %g", f.Message, f.Value.Value)
+		})
+	}
+}
+
+// TestTally covers a rule that judges what the rules before it assumed and left open.
+func TestTally(t *testing.T) {
+	counting := made(rule.AtMost, nil)
+	counting.Check = nil
+	counting.Tally = func(assumed []stage.Assumption, open int) (rule.Check, []string) {
+		if open > 0 {
+			return rule.Check{Value: math.NaN()}, []string{"too much is open"}
+		}
+		return rule.Check{Value: float64(len(assumed)), Limit: math.Inf(1)}, nil
+	}
+	for _, c := range []struct {
+		name  string
+		check func(k *circuit.Circuit, _ string) rule.Check
+		want  finding.Outcome
+	}{
+		{"nothing assumed", func(*circuit.Circuit, string) rule.Check { return rule.Check{Value: 1, Limit: 10, Guard: 9} }, finding.Pass},
+		{"something assumed", func(k *circuit.Circuit, _ string) rule.Check {
+			k.Assume(stage.Assumption{Field: "stage.x", Assumed: "1", Direction: stage.Optimistic, Reason: "nobody said so"})
+			return rule.Check{Value: 1, Limit: 10, Guard: 9}
+		}, finding.Marginal},
+		{"something open", func(k *circuit.Circuit, _ string) rule.Check { return rule.Check{Value: k.Want("stage.x")} }, finding.Open},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			findings, _ := bench(nil, "p").Run(made(rule.AtMost, c.check), counting)
+			if f := findings[len(findings)-1]; f.Outcome != c.want {
+				t.Errorf("%s, want %s: %s", f.Outcome, c.want, f.Message)
 			}
 		})
 	}

@@ -99,16 +99,6 @@ func (b *Bench) numbers(r *Rule, o *result) (value, limit finding.Measure, m fin
 
 func (b *Bench) open(r *Rule, role string, f *finding.Finding, res *result) {
 	w := &res.worst
-	if res.check.Pending != "" {
-		f.Message = fmt.Sprintf("%s cannot be decided: %s.", r.Quantity, res.check.Pending)
-		f.Notes = b.notes(r, role, res)
-		if v := r.finite(res.check.Value); v.Value == v.Value {
-			f.Value, f.Limit, f.Margin = b.numbers(r, res)
-			f.Guard = r.finite(res.check.Guard)
-			f.Notes = append([]string{fmt.Sprintf("without it: %s %s against %s %s", r.Quantity, text(v), r.Against, text(f.Limit))}, f.Notes...)
-		}
-		return
-	}
 	if w.Trace == nil {
 		f.Message = r.Quantity + " was not evaluated: the caller no longer waits."
 		return
@@ -214,6 +204,41 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 				Measure: finding.Measure{Value: significant(v), Dimension: d.Dimension}})
 		}
 	}
+}
+
+// tally is the finding of a rule that judges what the others assumed and left open.
+func (b *Bench) tally(r *Rule, before []finding.Finding) finding.Finding {
+	open := 0
+	for i := range before {
+		if before[i].Outcome == finding.Open {
+			open++
+		}
+	}
+	f := finding.Finding{
+		Rule: r.ID, Title: r.Title, Equation: r.Equation, Sources: r.Sources, Subjects: b.subjects(""),
+		Value: unset(r.Dimension), Limit: unset(r.Dimension), Guard: unset(r.Dimension), Typical: unset(r.Dimension),
+		Margin: finding.Margin{Absolute: unset(r.Dimension), Relative: math.NaN()},
+	}
+	c, notes := r.Tally(b.Assumptions(), open)
+	f.Notes = notes
+	switch {
+	case c.Value != c.Value:
+		f.Outcome = finding.Open
+	case r.guardSlack(c) < 0:
+		f.Outcome = finding.Marginal
+	default:
+		f.Outcome = finding.Pass
+	}
+	f.Value, f.Guard = r.finite(c.Value), r.finite(c.Guard)
+	f.Severity = r.severity(f.Outcome, b.Stage, "", b.Policy)
+	if f.Outcome == finding.Open {
+		f.Message = r.Quantity + " cannot be evaluated: " + notes[0] + "."
+		f.Notes = notes[1:]
+	} else {
+		f.Message = fmt.Sprintf("%s %s.", r.Quantity, text(f.Value))
+	}
+	finding.Stamp(&f, b.Stage.Identity())
+	return f
 }
 
 func text(m finding.Measure) string {

@@ -28,8 +28,6 @@ type Check struct {
 	Value, Limit, Guard float64
 	// Floor is the mildest outcome that the draw allows, whatever the numbers say.
 	Floor finding.Outcome
-	// Pending tells what the value does not contain yet: with it the rule is open where the numbers alone would pass.
-	Pending string
 }
 
 // Rule is one rule of the catalogue.
@@ -44,7 +42,10 @@ type Rule struct {
 	Needs    []string
 	Sources  []string // keys of the bibliography
 
+	// Severities of the outcomes. Fail, and where Never says so Marginal, may be unset.
 	Fail, Marginal, Open stage.Severity
+	// Never, where set, tells why the rule cannot fail.
+	Never string
 
 	Quantity  string // what the value is, in words
 	Against   string // what the limit is, in words
@@ -66,13 +67,19 @@ type Rule struct {
 	Alternatives []func(c *circuit.Circuit, role string) float64
 	// ProxyDimension is the dimension of Proxy.
 	ProxyDimension quantity.Dimension
+	// Tally, where set, stands in the place of Check: the rule judges the assumptions that the rules before it made, and how many of them are
+	// open. A value that is not a number leaves it open; what it says beside the check explains it. Such rules are the last of a catalogue.
+	Tally func(assumed []stage.Assumption, open int) (Check, []string)
 	// FailSeverity, where set, replaces Fail for a stage.
 	FailSeverity func(s *stage.Stage, role string) stage.Severity
 }
 
 // Family is the first part of the id.
-func (r *Rule) Family() string {
-	family, _, _ := strings.Cut(r.ID, "/")
+func (r *Rule) Family() string { return FamilyOf(r.ID) }
+
+// FamilyOf is the first part of an id.
+func FamilyOf(id string) string {
+	family, _, _ := strings.Cut(id, "/")
 	return family
 }
 
@@ -133,13 +140,16 @@ func Validate(rules []*Rule) []error {
 				bad("source %q is not in the bibliography", k)
 			}
 		}
-		if r.Fail == stage.NoSeverity || r.Marginal == stage.NoSeverity || r.Open == stage.NoSeverity {
+		if r.Open == stage.NoSeverity || r.Never == "" && (r.Fail == stage.NoSeverity || r.Marginal == stage.NoSeverity) {
 			bad("a severity is unset")
+		}
+		if r.Never != "" && r.Fail != stage.NoSeverity {
+			bad("has a severity of an outcome that it never has")
 		}
 		if r.GuardsDestruction() && r.Open < stage.Major {
 			bad("guards against destruction and is open below MAJOR")
 		}
-		if r.Sense == 0 || r.Check == nil || r.Inapplicable == nil {
+		if r.Sense == 0 || (r.Check == nil) == (r.Tally == nil) || r.Inapplicable == nil {
 			bad("no sense, check or applicability")
 		}
 	}

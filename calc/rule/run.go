@@ -74,6 +74,9 @@ func (b *Bench) Stopped() bool { return b.Interrupted != nil && b.Interrupted() 
 func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 	var jobs []*job
 	for _, r := range rules {
+		if r.Tally != nil {
+			continue
+		}
 		roles := r.Roles
 		if len(roles) == 0 {
 			roles = []string{""}
@@ -112,6 +115,11 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 			continue
 		}
 		findings = append(findings, j.finding)
+	}
+	for _, r := range rules {
+		if r.Tally != nil {
+			findings = append(findings, b.tally(r, findings))
+		}
 	}
 	return findings, broken
 }

@@ -42,6 +42,8 @@ func ReviewStageResponse(e Engine, r *finding.Report, readings []Reading) *pb.Re
 		UnusedWaivers: each(r.UnusedWaivers, wireWaiver),
 		Caution:       proto.String(Caution),
 		DutyLimits:    wireDutyLimits(r.DutyLimits),
+
+		TransientStress: wireTransient(r.Transient),
 	}
 }
 
@@ -60,6 +62,15 @@ func CheckDutyLimitsResponse(e Engine, r *finding.Report, readings []Reading) *p
 	return &pb.CheckDutyLimitsResponse{
 		Engine: a.Engine, StageId: a.StageId, Verdict: a.Verdict, Coverage: a.Coverage, Findings: a.Findings, Assumptions: a.Assumptions,
 		Readings: a.Readings, UnusedWaivers: a.UnusedWaivers, Caution: a.Caution, DutyLimits: a.DutyLimits,
+	}
+}
+
+// CheckTransientStressResponse writes a report as the answer of CheckTransientStress.
+func CheckTransientStressResponse(e Engine, r *finding.Report, readings []Reading) *pb.CheckTransientStressResponse {
+	a := ReviewStageResponse(e, r, readings)
+	return &pb.CheckTransientStressResponse{
+		Engine: a.Engine, StageId: a.StageId, Verdict: a.Verdict, Coverage: a.Coverage, Findings: a.Findings, Assumptions: a.Assumptions,
+		Readings: a.Readings, UnusedWaivers: a.UnusedWaivers, Caution: a.Caution, TransientStress: a.TransientStress,
 	}
 }
 

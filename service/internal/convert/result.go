@@ -48,7 +48,52 @@ func wireDutyLimits(d *finding.DutyLimits) *pb.DutyLimitsResult {
 	if d == nil {
 		return nil
 	}
-	return &pb.DutyLimitsResult{Points: each(d.Points, wireDutyPoint)}
+	return &pb.DutyLimitsResult{Points: each(d.Points, wireDutyPoint), Precharge: wirePrecharge(&d.Precharge)}
+}
+
+func wirePrecharge(p *finding.Precharge) *pb.Precharge {
+	out := &pb.Precharge{
+		Time: wireSpan(&p.Time), PeakCurrent: wireSpan(&p.PeakCurrent), ResistorEnergy: wireSpan(&p.ResistorEnergy),
+		ReservoirLow: wireSpan(&p.ReservoirLow), SettledVoltage: wireSpan(&p.SettledVoltage),
+	}
+	if p.Pulses > 0 {
+		out.Pulses = count(p.Pulses)
+	}
+	return out
+}
+
+func wireTransient(t *finding.TransientStress) *pb.TransientStressResult {
+	if t == nil {
+		return nil
+	}
+	return &pb.TransientStressResult{Events: each(t.Events, wireEvent)}
+}
+
+func wireEvent(e *finding.TransientEvent) *pb.TransientEvent {
+	return &pb.TransientEvent{
+		Event:          pb.TransientEvent_Event_Value(pb.TransientEvent_Event_Value_value[e.Event]),
+		OperatingPoint: label(e.OperatingPoint),
+		Method:         pb.TransientEvent_Method_ESTIMATE,
+		NodeMin:        wireSpan(&e.NodeMin),
+		PinMin:         wireSpan(&e.PinMin),
+		RailToComMin:   wireSpan(&e.RailToCOMMin),
+		Undershoots: each(e.Undershoots, func(u *finding.Undershoot) *pb.UndershootDuration {
+			return &pb.UndershootDuration{Level: wireMeasure(&u.Level), Duration: wireSpan(&u.Duration)}
+		}),
+		FloatingVoltageGain: wireSpan(&e.FloatingVoltageGain),
+		NodeMax:             wireSpan(&e.NodeMax),
+		RailMax:             wireSpan(&e.RailMax),
+		HighSidePeak:        wireSpan(&e.HighSidePeak),
+		LowSidePeak:         wireSpan(&e.LowSidePeak),
+		SlewPeak:            wireSpan(&e.SlewPeak),
+		Slew_10To_90:        wireSpan(&e.Slew10To90),
+		MillerLow:           wireSpan(&e.MillerLow),
+		MillerHigh:          wireSpan(&e.MillerHigh),
+		GateMin:             wireSpan(&e.GateMin),
+		CurrentSlope:        wireSpan(&e.CurrentSlope),
+		RingFrequency:       wireSpan(&e.RingFrequency),
+		RingDamping:         wireSpan(&e.RingDamping),
+	}
 }
 
 func wireDutyPoint(p *finding.DutyPoint) *pb.DutyPoint {

@@ -72,7 +72,7 @@ func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb
 // CheckDutyLimits answers with the floating voltage of each operating point.
 func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsRequest) (*pb.CheckDutyLimitsResponse, error) {
 	request, readings, faults := h.binder.CheckDutyLimits(r)
-	own(&request, "charge", "duty")
+	own(&request, "charge", "supply", "duty")
 	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits)
 	if err != nil {
 		return nil, err
@@ -80,10 +80,21 @@ func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsReq
 	return convert.CheckDutyLimitsResponse(h.engine, report, readings), nil
 }
 
+// CheckTransientStress answers with the switching events of each operating point.
+func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransientStressRequest) (*pb.CheckTransientStressResponse, error) {
+	request, readings, faults := h.binder.CheckTransientStress(r)
+	own(&request, "gate", "node")
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithTransient)
+	if err != nil {
+		return nil, err
+	}
+	return convert.CheckTransientStressResponse(h.engine, report, readings), nil
+}
+
 // ReviewStage answers with every rule on one stage.
 func (h *Handlers) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.ReviewStageResponse, error) {
 	request, readings, faults := h.binder.ReviewStage(r)
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits|calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}

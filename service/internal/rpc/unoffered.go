@@ -15,11 +15,6 @@ func notOfferedMethod(method, instead string) error {
 	return status.Error(codes.Unimplemented, "this build does not offer "+method+"; "+instead)
 }
 
-// CheckTransientStress is not offered.
-func (h *Handlers) CheckTransientStress(context.Context, *pb.CheckTransientStressRequest) (*pb.CheckTransientStressResponse, error) {
-	return nil, notOfferedMethod("CheckTransientStress", "the rules that need no switching event are answered by ReviewStage (POST /v1/reviews)")
-}
-
 // ReviewBoard is not offered.
 func (h *Handlers) ReviewBoard(*pb.ReviewBoardRequest, grpc.ServerStreamingServer[pb.ReviewBoardResponse]) error {
 	return notOfferedMethod("ReviewBoard", "send each stage to ReviewStage (POST /v1/reviews), or the file to the review command")

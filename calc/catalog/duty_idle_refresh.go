@@ -1,0 +1,42 @@
+package catalog
+
+import (
+	"floatrail/calc/circuit"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+var dutyIdleRefresh = &rule.Rule{
+	ID: "duty/idle-refresh", Title: "Floating supply at the first pulse on a pre-biased node", Since: second,
+	Equation: "without a pulse of the low side V_BS ends where i(V_DD - V_prebias - V_BS) = I_0, at most V_DD - V_F - V_prebias; with pulses by the exact law",
+	Limit:    "rising lockout threshold V_UV+, largest", Guard: "limit + max(0.3 V, 5 % of the limit)",
+	Applies: "stages whose node stands at a voltage before the first pulse, and bursts",
+	Needs: []string{"startup.prebias", "driver.uvloRising", "gateSupply.voltage", "bootstrap.diode.forwardPoints", "bootstrap.resistor",
+		"bootstrap.capacitor", "startup.timeAvailable"},
+	Sources: []string{"im393", "common-practice"},
+	Fail:    stage.Major, Marginal: stage.Minor, Open: stage.Major,
+	Quantity: "V_BS at the first pulse", Against: "rising lockout threshold", Dimension: quantity.Voltage, Sense: rule.AtLeast,
+	Stagewide: true,
+	Inapplicable: func(s *stage.Stage, op *stage.OperatingPoint, _ string) string {
+		p := &s.Startup.Prebias
+		if p.Known() && p.Max == 0 && (op == nil || op.Burst == nil) {
+			return "the node is not pre-biased"
+		}
+		return ""
+	},
+	Check: func(c *circuit.Circuit, _ string) rule.Check {
+		if c.Point != nil && c.Point.Burst != nil {
+			c.Period() // notes why there is no model
+			return rule.Check{Value: nan}
+		}
+		limit := c.Need(&c.Stage.Driver.UVLORising)
+		return rule.Check{Value: c.PrebiasedVoltage(), Limit: limit, Guard: limit + c.Margin(limit)}
+	},
+	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
+		if k.Value < k.Limit && !c.Stage.Startup.PulseWidth.Given() {
+			return []string{"no pulse of the low side recharges C_B (startup.pulseWidth is not given): the stage never starts on a node that stands this high"}
+		}
+		return nil
+	},
+}

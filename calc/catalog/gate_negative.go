@@ -1,0 +1,50 @@
+package catalog
+
+import (
+	"floatrail/calc/circuit"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+var gateNegative = &rule.Rule{
+	ID: "gate/negative", Title: "Lowest gate voltage", Since: second,
+	Equation: "v_GS = V_off - R_g·C_gd·dv/dt through the gate's time constant while the switch's own voltage falls; V_off - L_cs·di/dt while its diode loses the current",
+	Limit:    "absolute minimum of the gate voltage", Guard: "10 % above the limit", Applies: "positions with a gate",
+	Needs: []string{"highSide.gateVoltageMin", "lowSide.gateVoltageMin", "highSide.offBias", "lowSide.offBias", "lowSide.reverseTransferCapacitance",
+		"lowSide.gateOff", "layout.lowSideCommonSource", "layout.highSideCommonSource"},
+	Sources: []string{"slup169", "textbook"},
+	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
+	Quantity: "Lowest gate voltage", Against: "absolute minimum", Dimension: quantity.Voltage, Sense: rule.AtLeast,
+	Roles: []string{roleHighSide, roleLowSide}, Inapplicable: withSwitch,
+	Check: func(c *circuit.Circuit, role string) rule.Check {
+		limit := c.Need(&position(c, role).GateVoltageMin)
+		v := c.Need(&position(c, role).OffBias)
+		for _, e := range pulls(role) {
+			if circuit.Occurs(c.Stage, c.Point, e) {
+				v = min(v, c.Pulled(e))
+			}
+		}
+		return rule.Check{Value: v, Limit: limit, Guard: raised(c, limit)}
+	},
+	Alternatives: []func(*circuit.Circuit, string) float64{
+		func(c *circuit.Circuit, role string) float64 { return pulled(c, role, 0) },
+		func(c *circuit.Circuit, role string) float64 { return pulled(c, role, 1) },
+	},
+}
+
+// pulls are the events that pull a position's gate down.
+func pulls(role string) []circuit.Event {
+	if role == roleLowSide {
+		return []circuit.Event{circuit.TurnOff, circuit.TurnOn}
+	}
+	return []circuit.Event{circuit.SinkingTurnOff, circuit.SinkingTurnOn}
+}
+
+func pulled(c *circuit.Circuit, role string, k int) float64 {
+	v := c.Need(&position(c, role).OffBias)
+	if e := pulls(role)[k]; circuit.Occurs(c.Stage, c.Point, e) {
+		v = c.Pulled(e)
+	}
+	return v - c.Need(&position(c, role).GateVoltageMin)
+}

@@ -1,0 +1,491 @@
+package circuit
+
+import (
+	"math"
+
+	"floatrail/calc/corner"
+	"floatrail/calc/stage"
+	"floatrail/calc/transient"
+)
+
+// Event is one of the four commutations of a half-bridge.
+type Event uint8
+
+// Events. The node falls in the first and the last, rises in the others.
+const (
+	TurnOff        Event = iota // the high side turns off a sourcing current, which moves into the low-side diode
+	TurnOn                      // the high side turns on into the low-side diode, which recovers
+	SinkingTurnOff              // the low side turns off a sinking current, which moves into the high-side diode
+	SinkingTurnOn               // the low side turns on into the high-side diode, which recovers
+	eventCount
+)
+
+// Events lists them.
+func Events() [eventCount]Event { return [...]Event{TurnOff, TurnOn, SinkingTurnOff, SinkingTurnOn} }
+
+// String gives the contract's name of the event.
+func (e Event) String() string {
+	return [...]string{"TURN_OFF", "TURN_ON", "SINKING_TURN_OFF", "SINKING_TURN_ON"}[e]
+}
+
+// off tells whether the event is the turning off of a switch.
+func (e Event) off() bool { return e == TurnOff || e == SinkingTurnOff }
+
+// Falls tells whether the node falls.
+func (e Event) Falls() bool { return e == TurnOff || e == SinkingTurnOn }
+
+// active and passive are the switch that acts, and the one whose diode takes over or recovers.
+func (c *Circuit) active(e Event) *stage.Switch {
+	if e == TurnOff || e == TurnOn {
+		return &c.Stage.HighSide
+	}
+	return &c.Stage.LowSide
+}
+
+func (c *Circuit) passive(e Event) *stage.Switch {
+	if e == TurnOff || e == TurnOn {
+		return &c.Stage.LowSide
+	}
+	return &c.Stage.HighSide
+}
+
+// Current is the current that an event commutates, as a magnitude [A]; 0 where the event does not occur at this draw. The peak of the ripple
+// decides where the high side turns off, its valley where it turns on.
+func (c *Circuit) Current(e Event) float64 {
+	if c.Point == nil {
+		return c.NoPoint()
+	}
+	var i float64
+	switch e {
+	case TurnOff:
+		i = c.peakCurrent()
+	case TurnOn:
+		i = c.valleyCurrent()
+	case SinkingTurnOff:
+		i = -c.valleyCurrent()
+	default:
+		i = -c.peakCurrent()
+	}
+	return max(i, 0) // NaN stays NaN
+}
+
+// Occurs tells whether an event can occur at an operating point. What is not known may occur.
+func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
+	if op == nil {
+		return true
+	}
+	if d := op.FixedDuty; d != nil && d.Duty.Known() && (d.Duty.Max <= 0 || d.Duty.Min >= 1) {
+		return false // no edge
+	}
+	if s.LowSide.Kind == stage.DiodeOnly && (e == SinkingTurnOff || e == SinkingTurnOn) {
+		return false
+	}
+	i, r := &op.LoadCurrent, op.RippleCurrent.Triple
+	if !i.Known() {
+		return true
+	}
+	ripple := 0.0
+	if r.IsComplete() {
+		ripple = r.Max / 2
+	}
+	switch e {
+	case TurnOff:
+		return i.Max+ripple > 0
+	case TurnOn:
+		return i.Max > 0
+	case SinkingTurnOff:
+		return i.Min-ripple < 0
+	}
+	return i.Min < 0
+}
+
+// Swing is how the node moves from rail to rail in an event: as measured, or by the gate drive of the switch that acts.
+func (c *Circuit) Swing(e Event) *transient.Swing {
+	return corner.Memo(c.Draw, slotSwing+int(e), true, &c.swingAt[e], func() transient.Swing { return c.swing(e) })
+}
+
+func (c *Circuit) swing(e Event) transient.Swing {
+	m := &c.Stage.Layout.Measured
+	slope := &m.TurnOnVoltageSlope
+	if e.off() {
+		slope = &m.TurnOffVoltageSlope
+	}
+	bus := c.bus()
+	if v, ok := c.Has(slope); ok {
+		return transient.UniformSwing(bus, v)
+	}
+	s, i := c.active(e), c.Current(e)
+	w := c.channel(s)
+	w.Transfer, w.Output = c.transfer(s), c.output(s)
+	passive := c.output(c.passive(e))
+	g := c.drive(s, !e.off(), true)
+	if e.off() {
+		return transient.TurnOffSwing(bus, i, &w, passive, g)
+	}
+	if g.On <= w.Plateau(i) {
+		c.Open("at its gate drive the switch that turns on cannot carry the current")
+	}
+	return transient.TurnOnSwing(bus, i, &w, passive, g)
+}
+
+// CurrentSlope is the steepest slope of the loop current in an event [A/s]: as measured, or by the gate drive of the switch that acts, at turn-off
+// with what the loop's ringing adds.
+func (c *Circuit) CurrentSlope(e Event) float64 {
+	return *corner.Memo(c.Draw, slotSlope+int(e), true, &c.slopeAt[e], func() float64 { return c.currentSlope(e) })
+}
+
+func (c *Circuit) currentSlope(e Event) float64 {
+	m := &c.Stage.Layout.Measured
+	measured := &m.TurnOnCurrentSlope
+	if e.off() {
+		measured = &m.TurnOffCurrentSlope
+	}
+	if v, ok := c.Has(measured); ok {
+		return v
+	}
+	slope := c.channelSlope(e)
+	s := c.active(e)
+	if !e.off() || len(s.OutputCapacitance.Items) == 0 {
+		return slope
+	}
+	return transient.TurnOffSlope(slope, c.Current(e), c.LoopInductance(), c.output(s).At(c.bus()))
+}
+
+// channelSlope is the slope that the gate drive gives the channel's current in an event [A/s].
+func (c *Circuit) channelSlope(e Event) float64 {
+	s, i := c.active(e), c.Current(e)
+	w := c.channel(s)
+	w.InputCapacitance, w.CommonSource = s.Count()*c.Need(&s.InputCapacitance), c.knownCommonSource(s)
+	if g := c.drive(s, !e.off(), true); !e.off() {
+		return transient.CurrentRise(i, &w, g)
+	} else {
+		return transient.CurrentFall(i, &w, g)
+	}
+}
+
+// knownCommonSource is commonSource where it slows an edge: not given it counts as none.
+func (c *Circuit) knownCommonSource(s *stage.Switch) float64 {
+	q := &c.Stage.Layout.LowSideCommonSource
+	if s == &c.Stage.HighSide {
+		q = &c.Stage.Layout.HighSideCommonSource
+	}
+	if v, ok := c.Has(q); ok {
+		return v
+	}
+	c.Assume(stage.Assumption{Field: q.Field, Assumed: "0 H for the steepest current", Direction: stage.Conservative,
+		Reason: "a common source inductance slows the current; none is given"})
+	return 0
+}
+
+// Ring is the oscillation of the commutation loop with the output capacitance of the switch that blocks after an event.
+func (c *Circuit) Ring(e Event) transient.Ring {
+	s := c.active(e)
+	if !e.off() {
+		s = c.passive(e)
+	}
+	return transient.Ring{L: c.LoopInductance(), C: c.output(s).At(c.bus()), Quality: c.Need(&c.Stage.Layout.RingingQuality)}
+}
+
+// Width is the time for which an event drives the node beyond its rail [s]: at turn-off the fall of the current, and otherwise half a ringing
+// period.
+func (c *Circuit) Width(e Event) float64 {
+	i := c.Current(e)
+	if i == 0 {
+		return i
+	}
+	if !e.off() {
+		return 0.5 / c.Ring(e).Frequency()
+	}
+	if v, ok := c.Has(&c.Stage.Layout.Measured.TurnOffCurrentSlope); ok {
+		return i / v
+	}
+	s := c.active(e)
+	w := c.channel(s)
+	w.InputCapacitance, w.Transfer = s.Count()*c.Need(&s.InputCapacitance), c.transfer(s)
+	return transient.FallWidth(c.channelSlope(e), i, c.LoopInductance(), c.output(s).At(c.bus()), c.bus(), &w)
+}
+
+// recovering is the diode that an event's turn-on takes the current from.
+func (c *Circuit) recovering(e Event) transient.Recovering {
+	s := c.passive(e)
+	out := transient.Recovering{Inductance: c.LoopInductance(), Output: c.output(s)}
+	if r := c.recovery(s); r.Tau != 0 {
+		n := s.Count()
+		out.Peak, out.TauRR = n*r.Peak(c.Current(e)/n, c.CurrentSlope(e)/n), r.TauRR
+	}
+	return out
+}
+
+// Recovered is what the diode that recovers in a turn-on drives across its switch beyond V_BUS [V].
+func (c *Circuit) Recovered(e Event) float64 {
+	if i := c.Current(e); i == 0 {
+		return i
+	}
+	r := c.recovering(e)
+	if m := &c.Stage.Layout.Measured; r.Peak > 0 && r.Ahead(c.CurrentSlope(e), c.bus()) {
+		c.Assume(stage.Assumption{Field: m.TurnOnVoltageSlope.Field, Assumed: "the node follows the gate drive", Direction: stage.Optimistic,
+			Reason: "the inductance of the loop takes most of V_BUS from the switch that turns on before the diode recovers, where the overshoot is estimated too small"})
+	}
+	return r.Overshoot(*c.Swing(e))
+}
+
+// commutated is the voltage that a turn-off adds along a part of the loop: forward drop, forward recovery and the inductance of that part [V].
+func (c *Circuit) commutated(e Event, inductance float64) float64 {
+	i := c.Current(e)
+	if i == 0 {
+		return 0
+	}
+	s, slope := c.passive(e), c.CurrentSlope(e)
+	v := c.ReverseDrop(s, i) + c.forwardRecovery(s, i, slope) + inductance*slope
+	if e == TurnOff {
+		v += i * c.shunt()
+	}
+	return v
+}
+
+// Dip is how far an event takes the node below COM [V], 0 or negative.
+func (c *Circuit) Dip(e Event) float64 {
+	switch i := c.Current(e); {
+	case i == 0, !e.Falls():
+		return i * 0
+	case e == TurnOff:
+		return -c.commutated(e, c.LowInductance())
+	}
+	return -c.Recovered(e) * c.LowInductance() / c.LoopInductance()
+}
+
+// PinDip is Dip at the driver's V_S pin [V].
+func (c *Circuit) PinDip(e Event) float64 { return c.clampedPin(c.Dip(e)) }
+
+// NodePeak is the highest node voltage in an event [V].
+func (c *Circuit) NodePeak(e Event) float64 {
+	bus := c.bus()
+	switch i := c.Current(e); {
+	case i == 0, e.Falls():
+		return bus + i*0
+	case e == SinkingTurnOff:
+		return bus + c.commutated(e, c.BusInductance())
+	}
+	return bus + c.Recovered(e)*c.BusInductance()/c.LoopInductance()
+}
+
+// SwitchPeak is the highest drain-source voltage of a position in an event [V]: that of the switch that turns off, or of the one whose diode
+// recovers.
+func (c *Circuit) SwitchPeak(e Event, s *stage.Switch) float64 {
+	bus := c.bus()
+	switch i := c.Current(e); {
+	case i == 0:
+		return bus + i
+	case e.off() && s == c.active(e):
+		return bus + c.commutated(e, c.LoopInductance())
+	case !e.off() && s == c.passive(e):
+		return bus + c.Recovered(e)
+	}
+	return bus
+}
+
+// Induced is the largest gate voltage that an event induces in the position that is off and whose voltage rises [V].
+func (c *Circuit) Induced(e Event) float64 {
+	off := c.Need(&c.passive(e).OffBias)
+	i := c.Current(e)
+	if i == 0 || e.off() {
+		return off + i*0
+	}
+	s := c.passive(e)
+	w, rg, swing := c.gateOf(s), c.gateResistance(s, false, false), c.Swing(e)
+	v := transient.Lift(&w, rg, *swing)
+	r := c.recovering(e)
+	if !c.slewMeasured(e) {
+		v = math.Max(v, transient.Lift(&w, rg, r.Swing(*swing)))
+	}
+	if r.Peak != 0 {
+		v += transient.SourceLift(c.commonSource(s), r.Peak, r.TauRR, rg*w.InputCapacitance)
+	}
+	return off + v
+}
+
+// slewMeasured tells whether the node's slope in an event is a measured one.
+func (c *Circuit) slewMeasured(e Event) bool {
+	q := &c.Stage.Layout.Measured.TurnOnVoltageSlope
+	if e.off() {
+		q = &c.Stage.Layout.Measured.TurnOffVoltageSlope
+	}
+	_, ok := c.Has(q)
+	return ok
+}
+
+// liftDoubt is by how much the estimate of an induced gate voltage may be too small where the slope of the node is not measured: over the
+// simulated stages of testdata/reference/event.json it is at most by this factor.
+const liftDoubt = 1.6
+
+// Doubtful tells whether an induced gate voltage that is estimated, not measured, may exceed a limit although the estimate does not.
+func (c *Circuit) Doubtful(e Event, induced, limit float64) bool {
+	off := c.Need(&c.passive(e).OffBias)
+	return c.Current(e) > 0 && !c.slewMeasured(e) && off+liftDoubt*(induced-off) > limit
+}
+
+// gateOf is a position's gate as an edge of the other switch sees it.
+func (c *Circuit) gateOf(s *stage.Switch) transient.Switch {
+	return transient.Switch{
+		InputCapacitance: s.Count() * c.Need(&s.InputCapacitance), InputCapacitanceVoltage: c.Need(&s.InputCapacitanceVoltage),
+		Transfer: c.transfer(s),
+	}
+}
+
+// Pulled is the lowest gate voltage that an event induces in the position that is off and whose voltage falls [V]: that which the current
+// moves into.
+func (c *Circuit) Pulled(e Event) float64 {
+	off := c.Need(&c.passive(e).OffBias)
+	i := c.Current(e)
+	if i == 0 {
+		return off
+	}
+	s := c.passive(e)
+	if !e.off() { // the current leaves the diode, and its slope acts on the source that gate and load share
+		return off - c.commonSource(s)*c.CurrentSlope(e)
+	}
+	w := c.gateOf(s)
+	return off - transient.Pull(&w, c.gateResistance(s, false, false), *c.Swing(e))
+}
+
+// UnpoweredInduced is the gate voltage induced in a high side whose driver is without supply, as the low side first pulls down a node that
+// stands at a voltage [V].
+func (c *Circuit) UnpoweredInduced() float64 {
+	s := &c.Stage.HighSide
+	from := c.Need(&c.Stage.Startup.Prebias)
+	if from == 0 {
+		return 0
+	}
+	hold := 1 / c.Need(&c.Stage.Driver.PassivePullDown)
+	r := c.resistorsOf(s, false) + 1/hold
+	switch p := &s.GatePullDown; p.Presence() { // it sits at the gate itself, beside what leads to the driver
+	case stage.Fitted:
+		r = 1 / (1/r + s.Count()/c.Need(&p.Resistance))
+	case stage.PresenceUnknown:
+		r += c.Want(p.Field)
+	}
+	low := &c.Stage.LowSide
+	w := c.channel(low)
+	w.Transfer, w.Output = c.transfer(low), c.output(low)
+	swing := transient.TurnOnSwing(from, 0, &w, c.output(s), c.drive(low, true, true))
+	g := c.gateOf(s)
+	return transient.Lift(&g, r, swing)
+}
+
+// TurnOffTime is the time from a command to the end of the channel current of a position [s].
+func (c *Circuit) TurnOffTime(e Event) float64 {
+	s, i := c.active(e), c.Current(e)
+	w := c.channel(s)
+	w.InputCapacitance, w.Transfer = s.Count()*c.Need(&s.InputCapacitance), c.transfer(s)
+	return transient.TurnOffTime(i, &w, c.drive(s, false, false), c.bus(), c.Need(&s.CurrentFallTime))
+}
+
+// GateDamping is the smaller damping of a position's gate loop over both directions [1].
+func (c *Circuit) GateDamping(s *stage.Switch) float64 {
+	n := s.Count()
+	l, ciss := c.Need(&s.GateLoopInductance)/n, n*c.Need(&s.InputCapacitance)
+	return math.Min(transient.GateDamping(c.gateResistance(s, true, true), l, ciss), transient.GateDamping(c.gateResistance(s, false, true), l, ciss))
+}
+
+// GateCurrent is the peak current that the gate loop of a position lets through in one direction [A]; the driver's resistance counts where it
+// is given.
+func (c *Circuit) GateCurrent(s *stage.Switch, on bool) float64 {
+	r := &c.Stage.Driver.PullDownResistance
+	if on {
+		r = &c.Stage.Driver.PullUpResistance
+	}
+	total := c.resistorsOf(s, on)
+	if v, ok := c.Has(r); ok {
+		total += v
+	}
+	return (c.driveVoltage(s) - c.Need(&s.OffBias)) / total
+}
+
+// Permitted is the lowest V_S that the driver's table permits for a time [V]: the deepest row that lasts as long. Where no row does, the
+// circuit is open.
+func (c *Circuit) Permitted(duration float64) float64 {
+	l := &c.Stage.Driver.NodeUndershoot
+	if len(l.Items) == 0 {
+		return c.Want(l.Field)
+	}
+	var buf [8]transient.Row
+	rows := buf[:0]
+	for i := range l.Items {
+		r := transient.Row{Level: c.Need(&l.Items[i].Voltage), Duration: math.Inf(1)}
+		if d := &l.Items[i].Duration; d.Given() {
+			r.Duration = c.Need(d)
+		}
+		rows = append(rows, r)
+	}
+	if duration != duration {
+		return nan
+	}
+	level, ok := transient.Permitted(rows, duration)
+	if !ok {
+		return c.Open("the driver's table of negative node voltages has no row that lasts as long as the undershoot")
+	}
+	return level
+}
+
+// Plateau is a time for which the node stands below COM in normal operation.
+type Plateau struct {
+	Node     float64 // V_S at the driver's pin, 0 or negative [V]
+	Duration float64 // [s]
+}
+
+// Plateaus are those of an operating point: the reverse conduction of the low side in the dead times, and its on-time, or the whole time for which
+// a diode carries the current.
+func (c *Circuit) Plateaus() [3]Plateau {
+	if c.Point == nil {
+		return [3]Plateau{{c.NoPoint(), nan}}
+	}
+	if c.Stage.LowSide.Kind == stage.DiodeOnly {
+		return [3]Plateau{{min(0, c.clampedPin(c.freewheelNode(c.peakCurrent()))), c.offTime()}}
+	}
+	dead := c.Need(&c.Point.DeadTime)
+	at := func(i float64) float64 { return min(0, c.clampedPin(c.freewheelNode(i))) }
+	return [3]Plateau{{at(c.peakCurrent()), dead}, {at(c.valleyCurrent()), dead}, {min(0, c.LowSideNode(c.peakCurrent())), c.offTime()}}
+}
+
+// offTime is the time for which the high side is off in a period [s]; without end where the mode has no period.
+func (c *Circuit) offTime() float64 {
+	if c.Point.FixedDuty == nil {
+		return math.Inf(1)
+	}
+	return (1 - c.Need(&c.Point.FixedDuty.Duty)) / c.Need(&c.Point.SwitchingFrequency)
+}
+
+// Commanded is the lowest node voltage at which the high side is commanded to turn on [V]: in reverse conduction of the low side at the valley
+// of the current.
+func (c *Circuit) Commanded() float64 {
+	if c.Point == nil {
+		return c.NoPoint()
+	}
+	return min(0, c.clampedPin(c.freewheelNode(c.valleyCurrent())))
+}
+
+// Slew is the fastest movement of the node in an event [V/s]; 0 where it does not occur at this draw.
+func (c *Circuit) Slew(e Event) float64 {
+	if i := c.Current(e); i == 0 {
+		return i
+	}
+	if e.off() || c.slewMeasured(e) {
+		return c.Swing(e).Peak()
+	}
+	r := c.recovering(e)
+	return r.Slew(*c.Swing(e))
+}
+
+// Bus is the DC-link voltage [V].
+func (c *Circuit) Bus() float64 { return c.bus() }
+
+// NodeHigh is the highest node voltage over all events [V].
+func (c *Circuit) NodeHigh() float64 {
+	v := c.bus()
+	for _, e := range Events() {
+		if Occurs(c.Stage, c.Point, e) {
+			v = math.Max(v, c.NodePeak(e))
+		}
+	}
+	return v
+}

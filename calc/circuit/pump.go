@@ -1,0 +1,150 @@
+package circuit
+
+import (
+	"math"
+
+	"floatrail/calc/corner"
+	"floatrail/calc/recharge"
+	"floatrail/calc/stage"
+)
+
+// Names of the intervals in which an undershoot adds to V_BS.
+const (
+	IntervalUndershoot     = "undershoot after the high side turns off"
+	IntervalRecoveryRinger = "undershoot after the low side turns on"
+)
+
+// pumps are the events that take the node below COM, with the interval of the period in which they fall.
+var pumps = [...]struct {
+	event    Event
+	name     string
+	followed []string // intervals of which they take the beginning
+}{
+	{TurnOff, IntervalUndershoot, []string{IntervalFirstDead, IntervalFreewheel}},
+	{SinkingTurnOn, IntervalRecoveryRinger, []string{IntervalLowSide}},
+}
+
+// Pumped is the period with the undershoot of its switching events as intervals of their own: the node stands at its deepest for the whole
+// width of the dip, so that what it adds to V_BS is estimated on the safe side.
+func (c *Circuit) Pumped() *Period {
+	return corner.Memo(c.Draw, slotPumped, false, &c.pumpedAt, c.pumped)
+}
+
+func (c *Circuit) pumped() Period {
+	p := *c.Period()
+	off, names := c.pumpedOff[:0], c.pumpedNames[:0]
+	for i := range p.Off {
+		iv, name := p.Off[i], p.Names[i]
+		for _, m := range pumps {
+			if !iv.Conducts || !follows(m.followed, name) || !Occurs(c.Stage, c.Point, m.event) || c.Current(m.event) == 0 {
+				continue
+			}
+			dip := iv
+			dip.Duration, dip.Drive = math.Min(c.Width(m.event), iv.Duration), c.Supply()-c.PinDip(m.event)
+			if dip.Drive <= iv.Drive { // not deeper than the interval itself
+				continue
+			}
+			iv.Duration -= dip.Duration
+			off, names = append(off, dip), append(names, m.name)
+		}
+		off, names = append(off, iv), append(names, name)
+	}
+	p.Off, p.Names = off, names
+	return p
+}
+
+func follows(names []string, name string) bool {
+	for _, n := range names {
+		if n == name {
+			return true
+		}
+	}
+	return false
+}
+
+// pumpedSteadyState is the periodic steady state with the undershoots.
+func (c *Circuit) pumpedSteadyState() *recharge.Steady {
+	return corner.Memo(c.Draw, slotPumpedSteady, true, &c.pumpedSteady, func() recharge.Steady { return c.solve(c.Pumped()) })
+}
+
+// Highest is the highest V_BS of the operating point with what undershoots add to it, limited by a clamp where one is fitted [V].
+func (c *Circuit) Highest() float64 {
+	if c.Point != nil && c.Point.HeldOn != nil {
+		return c.High()
+	}
+	st := c.pumpedSteadyState()
+	if st.Collapses {
+		return c.High()
+	}
+	return c.clamped(st.High)
+}
+
+// Unclamped is Highest as if there were no clamp [V].
+func (c *Circuit) Unclamped() float64 {
+	if c.Point != nil && c.Point.HeldOn != nil {
+		return c.Need(&c.Point.HeldOn.InitialVoltage)
+	}
+	st := c.pumpedSteadyState()
+	if st.Collapses {
+		return c.Settled()
+	}
+	return st.High
+}
+
+// clamped cuts a floating voltage at the clamp [V].
+func (c *Circuit) clamped(v float64) float64 {
+	switch z := &c.Stage.Bootstrap.Clamp; z.Presence() {
+	case stage.Fitted:
+		return math.Min(v, c.Need(&z.Voltage))
+	case stage.PresenceUnknown:
+		return c.Want(z.Field)
+	}
+	return v
+}
+
+// Gain is what the undershoots add to the highest V_BS [V].
+func (c *Circuit) Gain() float64 { return c.Highest() - c.High() }
+
+// ClampPower is the mean power of the clamp across V_BS [W]. While it holds V_BS, an interval whose drive lies above its voltage brings at most
+// the element's current at that voltage for its whole length.
+func (c *Circuit) ClampPower() float64 {
+	v := c.Need(&c.Stage.Bootstrap.Clamp.Voltage)
+	power := v * c.Need(&c.Stage.Bootstrap.Clamp.Leakage)
+	if c.Point == nil || c.Point.HeldOn != nil || !(c.Unclamped() > v) {
+		return power + c.Unclamped()*0
+	}
+	p := c.Pumped()
+	brought := 0.0
+	for i := range p.Off {
+		if iv := &p.Off[i]; iv.Conducts {
+			brought += iv.Duration * math.Max(0, p.Element.Current(iv.Drive-v))
+		}
+	}
+	return power + v*brought/p.T
+}
+
+// Normal is the highest V_BS that recharge with the low side on gives [V], without dead times and undershoots.
+func (c *Circuit) Normal() float64 {
+	if c.Point == nil || c.Point.HeldOn != nil {
+		return c.Element().Settled(c.Supply(), c.Loads().Total())
+	}
+	p, best := c.Period(), nan
+	for i := range p.Off {
+		iv, name := &p.Off[i], p.Names[i]
+		if !iv.Conducts || name == IntervalFirstDead || name == IntervalSecondDead {
+			continue
+		}
+		if v := p.Element.Settled(iv.Drive, iv.Load); !(v <= best) {
+			best = v
+		}
+	}
+	return best
+}
+
+// PumpedPeak is the largest current of the element in the steady state with the undershoots [A].
+func (c *Circuit) PumpedPeak() float64 {
+	if c.Point == nil {
+		return c.NoPoint()
+	}
+	return c.peak(c.Pumped(), c.pumpedSteadyState())
+}

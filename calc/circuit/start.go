@@ -1,0 +1,109 @@
+package circuit
+
+import (
+	"floatrail/calc/stage"
+	"floatrail/calc/startup"
+)
+
+// firstCharge is the first charge of C_B at its largest, new and without bias, with the node at 0 V [design 4.5].
+func (c *Circuit) firstCharge() startup.Charge {
+	return startup.Charge{
+		Element: c.Element(), Capacitance: c.Fresh(), Supply: c.Supply(), Load: c.Loads().Total(), Initial: c.Need(&c.Stage.Startup.InitialVoltage),
+	}
+}
+
+// FirstTarget is the voltage that the first charge must reach: the rising lockout with the policy's margin [V].
+func (c *Circuit) FirstTarget() float64 {
+	v := c.Need(&c.Stage.Driver.UVLORising)
+	return v + c.Margin(v)
+}
+
+// chargeTime is the time and the pulses of the first charge of a capacitor to the target; 0 pulses where the low side is held on [s].
+func (c *Circuit) chargeTime(ch startup.Charge) (float64, int) {
+	s := &c.Stage.Startup
+	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
+		return ch.PulsedTime(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod), c.FirstTarget())
+	}
+	return ch.Time(c.FirstTarget()), 0
+}
+
+// FirstChargeTime is the time of the first charge [s], without the driver's enable delay, and its pulses.
+func (c *Circuit) FirstChargeTime() (float64, int) { return c.chargeTime(c.firstCharge()) }
+
+// PrechargeTime is the time from the beginning of the first charge to the first accepted pulse [s].
+func (c *Circuit) PrechargeTime() float64 {
+	t, _ := c.FirstChargeTime()
+	return t + c.Need(&c.Stage.Driver.EnableDelay)
+}
+
+// FirstPeak is the element's current when an empty C_B is first charged [A].
+func (c *Circuit) FirstPeak() float64 { return c.firstCharge().PeakCurrent() }
+
+// FirstEnergy is the energy that R_B takes at first charge [J].
+func (c *Circuit) FirstEnergy() float64 {
+	return c.firstCharge().ResistorEnergy(c.series(&c.Stage.Bootstrap.Resistor))
+}
+
+// FirstSlew is the steepest rise of V_BS at first charge [V/s].
+func (c *Circuit) FirstSlew() float64 { return c.firstCharge().Slew() }
+
+// FirstSettled is the V_BS at which the first charge ends [V].
+func (c *Circuit) FirstSettled() float64 {
+	ch := c.firstCharge()
+	s := &c.Stage.Startup
+	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
+		return ch.PulsedSettled(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod))
+	}
+	return ch.Settled()
+}
+
+// sharing is the number of stages on the supply.
+func (c *Circuit) sharing() int {
+	g := &c.Stage.GateSupply
+	if g.StagesSharing > 0 {
+		return g.StagesSharing
+	}
+	c.Assume(stage.Assumption{Field: g.Field + ".stagesSharing", Assumed: "1", Direction: stage.Optimistic,
+		Reason: "the number of stages on the supply is not given; this one alone is assumed"})
+	return 1
+}
+
+// Simultaneous is the number of bootstrap capacitors that are charged at once from the reservoir.
+func (c *Circuit) Simultaneous() int {
+	if n := c.Stage.Startup.Simultaneous; n > 0 {
+		return n
+	}
+	return c.sharing()
+}
+
+// ReservoirLow is the lowest V_DD while the bootstrap capacitors are charged at once from the reservoir [V].
+func (c *Circuit) ReservoirLow() float64 {
+	r := &c.Stage.GateSupply.Reservoir
+	switch r.Presence() {
+	case stage.NotFitted:
+		return c.Supply()
+	case stage.PresenceUnknown:
+		return c.Want(r.Field)
+	}
+	n := startup.Reservoir{
+		Element: c.Element(), Bootstrap: c.Fresh(), Reservoir: c.Effective(r, c.Supply), Count: c.Simultaneous(), Supply: c.Supply(),
+		Initial: c.Need(&c.Stage.Startup.InitialVoltage), Load: c.Loads().Total(),
+	}
+	if i, ok := c.Has(&c.Stage.GateSupply.CurrentLimit); ok {
+		n.SupplyCurrent = i
+	}
+	return n.Lowest()
+}
+
+// PrebiasedVoltage is V_BS at the first pulse on a node that stands at a voltage already [V]. With pulses of the low side it is what they
+// reach in the time available; without, what the element brings against the raised node.
+func (c *Circuit) PrebiasedVoltage() float64 {
+	s := &c.Stage.Startup
+	ch := c.firstCharge()
+	node := c.Need(&s.Prebias)
+	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
+		return ch.PulsedReached(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod), c.Need(&s.TimeAvailable))
+	}
+	ch.Node = node
+	return max(0, ch.Settled())
+}

@@ -1,0 +1,123 @@
+package result
+
+import (
+	"math"
+
+	"floatrail/calc/circuit"
+	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
+	"floatrail/calc/stage"
+)
+
+// Transient gives the switching events of every operating point, as closed forms estimate them.
+func Transient(b *rule.Bench) *finding.TransientStress {
+	points := make([][]finding.TransientEvent, len(b.Points))
+	b.SideBySide(func(i int) {
+		p := &b.Points[i]
+		if p.Operating == nil {
+			return
+		}
+		for _, e := range circuit.Events() {
+			if circuit.Occurs(b.Stage, p.Operating, e) && !b.Stopped() {
+				points[i] = append(points[i], event(b, p, e))
+			}
+		}
+	})
+	out := &finding.TransientStress{}
+	for _, p := range points {
+		out.Events = append(out.Events, p...)
+	}
+	return out
+}
+
+// event gives the numbers of one event. What it does not stress stays unset.
+func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent {
+	out := finding.TransientEvent{Event: e.String(), OperatingPoint: p.Name()}
+	turnsOn := e == circuit.TurnOn || e == circuit.SinkingTurnOn
+	low, high := &b.Stage.LowSide, &b.Stage.HighSide
+	switched := low.Kind != stage.DiodeOnly
+	sourcing := e == circuit.TurnOff || e == circuit.TurnOn
+	for _, n := range []struct {
+		to   *finding.Span
+		dim  quantity.Dimension
+		show bool
+		of   rule.Number
+	}{
+		{&out.NodeMin, quantity.Voltage, e.Falls(), func(c *circuit.Circuit) float64 { return c.Dip(e) }},
+		{&out.PinMin, quantity.Voltage, e.Falls(), func(c *circuit.Circuit) float64 { return c.PinDip(e) }},
+		{&out.RailToCOMMin, quantity.Voltage, e.Falls(), func(c *circuit.Circuit) float64 {
+			return c.PinDip(e) + c.Need(&c.Stage.Driver.UVLOFalling)
+		}},
+		{&out.FloatingVoltageGain, quantity.Voltage, e.Falls(), func(c *circuit.Circuit) float64 { return c.Gain() }},
+		{&out.NodeMax, quantity.Voltage, !e.Falls(), func(c *circuit.Circuit) float64 { return c.NodePeak(e) }},
+		{&out.RailMax, quantity.Voltage, !e.Falls(), func(c *circuit.Circuit) float64 { return c.NodePeak(e) + c.Highest() }},
+		{&out.HighSidePeak, quantity.Voltage, e.Falls(), func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, high) }},
+		{&out.LowSidePeak, quantity.Voltage, !e.Falls(), func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, low) }},
+		{&out.SlewPeak, quantity.VoltageSlew, true, func(c *circuit.Circuit) float64 { return c.Swing(e).Peak() }},
+		{&out.Slew10To90, quantity.VoltageSlew, true, func(c *circuit.Circuit) float64 { return c.Swing(e).Mean() }},
+		{&out.MillerLow, quantity.Voltage, turnsOn && sourcing && switched, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
+		{&out.MillerHigh, quantity.Voltage, turnsOn && !sourcing, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
+		{&out.GateMin, quantity.Voltage, !sourcing || switched, func(c *circuit.Circuit) float64 { return c.Pulled(e) }},
+		{&out.CurrentSlope, quantity.CurrentSlew, true, func(c *circuit.Circuit) float64 { return c.CurrentSlope(e) }},
+		{&out.RingFrequency, quantity.Frequency, true, func(c *circuit.Circuit) float64 { return c.Ring(e).Frequency() }},
+		{&out.RingDamping, quantity.Ratio, true, func(c *circuit.Circuit) float64 { return c.Ring(e).Damping() }},
+	} {
+		*n.to = finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: n.dim}
+		if n.show {
+			*n.to = b.Range(p, n.of, n.dim).Span
+		}
+	}
+	if !e.Falls() {
+		return out
+	}
+	rows := b.Stage.Driver.NodeUndershoot.Items
+	for i := range rows {
+		level := rows[i].Voltage.Typ
+		out.Undershoots = append(out.Undershoots, finding.Undershoot{
+			Level: finding.Measure{Value: level, Dimension: quantity.Voltage},
+			Duration: b.Range(p, func(c *circuit.Circuit) float64 {
+				switch v, w := c.PinDip(e), c.Width(e); {
+				case v != v || w != w:
+					return math.NaN()
+				case v < level:
+					return w
+				}
+				return 0
+			}, quantity.Time).Span,
+		})
+	}
+	return out
+}
+
+// precharge gives the first charge. It does not depend on the mode: its ends are those over all operating points.
+func precharge(b *rule.Bench) finding.Precharge {
+	var out finding.Precharge
+	over := func(of rule.Number, d quantity.Dimension) finding.Span {
+		all := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
+		for i := range b.Points {
+			s := b.Range(&b.Points[i], of, d).Span
+			if s.Typ != s.Typ {
+				return finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
+			}
+			if i == 0 {
+				all = s
+				continue
+			}
+			all.Min, all.Max = math.Min(all.Min, s.Min), math.Max(all.Max, s.Max)
+		}
+		return all
+	}
+	out.Time = over(func(c *circuit.Circuit) float64 { return c.PrechargeTime() }, quantity.Time)
+	out.PeakCurrent = over(func(c *circuit.Circuit) float64 { return c.FirstPeak() }, quantity.Current)
+	out.ResistorEnergy = over(func(c *circuit.Circuit) float64 { return c.FirstEnergy() }, quantity.Energy)
+	out.ReservoirLow = over(func(c *circuit.Circuit) float64 { return c.ReservoirLow() }, quantity.Voltage)
+	out.SettledVoltage = over(func(c *circuit.Circuit) float64 { return c.FirstSettled() }, quantity.Voltage)
+	if pulses := over(func(c *circuit.Circuit) float64 {
+		_, n := c.FirstChargeTime()
+		return float64(n)
+	}, quantity.Count); pulses.Max > 0 && pulses.Max < math.MaxInt32 {
+		out.Pulses = int(pulses.Max)
+	}
+	return out
+}
