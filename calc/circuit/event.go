@@ -316,7 +316,7 @@ func (c *Circuit) slewMeasured(e Event) bool {
 
 // liftDoubt is by how much the estimate of an induced gate voltage may be too small where the slope of the node is not measured: over the
 // simulated stages of testdata/reference/event.json it is at most by this factor.
-const liftDoubt = 1.6
+const liftDoubt = 1.75
 
 // Doubtful tells whether an induced gate voltage that is estimated, not measured, may exceed a limit although the estimate does not.
 func (c *Circuit) Doubtful(e Event, induced, limit float64) bool {

@@ -75,11 +75,14 @@ func (t train) steady() (low, high float64) {
 }
 
 // centred is the average of the train as a charge with the element conducting throughout, V_BS taken in the middle of the pauses. Its load
-// is what the element carries at the exact steady state, I_0/δ but for the second order of the width.
+// is what the element carries at the exact steady state, I_0/δ but for the second order of the width; I_0/δ itself where there is none above 0.
 func (t train) centred() Charge {
-	_, high := t.steady()
+	low, high := t.steady()
 	c := t.Charge
 	c.Load = math.Max(t.Element.Current(t.drive()-(high-t.drop/2)), 0)
+	if low == 0 {
+		c.Load = t.Load * t.period / t.width
+	}
 	return c
 }
 
@@ -141,6 +144,9 @@ func (c Charge) PulsedReached(width, period, time float64) float64 {
 	if math.IsInf(time, 1) {
 		low, _ := t.steady()
 		return low
+	}
+	if t.width == 0 {
+		return math.Max(c.Initial-c.Load*math.Max(time, 0)/c.Capacitance, 0)
 	}
 	v := c.Initial
 	whole := math.Floor(math.Max(time, 0) / period)

@@ -129,6 +129,27 @@ func TestPulsesThatPausesUndo(t *testing.T) {
 	}
 }
 
+// From above their steady state, or where they cannot hold V_BS at all, the pulses let it fall: against one pulse after another.
+func TestPulsesThatLoseVoltage(t *testing.T) {
+	for _, k := range []struct{ load, width, period float64 }{
+		{0.5e-3, 1e-6, 20e-6},    // settles near 13 V
+		{20e-3, 0.1e-6, 10e-6},   // 2 A of mean demand in the pulse, settles near 4 V
+		{40e-3, 0.1e-6, 10e-6},   // more than the pulses bring at any voltage
+		{40e-3, 0.01e-6, 0.1e-6}, // 0.4 A, settles near 12 V
+		{1e-3, 0, 10e-6},         // no pulse at all
+	} {
+		c := startup.Charge{Element: silicon(5), Capacitance: 10e-6, Supply: 15, Load: k.load, Initial: 14.5}
+		v, on := c.Initial, recharge.Interval{Duration: k.width, Drive: 15, Conducts: true, Load: k.load}
+		for n := 1; n <= 3000; n++ {
+			v, _ = c.Element.Advance(v, on, c.Capacitance)
+			v = math.Max(v-k.load*(k.period-k.width)/c.Capacitance, 0)
+			if n%50 == 0 {
+				near(t, "reached", c.PulsedReached(k.width, k.period, (float64(n)-1e-9)*k.period), v, 1e-5)
+			}
+		}
+	}
+}
+
 func TestPulsesWithoutPause(t *testing.T) {
 	c := typical()
 	for _, width := range []float64{10e-6, 30e-6} { // as long as the period, and longer

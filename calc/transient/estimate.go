@@ -8,8 +8,8 @@ import "math"
 //	min(slope, i/sqrt(l·c))
 //
 // The ramp of the channel current makes the loop ring, by which its slope may reach twice the channel's; the Miller current of the rising
-// voltage damps that and slows the channel. Over the simulated stages of testdata/reference/event.json the two nearly cancel: l times this
-// slope lies between 0.95 and 6 times the simulated overshoot, above it where the node arrives with the channel already off.
+// voltage damps that and slows the channel. Over the simulated stages of testdata/reference/event.json the two nearly cancel: l times this slope
+// is at least 0.95 times the simulated overshoot, and several times it where the node arrives with the channel already off.
 func TurnOffSlope(slope, i, l, c float64) float64 {
 	if i == 0 {
 		return 0 * (slope + l + c)
@@ -39,14 +39,15 @@ type Recovering struct {
 // effective is the capacitance that takes the same charge up to the bus [F].
 func (r *Recovering) effective(bus float64) float64 { return r.Output.Charge(bus) / bus }
 
-// Overshoot is by how much the voltage of the diode's switch exceeds V_BUS as the other one turns on with the swing w [V]. Two parts, added on
-// the safe side:
+// Overshoot is by how much the voltage of the diode's switch exceeds V_BUS as the other one turns on with the swing w [V]: the square root of
+// the sum of squares of two parts,
 //
 //	a bus that is applied as a ramp over the time t of the swing makes L and C_oss ring by V_BUS·|sin(ωt/2)|/(ωt/2), at most V_BUS·min(1, 2/(ωt));
 //	a reverse current that decays as I_RM·e^(-t/τ) adds at most A + sqrt(A² + D²), A = (I_RM·L/τ)/(1 + LC/τ²), D = A/(ωτ).
 //
-// The first takes C_oss by its charge, the second at V_BUS. Undamped. Where L·di/dt has taken the bus from the switch before the diode recovers
-// the first part is near V_BUS whatever the swing; see Ahead.
+// The first takes C_oss by its charge, the second at V_BUS. Undamped. Over the simulated stages it is at least 0.88 times the simulated overshoot;
+// where L·di/dt has taken the bus from the switch before the diode recovers (Ahead) the first part is near V_BUS whatever the swing, and it may
+// be as little as 0.49 times.
 func (r *Recovering) Overshoot(w Swing) float64 {
 	omega := 1 / math.Sqrt(r.Inductance*r.effective(w.Bus))
 	ramp := w.Bus * math.Min(1, 2/(omega*w.Time()))
@@ -55,11 +56,11 @@ func (r *Recovering) Overshoot(w Swing) float64 {
 	}
 	root := math.Sqrt(r.Inductance * r.Output.At(w.Bus))
 	if r.TauRR == 0 {
-		return ramp + r.Peak*r.Inductance/root
+		return math.Hypot(ramp, r.Peak*r.Inductance/root)
 	}
 	x := root / r.TauRR
 	a := r.Peak * r.Inductance / r.TauRR / (1 + x*x)
-	return ramp + a + math.Hypot(a, a*x)
+	return math.Hypot(ramp, a+math.Hypot(a, a*x))
 }
 
 // Ahead tells whether a current that rises at slope [A/s] takes more than half of the bus [V] from the switch that turns on before the diode
@@ -72,7 +73,7 @@ func (r *Recovering) Ahead(slope, bus float64) bool { return r.Inductance*slope 
 //	the charging of C_oss by the reverse current, C·v = I_RM·(t - τ·(1 - e^(-t/τ))): for t < τ v grows as I_RM·t²/(2τC), so that the slew at
 //	V_BUS is sqrt(2·I_RM·V_BUS/(τ·C)), at most I_RM/C.
 //
-// Over the simulated stages it lies between 0.63 and 3.6 times the simulated peak.
+// Over the simulated stages it lies between 0.63 and 2.8 times the simulated peak.
 func (r *Recovering) Slew(w Swing) float64 {
 	c := r.effective(w.Bus)
 	omega := 1 / math.Sqrt(r.Inductance*c)
