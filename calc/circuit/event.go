@@ -251,7 +251,9 @@ func (c *Circuit) Dip(e Event) float64 {
 	case e == TurnOff:
 		return -c.commutated(e, c.LowInductance())
 	}
-	return -c.Recovered(e) * c.LowInductance() / c.LoopInductance()
+	c.Recovered(e) // notes where the estimate may be too small
+	r := c.recovering(e)
+	return -r.Dip(*c.Swing(e), c.LowInductance()/c.LoopInductance())
 }
 
 // PinDip is Dip at the driver's V_S pin [V].

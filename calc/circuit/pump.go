@@ -10,8 +10,8 @@ import (
 
 // Names of the intervals in which an undershoot adds to V_BS.
 const (
-	IntervalUndershoot     = "undershoot after the high side turns off"
-	IntervalRecoveryRinger = "undershoot after the low side turns on"
+	IntervalUndershoot = "undershoot after the high side turns off"
+	IntervalRinging    = "undershoot after the low side turns on"
 )
 
 // pumps are the events that take the node below COM, with the interval of the period in which they fall.
@@ -19,13 +19,14 @@ var pumps = [...]struct {
 	event    Event
 	name     string
 	followed []string // intervals of which they take the beginning
+	mean     float64  // depth over the width of the dip [1]
 }{
-	{TurnOff, IntervalUndershoot, []string{IntervalFirstDead, IntervalFreewheel}},
-	{SinkingTurnOn, IntervalRecoveryRinger, []string{IntervalLowSide}},
+	{TurnOff, IntervalUndershoot, []string{IntervalFirstDead, IntervalFreewheel}, 1}, // of a current that falls along a line
+	{SinkingTurnOn, IntervalRinging, []string{IntervalLowSide}, 2 / math.Pi},         // half a period of a sine
 }
 
-// Pumped is the period with the undershoot of its switching events as intervals of their own: the node stands at its deepest for the whole
-// width of the dip, so that what it adds to V_BS is estimated on the safe side.
+// Pumped is the period with the undershoot of its switching events as intervals of their own: the node stands at the mean depth of the dip for
+// its width. The diode takes less of the shallow parts than of the mean, the resistor as much.
 func (c *Circuit) Pumped() *Period {
 	return corner.Memo(c.Draw, slotPumped, false, &c.pumpedAt, c.pumped)
 }
@@ -40,7 +41,7 @@ func (c *Circuit) pumped() Period {
 				continue
 			}
 			dip := iv
-			dip.Duration, dip.Drive = math.Min(c.Width(m.event), iv.Duration), c.Supply()-c.PinDip(m.event)
+			dip.Duration, dip.Drive = math.Min(c.Width(m.event), iv.Duration), c.Supply()-m.mean*c.PinDip(m.event)
 			if dip.Drive <= iv.Drive { // not deeper than the interval itself
 				continue
 			}

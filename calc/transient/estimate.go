@@ -49,18 +49,37 @@ func (r *Recovering) effective(bus float64) float64 { return r.Output.Charge(bus
 // where L·di/dt has taken the bus from the switch before the diode recovers (Ahead) the first part is near V_BUS whatever the swing, and it may
 // be as little as 0.49 times.
 func (r *Recovering) Overshoot(w Swing) float64 {
-	omega := 1 / math.Sqrt(r.Inductance*r.effective(w.Bus))
-	ramp := w.Bus * math.Min(1, 2/(omega*w.Time()))
+	ramp, _ := r.ramp(w)
+	return math.Hypot(ramp, r.decay(w.Bus))
+}
+
+// ramp is the first part of Overshoot [V], and the angle ωt [1].
+func (r *Recovering) ramp(w Swing) (v, angle float64) {
+	angle = w.Time() / math.Sqrt(r.Inductance*r.effective(w.Bus))
+	return w.Bus * math.Min(1, 2/angle), angle
+}
+
+// decay is the second part of Overshoot [V].
+func (r *Recovering) decay(bus float64) float64 {
 	if r.Peak == 0 {
-		return ramp
+		return 0
 	}
-	root := math.Sqrt(r.Inductance * r.Output.At(w.Bus))
+	root := math.Sqrt(r.Inductance * r.Output.At(bus))
 	if r.TauRR == 0 {
-		return math.Hypot(ramp, r.Peak*r.Inductance/root)
+		return r.Peak * r.Inductance / root
 	}
 	x := root / r.TauRR
 	a := r.Peak * r.Inductance / r.TauRR / (1 + x*x)
-	return math.Hypot(ramp, a+math.Hypot(a, a*x))
+	return a + math.Hypot(a, a*x)
+}
+
+// Dip is by how much the node falls below COM as the low side turns on with the swing w [V], share being the part of the loop's inductance that
+// lies below the node [1]: that share of the parts of Overshoot, of which the first counts min(1, 4/(ωt)), because the switch that turns on
+// still stands at part of the bus while the loop rings. Over the simulated stages it is at least 0.97 times the simulated dip, and where the bus
+// is Ahead at least 0.55 times.
+func (r *Recovering) Dip(w Swing, share float64) float64 {
+	ramp, angle := r.ramp(w)
+	return share * math.Hypot(ramp*math.Min(1, 4/angle), r.decay(w.Bus))
 }
 
 // Ahead tells whether a current that rises at slope [A/s] takes more than half of the bus [V] from the switch that turns on before the diode
