@@ -111,7 +111,7 @@ func TestEveryRoute(t *testing.T) {
 		{"POST", "/v1/sizing", "", small, 415, "", "", `expected application/json`},
 		{"POST", "/v1/sizing", "application/x-www-form-urlencoded", small, 415, "", "", `expected application/json`},
 		{"POST", "/v1/sizing", "application/json; charset=latin1", small, 415, "", "", `expected utf-8`},
-		{"POST", "/v1/transient-stress", "application/json", small, 501, "", "", `CheckTransientStress`},
+		{"POST", "/v1/transient-stress", "application/json", small, 200, "", "", `"event":"TURN_OFF"`},
 		{"POST", "/v1/board-reviews", "application/json", `{}`, 501, "", "", `ReviewBoard`},
 		{"POST", "/v1/revision-comparisons", "application/json", `{}`, 501, "", "", `CompareRevisions`},
 		{"POST", "/v1/alternate-studies", "application/json", `{}`, 501, "", "", `StudyAlternates`},

@@ -255,7 +255,7 @@ const (
 // DutyLimits is the floating voltage of each operating point, and the first charge.
 type DutyLimits struct {
 	Points    []DutyPoint
-	Precharge Precharge
+	Precharge *Precharge // nil: without an operating point
 }
 
 // Precharge is the first charge of C_B.

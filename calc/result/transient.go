@@ -91,8 +91,8 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 }
 
 // precharge gives the first charge. It does not depend on the mode: its ends are those over all operating points.
-func precharge(b *rule.Bench) finding.Precharge {
-	var out finding.Precharge
+func precharge(b *rule.Bench) *finding.Precharge {
+	out := &finding.Precharge{}
 	over := func(of rule.Number, d quantity.Dimension) finding.Span {
 		all := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
 		for i := range b.Points {

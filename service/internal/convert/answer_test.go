@@ -98,6 +98,12 @@ func sample() *finding.Report {
 				{Name: finding.LowestSwitchingFrequency, Measure: volts(6)}, {Name: finding.HighestSwitchingFreq, Measure: volts(7)},
 			},
 			Missing: []string{"m"}, Reason: "r",
+		}}, Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span}},
+		Transient: &finding.TransientStress{Events: []finding.TransientEvent{{
+			Event: "TURN_OFF", OperatingPoint: "p", NodeMin: span, PinMin: span, RailToCOMMin: span,
+			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span}},
+			FloatingVoltageGain: span, NodeMax: span, RailMax: span, HighSidePeak: span, LowSidePeak: span, SlewPeak: span, Slew10To90: span,
+			MillerLow: span, MillerHigh: span, GateMin: span, CurrentSlope: span, RingFrequency: span, RingDamping: span,
 		}}},
 	}
 }
@@ -122,8 +128,8 @@ func unset(m protoreflect.Message, path string) []string {
 
 func TestReviewStageResponseCarriesEverything(t *testing.T) {
 	got := ReviewStageResponse(Engine{"1.2.3", "7"}, sample(), []Reading{{"f", "4k7", "4.7 kΩ"}})
-	// What no report holds: fixes, first charge, traces and switching events.
-	want := []string{".findings.fixes", ".dutyLimits.precharge", ".dutyLimits.trace", ".transientStress"}
+	// What no report holds: fixes, traces, waveforms and what only a simulation knows.
+	want := []string{".findings.fixes", ".dutyLimits.trace", ".transientStress.events.steps", ".transientStress.events.convergence", ".transientStress.waveforms"}
 	if missing := unset(got.ProtoReflect(), ""); strings.Join(missing, " ") != strings.Join(want, " ") {
 		t.Errorf("unset: %v, want %v", missing, want)
 	}

@@ -48,10 +48,13 @@ func wireDutyLimits(d *finding.DutyLimits) *pb.DutyLimitsResult {
 	if d == nil {
 		return nil
 	}
-	return &pb.DutyLimitsResult{Points: each(d.Points, wireDutyPoint), Precharge: wirePrecharge(&d.Precharge)}
+	return &pb.DutyLimitsResult{Points: each(d.Points, wireDutyPoint), Precharge: wirePrecharge(d.Precharge)}
 }
 
 func wirePrecharge(p *finding.Precharge) *pb.Precharge {
+	if p == nil {
+		return nil
+	}
 	out := &pb.Precharge{
 		Time: wireSpan(&p.Time), PeakCurrent: wireSpan(&p.PeakCurrent), ResistorEnergy: wireSpan(&p.ResistorEnergy),
 		ReservoirLow: wireSpan(&p.ReservoirLow), SettledVoltage: wireSpan(&p.SettledVoltage),
