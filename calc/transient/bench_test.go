@@ -47,7 +47,7 @@ func TestNothingAllocates(t *testing.T) {
 		v := TurnOffSwing(400, 20, s, s.Output, g)
 		sum += w.Peak() + w.Mean() + w.Time() + w.End() + Lift(s, 5, w) + Pull(s, 5, v) + UniformSwing(400, 1e9).Peak()
 		sum += CurrentFall(20, s, g) + CurrentRise(20, s, g) + TurnOffTime(20, s, g, 400, 0) + s.Transfer.At(30) + s.Transfer.Charge(30)
-		sum += LoopSlope(2e9, 1e-9, 20e-9, 200e-12, 1e9) + RecoveryOvershoot(15, 3e-9, 20e-9, 200e-12, 30e9)
+		sum += TurnOffSlope(2e9, 10, 20e-9, 200e-12) + RecoveryOvershoot(15, 3e-9, 20e-9, 200e-12, 30e9)
 		sum += r.Peak(10, 1e9) + r.Charge(10, 1e9) + ForwardRecovery{5e-9, 1}.Peak(1e9, 10)
 		level, _ := Permitted(rows, 20e-9)
 		sum += level

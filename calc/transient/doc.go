@@ -48,39 +48,39 @@
 // with V_th for V_pl in the second term (5) is an upper limit. As it stands it comes out 3 % short at most in the circuits it is tested
 // against, and long where a small current lets the channel go before the node has moved.
 //
-// # Ringing of the loop while the channel lets go
+// # Loop while the channel lets go
 //
-// The loop inductance L carries i_L, the switch that blocks has reached V_BUS with the slew r0; v is its voltage beyond V_BUS, so
-// L·di_L/dt = -v and C·dv/dt = i_L - i_ch with di_ch/dt = -s for the time t_f:
+// The loop inductance L carries i_L, the switch that blocks has reached V_BUS; v is its voltage beyond V_BUS, so L·di_L/dt = -v and
+// C·dv/dt = i_L - i_ch with di_ch/dt = -s:
 //
-//	L·C·v'' + v = L·s,   v(0) = 0,   v'(0) = r0                                                                    (7)
-//	v = L·s·(1 - cos ωt) + (r0/ω)·sin ωt   while t < t_f,   ω = 1/sqrt(L·C),   free ringing afterwards             (8)
-//	max v/L = s + hypot(s, r0·sqrt(C/L))   if ω·t_f reaches atan2(r0/ω, -L·s), otherwise hypot(v, v'/ω)/L at t_f   (9)
+//	L·C·v'' + v = L·s,   v = L·s·(1 - cos ωt),   ω = 1/sqrt(L·C)                                                   (6)
 //
-// When the voltage arrives the channel carries i - C·r0; with it t_f = (i - C·r0)/s. Limits, with r0 = 0: a slow loop, ω·t_f -> 0, gives
-// s·ω·t_f = i·ω, the slope of a current that is cut off at once; a fast one, C -> 0, gives 2·s; s = 0 gives r0·sqrt(C/L). Plain L·di/dt
-// is therefore not on the safe side: 10 A in 50 ns through 100 nH beside 50 pF is 20 V by L·di/dt, while ω·t_f = 22 and the crest
-// (no damping) is 2·20 = 40 V; with the damping 0.05 of q = 10 it would be (1 + e^(-0.05·π))·20 = 37 V.
+// Plain L·di/dt is therefore not on the safe side by itself: 10 A in 50 ns through 100 nH beside 50 pF is 20 V by L·di/dt and 40 V at the
+// crest. In the switch the rising v feeds the gate through C_gd: with C_iss·v_gs' = C_gd·v' - (v_gs - V_off)/R_g it is
+//
+//	C·v'' + (g_fs·C_gd/C_iss)·v' + v/L = s                                                                         (7)
+//
+// whose damping is strong where g_fs·C_gd/C_iss exceeds 2·sqrt(C/L). The slope of a current that is cut at once is i·ω. TurnOffSlope
+// takes the smaller of s and i·ω and is held to the simulated circuit.
 //
 // # Ringing of the loop after reverse recovery
 //
 // The passive diode's reverse current is I_RM·e^(-t/τ) from when its voltage arrives at V_BUS with the slew r. With Δ the voltage
 // beyond V_BUS, L·di_L/dt = -Δ and C·dΔ/dt = i_L - i_D:
 //
-//	L·C·Δ'' + Δ = (L·I_RM/τ)·e^(-t/τ),   Δ(0) = 0,   Δ'(0) = r                                                     (10)
-//	Δ = A·e^(-t/τ) - A·cos ωt + D·sin ωt,   A = (L·I_RM/τ)/(1 + L·C/τ²),   D = r/ω + A/(ω·τ)                        (11)
-//	0 = A·sin θ + D·cos θ - (A/(ω·τ))·e^(-θ/(ω·τ))   at the crest θ = ωt, the only root in 0 < θ <= π - atan2(D, A)  (12)
+//	L·C·Δ'' + Δ = (L·I_RM/τ)·e^(-t/τ),   Δ(0) = 0,   Δ'(0) = r                                                     (8)
+//	Δ = A·e^(-t/τ) - A·cos ωt + D·sin ωt,   A = (L·I_RM/τ)/(1 + L·C/τ²),   D = r/ω + A/(ω·τ)                        (9)
+//	Δ <= A + sqrt(A² + D²)                                                                                         (10)
 //
-// The crest is the highest of all, as the exponential falls while the rest repeats. It lies below A + hypot(A, D) and below I_RM·sqrt(L/C)
-// + r/ω. Limits: a snappy diode, τ -> 0, gives I_RM·sqrt(L/C) + r/ω; a soft one, τ -> ∞ with r = 0, gives 2·L·I_RM/τ, again twice the
-// plain L·di/dt, because the slope of the current steps.
+// The limit is reached where τ is long against the ringing, and where it is short (A -> 0). Limits: a snappy diode, τ -> 0, gives
+// I_RM·sqrt(L/C) + r/ω; a soft one, τ -> ∞ with r = 0, gives 2·L·I_RM/τ, twice the plain L·di/dt, because the slope of the current steps.
 //
 // # Miller effect
 //
 // The passive gate is held at V_off through R_g, and C_gd feeds it the swing's current; u is what its voltage moves:
 //
 //	(C_gs + C_gd)·du/dt = C_gd·r - u/R_g,   C_gs = C_iss - C_rss (both at the test voltage)
-//	u' = u·e^-x + R_g·C_gd·r·(1 - e^-x),   x = Δt/(R_g·(C_gs + C_gd))   over a step                                (13)
+//	u' = u·e^-x + R_g·C_gd·r·(1 - e^-x),   x = Δt/(R_g·(C_gs + C_gd))   over a step                                (11)
 //
 // exact where C_gd and r are level in the step; the lowest step, in which C_gd changes most, counts in six parts. Constant C_gd and r give
 // R_g·C_gd·r·(1 - e^(-t_r/(R_g·C_iss))); R_g -> ∞ gives the capacitive divider, the integral of C_gd/(C_gs + C_gd) over the bus. Left
@@ -91,17 +91,17 @@
 // L_fr beside R_fr in series with the diode. With a current that rises at a the pair drops L_fr·a·(1 - e^(-t/τ_fr)), τ_fr = L_fr/R_fr, and
 // when the rise ends, at t_r = I_F/a, that dies away with τ_fr. t_fr lasts from the start of the current to 110 % of V_F, so that
 //
-//	τ_fr = (t_fr - t_r)/ln((V_FP - V_F)/(0.1·V_F)),   L_fr = (V_FP - V_F)/(a·(1 - e^(-t_r/τ_fr))),   R_fr = L_fr/τ_fr     (14)
+//	τ_fr = (t_fr - t_r)/ln((V_FP - V_F)/(0.1·V_F)),   L_fr = (V_FP - V_F)/(a·(1 - e^(-t_r/τ_fr))),   R_fr = L_fr/τ_fr     (12)
 //
 // # Reverse recovery
 //
 // Lumped charge [lauritzen-ma-1991]: i_D = (q_E - q_M)/T_M, dq_M/dt = i_D - q_M/τ. From i = I_F at rest, q_M = τ·I_F, the current falls as
 // I_F - a·t, so q_M = τ·(i + a·τ·(1 - e^(-t/τ))). The diode blocks when q_E = q_M + T_M·i = 0; from then on i = -q_M/T_M and q_M fades:
 //
-//	t < t_1:  i = I_F - a·t;   t > t_1:  i = -I_RM·e^(-(t - t_1)/τ_rr),   1/τ_rr = 1/τ + 1/T_M                      (15)
-//	I_RM = a·(τ - τ_rr)·(1 - e^(-(I_F + I_RM)/(a·τ)))                                                              (16)
-//	Q_rr = I_RM²/(2·a) + I_RM·τ_rr,   t_rr = I_RM/a + k·τ_rr,   k = ln(1/0.9) + (0.9/0.65)·ln(0.9/0.25) = 1.879         (17)
-//	(1/2 - 1/k)·I_RM²/a + I_RM·t_rr/k = Q_rr                                                                       (18)
+//	t < t_1:  i = I_F - a·t;   t > t_1:  i = -I_RM·e^(-(t - t_1)/τ_rr),   1/τ_rr = 1/τ + 1/T_M                      (13)
+//	I_RM = a·(τ - τ_rr)·(1 - e^(-(I_F + I_RM)/(a·τ)))                                                              (14)
+//	Q_rr = I_RM²/(2·a) + I_RM·τ_rr,   t_rr = I_RM/a + k·τ_rr,   k = ln(1/0.9) + (0.9/0.65)·ln(0.9/0.25) = 1.879         (15)
+//	(1/2 - 1/k)·I_RM²/a + I_RM·t_rr/k = Q_rr                                                                       (16)
 //
 // t_rr ends where the line through 90 % and 25 % of I_RM meets zero [iec-60747-2]. The left side of (18) rises from 0 to a·t_rr²/2 at I_RM =
 // a·t_rr, where τ_rr = 0: there is one root with τ_rr >= 0, the smaller one, if Q_rr <= a·t_rr²/2, and none otherwise. The right side of

@@ -43,7 +43,7 @@ func (r *Recovering) effective(bus float64) float64 { return r.Output.Charge(bus
 // the sum of squares of two parts,
 //
 //	a bus that is applied as a ramp over the time t of the swing makes L and C_oss ring by V_BUS·|sin(ωt/2)|/(ωt/2), at most V_BUS·min(1, 2/(ωt));
-//	a reverse current that decays as I_RM·e^(-t/τ) adds at most A + sqrt(A² + D²), A = (I_RM·L/τ)/(1 + LC/τ²), D = A/(ωτ).
+//	a reverse current that decays as I_RM·e^(-t/τ) adds RecoveryOvershoot, eq. (8)-(10).
 //
 // The first takes C_oss by its charge, the second at V_BUS. Undamped. Over the simulated stages it is at least 0.88 times the simulated overshoot;
 // where L·di/dt has taken the bus from the switch before the diode recovers (Ahead) the first part is near V_BUS whatever the swing, and it may
@@ -64,13 +64,7 @@ func (r *Recovering) decay(bus float64) float64 {
 	if r.Peak == 0 {
 		return 0
 	}
-	root := math.Sqrt(r.Inductance * r.Output.At(bus))
-	if r.TauRR == 0 {
-		return r.Peak * r.Inductance / root
-	}
-	x := root / r.TauRR
-	a := r.Peak * r.Inductance / r.TauRR / (1 + x*x)
-	return a + math.Hypot(a, a*x)
+	return RecoveryOvershoot(r.Peak, r.TauRR, r.Inductance, r.Output.At(bus), 0)
 }
 
 // Dip is by how much the node falls below COM as the low side turns on with the swing w [V], share being the part of the loop's inductance that

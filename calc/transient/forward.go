@@ -17,7 +17,7 @@ type ForwardRecovery struct {
 // of V_F (IEC 60747-2, from memory) [1].
 const aboveStatic = 0.1
 
-// FitForwardRecovery returns the network that meets a forward recovery test, eq. (14): the current rises at testSlope [A/s] to
+// FitForwardRecovery returns the network that meets a forward recovery test, eq. (12): the current rises at testSlope [A/s] to
 // testCurrent [A] and stays, the voltage peaks at peak = V_FP, static drop included [V], and has come down to 110 % of the static drop
 // static = V_F at the test current [V] at the time t_fr after the current began [s].
 //

@@ -6,7 +6,7 @@ import "math"
 // changes most.
 const lowSteps = 6
 
-// Lift returns by how much the swing lifts the gate of the passive switch above its off drive [V] through C_gd, eq. (13), where its
+// Lift returns by how much the swing lifts the gate of the passive switch above its off drive [V] through C_gd, eq. (11), where its
 // drain voltage rises from 0 to the bus voltage. rg is the resistance that holds the gate off: external, internal and the driver's
 // [ohm]. Uses the input capacitance and Transfer.
 func Lift(s *Switch, rg float64, w Swing) float64 { return miller(s, rg, &w, true) }

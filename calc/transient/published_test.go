@@ -1,26 +1,17 @@
 package transient
 
-import (
-	"math"
-	"testing"
-)
+import "testing"
 
 // Each check names its source; Fairchild AN-6076 (2008) is cited from memory.
 
 // AN-6076, from memory: 10 A that fall in 50 ns through 100 nH give 20 V. Here a common source of 20 nH alone limits the fall, 4 V across
-// it at the plateau; beside a large capacitance the loop sees less, and beside none its crest is twice as high.
+// it at the plateau.
 func TestPublishedUndershoot(t *testing.T) {
 	s := &Switch{Threshold: 3, Transconductance: 10, InputCapacitance: 1e-9, CommonSource: 20e-9}
 	fall := CurrentFall(10, s, Gate{Resistance: 0, On: 12, Off: 0})
 	same(t, "fall", fall, 10/50e-9, 1e-14)
 	same(t, "L·di/dt", 100e-9*fall, 20, 1e-14)
-	same(t, "crest of a fast loop", 100e-9*LoopSlope(fall, 50e-9, 100e-9, 0, 0), 2*20, 1e-14)
-	same(t, "crest beside 50 pF", 100e-9*LoopSlope(fall, 50e-9, 100e-9, 50e-12, 0), 2*20, 1e-14)
-	slow := 100e-9 * LoopSlope(fall, 50e-9, 100e-9, 100e-9, 0)
-	if slow >= 20 {
-		t.Errorf("slow loop %v V", slow)
-	}
-	same(t, "slow loop", slow, 10*math.Sqrt(100e-9/100e-9), 0.011) // (ω·t_f)²/24 = 0.0104 below I·sqrt(L/C)
+	same(t, "across 100 nH", 100e-9*TurnOffSlope(fall, 10, 100e-9, 1e-12), 20, 1e-14)
 }
 
 // AN-6076, from memory, switching-time method: Q_GS 13.5 nC and Q_GD 36 nC in 500 ns, V_DD 15 V, V_th 5 V: 99 mA, 101 ohm; driver 350 mA:

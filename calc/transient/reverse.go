@@ -9,7 +9,7 @@ import (
 )
 
 // Recovery is the lumped-charge diode of Lauritzen and Ma, "A simple diode model with reverse recovery", IEEE Transactions on Power
-// Electronics 6(2), 1991 (from memory), eq. (15)-(16). The zero value does not recover.
+// Electronics 6(2), 1991 (from memory), eq. (13)-(14). The zero value does not recover.
 type Recovery struct {
 	Tau     float64 // τ, lifetime of the carriers [s]
 	Transit float64 // T_M, time of diffusion from the junction into the middle [s]
@@ -20,7 +20,7 @@ type Recovery struct {
 // of t_rr (IEC 60747-2, from memory), in units of τ_rr: ln(1/0.9) + 0.9/(0.9 - 0.25)·ln(0.9/0.25) [1].
 const decayTime = 1.878961224759146
 
-// FitRecovery returns the diode that meets a reverse recovery test, eq. (17)-(18): from testCurrent [A] the current falls at testSlope
+// FitRecovery returns the diode that meets a reverse recovery test, eq. (15)-(16): from testCurrent [A] the current falls at testSlope
 // [A/s], charge is Q_rr [C] and time t_rr [s]. No charge: no recovery. An error where no diode meets the test.
 func FitRecovery(testCurrent, testSlope, charge, time float64) (Recovery, error) {
 	switch {
@@ -36,13 +36,13 @@ func FitRecovery(testCurrent, testSlope, charge, time float64) (Recovery, error)
 		return Recovery{}, fmt.Errorf("recoveryCharge %g C is more than recoveryTestSlope·recoveryTime²/2 = %g C, which a reverse current that "+
 			"rises at that slope for all of that time carries", charge, most)
 	}
-	// (18) in y = I_RM/(a·t_rr): (1/k - 1/2)·y² - y/k + Q_rr/(a·t_rr²) = 0, the smaller root
+	// (16) in y = I_RM/(a·t_rr): (1/k - 1/2)·y² - y/k + Q_rr/(a·t_rr²) = 0, the smaller root
 	const inverse, square = 1 / decayTime, 1/decayTime - 0.5
 	share := charge / (testSlope * time * time)
 	y := 2 * share / (inverse + math.Sqrt(inverse*inverse-4*square*share))
 	y = math.Min(y, 1)
 	tauRR := time * (1 - y) / decayTime
-	// (16) in τ, increasing from below I_RM at τ_rr; at last it holds up to the second order of 1/τ
+	// (14) in τ, increasing from below I_RM at τ_rr; at last it holds up to the second order of 1/τ
 	reverse := y * time // I_RM/a
 	storage := testCurrent/testSlope + reverse
 	last := (storage*storage/2 + tauRR*storage) * testSlope / testCurrent
@@ -55,7 +55,7 @@ func FitRecovery(testCurrent, testSlope, charge, time float64) (Recovery, error)
 	return Recovery{Tau: tau, Transit: tau * tauRR / (tau - tauRR), TauRR: tauRR}, nil
 }
 
-// Peak returns I_RM [A] when the current falls from i [A] at slope [A/s], eq. (16).
+// Peak returns I_RM [A] when the current falls from i [A] at slope [A/s], eq. (14).
 func (r Recovery) Peak(i, slope float64) float64 {
 	if anyNaN(r.Tau, r.TauRR, i, slope) {
 		return math.NaN()
