@@ -24,7 +24,7 @@ var diodeReverseVoltage = &rule.Rule{
 		limit := c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax)
 		return rule.Check{Value: c.NodeHigh() + c.Highest() - c.Supply(), Limit: limit, Guard: limit * c.Policy.DiodeReverseRatio}
 	},
-	Alternatives: each(everyEvent, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
+	Alternatives: each(rising, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
 		return c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax) - c.NodePeak(e) - c.Highest() + c.Supply()
 	}),
 }

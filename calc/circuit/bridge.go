@@ -39,9 +39,6 @@ const (
 	curves
 )
 
-// curvePoints is the number of points of a curve that a circuit has room for without asking for memory.
-const curvePoints = 8
-
 // curve is a capacitance curve of all parallel devices of a position.
 func (c *Circuit) curve(slot int, l *stage.List[stage.CapacitancePoint], n float64) transient.Curve {
 	points := c.curveAt[slot][:0]
@@ -49,6 +46,7 @@ func (c *Circuit) curve(slot int, l *stage.List[stage.CapacitancePoint], n float
 		p := &l.Items[i]
 		points = append(points, transient.CurvePoint{Voltage: c.Need(&p.Voltage), Capacitance: c.Need(&p.Capacitance)})
 	}
+	c.curveAt[slot] = points
 	return transient.Curve{Points: points, Scale: n}
 }
 

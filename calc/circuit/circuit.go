@@ -33,13 +33,26 @@ type Circuit struct {
 	budgetAt      []charge.Item
 	offAt         [8]recharge.Interval
 	namesAt       [8]string
-	curveAt       [curves][curvePoints]transient.CurvePoint
-	swingAt       [eventCount]transient.Swing
-	slopeAt       [eventCount]float64
-	pumpedAt      Period
-	pumpedSteady  recharge.Steady
-	pumpedOff     [10]recharge.Interval
-	pumpedNames   [10]string
+	curveAt       [curves][]transient.CurvePoint
+	events        *events // nil: none asked for yet
+}
+
+// events are the results about switching events.
+type events struct {
+	swing       [eventCount]transient.Swing
+	slope       [eventCount]float64
+	pumped      Period
+	steady      recharge.Steady
+	pumpedOff   [10]recharge.Interval
+	pumpedNames [10]string
+}
+
+// kept is where results about switching events are kept.
+func (c *Circuit) kept() *events {
+	if c.events == nil {
+		c.events = &events{}
+	}
+	return c.events
 }
 
 // Of gives the circuit at a draw, made once per draw.

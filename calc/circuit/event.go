@@ -101,7 +101,7 @@ func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
 
 // Swing is how the node moves from rail to rail in an event: as measured, or by the gate drive of the switch that acts.
 func (c *Circuit) Swing(e Event) *transient.Swing {
-	return corner.Memo(c.Draw, slotSwing+int(e), true, &c.swingAt[e], func() transient.Swing { return c.swing(e) })
+	return corner.Memo(c.Draw, slotSwing+int(e), true, &c.kept().swing[e], func() transient.Swing { return c.swing(e) })
 }
 
 func (c *Circuit) swing(e Event) transient.Swing {
@@ -131,7 +131,7 @@ func (c *Circuit) swing(e Event) transient.Swing {
 // CurrentSlope is the steepest slope of the loop current in an event [A/s]: as measured, or by the gate drive of the switch that acts, at turn-off
 // with what the loop's ringing adds.
 func (c *Circuit) CurrentSlope(e Event) float64 {
-	return *corner.Memo(c.Draw, slotSlope+int(e), true, &c.slopeAt[e], func() float64 { return c.currentSlope(e) })
+	return *corner.Memo(c.Draw, slotSlope+int(e), true, &c.kept().slope[e], func() float64 { return c.currentSlope(e) })
 }
 
 func (c *Circuit) currentSlope(e Event) float64 {

@@ -28,12 +28,13 @@ var pumps = [...]struct {
 // Pumped is the period with the undershoot of its switching events as intervals of their own: the node stands at the mean depth of the dip for
 // its width. The diode takes less of the shallow parts than of the mean, the resistor as much.
 func (c *Circuit) Pumped() *Period {
-	return corner.Memo(c.Draw, slotPumped, false, &c.pumpedAt, c.pumped)
+	return corner.Memo(c.Draw, slotPumped, false, &c.kept().pumped, c.pumped)
 }
 
 func (c *Circuit) pumped() Period {
 	p := *c.Period()
-	off, names := c.pumpedOff[:0], c.pumpedNames[:0]
+	k := c.kept()
+	off, names := k.pumpedOff[:0], k.pumpedNames[:0]
 	for i := range p.Off {
 		iv, name := p.Off[i], p.Names[i]
 		for _, m := range pumps {
@@ -65,7 +66,7 @@ func follows(names []string, name string) bool {
 
 // pumpedSteadyState is the periodic steady state with the undershoots.
 func (c *Circuit) pumpedSteadyState() *recharge.Steady {
-	return corner.Memo(c.Draw, slotPumpedSteady, true, &c.pumpedSteady, func() recharge.Steady { return c.solve(c.Pumped()) })
+	return corner.Memo(c.Draw, slotPumpedSteady, true, &c.kept().steady, func() recharge.Steady { return c.solve(c.Pumped()) })
 }
 
 // Highest is the highest V_BS of the operating point with what undershoots add to it, limited by a clamp where one is fitted [V].

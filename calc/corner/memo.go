@@ -85,11 +85,12 @@ func (m *memory) keep(slot int, x []float64, e *entry) {
 // Memo returns f's value at a draw, evaluated once per draw into the place given; what f reads counts as read by every caller. A shared
 // result is also looked for among those of other draws with the same numbers of all that f reads.
 func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
-	c := &d.memo[slot]
+	c := d.memo[slot]
+	if c == nil {
+		c = &cell{trace: newTrace(len(d.x))}
+		d.memo[slot] = c
+	}
 	if !c.valid {
-		if c.trace.used == nil {
-			c.trace = newTrace(len(d.x))
-		}
 		var e *entry
 		if shared {
 			e = d.Space.memory.find(slot, d.x)

@@ -137,8 +137,10 @@ func (s *Space) take(d *Draw, changes ...Change) *Draw {
 	for _, c := range changes {
 		out.x[c.ID] = c.Value
 	}
-	for i := range out.memo {
-		out.memo[i].valid = false
+	for _, c := range out.memo {
+		if c != nil {
+			c.valid = false
+		}
 	}
 	return out
 }

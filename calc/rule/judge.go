@@ -103,8 +103,12 @@ func (b *Bench) at(r *Rule, role string, p *Point) result {
 		res.outcome = finding.Open
 		return res
 	}
-	for _, f := range r.Searches(role) {
+	searches := r.Searches(role)
+	for i, f := range searches {
 		for _, w := range corner.SearchSets(p.Spaces, f) {
+			if last := i == len(searches)-1; math.IsInf(w.Value, 1) && (!last || !first) { // an alternative that does not exist here
+				continue
+			}
 			next := b.found(r, role, p, w)
 			if b.near(r, &next) { // with directions of its own as well, and polished
 				b.refine(r, role, &next)

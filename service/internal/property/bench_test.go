@@ -7,8 +7,8 @@ import (
 	"floatrail/calc"
 )
 
-// BenchmarkReviewStage is a review with the floating voltages of every operating point; the request is bound outside the timer.
-func BenchmarkReviewStage(b *testing.B) { benchmark(b, calc.WithDutyLimits) }
+// BenchmarkReviewStage is a review of three operating points with their floating voltages and switching events; the request is bound outside the timer.
+func BenchmarkReviewStage(b *testing.B) { benchmark(b, calc.WithDutyLimits|calc.WithTransient) }
 
 // BenchmarkSizing is a review with the parts that fit.
 func BenchmarkSizing(b *testing.B) { benchmark(b, calc.WithSizing) }
