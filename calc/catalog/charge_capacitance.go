@@ -4,7 +4,6 @@ import (
 	"math"
 	"slices"
 
-	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -29,6 +28,12 @@ var chargeCapacitance = &rule.Rule{
 		return rule.Check{Value: c.Capacitance(), Limit: limit, Guard: math.Max(above(c, limit), c.MinimumCapacitance(c.Kept()))}
 	},
 	Alternatives: []func(*circuit.Circuit, string) float64{
+		func(c *circuit.Circuit, _ string) float64 {
+			if c.Point == nil {
+				return c.NoPoint()
+			}
+			return c.Capacitance() - c.MinimumCapacitance(c.Required())
+		},
 		func(c *circuit.Circuit, _ string) float64 { return spare(c, (*circuit.Circuit).Required) },
 		func(c *circuit.Circuit, _ string) float64 { return spare(c, (*circuit.Circuit).Kept) },
 		func(c *circuit.Circuit, _ string) float64 {
@@ -38,8 +43,7 @@ var chargeCapacitance = &rule.Rule{
 			case c.Point.HeldOn != nil: // no period, no ripple
 				return math.Inf(1)
 			}
-			least, _ := charge.MinimumCapacitance(c.CycleCharge(), c.PermittedRipple())
-			return c.Capacitance() - least
+			return c.PermittedRipple() - c.CycleCharge()/c.Capacitance()
 		},
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
@@ -52,14 +56,15 @@ var chargeCapacitance = &rule.Rule{
 	},
 }
 
-// spare is the distance of the effective capacitance to the smallest that keeps a voltage, whatever ripple is permitted [F].
+// spare is what the charge of a period leaves above a voltage that V_BS must keep, whatever ripple is permitted [V]. It has the sign of the
+// distance of C_B to the smallest capacitance that keeps the voltage, without its pole where nothing is left.
 func spare(c *circuit.Circuit, keep func(*circuit.Circuit) float64) float64 {
 	switch {
 	case c.Point == nil:
 		return c.NoPoint()
 	case c.Point.HeldOn != nil:
-		return c.Capacitance() - c.MinimumCapacitance(keep(c))
+		h, t := c.Hold()
+		return h.Voltage(t) - keep(c)
 	}
-	least, _ := charge.MinimumCapacitance(c.CycleCharge(), c.Left(keep(c)))
-	return c.Capacitance() - least
+	return c.Left(keep(c)) - c.CycleCharge()/c.Capacitance()
 }

@@ -6,7 +6,9 @@ import (
 
 	"floatrail/calc/capacitor"
 	"floatrail/calc/circuit"
+	"floatrail/calc/finding"
 	"floatrail/calc/quantity"
+	"floatrail/calc/rule"
 	"floatrail/calc/stage"
 )
 
@@ -99,6 +101,32 @@ func kind(c *circuit.Circuit, s *stage.Capacitor) capacitor.Kind {
 // above adds the guard to a limit that must be exceeded, below subtracts it from one that must not.
 func above(c *circuit.Circuit, limit float64) float64 { return limit * (1 + c.Policy.GuardRatio) }
 func below(c *circuit.Circuit, limit float64) float64 { return limit * (1 - c.Policy.GuardRatio) }
+
+// worst is that check of several whose margin is the smallest. Where another one breaks its guard, the outcome is at best MARGINAL all the same.
+func worst(s rule.Sense, checks ...rule.Check) rule.Check {
+	margin := func(k rule.Check) (limit, guard float64) {
+		if s == rule.AtMost {
+			return k.Limit - k.Value, k.Guard - k.Value
+		}
+		return k.Value - k.Limit, k.Value - k.Guard
+	}
+	var out rule.Check
+	least, floor := math.Inf(1), finding.NoOutcome
+	for i, k := range checks {
+		m, g := margin(k)
+		if g < 0 {
+			floor = finding.Marginal
+		}
+		if i == 0 || m < least || m != m {
+			out, least = k, m
+		}
+		if m != m {
+			break
+		}
+	}
+	out.Floor = max(out.Floor, floor)
+	return out
+}
 
 // cancelNote tells, where it holds, that a larger capacitor does not help: the window is short against R·C.
 func cancelNote(c *circuit.Circuit) []string {

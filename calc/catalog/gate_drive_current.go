@@ -1,6 +1,8 @@
 package catalog
 
 import (
+	"strings"
+
 	"floatrail/calc/circuit"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -16,29 +18,35 @@ var gateDriveCurrent = &rule.Rule{
 	Sources: []string{"sluscj9", "an6076"},
 	Fail:    stage.Minor, Marginal: stage.Note, Open: stage.Minor,
 	Quantity: "Peak gate current", Against: "the driver's peak current", Dimension: quantity.Current, Sense: rule.AtMost,
-	Roles: []string{roleHighSide, roleLowSide}, Inapplicable: withSwitch,
-	Check: func(c *circuit.Circuit, role string) rule.Check {
-		on, off := gateCurrent(c, role, true), gateCurrent(c, role, false)
-		source, sink := c.Need(&c.Stage.Driver.PeakSourceCurrent), c.Need(&c.Stage.Driver.PeakSinkCurrent)
-		if !(on/source > off/sink) { // the less sufficient of the two
-			return rule.Check{Value: off, Limit: sink, Guard: below(c, sink)}
-		}
-		return rule.Check{Value: on, Limit: source, Guard: below(c, source)}
+	Roles: []string{roleHighSide + turningOn, roleHighSide + turningOff, roleLowSide + turningOn, roleLowSide + turningOff},
+	Inapplicable: func(s *stage.Stage, op *stage.OperatingPoint, role string) string {
+		side, _ := direction(role)
+		return withSwitch(s, op, side)
 	},
-	Alternatives: []func(*circuit.Circuit, string) float64{
-		func(c *circuit.Circuit, role string) float64 {
-			return c.Need(&c.Stage.Driver.PeakSourceCurrent) - gateCurrent(c, role, true)
-		},
-		func(c *circuit.Circuit, role string) float64 {
-			return c.Need(&c.Stage.Driver.PeakSinkCurrent) - gateCurrent(c, role, false)
-		},
+	Check: func(c *circuit.Circuit, role string) rule.Check {
+		side, on := direction(role)
+		peak := &c.Stage.Driver.PeakSinkCurrent
+		if on {
+			peak = &c.Stage.Driver.PeakSourceCurrent
+		}
+		limit := c.Need(peak)
+		return rule.Check{Value: c.GateCurrent(position(c, side), on), Limit: limit, Guard: below(c, limit)}
 	},
 	Explain: func(*circuit.Circuit, string, rule.Check) []string {
 		return []string{"beyond it the driver, not the resistor, sets the speed of the edge"}
 	},
 }
 
-// gateCurrent is the peak current that the gate resistors of a position let through in one direction [A].
-func gateCurrent(c *circuit.Circuit, role string, on bool) float64 {
-	return c.GateCurrent(position(c, role), on)
+// Directions of a gate current, as ends of roles.
+const (
+	turningOn  = " turn-on"
+	turningOff = " turn-off"
+)
+
+// direction splits a role into position and direction.
+func direction(role string) (side string, on bool) {
+	if side, on = strings.CutSuffix(role, turningOn); on {
+		return side, true
+	}
+	return strings.TrimSuffix(role, turningOff), false
 }

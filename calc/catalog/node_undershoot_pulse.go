@@ -6,7 +6,6 @@ import (
 	"floatrail/calc/rule"
 	"floatrail/calc/stage"
 	"fmt"
-	"math"
 )
 
 var nodeUndershootPulse = &rule.Rule{
@@ -22,17 +21,15 @@ var nodeUndershootPulse = &rule.Rule{
 	Roles:        []string{roleDriver},
 	Inapplicable: during("no event takes the node below COM at this current and duty", falling...),
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
-		out := rule.Check{Value: 0, Limit: math.Inf(-1), Guard: math.Inf(-1)}
+		var buf [2]rule.Check
+		checks := buf[:0]
 		for _, e := range falling {
-			if !circuit.Occurs(c.Stage, c.Point, e) {
-				continue
-			}
-			limit := c.Permitted(c.Width(e))
-			if k := (rule.Check{Value: c.PinDip(e), Limit: limit, Guard: raised(c, limit)}); !(k.Value-k.Limit > out.Value-out.Limit) {
-				out = k
+			if circuit.Occurs(c.Stage, c.Point, e) {
+				limit := c.Permitted(c.Width(e))
+				checks = append(checks, rule.Check{Value: c.PinDip(e), Limit: limit, Guard: raised(c, limit)})
 			}
 		}
-		return out
+		return worst(rule.AtLeast, checks...)
 	},
 	Alternatives: each(falling, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
 		return c.PinDip(e) - c.Permitted(c.Width(e))

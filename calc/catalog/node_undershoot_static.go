@@ -18,13 +18,7 @@ var nodeUndershootStatic = &rule.Rule{
 	Quantity: "Plateau of the node", Against: "permitted for its length", Dimension: quantity.Voltage, Sense: rule.AtLeast,
 	Roles: []string{roleDriver}, Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
-		var out rule.Check
-		for k := range c.Plateaus() {
-			if n := plateau(c, k); k == 0 || n.Value-n.Limit < out.Value-out.Limit || n.Value != n.Value || n.Limit != n.Limit {
-				out = n
-			}
-		}
-		return out
+		return worst(rule.AtLeast, plateau(c, 0), plateau(c, 1), plateau(c, 2))
 	},
 	Alternatives: []func(*circuit.Circuit, string) float64{
 		func(c *circuit.Circuit, _ string) float64 { k := plateau(c, 0); return k.Value - k.Limit },

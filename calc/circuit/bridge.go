@@ -3,6 +3,7 @@ package circuit
 import (
 	"math"
 
+	"floatrail/calc/quantity"
 	"floatrail/calc/stage"
 	"floatrail/calc/transient"
 )
@@ -66,6 +67,9 @@ func (c *Circuit) output(s *stage.Switch) transient.Curve {
 // fewPoints is the number of points from which on a curve of C_rss is taken as it is [design 4.6].
 const fewPoints = 3
 
+// lowestPoint is the voltage at which a curve of C_rss must begin to tell its charge [V].
+const lowestPoint = 1
+
 // transfer is C_rss of a position over its voltage, which is C_gd. A curve of fewer than three points is scaled to Q_GD.
 func (c *Circuit) transfer(s *stage.Switch) transient.Curve {
 	slot, n := curveLowTransfer, s.Count()
@@ -74,6 +78,10 @@ func (c *Circuit) transfer(s *stage.Switch) transient.Curve {
 	}
 	l := &s.ReverseTransferCapacitance
 	if len(l.Items) >= fewPoints {
+		if first := &l.Items[0].Voltage; c.Need(first) > lowestPoint {
+			c.Assume(stage.Assumption{Field: l.Field, Assumed: "level below the first point", Direction: stage.Optimistic,
+				Reason: "the curve begins at " + quantity.Format(c.Value(first), quantity.Voltage) + "; toward 0 V the capacitance is larger"})
+		}
 		return c.curve(slot, l, n)
 	}
 	q, known := c.Has(&s.GateDrainCharge)

@@ -162,13 +162,18 @@ func (c *Circuit) gateLine(bias charge.OffBias) (atZero, perVolt float64) {
 			Reason: "the gate voltage at which the gate charge was specified is not given"})
 		return g.Specified, 0
 	}
-	// The line may be negative near 0 V, far below the plateau, where it does not describe the curve; no supply that holds comes there.
-	slope, _ := g.Slope(bias.Drive(c.Ceiling()))
-	return g.Specified + slope*(bias.Drive(0)-g.SpecifiedAt), slope
+	// The line may be negative near 0 V, far below the plateau, where it does not describe the curve; what leaves C_B is not less than 0.
+	top := bias.Drive(c.Ceiling())
+	slope, known := g.Slope(top)
+	charge := g.Specified + slope*(top-g.SpecifiedAt) // at the ceiling
+	if !known {                                       // downward from there the smallest credible slope takes the least off
+		slope, _ = g.Slope(math.Min(top, g.SpecifiedAt))
+	}
+	return charge + slope*(bias.Drive(0)-top), slope
 }
 
 // EdgeCharges are the charges of the rising edge at a floating voltage after it [V] and a recovery charge [C].
 func (c *Circuit) EdgeCharges(v, recovery float64) charge.Edge {
 	e := c.edge()
-	return charge.Edge{Gate: e.gate + e.gatePerVolt*v, OffBias: e.offBias, LevelShift: e.levelShift, Recovery: recovery, Junction: e.junction}
+	return charge.Edge{Gate: math.Max(0, e.gate+e.gatePerVolt*v), OffBias: e.offBias, LevelShift: e.levelShift, Recovery: recovery, Junction: e.junction}
 }

@@ -87,6 +87,10 @@ func (c *Circuit) recoveredCharge() float64 {
 func (c *Circuit) DiodeRise() (rise float64, stable bool) {
 	d := &c.Stage.Bootstrap.Diode
 	leakage, bus, f := c.Need(&d.ReverseLeakage), c.bus(), c.frequency()
+	if len(d.ReverseLeakage.At) == 0 && c.Set.Ambient > stage.ReferenceTemperature {
+		c.Assume(stage.Assumption{Field: d.ReverseLeakage.Field + ".at", Assumed: "doubling every 10 K", Direction: stage.Optimistic,
+			Reason: "the hot leakage decides over runaway and is given at 25 °C only"})
+	}
 	if f == 0 { // held on: it blocks all the time
 		return loss.Rise(c.Need(&d.ThermalResistance), 0, loss.Leakage(bus, leakage))
 	}

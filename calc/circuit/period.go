@@ -262,9 +262,13 @@ func (c *Circuit) period() Period {
 		}
 	}
 	p.On = recharge.Interval{Duration: p.OnTime, Drive: vdd - bus, Conducts: free && bus < vdd, Load: i0, Conductance: loads.PullDown}
+	if d >= 1 { // nothing rises or falls
+		return p
+	}
 	p.Edges = true
 	p.Charge = e.gate + e.offBias + e.levelShift + e.junction + i0*blocked
 	p.ChargePerVolt = e.gatePerVolt
+	p.ChargeLeast = e.offBias + e.levelShift + e.junction + i0*blocked
 	p.Return = e.junction
 	p.RecoverySpec, p.RecoveryTau = e.recovery, e.tau
 	return p

@@ -105,7 +105,7 @@ type Draw struct {
 	Space *Space
 	x     []float64
 	trace Trace
-	stack []*Trace // traces of memoised parts under way
+	stack []*Trace         // traces of memoised parts under way
 	memo  [memoSlots]*cell // nil: not asked for yet
 	// Slot is free for what a model keeps with the draw.
 	Slot any

@@ -79,6 +79,11 @@ func NewSpace(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint, set Set
 		}
 		sp.low[id], sp.typ[id], sp.high[id] = t.Min, t.Typ, t.Max
 	}
+	l := &s.Layout
+	for _, q := range []*stage.Quantity{&l.LowSideInductance, &l.BusLoopInductance, &l.LoopInductance, &l.Measured.TurnOffCurrentSlope,
+		&l.Measured.TurnOnCurrentSlope, &l.Measured.TurnOffVoltageSlope, &l.Measured.TurnOnVoltageSlope} {
+		sp.interior.set(q.ID)
+	}
 	if op != nil {
 		for _, q := range []*stage.Quantity{&op.BusVoltage, &op.LoadCurrent, &op.RippleCurrent, &op.SwitchingFrequency, &op.DeadTime} {
 			sp.interior.set(q.ID)

@@ -13,6 +13,7 @@ type Period struct {
 	// drive; so v' = (C·v - Charge - Q_rr)/(C + ChargePerVolt).
 	Charge        float64 // part that does not depend on V_BS [C]
 	ChargePerVolt float64 // C_on of the gates [F]
+	ChargeLeast   float64 // least that leaves, where the line of the gates' charge runs below 0, far under their plateau; not negative [C]
 	Return        float64 // returned at the falling edge, junction charge of D_B [C]
 
 	RecoverySpec float64 // Q_rr of D_B in its test, the most it can be; 0: none [C]
@@ -46,8 +47,12 @@ const rechargeShare = 0.01
 func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 	c := p.Capacitance
 	recovery, falls := p.recovered(w, v)
-	after := (c*v - p.Charge - recovery) / (c + p.ChargePerVolt)
-	dv = (c + falls) / (c + p.ChargePerVolt)
+	after, taken := (c*v-p.Charge-recovery)/(c+p.ChargePerVolt), c+p.ChargePerVolt
+	left := p.Charge + p.ChargePerVolt*after
+	if left < p.ChargeLeast {
+		after, taken, left = v-(p.ChargeLeast+recovery)/c, c, p.ChargeLeast
+	}
+	dv = (c + falls) / taken
 	v1, slope, carried := w.advance(after, &p.On, c)
 	dv *= slope
 	if tr == nil {
@@ -59,7 +64,7 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 		return v1, dv
 	}
 	*tr = trace{after: after, low: math.Min(after, v1), recovery: recovery, highest: -1, carried: carried}
-	tr.drawn = p.Charge + p.ChargePerVolt*after + recovery - p.Return + carried - c*(v1-after)
+	tr.drawn = left + recovery - p.Return + carried - c*(v1-after)
 	for k := range p.Off {
 		tr.drawn += p.Off[k].Load * math.Max(p.Off[k].Duration, 0)
 	}

@@ -133,6 +133,7 @@ func (b *Bench) found(r *Rule, role string, p *Point, w corner.Worst) result {
 	b.decide(r, role, &res)
 	if len(r.Alternatives) > 0 && w.Value == w.Value {
 		res.worst.Value, _ = corner.Evaluate(w.Draw, r.function(role))
+		res.worst.Typical, _ = corner.Evaluate(w.Space.Typical(), r.function(role))
 	}
 	return res
 }
@@ -225,9 +226,14 @@ func (b *Bench) refine(r *Rule, role string, res *result) {
 		return
 	}
 	res.refined = true
-	f := r.function(role)
-	res.worst.Space.Polish(&res.worst, f)
+	before := *res
+	res.worst.Space.Polish(&res.worst, r.function(role))
 	b.decide(r, role, res)
+	if res.outcome < before.outcome { // a guard that moves with the draw is broken elsewhere than where the margin is smallest
+		swings := res.worst.Swings
+		*res = before
+		res.worst.Swings = swings
+	}
 }
 
 // significant rounds to six significant digits, as results are before they are compared.

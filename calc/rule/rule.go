@@ -62,8 +62,8 @@ type Rule struct {
 	Explain func(c *circuit.Circuit, role string, k Check) []string
 	// Proxy, where set, stands in for the margin in the search for the worst draw: a cheaper number of the same sign and direction.
 	Proxy func(c *circuit.Circuit, role string) float64
-	// Alternatives, where set, are margins of which Check's is the smallest. The worst draw of each is searched for: at the typical draw the
-	// smallest hides what the others read.
+	// Alternatives, where set, are margins of which Check's is the smallest, or numbers with their signs. The worst draw of each is searched
+	// for: at the typical draw the smallest hides what the others read. One that does not exist at a draw is +Inf.
 	Alternatives []func(c *circuit.Circuit, role string) float64
 	// ProxyDimension is the dimension of Proxy.
 	ProxyDimension quantity.Dimension

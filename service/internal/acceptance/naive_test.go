@@ -8,9 +8,9 @@ import (
 	pb "floatrail/api/floatrail/v1"
 )
 
-// The cases of the design in which a naive answer is dangerously optimistic, as far as this rule set has their rules, through the REST
-// interface. Numbers within 2 %, voltages that decide within half of their last printed digit. What a case does not mention is that of the
-// plain stage: 25 °C, no leakage, no spread.
+// The cases of the design in which a naive answer is dangerously optimistic, through the REST interface; those of switching events stand in
+// naive_events_test.go. Numbers within 2 %, voltages that decide within half of their last printed digit. What a case does not mention is that
+// of the plain stage: 25 °C, no leakage, no spread.
 
 const (
 	pass     = pb.Outcome_PASS
@@ -234,16 +234,11 @@ func TestClampHoldsTheHighSide(t *testing.T) {
 	}
 }
 
-// Case 9 with data that this rule set asks for: what is not given leaves its rule open, names the field and returns the break-even. What
-// the rule set itself cannot compute, the undershoot through L2, keeps the verdict from PASS as well.
+// Case 9 with another datum: what is not given leaves its rule open, names the field and returns the break-even.
 func TestMissingDataNeverPasses(t *testing.T) {
 	c := serve(t)
 	body := request(t, gate(70), switching("50 kHz", "50 %", "100 ns"), edits{"bootstrap.resistor.resistance": "2.2 ohm"})
-	complete := c.review(body)
-	if f := find(t, complete.GetFindings(), "gate/overvoltage", "driver"); f.GetOutcome() == pass || complete.GetVerdict() == pb.Verdict_PASS {
-		t.Errorf("%v, verdict %v without the undershoot", f, complete.GetVerdict())
-	}
-	lowest := find(t, complete.GetFindings(), "charge/lowest-voltage", "")
+	lowest := find(t, c.review(body).GetFindings(), "charge/lowest-voltage", "")
 	judged(t, lowest, pass, none)
 
 	answer := c.review(edit(t, body, edits{"driver.uvloFalling": ""}))

@@ -115,7 +115,7 @@ func TestFaultsAreRefused(t *testing.T) {
 		})
 	}
 	// A duplicate field can be written in text alone.
-	twice := strings.Replace(good, `"uvloFalling":`, `"uvloFalling":{"typ":"9 V"},"uvloFalling":`, 1)
+	twice := strings.Replace(good, `"uvloFalling":`, `"uvloFalling":{"typ":"2 V"},"uvloFalling":`, 1)
 	refused(t, c, "/v1/reviews", twice, at("stage.driver.uvloFalling", "twice"))
 	for _, path := range []string{"/v1/sizing", "/v1/duty-limits"} {
 		refused(t, c, path, edit(t, good, edits{"highSide.gateCharge.typ": `"63"`}), at(charge+".typ", "unit is missing"))

@@ -110,6 +110,35 @@ func (c client) size(body string) *pb.SizingResult {
 	return ask(c, "/v1/sizing", body, &pb.SizeSupplyResponse{}).GetSizing()
 }
 
+func (c client) stress(body string) *pb.CheckTransientStressResponse {
+	c.t.Helper()
+	return ask(c, "/v1/transient-stress", body, &pb.CheckTransientStressResponse{})
+}
+
+// event returns the numbers of an event at the only operating point at which it occurs.
+func (c client) event(body string, e pb.TransientEvent_Event_Value) *pb.TransientEvent {
+	c.t.Helper()
+	var out *pb.TransientEvent
+	for _, got := range c.stress(body).GetTransientStress().GetEvents() {
+		if got.GetEvent() != e {
+			continue
+		}
+		if out != nil {
+			c.t.Fatalf("%v: more than one", e)
+		}
+		out = got
+	}
+	if out == nil {
+		c.t.Fatalf("no %v", e)
+	}
+	return out
+}
+
+func (c client) precharge(body string) *pb.Precharge {
+	c.t.Helper()
+	return ask(c, "/v1/duty-limits", body, &pb.CheckDutyLimitsResponse{}).GetDutyLimits().GetPrecharge()
+}
+
 // duty returns the only operating point of the duty limits.
 func (c client) duty(body string) *pb.DutyPoint {
 	c.t.Helper()

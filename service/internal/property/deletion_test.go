@@ -5,7 +5,6 @@ import (
 	"sync/atomic"
 	"testing"
 
-	"floatrail/calc/catalog"
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
 	"floatrail/calc/finding"
@@ -30,6 +29,16 @@ func label(p path) bool {
 	return slices.Contains([]string{"source", "refdes", "part", "title", "caseSize"}, p.last())
 }
 
+// replaced tells whether what is deleted is not missing afterwards but comes from elsewhere, on either side of it: the inside of a curve is
+// interpolated between its neighbours, and without a measured slope the gate's data estimate it.
+func replaced(tree any, p path) bool {
+	if n := len(p); n >= 2 && p[n-2] == "biasCurve" {
+		k, _ := p[n-1].(int)
+		return k > 0 && k+1 < len(lookup(tree, p[:n-1]).([]any))
+	}
+	return slices.Contains(p, any("measured"))
+}
+
 // alone is a tree without the operating points that a path does not lead into: they are judged each for itself.
 func alone(tree any, p path) any {
 	if len(p) < 4 || p[1] != "operatingPoints" {
@@ -40,13 +49,13 @@ func alone(tree any, p path) any {
 
 // TestDeletionNeverPasses takes every member and every list element out of the stages, one at a time, the ends of ranges, entries at
 // temperatures and points of curves among them. What was not a PASS at an operating point must not become one, and what failed must not
-// become NOT_APPLICABLE; a request that is refused has no findings. Labels go together.
+// become NOT_APPLICABLE; a request that is refused has no findings. Labels go together; what other data of the stage replace is left in.
 func TestDeletionNeverPasses(t *testing.T) {
 	for _, s := range subjects(t) {
 		t.Run(s.name, func(t *testing.T) {
-			base := judge(t, bind(t, s.tree), catalog.All())
+			base := judge(t, bind(t, s.tree), searched())
 			var watched []*rule.Rule // those that do not pass everywhere
-			for _, rl := range catalog.All() {
+			for _, rl := range searched() {
 				for p, v := range base.at {
 					if p.rule == rl.ID && v.outcome > finding.Pass && !slices.Contains(watched, rl) {
 						watched = append(watched, rl)
@@ -59,7 +68,7 @@ func TestDeletionNeverPasses(t *testing.T) {
 				switch {
 				case label(p):
 					bare = without(bare, p)
-				case !question(p):
+				case !question(p) && !replaced(s.tree, p):
 					variants = append(variants, variant{p.String(), alone(without(s.tree, p), p)})
 				}
 			})

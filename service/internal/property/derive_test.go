@@ -4,7 +4,6 @@ import (
 	"math"
 	"testing"
 
-	"floatrail/calc/catalog"
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
 	"floatrail/calc/derive"
@@ -97,11 +96,11 @@ func TestTightestLimit(t *testing.T) {
 func TestSharedSpacesChangeNothing(t *testing.T) {
 	for _, s := range subjects(t) {
 		t.Run(s.name, func(t *testing.T) {
-			shared := judge(t, bind(t, s.tree), catalog.All())
+			shared := judge(t, bind(t, s.tree), searched())
 			for i := range shared.bench.Points {
 				p := &shared.bench.Points[i]
 				for _, sp := range p.Spaces {
-					for _, rl := range catalog.All() {
+					for _, rl := range searched() {
 						for _, role := range rolesOf(rl) {
 							if rl.Inapplicable(shared.bench.Stage, p.Operating, role) != "" {
 								continue

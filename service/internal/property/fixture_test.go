@@ -42,5 +42,6 @@ func subjects(t testing.TB) []variant {
 		{name: "buck48", tree: document(t, "buck48")},
 		{name: "buck48 strained", tree: strained(t)},
 		{name: "gan650", tree: document(t, "gan650")},
+		{name: "drive400", tree: document(t, "drive400")},
 	}
 }

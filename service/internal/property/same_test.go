@@ -8,7 +8,6 @@ import (
 	"github.com/google/go-cmp/cmp/cmpopts"
 
 	"floatrail/calc"
-	"floatrail/calc/catalog"
 )
 
 // TestSameRequestSameReport reviews the same request again and again, the operating points side by side as the machine has it.
@@ -52,9 +51,9 @@ func parted(t testing.TB, tree any, order []int) any {
 func TestOrderOfPartsChangesNothing(t *testing.T) {
 	for _, s := range subjects(t) {
 		t.Run(s.name, func(t *testing.T) {
-			want := judge(t, bind(t, s.tree), catalog.All())
+			want := judge(t, bind(t, s.tree), searched())
 			for _, order := range [][]int{{0, 1, 2, 3, 4, 5}, {5, 3, 1, 4, 2, 0}} {
-				sameNumbers(t, want, judge(t, bind(t, parted(t, s.tree, order)), catalog.All()))
+				sameNumbers(t, want, judge(t, bind(t, parted(t, s.tree, order)), searched()))
 			}
 		})
 	}
@@ -65,12 +64,12 @@ func TestOrderOfOperatingPointsChangesNothing(t *testing.T) {
 	g := rand.New(rand.NewPCG(3, 5))
 	for _, s := range subjects(t) {
 		t.Run(s.name, func(t *testing.T) {
-			want := judge(t, bind(t, s.tree), catalog.All())
+			want := judge(t, bind(t, s.tree), searched())
 			points := lookup(s.tree, at("stage.operatingPoints")).([]any)
 			for range 5 {
 				shuffled := copyOf(points).([]any)
 				g.Shuffle(len(shuffled), func(i, k int) { shuffled[i], shuffled[k] = shuffled[k], shuffled[i] })
-				sameNumbers(t, want, judge(t, bind(t, with(s.tree, edit{at("stage.operatingPoints"), shuffled})), catalog.All()))
+				sameNumbers(t, want, judge(t, bind(t, with(s.tree, edit{at("stage.operatingPoints"), shuffled})), searched()))
 			}
 		})
 	}

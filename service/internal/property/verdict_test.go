@@ -14,6 +14,7 @@ import (
 
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/calc"
+	"floatrail/calc/catalog"
 	"floatrail/calc/finding"
 	"floatrail/calc/rule"
 )
@@ -138,6 +139,11 @@ func request(tree any) (*calc.Request, error) {
 		return nil, nil
 	}
 	return &r, nil
+}
+
+// searched are the rules that search for a worst draw; the others judge what these found.
+func searched() []*rule.Rule {
+	return slices.DeleteFunc(catalog.All(), func(r *rule.Rule) bool { return r.Tally != nil })
 }
 
 // rolesOf are the roles in which a rule judges; one without a name where it has none.

@@ -12,7 +12,6 @@ import (
 	"testing"
 
 	"floatrail/calc/catalog"
-	"floatrail/calc/finding"
 )
 
 var (
@@ -74,11 +73,12 @@ func curve(p path) path {
 	return nil
 }
 
-// widenings lists every way to widen one range of a stage: a minimum lowered, a maximum raised, a tolerance grown by 20 %, a value written
-// as exact given 10 % to both sides. Entries at temperatures are ranges too. Points of a curve are widened each and all together.
+// widenings lists every way to widen one range of a stage: a minimum lowered, a maximum raised, a tolerance grown by 20 %, a value that
+// counts as it is written given 10 % to both sides. Entries at temperatures are ranges too. Points of a curve are widened each and all together.
 func widenings(tree any) []widening {
 	const end, exact = 0.2, 0.1
-	sampled := []string{"busVoltage", "loadCurrent", "rippleCurrent", "switchingFrequency", "deadTime", "duty"}
+	sampled := []string{"busVoltage", "loadCurrent", "rippleCurrent", "switchingFrequency", "deadTime", "duty", "lowSideInductance",
+		"busLoopInductance", "loopInductance", "turnOffCurrentSlope", "turnOnCurrentSlope", "turnOffVoltageSlope", "turnOnVoltageSlope"}
 	var out []widening
 	whole := map[string][]edit{}
 	visit(tree, nil, func(p path, value any) {
@@ -117,7 +117,8 @@ func widenings(tree any) []widening {
 			add("typ "+to, edit{p.with("typ"), to})
 			return
 		}
-		if q["min"] == nil && q["max"] == nil {
+		exactly := slices.ContainsFunc(p, func(k any) bool { return k == "operatingPoints" || k == "startup" || k == "measured" })
+		if q["min"] == nil && q["max"] == nil && exactly { // elsewhere a typical value alone has the policy's spread, which is wider
 			low, ok := moved(text, -exact, 1)
 			high, _ := moved(text, exact, 1)
 			if ok {
@@ -140,14 +141,13 @@ func widenings(tree any) []widening {
 //   - values of an operating point whose inside is sampled: between the samples lies up to the share below;
 //   - rules that are searched by a proxy, which has the margin's sign but not its size.
 //
-// A rule that is open for what its numbers do not contain yet becomes marginal where the numbers alone say so. The strained stage, which
-// stands where pulses vanish and supplies collapse, is demanded outcomes only.
+// The strained stage, which stands where pulses vanish and supplies collapse, is demanded outcomes only.
 func TestWideningNeverImproves(t *testing.T) {
 	const between = 2e-3
 	for _, s := range subjects(t) {
 		t.Run(s.name, func(t *testing.T) {
 			tree := with(s.tree, to("stage.highSide.offBiasSource", `"SEPARATE"`), to("stage.lowSide.offBiasSource", `"SEPARATE"`))
-			base := judge(t, bind(t, tree), catalog.All())
+			base := judge(t, bind(t, tree), searched())
 			all := widenings(tree)
 			if s.name == "buck48 strained" { // the demo stage has the same ranges: every third shows what is wanted here
 				for i := range all {
@@ -166,13 +166,12 @@ func TestWideningNeverImproves(t *testing.T) {
 			var mu sync.Mutex
 			fell := 0
 			answered := eachBench(t, variants, func(v *variant, j *judged) {
-				for _, rl := range catalog.All() {
+				for _, rl := range searched() {
 					j.run(t, rl)
 				}
 				for p, is := range j.at {
 					was := base.at[p]
-					pending := was.outcome == finding.Open && was.margin == was.margin
-					if is.outcome < was.outcome && !(pending && is.outcome == finding.Marginal) {
+					if is.outcome < was.outcome {
 						t.Errorf("with %s: %s improves from %s to %s: %s", v.name, p, was.outcome, is.outcome, is.text)
 					}
 				}
