@@ -103,6 +103,18 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 	if s.low[id] < s.high[id] {
 		try(s.low[id])
 		try(s.high[id])
+		if s.interior.has(id) && !w.turning.has(id) { // it may turn here although it does not at the typical draw
+			worse := func(step int8) (yes bool) {
+				s.Try(w.Draw, func(d *Draw) {
+					u, t := Evaluate(d, f)
+					yes = usable(u, t) && below(u, w.Value)
+				}, Change{id, s.sample(id, step)})
+				return yes
+			}
+			if worse(lookLow) || worse(lookHigh) {
+				w.turning.set(id)
+			}
+		}
 		if w.turning.has(id) {
 			for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {
 				try(s.sample(id, k))

@@ -175,7 +175,7 @@ func SearchSets(sets []*Space, f Function) []Worst {
 		}
 		d := s.Typical()
 		v, t := Evaluate(d, f)
-		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: ref.turning}
+		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: slices.Clone(ref.turning)}
 		switch {
 		case !usable(v, t):
 			w.Value = math.NaN()

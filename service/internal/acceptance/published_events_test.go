@@ -67,6 +67,42 @@ func TestPublishedGateCurrent(t *testing.T) {
 	}
 }
 
+// The gate resistance that the publisher works out for an edge makes that edge here. Fairchild AN-6076, from memory; its driver of 350 mA on 15 V
+// has 42.86 Ω, that of 650 mA 23.08 Ω. Its plateau is V_th, so the transconductance is as large as the contract takes it, which also makes C_oss
+// count for nothing; the low side drops 2 mV, by which the drive exceeds V_DD: 0.02 % of 10 V.
+func TestPublishedEdge(t *testing.T) {
+	c := serve(t)
+	for _, z := range []struct {
+		id        string
+		event     pb.TransientEvent_Event_Value
+		threshold string
+		outside   float64 // R_G [ohm]
+		transfer  string  // C_gd
+		slew      float64 // [V/s]
+	}{
+		// G01, switching time: Q_GS 13.5 nC and Q_GD 36 nC in 500 ns, V_th 5 V: 101 Ω in all, 58 Ω (58.15 Ω) beside the driver. 36 nC are 90 pF on
+		// 400 V, which they cross in 36/49.5 of the time.
+		{"G01", turnOn, "5 V", 58.15, "90 pF", 400 / (500e-9 * 36 / 49.5)},
+		// G02, slope: 1 V/ns with C_gd 95 pF: 105 Ω in all, 62 Ω (62.41 Ω) beside the driver.
+		{"G02", turnOn, "5 V", 62.41, "95 pF", 1e9},
+		// G03, turn-off: V_th,min 3 V: 8.6 Ω beside the driver, unrounded 8.50 Ω.
+		{"G03", turnOff, "3 V", 8.50, "95 pF", 1e9},
+	} {
+		t.Run(z.id, func(t *testing.T) {
+			e := c.of(t).event(request(t, supply(15), switching("20 kHz", "50 %", "100 ns"), edits{
+				"operatingPoints.0.busVoltage": "400 V", "operatingPoints.0.loadCurrent": "10 A", "lowSide.reverse.forwardPoints": drops(0.002),
+				"driver.pullUpResistance": fmt.Sprintf("%.9g ohm", 15/0.350), "driver.pullDownResistance": fmt.Sprintf("%.9g ohm", 15/0.650),
+				"highSide.gateOn.resistance": fmt.Sprintf("%g ohm", z.outside), "highSide.gateOff.resistance": fmt.Sprintf("%g ohm", z.outside),
+				"highSide.thresholdVoltage": z.threshold, "highSide.plateauVoltage": z.threshold, "highSide.transconductance": "10 kS",
+				"highSide.reverseTransferCapacitance": level(z.transfer), "highSide.outputCapacitance": level(z.transfer),
+				"layout.measured.turnOnVoltageSlope": "", "layout.measured.turnOffVoltageSlope": "",
+			}), z.event)
+			all(t, "slew", e.GetSlewPeak(), z.slew, 6e-4*z.slew)
+			all(t, "slew from 10 to 90 %", e.GetSlew_10To_90(), z.slew, 6e-4*z.slew)
+		})
+	}
+}
+
 // H02, Texas Instruments SLUP169, from memory: -7 mV/K from 25 to 100 °C take 0.525 V off the threshold, which is the limit of what an edge may
 // induce; 80 % of it is the guard.
 func TestPublishedThresholdShift(t *testing.T) {

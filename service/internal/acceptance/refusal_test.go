@@ -65,7 +65,7 @@ func refused(t *testing.T, c client, path, body string, wanted ...violation) {
 func TestFaultsAreRefused(t *testing.T) {
 	c := serve(t)
 	good := request(t, gate(63), switching("20 kHz", "50 %", "500 ns"))
-	for _, path := range []string{"/v1/reviews", "/v1/sizing", "/v1/duty-limits"} {
+	for _, path := range []string{"/v1/reviews", "/v1/sizing", "/v1/duty-limits", "/v1/transient-stress"} {
 		if code, data := c.post(path, good); code != http.StatusOK {
 			t.Fatalf("%s: the request without faults: %d %s", path, code, data)
 		}
@@ -117,7 +117,7 @@ func TestFaultsAreRefused(t *testing.T) {
 	// A duplicate field can be written in text alone.
 	twice := strings.Replace(good, `"uvloFalling":`, `"uvloFalling":{"typ":"2 V"},"uvloFalling":`, 1)
 	refused(t, c, "/v1/reviews", twice, at("stage.driver.uvloFalling", "twice"))
-	for _, path := range []string{"/v1/sizing", "/v1/duty-limits"} {
+	for _, path := range []string{"/v1/sizing", "/v1/duty-limits", "/v1/transient-stress"} {
 		refused(t, c, path, edit(t, good, edits{"highSide.gateCharge.typ": `"63"`}), at(charge+".typ", "unit is missing"))
 	}
 }
