@@ -25,7 +25,7 @@ type soundStage struct {
 	onBench bool              // slopes were measured
 }
 
-// remark is a rule and the role it remark.
+// remark is a rule and the role it judged.
 type remark struct{ rule, role string }
 
 var soundDesigns = []soundStage{
@@ -101,7 +101,7 @@ func TestNoFalseAlarmOnSoundDesigns(t *testing.T) {
 	}
 	for _, rl := range catalog.All() {
 		if absent := slices.Contains(unjudged, rl.ID); absent == applied[rl.ID] {
-			t.Errorf("%s: remark on a sound stage %t, want %t", rl.ID, applied[rl.ID], !absent)
+			t.Errorf("%s: judged on a sound stage %t, want %t", rl.ID, applied[rl.ID], !absent)
 		}
 	}
 }
