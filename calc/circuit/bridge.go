@@ -115,10 +115,11 @@ func (c *Circuit) drive(s *stage.Switch, on, fast bool) transient.Gate {
 
 // driveVoltage is the highest drive that a position's gate sees in normal operation [V].
 func (c *Circuit) driveVoltage(s *stage.Switch) float64 {
+	v := c.Supply()
 	if s == &c.Stage.HighSide {
-		return c.Gate(c.Ceiling())
+		v = c.Ceiling()
 	}
-	return c.Supply()
+	return c.OffBias(s).Drive(v)
 }
 
 // external is the external gate resistor of a direction.

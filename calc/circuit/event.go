@@ -81,7 +81,7 @@ func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
 		return false
 	}
 	i, r := &op.LoadCurrent, op.RippleCurrent.Triple
-	if !i.Known() {
+	if !i.Known() || alternates(op) {
 		return true
 	}
 	ripple := 0.0

@@ -31,13 +31,21 @@ type Period struct {
 	LowVanishes  bool     // the low-side pulse is shorter than the driver passes
 }
 
-func (c *Circuit) peakCurrent() float64 {
-	return c.Need(&c.Point.LoadCurrent) + c.Need(&c.Point.RippleCurrent)/2
+// peakCurrent and valleyCurrent are the ends of the ripple of the current out of the node [A].
+func (c *Circuit) peakCurrent() float64 { return c.current(1) }
+
+func (c *Circuit) valleyCurrent() float64 { return c.current(-1) }
+
+// current is the load current with half the ripple to one side [A]. That of a modulated leg runs through both signs.
+func (c *Circuit) current(side float64) float64 {
+	if alternates(c.Point) {
+		return c.Open(noModel)
+	}
+	return c.Need(&c.Point.LoadCurrent) + side*c.Need(&c.Point.RippleCurrent)/2
 }
 
-func (c *Circuit) valleyCurrent() float64 {
-	return c.Need(&c.Point.LoadCurrent) - c.Need(&c.Point.RippleCurrent)/2
-}
+// alternates tells whether the current of an operating point runs through both signs.
+func alternates(op *stage.OperatingPoint) bool { return op.Sinusoidal != nil || op.SixStep != nil }
 
 // ReverseDrop is the drop of a switch in reverse conduction at a positive total current [V]: its points, linear between them; level below
 // the first, and beyond the last on the last slope. That of a HEMT grows by the gate voltage of its points less the off bias.

@@ -104,6 +104,9 @@ func (c *Circuit) PrebiasedVoltage() float64 {
 	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
 		return ch.PulsedReached(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod), c.Need(&s.TimeAvailable))
 	}
+	if c.Stage.Bootstrap.Element == stage.IntegratedSwitch { // it conducts only while the low-side gate is on
+		return ch.Initial + node*0
+	}
 	ch.Node = node
 	return max(0, ch.Settled())
 }

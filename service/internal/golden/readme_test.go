@@ -151,7 +151,7 @@ func TestReadme(t *testing.T) {
 	program := build(t)
 	t.Run("quick start", func(t *testing.T) {
 		first := slices.IndexFunc(blocks, func(b block) bool { return b.language == "sh" })
-		want := []string{"go run ./service review testdata/stages/buck48.json testdata/stages/gan650.json", "go test ./..."}
+		want := []string{"go run ./service review testdata/stages/buck48.json testdata/stages/gan650.json testdata/stages/drive400.json", "go test ./..."}
 		if first < 0 || !slices.Equal(blocks[first].lines, want) {
 			t.Errorf("the quick start is not\n%s", strings.Join(want, "\n"))
 		}
