@@ -21,6 +21,10 @@ var capacitorLeakage = &rule.Rule{
 	Stagewide: true, Inapplicable: always,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		l := c.Loads()
-		return rule.Check{Value: l.CapacitorLeakage / (l.Total() + l.PullDown*c.Supply()), Limit: capacitorLeakageShare, Guard: below(c, capacitorLeakageShare)}
+		share := l.CapacitorLeakage / (l.Total() + l.PullDown*c.Supply())
+		if l.CapacitorLeakage == 0 { // of whatever load, none at all included
+			share = 0 * (l.Total() + l.PullDown)
+		}
+		return rule.Check{Value: share, Limit: capacitorLeakageShare, Guard: below(c, capacitorLeakageShare)}
 	},
 }

@@ -32,7 +32,7 @@ var gateOvervoltage = &rule.Rule{
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		notes := pumpNote(c)
 		if gain := c.Gain(); gain > leastGain {
-			notes = append(notes, "undershoots add "+quantity.Format(gain, quantity.Voltage))
+			notes = append([]string{"undershoots add " + quantity.Format(gain, quantity.Voltage)}, notes...)
 		}
 		return notes
 	},

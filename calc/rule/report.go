@@ -76,9 +76,12 @@ func (b *Bench) points(r *Rule, f *finding.Finding, all []result, best int) {
 	}
 }
 
-// finite makes a measure; infinities are not printed.
+// boundless is from where on a number is no number of a circuit but the lack of a bound.
+const boundless = 1e30
+
+// finite makes a measure; what has no bound is not printed.
 func (r *Rule) finite(v float64) finding.Measure {
-	if math.IsInf(v, 0) {
+	if math.Abs(v) > boundless {
 		v = math.NaN()
 	}
 	return finding.Measure{Value: significant(v), Dimension: r.Dimension}
@@ -91,7 +94,7 @@ func (b *Bench) numbers(r *Rule, o *result) (value, limit finding.Measure, m fin
 		m.Absolute.Dimension = quantity.TemperatureDifference
 	}
 	m.Relative = math.NaN()
-	if l := o.check.Limit; l != 0 && !math.IsInf(o.margin, 0) && !math.IsInf(l, 0) {
+	if l := o.check.Limit; l != 0 && !(math.Abs(o.margin) > boundless) && !math.IsInf(l, 0) {
 		m.Relative = significant(o.margin / math.Abs(l))
 	}
 	return value, limit, m
@@ -171,7 +174,7 @@ func (b *Bench) decided(r *Rule, role string, f *finding.Finding, res *result) {
 		f.Ranking = append(f.Ranking, finding.Ranking{Field: s.Input.Field, Swing: finding.Measure{Value: significant(s.Range), Dimension: dim}})
 	}
 	b.breakEvens(r, role, f, w)
-	f.Message = message(r, f, math.IsInf(res.check.Limit, 0))
+	f.Message = message(r, f, math.IsInf(res.check.Limit, 0), res.check.Value > boundless)
 }
 
 // corner records where each input stands and the inputs behind the number.
@@ -249,10 +252,13 @@ func text(m finding.Measure) string {
 }
 
 // message is one sentence with the numbers.
-func message(r *Rule, f *finding.Finding, unbounded bool) string {
+func message(r *Rule, f *finding.Finding, unlimited, unbounded bool) string {
 	var s strings.Builder
 	value := text(f.Value)
-	if f.Value.Value != f.Value.Value {
+	switch {
+	case unbounded:
+		value = "is without bound"
+	case f.Value.Value != f.Value.Value:
 		value = "does not exist"
 	}
 	fmt.Fprintf(&s, "%s %s", r.Quantity, value)
@@ -279,7 +285,7 @@ func message(r *Rule, f *finding.Finding, unbounded bool) string {
 	} else {
 		fmt.Fprintf(&s, ", %s", f.Corner.Name)
 	}
-	if len(f.Notes) > 0 && (f.Outcome != finding.Pass || unbounded || f.Value.Value != f.Value.Value) {
+	if len(f.Notes) > 0 && (f.Outcome != finding.Pass || unlimited || f.Value.Value != f.Value.Value) {
 		s.WriteString(": " + f.Notes[0])
 		f.Notes = f.Notes[1:]
 	}

@@ -42,10 +42,8 @@ var soundDesigns = []soundStage{
 	}},
 	{name: "llc400", onBench: true, shown: map[remark]string{}},
 	{name: "sic800", sinking: true, onBench: true, shown: map[remark]string{
-		{"charge/lowest-voltage", ""}: "a lockout that protects a switch specified at 15 V leaves 0.67 V to the supply while the low side lifts the node; " +
-			"V_DD must not be lower",
-		{"gate/overvoltage", "highSide"}: "the other side of the same window: 4.5 V of reverse conduction with the gate at -4 V pump V_BS to 22.6 V of 25 V; " +
-			"V_DD must not be higher",
+		{"gate/overvoltage", "highSide"}: "4.5 V of reverse conduction with the gate at -4 V pump V_BS in the dead times to 23.1 V of the gate's 25 V; V_DD has " +
+			"little room upward, and downward a lockout that protects a switch specified at 15 V bounds it",
 	}},
 }
 
