@@ -208,10 +208,10 @@ func (c *Circuit) Width(e Event) float64 {
 // recovering is the diode that an event's turn-on takes the current from.
 func (c *Circuit) recovering(e Event) transient.Recovering {
 	s := c.passive(e)
-	out := transient.Recovering{Inductance: c.LoopInductance(), Output: c.output(s)}
+	out := transient.Recovering{Inductance: c.LoopInductance(), Output: c.output(s), Rise: c.CurrentSlope(e)}
 	if r := c.recovery(s); r.Tau != 0 {
 		n := s.Count()
-		out.Peak, out.TauRR = n*r.Peak(c.Current(e)/n, c.CurrentSlope(e)/n), r.TauRR
+		out.Peak, out.TauRR = n*r.Peak(c.Current(e)/n, out.Rise/n), r.TauRR
 	}
 	return out
 }
@@ -222,10 +222,6 @@ func (c *Circuit) Recovered(e Event) float64 {
 		return i
 	}
 	r := c.recovering(e)
-	if m := &c.Stage.Layout.Measured; r.Peak > 0 && r.Ahead(c.CurrentSlope(e), c.bus()) {
-		c.Assume(stage.Assumption{Field: m.TurnOnVoltageSlope.Field, Assumed: "the node follows the gate drive", Direction: stage.Optimistic,
-			Reason: "the inductance of the loop takes most of V_BUS from the switch that turns on before the diode recovers, where the overshoot is estimated too small"})
-	}
 	return r.Overshoot(*c.Swing(e))
 }
 
@@ -251,7 +247,6 @@ func (c *Circuit) Dip(e Event) float64 {
 	case e == TurnOff:
 		return -c.commutated(e, c.LowInductance())
 	}
-	c.Recovered(e) // notes where the estimate may be too small
 	r := c.recovering(e)
 	return -r.Dip(*c.Swing(e), c.LowInductance()/c.LoopInductance())
 }
@@ -374,12 +369,17 @@ func (c *Circuit) UnpoweredInduced() float64 {
 	return transient.Lift(&g, r, swing)
 }
 
-// TurnOffTime is the time from a command to the end of the channel current of a position [s].
+// TurnOffTime is the time from a command to the end of the channel current of a position [s]. Where its diode takes the current over the node
+// stays where it is, and the channel ends as the gate reaches the threshold.
 func (c *Circuit) TurnOffTime(e Event) float64 {
 	s, i := c.active(e), c.Current(e)
 	w := c.channel(s)
 	w.InputCapacitance, w.Transfer = s.Count()*c.Need(&s.InputCapacitance), c.transfer(s)
-	return transient.TurnOffTime(i, &w, c.drive(s, false, false), c.bus(), c.Need(&s.CurrentFallTime))
+	bus, fall := 0.0, 0.0
+	if i != 0 {
+		bus, fall = c.bus(), c.Need(&s.CurrentFallTime)
+	}
+	return transient.TurnOffTime(i, &w, c.drive(s, false, false), bus, fall)
 }
 
 // GateDamping is the smaller damping of a position's gate loop over both directions [1].

@@ -21,6 +21,7 @@ type result struct {
 	margin  float64
 	reason  string // why not applicable
 	refined bool
+	thin    bool // the alternative that was searched may turn where its draw is polished
 }
 
 // numbered tells whether the result has numbers, be it open for what they do not contain yet.
@@ -132,6 +133,7 @@ func (b *Bench) found(r *Rule, role string, p *Point, w corner.Worst) result {
 	res := result{point: p, worst: w}
 	b.decide(r, role, &res)
 	if len(r.Alternatives) > 0 && w.Value == w.Value {
+		res.thin = !(w.Value > nearShare*(w.Typical-w.Value)) // of its own: what the smallest of all hides
 		res.worst.Value, _ = corner.Evaluate(w.Draw, r.function(role))
 		res.worst.Typical, _ = corner.Evaluate(w.Space.Typical(), r.function(role))
 	}
@@ -148,7 +150,7 @@ func (b *Bench) near(r *Rule, res *result) bool {
 	if r.Proxy != nil {
 		slack = res.worst.Value
 	}
-	return !(slack > nearShare*(res.worst.Typical-res.worst.Value))
+	return res.thin || !(slack > nearShare*(res.worst.Typical-res.worst.Value))
 }
 
 // decide turns the worst draw into an outcome.
@@ -203,21 +205,32 @@ func (b *Bench) stretch(r *Rule, role string, res *result) {
 	if len(changes) == 0 {
 		return
 	}
-	w.Space.Try(w.Draw, func(d *corner.Draw) {
-		var c Check
-		corner.Evaluate(d, func(d *corner.Draw) float64 {
-			c = r.Check(circuit.Of(d), role)
-			return 0
-		})
-		if r.margin(c) >= 0 && r.guardSlack(c) >= 0 {
-			return
+	breaks := func(changes ...corner.Change) (yes bool) {
+		w.Space.Try(w.Draw, func(d *corner.Draw) {
+			var c Check
+			corner.Evaluate(d, func(d *corner.Draw) float64 {
+				c = r.Check(circuit.Of(d), role)
+				return 0
+			})
+			yes = !(r.margin(c) >= 0 && r.guardSlack(c) >= 0)
+		}, changes...)
+		return yes
+	}
+	if !breaks(changes...) {
+		return
+	}
+	var alone, all []string // those that break the guard each alone are named, all together where none does
+	for i, f := range fields {
+		all = append(all, stage.Relative(f))
+		if breaks(changes[i]) {
+			alone = append(alone, stage.Relative(f))
 		}
-		for i, f := range fields {
-			fields[i] = stage.Relative(f)
-		}
-		res.outcome = finding.Marginal
-		res.notes = append(res.notes, "satisfied only within the policy's spread of "+strings.Join(fields, ", ")+", of which no such end is given")
-	}, changes...)
+	}
+	if len(alone) > 0 {
+		all = alone
+	}
+	res.outcome = finding.Marginal
+	res.notes = append(res.notes, "satisfied only within the policy's spread of "+strings.Join(all, ", ")+", of which no such end is given")
 }
 
 // refine polishes the worst draw, so that the swings are known and the corner is checked.
