@@ -10,13 +10,13 @@ import (
 
 var dutyDeadTime = &rule.Rule{
 	ID: "duty/dead-time", Title: "Dead time against the time that a switch takes to turn off", Since: second,
-	Equation: "t_off,d + [R_g·C_iss·ln((V_drive - V_off)/(V_pl - V_off)) + R_g·Q_gd/(V_pl - V_off) + t_f] - t_on,d + MT, the longer of both positions; " +
+	Equation: "t_off,d + [R_g·C_on·ln((V_drive - V_off)/(V_pl - V_off)) + R_g·Q_gd/(V_pl - V_off) + t_f] - t_on,d + MT, the longer of both positions; " +
 		"t_f at least the gate's own time from V_pl to V_th",
 	Limit: "time from the command until the channel's current has ceased, less the other's turn-on delay", Guard: "10 % above the limit",
 	Applies: "half-bridges with a switch on both sides",
 	Needs: []string{"operatingPoints.deadTime", "driver.turnOffDelay", "driver.turnOnDelay", "driver.delayMismatch", "driver.pullDownResistance",
 		"highSide.gateOff", "lowSide.gateOff", "highSide.internalGateResistance", "lowSide.internalGateResistance", "highSide.inputCapacitance",
-		"lowSide.inputCapacitance", "highSide.thresholdVoltage", "lowSide.thresholdVoltage", "highSide.currentFallTime", "lowSide.currentFallTime"},
+		"lowSide.inputCapacitance", "highSide.inputCapacitanceVoltage", "lowSide.inputCapacitanceVoltage", "highSide.thresholdVoltage", "lowSide.thresholdVoltage", "highSide.currentFallTime", "lowSide.currentFallTime"},
 	Sources: []string{"an6076", "slup169", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Dead time", Against: "time to turn off", Dimension: quantity.Time, Sense: rule.AtLeast,

@@ -375,6 +375,7 @@ func (c *Circuit) TurnOffTime(e Event) float64 {
 	s, i := c.active(e), c.Current(e)
 	w := c.channel(s)
 	w.InputCapacitance, w.Transfer = s.Count()*c.Need(&s.InputCapacitance), c.transfer(s)
+	w.InputCapacitanceVoltage = c.Need(&s.InputCapacitanceVoltage)
 	bus, fall := 0.0, 0.0
 	if i != 0 {
 		bus, fall = c.bus(), c.Need(&s.CurrentFallTime)

@@ -103,12 +103,29 @@ func (t *Trace) Complete() bool {
 // Draw is one number for every input of a stage at one set.
 type Draw struct {
 	Space *Space
-	x     []float64
+	x     []float64 // by ID; shared with other draws where one input is moved
+	moved int       // ID of the input that stands elsewhere than x says; 0: none
+	to    float64   // where it stands
 	trace Trace
 	stack []*Trace         // traces of memoised parts under way
 	memo  [memoSlots]*cell // nil: not asked for yet
 	// Slot is free for what a model keeps with the draw.
 	Slot any
+}
+
+// get is the number drawn for an input.
+func (d *Draw) get(id int) float64 {
+	if id == d.moved {
+		return d.to
+	}
+	return d.x[id]
+}
+
+// numbers are all numbers of the draw, by ID; a copy.
+func (d *Draw) numbers() []float64 {
+	x := slices.Clone(d.x)
+	x[d.moved] = d.get(d.moved)
+	return x
 }
 
 // Need reads an input. Unknown: NaN, and the field is noted as missing.
@@ -129,7 +146,7 @@ func (d *Draw) Need(q *stage.Quantity) float64 {
 
 // Has reads an input that may be absent without noting it as missing.
 func (d *Draw) Has(q *stage.Quantity) (float64, bool) {
-	v := d.x[q.ID]
+	v := d.get(q.ID)
 	if v != v {
 		return v, false
 	}
@@ -173,9 +190,9 @@ func (d *Draw) current() *Trace {
 // Value is the number drawn for an input, without noting it as read. A point of a curve lies where the curve's position says.
 func (d *Draw) Value(q *stage.Quantity) float64 {
 	if q.Along == 0 {
-		return d.x[q.ID]
+		return d.get(q.ID)
 	}
-	position := d.x[q.Along]
+	position := d.get(q.Along)
 	r := d.Space.Range(q)
 	if position >= 0 {
 		return r.Typ + position*(r.Max-r.Typ)

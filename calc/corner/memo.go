@@ -32,25 +32,25 @@ type signature struct {
 // agrees in all of them has the same result.
 type memory [memoSlots][]*signature
 
-func (g *signature) hash(x []float64) uint64 {
+func (g *signature) hash(d *Draw) uint64 {
 	h := uint64(14695981039346656037)
 	for _, id := range g.ids {
-		h = (h ^ math.Float64bits(x[id])) * 1099511628211
+		h = (h ^ math.Float64bits(d.get(id))) * 1099511628211
 		h ^= h >> 29
 	}
 	return h
 }
 
 // find gives the kept result for the numbers of a draw.
-func (m *memory) find(slot int, x []float64) *entry {
+func (m *memory) find(slot int, d *Draw) *entry {
 	for _, g := range m[slot] {
-		e := g.entries[g.hash(x)]
+		e := g.entries[g.hash(d)]
 		if e == nil {
 			continue
 		}
 		same := true
 		for i, id := range g.ids {
-			if math.Float64bits(e.values[i]) != math.Float64bits(x[id]) {
+			if math.Float64bits(e.values[i]) != math.Float64bits(d.get(id)) {
 				same = false
 				break
 			}
@@ -63,7 +63,7 @@ func (m *memory) find(slot int, x []float64) *entry {
 }
 
 // keep stores a result under the inputs that its evaluation read.
-func (m *memory) keep(slot int, x []float64, e *entry) {
+func (m *memory) keep(slot int, d *Draw, e *entry) {
 	var g *signature
 	for _, o := range m[slot] {
 		if slices.Equal(o.used, e.trace.used) {
@@ -77,9 +77,9 @@ func (m *memory) keep(slot int, x []float64, e *entry) {
 	}
 	e.values = make([]float64, len(g.ids))
 	for i, id := range g.ids {
-		e.values[i] = x[id]
+		e.values[i] = d.get(id)
 	}
-	g.entries[g.hash(x)] = e
+	g.entries[g.hash(d)] = e
 }
 
 // Memo returns f's value at a draw, evaluated once per draw into the place given; what f reads counts as read by every caller. A shared
@@ -93,7 +93,7 @@ func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 	if !c.valid {
 		var e *entry
 		if shared {
-			e = d.Space.memory.find(slot, d.x)
+			e = d.Space.memory.find(slot, d)
 		}
 		if e != nil {
 			*at = e.value.(T)
@@ -104,7 +104,7 @@ func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 			*at = f()
 			d.stack = d.stack[:len(d.stack)-1]
 			if shared {
-				d.Space.memory.keep(slot, d.x, &entry{value: *at, trace: c.trace.clone()})
+				d.Space.memory.keep(slot, d, &entry{value: *at, trace: c.trace.clone()})
 			}
 		}
 		c.valid = true

@@ -26,12 +26,12 @@ func (s *Space) beyond(w *Worst, d *Draw, f Function, here float64, id int) {
 			}
 		}, Change{id, math.Min(math.Max(v, q.Declare.Low), q.Declare.High)})
 	}
-	step := openStep * math.Abs(d.x[id])
+	step := openStep * math.Abs(d.get(id))
 	if span := q.Declare.High - q.Declare.Low; step == 0 && !math.IsInf(span, 0) {
 		step = openStep * span
 	}
-	look(q.OpenBelow, d.x[id]-step)
-	look(q.OpenAbove, d.x[id]+step)
+	look(q.OpenBelow, d.get(id)-step)
+	look(q.OpenAbove, d.get(id)+step)
 }
 
 // visit evaluates a draw and keeps it if it is worse.
@@ -91,7 +91,7 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 		}
 	}
 	try := func(v float64) {
-		if v == w.Draw.x[id] {
+		if v == w.Draw.get(id) {
 			return
 		}
 		n := s.take(w.Draw, Change{id, v})
@@ -121,7 +121,7 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 			}
 		}
 	}
-	if n := s.inputs[id].Naive; n == n && n != w.Draw.x[id] {
+	if n := s.inputs[id].Naive; n == n && n != w.Draw.get(id) {
 		s.Try(w.Draw, func(d *Draw) {
 			u, _ := Evaluate(d, f)
 			changed(u)
@@ -134,7 +134,7 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 // distance. What holds only short of that rests on the policy's spread.
 func (s *Space) Stretch(d *Draw, t *Trace) (changes []Change, fields []string) {
 	t.used.each(func(id int) {
-		q, v, typ := s.inputs[id], d.x[id], s.typ[id]
+		q, v, typ := s.inputs[id], d.get(id), s.typ[id]
 		if !(q.FilledAbove && v == s.high[id] && v > typ) && !(q.FilledBelow && v == s.low[id] && v < typ) {
 			return
 		}

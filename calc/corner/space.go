@@ -109,14 +109,14 @@ func (s *Space) Range(q *stage.Quantity) stage.Triple {
 	return stage.Triple{Min: s.low[q.ID], Typ: s.typ[q.ID], Max: s.high[q.ID]}
 }
 
-// At makes a draw with given numbers.
+// at makes a draw with given numbers, which nobody changes afterwards.
 func (s *Space) at(x []float64) *Draw {
 	return &Draw{Space: s, x: x, trace: newTrace(len(x))}
 }
 
 // With makes a draw that differs from another in some inputs.
 func (s *Space) With(d *Draw, changes ...Change) *Draw {
-	x := append([]float64(nil), d.x...)
+	x := d.numbers()
 	for _, c := range changes {
 		x[c.ID] = c.Value
 	}
@@ -139,6 +139,7 @@ func (s *Space) take(d *Draw, changes ...Change) *Draw {
 	out := s.spare[n-1]
 	s.spare = s.spare[:n-1]
 	copy(out.x, d.x)
+	out.x[d.moved] = d.get(d.moved)
 	for _, c := range changes {
 		out.x[c.ID] = c.Value
 	}
@@ -168,11 +169,8 @@ func (s *Space) probe(id int, step int8, v float64) *Draw {
 	if d, ok := s.probes[key]; ok {
 		return d
 	}
-	x := append([]float64(nil), s.typ...)
-	if id > 0 {
-		x[id] = v
-	}
-	d := s.at(x)
+	d := s.at(s.typ)
+	d.moved, d.to = id, v
 	s.probes[key] = d
 	return d
 }

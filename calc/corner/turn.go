@@ -10,7 +10,7 @@ import (
 // BreakEven finds the value of one input, the others standing at a draw, at which f turns from its sign there, between low and high.
 // Of two the nearer one is given; ok is false where the sign holds at both ends.
 func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high float64) (float64, bool) {
-	start := d.x[q.ID]
+	start := d.get(q.ID)
 	v0, t0 := Evaluate(d, f)
 	if !usable(v0, t0) || start != start {
 		return math.NaN(), false

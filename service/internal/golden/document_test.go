@@ -60,7 +60,8 @@ func commands(blocks []block, word string) []string {
 }
 
 // documents of the repository, by path from its root.
-var documents = []string{"README.md", "DEVELOPERS.md", "testdata/stages/buck48.sheet.md", "testdata/stages/gan650.sheet.md"}
+var documents = []string{"README.md", "DEVELOPERS.md", "testdata/stages/buck48.sheet.md", "testdata/stages/gan650.sheet.md",
+	"testdata/stages/drive400.sheet.md"}
 
 var (
 	link    = regexp.MustCompile(`\]\(([^)]+)\)`)
