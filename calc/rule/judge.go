@@ -21,7 +21,8 @@ type result struct {
 	margin  float64
 	reason  string // why not applicable
 	refined bool
-	thin    bool // the alternative that was searched may turn where its draw is polished
+	search  corner.Function // by which it was found; nil where nothing was searched
+	thin    bool            // the alternative that was searched may turn where its draw is polished
 }
 
 // numbered tells whether the result has numbers, be it open for what they do not contain yet.
@@ -92,40 +93,42 @@ func (r *Rule) function(role string) corner.Function {
 	}
 }
 
-// at searches the worst over the sets of one operating point.
-func (b *Bench) at(r *Rule, role string, p *Point) result {
-	res := result{point: p, margin: math.NaN()}
+// at searches the worst draws of one operating point: of each set, and of each alternative.
+func (b *Bench) at(r *Rule, role string, p *Point) []result {
 	if reason := r.Inapplicable(b.Stage, p.Operating, role); reason != "" {
-		res.outcome, res.reason = finding.NotApplicable, reason
-		return res
+		return []result{{point: p, margin: math.NaN(), outcome: finding.NotApplicable, reason: reason}}
 	}
-	first := true
 	if b.Stopped() {
-		res.outcome = finding.Open
-		return res
+		return []result{{point: p, margin: math.NaN(), outcome: finding.Open}}
 	}
+	var out []result
 	searches := r.Searches(role)
 	for i, f := range searches {
 		for _, w := range corner.SearchSets(p.Spaces, f) {
-			if last := i == len(searches)-1; math.IsInf(w.Value, 1) && (!last || !first) { // an alternative that does not exist here
+			if last := i == len(searches)-1; math.IsInf(w.Value, 1) && (!last || len(out) > 0) { // an alternative that does not exist here
 				continue
 			}
-			next := b.found(r, role, p, w)
-			if b.near(r, &next) { // with directions of its own as well, and polished
-				b.refine(r, role, &next)
-				if own := b.found(r, role, p, w.Space.Search(f)); own.worst.Value != w.Value {
-					b.refine(r, role, &own)
-					if worse(&own, &next) {
-						next = own
-					}
-				}
-			}
-			if first || worse(&next, &res) {
-				res, first = next, false
-			}
+			res := b.found(r, role, p, w)
+			res.search = f
+			out = append(out, res)
 		}
 	}
-	return res
+	return out
+}
+
+// closer looks closer at a result near its guard: it polishes it, and searches its set with directions of its own as well.
+func (b *Bench) closer(r *Rule, role string, res *result) {
+	if res.search == nil || !b.near(r, res) {
+		return
+	}
+	w, f := res.worst, res.search
+	b.refine(r, role, res)
+	if own := b.found(r, role, res.point, w.Space.Search(f)); own.worst.Value != w.Value {
+		b.refine(r, role, &own)
+		if worse(&own, res) {
+			*res = own
+		}
+	}
 }
 
 // found is the result of a search.

@@ -83,16 +83,21 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 		}
 		for _, role := range roles {
 			for _, g := range b.groups(r) {
-				jobs = append(jobs, &job{rule: r, role: role, group: g, results: make([]result, len(g.points))})
+				jobs = append(jobs, &job{rule: r, role: role, group: g, found: make([][]result, len(g.points)), results: make([]result, len(g.points))})
 			}
 		}
 	}
-	b.eachPoint(jobs, func(j *job, k int) {
-		j.results[k] = b.at(j.rule, j.role, &b.Points[j.group.points[k]])
-		if b.EveryPoint {
-			b.refine(j.rule, j.role, &j.results[k])
+	b.eachPoint(jobs, func(j *job, k int) { j.found[k] = b.at(j.rule, j.role, &b.Points[j.group.points[k]]) })
+	b.eachFound(jobs, func(j *job, res *result) { b.closer(j.rule, j.role, res) })
+	for _, j := range jobs {
+		j.reduce()
+	}
+	if b.EveryPoint {
+		b.eachFound(jobs, func(j *job, res *result) { b.refine(j.rule, j.role, res) })
+		for _, j := range jobs {
+			j.reduce()
 		}
-	})
+	}
 	for _, j := range jobs {
 		for i := range j.results {
 			if w := &j.results[i].worst; w.Trace != nil {
@@ -129,10 +134,26 @@ type job struct {
 	rule     *Rule
 	role     string
 	group    group
-	results  []result // of the points of the group
-	best     int      // index of the worst result
+	found    [][]result // of each point, by set and alternative
+	results  []result   // the worst of each point
+	best     int        // index of the worst result
 	finding  finding.Finding
 	panicked bool
+}
+
+// reduce takes the worst of what was found at each point.
+func (j *job) reduce() {
+	for k, found := range j.found {
+		for i := range found {
+			if i == 0 || worse(&found[i], &j.results[k]) {
+				j.results[k] = found[i]
+			}
+		}
+		j.found[k] = j.found[k][:0]
+		if len(found) > 0 {
+			j.found[k] = append(j.found[k], j.results[k])
+		}
+	}
 }
 
 // worst finds the worst result and keeps its index.
@@ -174,21 +195,56 @@ func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
 // eachSpace calls f for every job, side by side for jobs whose worst results lie in different spaces. Which result is the worst is found
 // before any of them is worked on.
 func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
-	var spaces []*corner.Space
-	groups := map[*corner.Space][]*job{}
+	var w work
 	for _, j := range jobs {
-		s := j.worst().worst.Space // nil where nothing was searched
-		if groups[s] == nil {
-			spaces = append(spaces, s)
-		}
-		groups[s] = append(groups[s], j)
+		w.add(j.worst().worst.Space, j, func() { f(j) })
 	}
-	sideBySide(len(spaces), func(i int) {
-		for _, j := range groups[spaces[i]] {
+	b.do(&w)
+}
+
+// eachFound calls f for everything found, side by side where it lies in different spaces.
+func (b *Bench) eachFound(jobs []*job, f func(j *job, res *result)) {
+	var w work
+	for _, j := range jobs {
+		for k := range j.found {
+			for i := range j.found[k] {
+				res := &j.found[k][i]
+				w.add(res.worst.Space, j, func() { f(j, res) })
+			}
+		}
+	}
+	b.do(&w)
+}
+
+// work is what is to be done in each space, in the order in which it was added.
+type work struct {
+	spaces []*corner.Space // nil for what was not searched
+	tasks  map[*corner.Space][]task
+}
+
+type task struct {
+	job *job
+	do  func()
+}
+
+func (w *work) add(s *corner.Space, j *job, do func()) {
+	if w.tasks == nil {
+		w.tasks = map[*corner.Space][]task{}
+	}
+	if w.tasks[s] == nil {
+		w.spaces = append(w.spaces, s)
+	}
+	w.tasks[s] = append(w.tasks[s], task{j, do})
+}
+
+// do carries out work, side by side for different spaces.
+func (b *Bench) do(w *work) {
+	sideBySide(len(w.spaces), func(i int) {
+		for _, t := range w.tasks[w.spaces[i]] {
 			if b.Stopped() {
 				return
 			}
-			b.guarded(j, func() { f(j) })
+			b.guarded(t.job, t.do)
 		}
 	})
 }
