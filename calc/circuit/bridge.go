@@ -3,6 +3,7 @@ package circuit
 import (
 	"math"
 
+	"floatrail/calc/corner"
 	"floatrail/calc/quantity"
 	"floatrail/calc/stage"
 	"floatrail/calc/transient"
@@ -205,6 +206,14 @@ func (c *Circuit) LoopInductance() float64 {
 
 // recovery is the reverse recovery of a position's diode, all parallel devices together. A HEMT has no junction to recover.
 func (c *Circuit) recovery(s *stage.Switch) transient.Recovery {
+	side := 0
+	if s == &c.Stage.LowSide {
+		side = 1
+	}
+	return *corner.Memo(c.Draw, slotRecovery+side, true, &c.kept().recovery[side], func() transient.Recovery { return c.fitRecovery(s) })
+}
+
+func (c *Circuit) fitRecovery(s *stage.Switch) transient.Recovery {
 	r := &s.Reverse
 	if s.Kind == stage.GaNHEMT && !r.RecoveryCharge.Given() {
 		return transient.Recovery{}

@@ -41,6 +41,7 @@ type Circuit struct {
 type events struct {
 	swing       [eventCount]transient.Swing
 	slope       [eventCount]float64
+	recovery    [2]transient.Recovery // of the high side, the low side
 	pumped      Period
 	steady      recharge.Steady
 	pumpedOff   [10]recharge.Interval
@@ -76,8 +77,9 @@ const (
 	slotBudget
 	slotPumped
 	slotPumpedSteady
-	slotSwing // one for each event
-	slotSlope = slotSwing + int(eventCount)
+	slotSwing    // one for each event
+	slotSlope    = slotSwing + int(eventCount)
+	slotRecovery = slotSlope + int(eventCount)
 )
 
 var nan = math.NaN()

@@ -14,6 +14,7 @@ type Bits []uint64
 func newBits(n int) Bits { return make(Bits, (n+63)/64) }
 
 func (b Bits) set(i int)      { b[i>>6] |= 1 << (i & 63) }
+func (b Bits) clear(i int)    { b[i>>6] &^= 1 << (i & 63) }
 func (b Bits) has(i int) bool { return b[i>>6]&(1<<(i&63)) != 0 }
 
 // or adds all of o.

@@ -55,7 +55,17 @@ func below(a, b float64) bool {
 }
 
 // Search finds the worst draw of a space by the directions seen from the typical draw.
-func (s *Space) Search(f Function) Worst {
+func (s *Space) Search(f Function) Worst { return s.search(f, nil) }
+
+// seen is one value of a function at a draw with one input moved; NaN where it cannot be evaluated there.
+type seen struct {
+	end
+	draw  *Draw
+	value float64
+}
+
+// search is Search; what it sees is appended to log, if any.
+func (s *Space) search(f Function, log *[]seen) Worst {
 	d := s.Typical()
 	v, t := Evaluate(d, f)
 	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs))}
@@ -63,13 +73,13 @@ func (s *Space) Search(f Function) Worst {
 		w.Value = math.NaN()
 		return w
 	}
-	seen := newBits(len(s.inputs))
+	done := newBits(len(s.inputs))
 	for {
 		fresh := slices.Clone(w.Trace.used)
 		for i := range fresh {
-			fresh[i] &^= seen[i]
+			fresh[i] &^= done[i]
 		}
-		seen.or(fresh)
+		done.or(fresh)
 		any := false
 		fresh.each(func(id int) {
 			any = true
@@ -85,7 +95,10 @@ func (s *Space) Search(f Function) Worst {
 				w.Trace.Add(t)
 				if !usable(u, t) {
 					w.Partial = true
-					return math.NaN()
+					u = math.NaN()
+				}
+				if log != nil {
+					*log = append(*log, seen{end{id, step}, d, u})
 				}
 				if below(u, best) {
 					best, at = u, step
@@ -135,7 +148,8 @@ func (s *Space) gather(w *Worst, f Function) {
 
 // corner is the draw with inputs at given ends; kept, so that functions with the same worst ends share what models compute there.
 func (s *Space) corner(ends []end) *Draw {
-	x := slices.Clone(s.typ)
+	s.scratch = append(s.scratch[:0], s.typ...)
+	x := s.scratch
 	for _, e := range ends {
 		x[e.id] = s.sample(e.id, e.step)
 	}
@@ -148,45 +162,97 @@ func (s *Space) corner(ends []end) *Draw {
 			return d
 		}
 	}
-	d := s.at(x)
+	d := s.at(slices.Clone(x))
 	s.corners[h] = append(s.corners[h], d)
 	return d
 }
 
-// SearchSets finds the worst draw of each temperature set of one operating point. The directions are found at the room set, or the first
-// where there is none, and carried over to the others: temperature moves ranges, it does not turn the sense in which an input acts. The set
-// that binds is then polished, which moves every input once more there.
-func SearchSets(sets []*Space, f Function) []Worst {
-	out := make([]Worst, len(sets))
-	home := max(0, slices.IndexFunc(sets, func(s *Space) bool { return s.Set.Name == "room" }))
-	for i := range sets {
-		if i == home {
-			out[i] = sets[i].Search(f)
+// Ends finds the smallest and, as that of the negative function, the largest value of a function. Both are seen from the same draws.
+func (s *Space) Ends(f Function) (low, high Worst) {
+	var log []seen
+	low = s.search(f, &log)
+	v := low.Typical
+	high = Worst{Space: s, Value: -low.Typical, Draw: s.Typical(), Typical: -low.Typical, Trace: low.Trace.clone(), Partial: false, turning: slices.Clone(low.turning)}
+	if low.Value != low.Value {
+		high.Value = math.NaN()
+		return low, high
+	}
+	high.Trace.used.each(func(id int) { // what lies beyond an open side counts for the end that gets worse there
+		if q := s.inputs[id]; q.OpenBelow || q.OpenAbove {
+			high.Trace.missing.clear(id)
+			s.beyond(&high, s.Typical(), f.Negative(), -v, id)
+		}
+	})
+	for i := 0; i < len(log); {
+		id, best, at := log[i].id, -v, int8(0)
+		for ; i < len(log) && log[i].id == id; i++ {
+			u := -log[i].value
+			if u != u {
+				high.Partial = true
+			}
+			if below(u, best) {
+				best, at = u, log[i].step
+			}
+			if below(u, high.Value) {
+				high.Value, high.Draw = u, log[i].draw
+			}
+		}
+		if at != 0 {
+			high.ends = append(high.ends, end{id, at})
 		}
 	}
-	ref := &out[home]
+	s.gather(&high, f.Negative())
+	return low, high
+}
+
+// SearchSets finds the worst draw of each temperature set of one operating point. The directions are found at the room set, or the first
+// where there is none, and carried over to the others: temperature moves ranges, it does not turn the sense in which an input acts.
+func SearchSets(sets []*Space, f Function) []Worst {
+	out, home := make([]Worst, len(sets)), homeOf(sets)
+	out[home] = sets[home].Search(f)
 	for i, s := range sets {
-		if i == home {
-			continue
+		if i != home {
+			out[i] = s.carry(&out[home], f)
 		}
-		if ref.Value != ref.Value {
-			out[i] = s.Search(f)
-			continue
-		}
-		d := s.Typical()
-		v, t := Evaluate(d, f)
-		w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: slices.Clone(ref.turning)}
-		switch {
-		case !usable(v, t):
-			w.Value = math.NaN()
-		case ref.Partial || s.moves(ref, t):
-			w = s.Search(f)
-		default:
-			s.gather(&w, f)
-		}
-		out[i] = w
 	}
 	return out
+}
+
+// EndsOfSets is SearchSets for the smallest and the largest value.
+func EndsOfSets(sets []*Space, f Function) (lows, highs []Worst) {
+	home := homeOf(sets)
+	lows, highs = make([]Worst, len(sets)), make([]Worst, len(sets))
+	lows[home], highs[home] = sets[home].Ends(f)
+	for i, s := range sets {
+		if i != home {
+			lows[i], highs[i] = s.carry(&lows[home], f), s.carry(&highs[home], f.Negative())
+		}
+	}
+	return lows, highs
+}
+
+// homeOf is the set at which directions are found.
+func homeOf(sets []*Space) int {
+	return max(0, slices.IndexFunc(sets, func(s *Space) bool { return s.Set.Name == "room" }))
+}
+
+// carry finds the worst draw with the directions found at another set; with its own where those do not serve.
+func (s *Space) carry(ref *Worst, f Function) Worst {
+	if ref.Value != ref.Value {
+		return s.Search(f)
+	}
+	d := s.Typical()
+	v, t := Evaluate(d, f)
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: slices.Clone(ref.turning)}
+	switch {
+	case !usable(v, t):
+		w.Value = math.NaN()
+	case ref.Partial || s.moves(ref, t):
+		return s.Search(f)
+	default:
+		s.gather(&w, f)
+	}
+	return w
 }
 
 // moves tells whether a function reads an input that has a range here but was not moved in a reference search: it had no range there, or was

@@ -53,6 +53,7 @@ type Space struct {
 	probes         map[probe]*Draw
 	corners        map[uint64][]*Draw // by the hash of their numbers
 	spare          []*Draw            // draws that nobody holds
+	scratch        []float64          // where numbers are put together
 	memory         *memory            // shared by the spaces that Replace makes: results do not depend on ranges
 }
 
@@ -207,7 +208,7 @@ func (s *Space) Replace(changes ...Replacement) *Space {
 	for _, c := range changes {
 		o.low[c.ID], o.typ[c.ID], o.high[c.ID] = c.Min, c.Typ, c.Max
 	}
-	o.probes, o.corners, o.spare = map[probe]*Draw{}, map[uint64][]*Draw{}, nil
+	o.probes, o.corners, o.spare, o.scratch = map[probe]*Draw{}, map[uint64][]*Draw{}, nil, nil
 	return &o
 }
 

@@ -31,7 +31,7 @@ func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 		return out
 	}
 	fn := corner.Function(func(d *corner.Draw) float64 { return f(circuit.Of(d)) })
-	lows, highs := corner.SearchSets(p.Spaces, fn), corner.SearchSets(p.Spaces, fn.Negative())
+	lows, highs := corner.EndsOfSets(p.Spaces, fn)
 	for i, s := range p.Spaces {
 		low, high := lows[i], highs[i]
 		for _, w := range []*corner.Worst{&low, &high} {
