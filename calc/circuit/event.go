@@ -85,7 +85,10 @@ func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
 		return true
 	}
 	ripple := 0.0
-	if r.IsComplete() {
+	switch {
+	case op.RippleCurrent.Assumption != nil: // not given: any event may occur
+		ripple = math.Inf(1)
+	case r.IsComplete():
 		ripple = r.Max / 2
 	}
 	switch e {
@@ -145,7 +148,12 @@ func (c *Circuit) currentSlope(e Event) float64 {
 	}
 	slope := c.channelSlope(e)
 	s := c.active(e)
-	if !e.off() || len(s.OutputCapacitance.Items) == 0 {
+	switch {
+	case !e.off():
+		return slope
+	case len(s.OutputCapacitance.Items) == 0:
+		c.Assume(stage.Assumption{Field: s.OutputCapacitance.Field, Assumed: "the channel's slope", Direction: stage.Conservative,
+			Reason: "no output capacitance is given; with it the loop may follow more slowly than the channel"})
 		return slope
 	}
 	return transient.TurnOffSlope(slope, c.Current(e), c.LoopInductance(), c.output(s).At(c.bus()))

@@ -166,7 +166,11 @@ func (c *Circuit) gateLine(bias charge.OffBias) (atZero, perVolt float64) {
 	top := bias.Drive(c.Ceiling())
 	slope, known := g.Slope(top)
 	charge := g.Specified + slope*(top-g.SpecifiedAt) // at the ceiling
-	if !known {                                       // downward from there the smallest credible slope takes the least off
+	if at, ok := c.Has(&c.Stage.HighSide.ChargeSlope); ok && !known {
+		slope, _ = g.Slope(math.Inf(1))
+		slope *= at
+		charge = g.Specified + slope*(top-g.SpecifiedAt)
+	} else if !known { // downward from there the smallest credible slope takes the least off
 		slope, _ = g.Slope(math.Min(top, g.SpecifiedAt))
 	}
 	return charge + slope*(bias.Drive(0)-top), slope

@@ -26,6 +26,8 @@ func (c *Circuit) gateSwing(s *stage.Switch, drive float64) (q, swing float64) {
 	bias := c.OffBias(s)
 	g := c.GateCharge(s)
 	if g.SpecifiedAt != g.SpecifiedAt {
+		c.Assume(stage.Assumption{Field: s.GateChargeVoltage.Field, Assumed: "the drive in use", Direction: stage.Optimistic,
+			Reason: "the gate voltage at which the gate charge was specified is not given"})
 		q = g.Specified
 	} else {
 		q = g.At(drive)

@@ -217,6 +217,12 @@ func (s *Switch) complete() {
 		s.CommutationCharge.assume("any charge", Conservative,
 			"no output capacitance is given; the node may commutate at once or not within the dead time")
 	}
+	s.ChargeSlope = Absent(s.GateSourceCharge.Field, &Declaration{Symbol: "dQ_G/dV", Dimension: quantity.Ratio, Low: 0, High: 1})
+	if s.GateCharge.Given() && s.GateChargeVoltage.Given() && !(s.GateSourceCharge.Given() && s.GateDrainCharge.Given() && s.PlateauVoltage.Given()) {
+		s.ChargeSlope.Triple = Triple{0, 0.5, 1}
+		s.ChargeSlope.assume("a gate charge that is level, to one that grows by the larger of C_iss and Q_G/V", Conservative,
+			"Q_GS, Q_GD and the plateau voltage, which tell how the gate charge moves with the drive, are not all given")
+	}
 }
 
 // freshTime is the time at which ageing begins [s].

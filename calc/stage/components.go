@@ -157,6 +157,9 @@ type Switch struct {
 
 	// CommutationCharge stands for the charge of an output capacitance that nobody gave; made by Complete [C].
 	CommutationCharge Quantity
+	// ChargeSlope stands for the slope of a gate charge that its parts do not give, as a share of the largest credible one; made by
+	// Complete [1].
+	ChargeSlope Quantity
 }
 
 // Count is the number of devices in parallel.
