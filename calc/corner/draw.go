@@ -45,8 +45,26 @@ type Trace struct {
 
 func newTrace(n int) Trace {
 	k := (n + 63) / 64
-	b := make(Bits, 3*k)
-	return Trace{used: b[:k:k], missing: b[k : 2*k : 2*k], shown: b[2*k:]}
+	return traceIn(make(Bits, 3*k), k)
+}
+
+// traceIn makes an empty trace of sets of k words in memory that is clear.
+func traceIn(b Bits, k int) Trace {
+	return Trace{used: b[:k:k], missing: b[k : 2*k : 2*k], shown: b[2*k : 3*k : 3*k]}
+}
+
+// traceWords is the memory that a space takes for traces at once [words].
+const traceWords = 4096
+
+// newTrace makes a trace in memory of the space.
+func (s *Space) newTrace() Trace {
+	k := (len(s.inputs) + 63) / 64
+	if len(s.words) < 3*k {
+		s.words = make(Bits, max(traceWords, 3*k))
+	}
+	t := traceIn(s.words[:3*k:3*k], k)
+	s.words = s.words[3*k:]
+	return t
 }
 
 func (t *Trace) reset() {

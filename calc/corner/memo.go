@@ -87,7 +87,7 @@ func (m *memory) keep(slot int, d *Draw, e *entry) {
 func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 	c := d.memo[slot]
 	if c == nil {
-		c = &cell{trace: newTrace(len(d.x))}
+		c = &cell{trace: d.Space.newTrace()}
 		d.memo[slot] = c
 	}
 	if !c.valid {

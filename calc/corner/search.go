@@ -23,6 +23,8 @@ type Worst struct {
 	Swings  []Swing // made by Polish, largest first
 	// Partial tells that the function could not be evaluated at some draw of the search; Value is the smallest of the others.
 	Partial bool
+	// Carried tells that the directions were found at another set.
+	Carried bool
 
 	ends    []end // where each input stands that was moved from its typical value
 	turning Bits  // inputs in which the function turns between their ends
@@ -243,7 +245,7 @@ func (s *Space) carry(ref *Worst, f Function) Worst {
 	}
 	d := s.Typical()
 	v, t := Evaluate(d, f)
-	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: slices.Clone(ref.turning)}
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: slices.Clone(ref.turning), Carried: true}
 	switch {
 	case !usable(v, t):
 		w.Value = math.NaN()

@@ -54,6 +54,7 @@ type Space struct {
 	corners        map[uint64][]*Draw // by the hash of their numbers
 	spare          []*Draw            // draws that nobody holds
 	scratch        []float64          // where numbers are put together
+	words          Bits               // clear memory for traces
 	memory         *memory            // shared by the spaces that Replace makes: results do not depend on ranges
 }
 
@@ -112,7 +113,7 @@ func (s *Space) Range(q *stage.Quantity) stage.Triple {
 
 // at makes a draw with given numbers, which nobody changes afterwards.
 func (s *Space) at(x []float64) *Draw {
-	return &Draw{Space: s, x: x, trace: newTrace(len(x))}
+	return &Draw{Space: s, x: x, trace: s.newTrace()}
 }
 
 // With makes a draw that differs from another in some inputs.
@@ -208,7 +209,7 @@ func (s *Space) Replace(changes ...Replacement) *Space {
 	for _, c := range changes {
 		o.low[c.ID], o.typ[c.ID], o.high[c.ID] = c.Min, c.Typ, c.Max
 	}
-	o.probes, o.corners, o.spare, o.scratch = map[probe]*Draw{}, map[uint64][]*Draw{}, nil, nil
+	o.probes, o.corners, o.spare, o.scratch, o.words = map[probe]*Draw{}, map[uint64][]*Draw{}, nil, nil, nil
 	return &o
 }
 

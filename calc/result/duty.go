@@ -23,8 +23,9 @@ func DutyLimits(b *rule.Bench) *finding.DutyLimits {
 		return out
 	}
 	out.Points = make([]finding.DutyPoint, len(b.Points))
-	b.SideBySide(func(i int) { out.Points[i] = dutyPoint(b, &b.Points[i]) })
-	out.Precharge = precharge(b)
+	first := make([]finding.Precharge, len(b.Points))
+	b.SideBySide(func(i int) { out.Points[i], first[i] = dutyPoint(b, &b.Points[i]), precharge(b, &b.Points[i]) })
+	out.Precharge = overPoints(first)
 	return out
 }
 

@@ -90,34 +90,43 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 	return out
 }
 
-// precharge gives the first charge. It does not depend on the mode: its ends are those over all operating points.
-func precharge(b *rule.Bench) *finding.Precharge {
-	out := &finding.Precharge{}
-	over := func(of rule.Number, d quantity.Dimension) finding.Span {
-		all := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
-		for i := range b.Points {
-			s := b.Range(&b.Points[i], of, d).Span
-			if s.Typ != s.Typ {
-				return finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
-			}
-			if i == 0 {
-				all = s
-				continue
-			}
-			all.Min, all.Max = math.Min(all.Min, s.Min), math.Max(all.Max, s.Max)
-		}
-		return all
+// precharge gives the first charge as one operating point sees it.
+func precharge(b *rule.Bench, p *rule.Point) finding.Precharge {
+	span := func(of rule.Number, d quantity.Dimension) finding.Span { return b.Range(p, of, d).Span }
+	out := finding.Precharge{
+		Time:           span(func(c *circuit.Circuit) float64 { return c.PrechargeTime() }, quantity.Time),
+		PeakCurrent:    span(func(c *circuit.Circuit) float64 { return c.FirstPeak() }, quantity.Current),
+		ResistorEnergy: span(func(c *circuit.Circuit) float64 { return c.FirstEnergy() }, quantity.Energy),
+		ReservoirLow:   span(func(c *circuit.Circuit) float64 { return c.ReservoirLow() }, quantity.Voltage),
+		SettledVoltage: span(func(c *circuit.Circuit) float64 { return c.FirstSettled() }, quantity.Voltage),
 	}
-	out.Time = over(func(c *circuit.Circuit) float64 { return c.PrechargeTime() }, quantity.Time)
-	out.PeakCurrent = over(func(c *circuit.Circuit) float64 { return c.FirstPeak() }, quantity.Current)
-	out.ResistorEnergy = over(func(c *circuit.Circuit) float64 { return c.FirstEnergy() }, quantity.Energy)
-	out.ReservoirLow = over(func(c *circuit.Circuit) float64 { return c.ReservoirLow() }, quantity.Voltage)
-	out.SettledVoltage = over(func(c *circuit.Circuit) float64 { return c.FirstSettled() }, quantity.Voltage)
-	if pulses := over(func(c *circuit.Circuit) float64 {
-		_, n := c.FirstChargeTime()
-		return float64(n)
-	}, quantity.Count); pulses.Max > 0 && pulses.Max < math.MaxInt32 {
-		out.Pulses = int(pulses.Max)
+	if s := &b.Stage.Startup; s.PulseWidth.Given() || s.PulsePeriod.Given() {
+		if n := span(func(c *circuit.Circuit) float64 {
+			_, n := c.FirstChargeTime()
+			return float64(n)
+		}, quantity.Count).Max; n > 0 && n < math.MaxInt32 {
+			out.Pulses = int(n)
+		}
 	}
 	return out
+}
+
+// overPoints joins the first charge of all operating points: it does not depend on the mode, but on the temperatures. What one point does not
+// know nobody knows.
+func overPoints(points []finding.Precharge) *finding.Precharge {
+	out := points[0]
+	join := func(a, b *finding.Span) {
+		a.Min, a.Max = math.Min(a.Min, b.Min), math.Max(a.Max, b.Max) // NaN stays NaN
+		a.Typ += 0 * b.Typ
+	}
+	for i := range points[1:] {
+		p := &points[i+1]
+		join(&out.Time, &p.Time)
+		join(&out.PeakCurrent, &p.PeakCurrent)
+		join(&out.ResistorEnergy, &p.ResistorEnergy)
+		join(&out.ReservoirLow, &p.ReservoirLow)
+		join(&out.SettledVoltage, &p.SettledVoltage)
+		out.Pulses = max(out.Pulses, p.Pulses)
+	}
+	return &out
 }

@@ -123,6 +123,9 @@ func (b *Bench) closer(r *Rule, role string, res *result) {
 	}
 	w, f := res.worst, res.search
 	b.refine(r, role, res)
+	if !w.Carried {
+		return
+	}
 	if own := b.found(r, role, res.point, w.Space.Search(f)); own.worst.Value != w.Value {
 		b.refine(r, role, &own)
 		if worse(&own, res) {
