@@ -75,11 +75,8 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 			out.Findings[i].Points = nil
 		}
 	}
-	if parts&WithDutyLimits != 0 && ctx.Err() == nil {
-		out.DutyLimits = result.DutyLimits(bench)
-	}
-	if parts&WithTransient != 0 && ctx.Err() == nil {
-		out.Transient = result.Transient(bench)
+	if ctx.Err() == nil {
+		out.DutyLimits, out.Transient = result.OfPoints(bench, parts&WithDutyLimits != 0, parts&WithTransient != 0)
 	}
 	if parts&WithSizing != 0 && ctx.Err() == nil {
 		out.Sizing = result.Sizing(bench, trial, &policy)

@@ -25,6 +25,7 @@ var gateClampWindow = &rule.Rule{
 	Limit:    "standing off: the clamp's smallest voltage; protecting: the smaller rating of driver and gate, and the clamp's power",
 	Guard:    "10 % below the limit; 50 % of the power", Applies: "stages with a clamp",
 	Needs:   []string{"bootstrap.clamp", "gateSupply.voltage", "driver.floatingVoltageMax", "highSide.gateVoltageMax"},
+	Events:  true,
 	Sources: []string{"snvaa94", "common-practice"},
 	Fail:    stage.Major, Marginal: stage.Minor, Open: stage.Major,
 	Quantity: "Voltage that the clamp must let pass or hold", Against: "clamp or rating", Dimension: quantity.Voltage, Sense: rule.AtMost,

@@ -16,6 +16,7 @@ var gateDamping = &rule.Rule{
 	Limit:    "0.5", Guard: "10 % above the limit", Applies: "positions with a gate",
 	Needs: []string{"highSide.gateLoopInductance", "lowSide.gateLoopInductance", "highSide.inputCapacitance", "lowSide.inputCapacitance",
 		"highSide.gateOn", "highSide.gateOff", "lowSide.gateOn", "lowSide.gateOff"},
+	Events:  true,
 	Sources: []string{"slup169", "textbook"},
 	Fail:    stage.Minor, Marginal: stage.Note, Open: stage.Minor,
 	Quantity: "Damping of the gate loop", Against: "least damping", Dimension: quantity.Ratio, Sense: rule.AtLeast,

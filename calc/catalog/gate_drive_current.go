@@ -15,6 +15,7 @@ var gateDriveCurrent = &rule.Rule{
 	Limit:    "peak source current at turn-on, peak sink current at turn-off, smallest", Guard: "10 % below the limit", Applies: "positions with a gate",
 	Needs: []string{"driver.peakSourceCurrent", "driver.peakSinkCurrent", "highSide.gateOn", "highSide.gateOff", "highSide.internalGateResistance",
 		"lowSide.gateOn", "lowSide.gateOff", "lowSide.internalGateResistance", "gateSupply.voltage"},
+	Events:  true,
 	Sources: []string{"sluscj9", "an6076"},
 	Fail:    stage.Minor, Marginal: stage.Note, Open: stage.Minor,
 	Quantity: "Peak gate current", Against: "the driver's peak current", Dimension: quantity.Current, Sense: rule.AtMost,

@@ -19,6 +19,7 @@ var gateMillerHigh = &rule.Rule{
 		"highSide.reverseTransferCapacitance", "highSide.gateOff", "highSide.internalGateResistance", "driver.pullDownResistance",
 		"driver.passivePullDown", "highSide.gatePullDown", "startup.prebias", "layout.measured.turnOnVoltageSlope", "operatingPoints.busVoltage",
 		"highSide.reverse.recoveryCharge", "layout.highSideCommonSource"},
+	Events:  true,
 	Sources: []string{"slup169", "an6076", "lauritzen-ma-1991", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Gate voltage induced in the high side", Against: "smallest threshold", Dimension: quantity.Voltage, Sense: rule.AtMost,

@@ -13,6 +13,7 @@ var gateNegative = &rule.Rule{
 	Limit:    "absolute minimum of the gate voltage", Guard: "10 % above the limit", Applies: "positions with a gate",
 	Needs: []string{"highSide.gateVoltageMin", "lowSide.gateVoltageMin", "highSide.offBias", "lowSide.offBias", "lowSide.reverseTransferCapacitance",
 		"lowSide.gateOff", "layout.lowSideCommonSource", "layout.highSideCommonSource"},
+	Events:  true,
 	Sources: []string{"slup169", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Lowest gate voltage", Against: "absolute minimum", Dimension: quantity.Voltage, Sense: rule.AtLeast,

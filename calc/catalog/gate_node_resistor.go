@@ -13,6 +13,7 @@ var gateNodeResistor = &rule.Rule{
 	Limit:    "smallest threshold at the junction temperature", Guard: "80 % of the limit", Applies: "stages with a resistor in the V_S line",
 	Needs: []string{"layout.nodeResistor", "highSide.thresholdVoltage", "highSide.thresholdTemperatureCoefficient", "bootstrap.resistor",
 		"bootstrap.diode.forwardPoints", "gateSupply.voltage", "layout.lowSideInductance"},
+	Events:  true,
 	Sources: []string{"sluscj9", "slup169", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Gate voltage of the high side while it is off", Against: "smallest threshold", Dimension: quantity.Voltage, Sense: rule.AtMost,

@@ -19,6 +19,7 @@ var nodeOperationalRange = &rule.Rule{
 	Limit:    "lowest V_S, or V_B to COM, at which the driver still obeys", Guard: "10 % above the limit", Applies: "every operating point",
 	Needs: []string{"driver.nodeOperationalMin", "driver.railOperationalMin", "driver.uvloFalling", "lowSide.reverse.forwardPoints",
 		"operatingPoints.loadCurrent"},
+	Events:  true,
 	Sources: []string{"lmg1210", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Lowest voltage at a command", Against: "operational minimum", Dimension: quantity.Voltage, Sense: rule.AtLeast,

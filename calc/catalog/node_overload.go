@@ -12,6 +12,7 @@ var nodeOverload = &rule.Rule{
 	Equation: "number of operating points that are marked overload",
 	Limit:    "at least one", Guard: "as the limit", Applies: "every stage",
 	Needs:   []string{"operatingPoints.overload"},
+	Events:  true,
 	Sources: []string{"common-practice"},
 	Open:    stage.Major, Never: "an operating point that nobody gave cannot be judged",
 	Quantity: "Operating points for overload", Against: "needed", Dimension: quantity.Count, Sense: rule.AtLeast,

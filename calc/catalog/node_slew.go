@@ -19,6 +19,7 @@ var nodeSlew = &rule.Rule{
 	Needs: []string{"driver.slewMax", "layout.measured.turnOnVoltageSlope", "layout.measured.turnOffVoltageSlope", "highSide.gateOn",
 		"highSide.gateOff", "highSide.thresholdVoltage", "highSide.transconductance", "highSide.reverseTransferCapacitance", "highSide.outputCapacitance",
 		"lowSide.outputCapacitance", "operatingPoints.busVoltage"},
+	Events:  true,
 	Sources: []string{"an6076", "slup169", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Peak slew of the node", Against: "rated slew", Dimension: quantity.VoltageSlew, Sense: rule.AtMost,

@@ -13,6 +13,7 @@ var nodeUndershootStatic = &rule.Rule{
 	Limit:    "deepest row of the driver's table that lasts as long", Guard: "10 % above the limit", Applies: "every operating point",
 	Needs: []string{"driver.nodeUndershoot", "lowSide.reverse.forwardPoints", "lowSide.kind", "operatingPoints.loadCurrent",
 		"operatingPoints.deadTime", "lowSide.onResistance", "layout.shunt"},
+	Events:  true,
 	Sources: []string{"lmg1210", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Plateau of the node", Against: "permitted for its length", Dimension: quantity.Voltage, Sense: rule.AtLeast,

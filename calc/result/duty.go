@@ -16,17 +16,32 @@ import (
 	"floatrail/calc/stage"
 )
 
-// DutyLimits gives the floating voltage and the derived limits of every operating point.
-func DutyLimits(b *rule.Bench) *finding.DutyLimits {
-	out := &finding.DutyLimits{}
-	if b.Points[0].Operating == nil {
-		return out
+// OfPoints gives what is known of each operating point: the floating voltages with their derived limits, and the switching events, as asked for.
+func OfPoints(b *rule.Bench, dutyLimits, transient bool) (*finding.DutyLimits, *finding.TransientStress) {
+	duty, stress := &finding.DutyLimits{}, &finding.TransientStress{}
+	if n := len(b.Points); b.Points[0].Operating != nil {
+		first, events := make([]finding.Precharge, n), make([][]finding.TransientEvent, n)
+		duty.Points = make([]finding.DutyPoint, n)
+		rule.SideBySide(2*n, func(i int) {
+			switch p := &b.Points[i/2]; {
+			case i%2 == 0 && dutyLimits:
+				duty.Points[i/2], first[i/2] = dutyPoint(b, p), precharge(b, p)
+			case i%2 == 1 && transient:
+				events[i/2] = eventsOf(b, &rule.Point{Operating: p.Operating, Spaces: p.Events})
+			}
+		})
+		duty.Precharge = overPoints(first)
+		for _, e := range events {
+			stress.Events = append(stress.Events, e...)
+		}
 	}
-	out.Points = make([]finding.DutyPoint, len(b.Points))
-	first := make([]finding.Precharge, len(b.Points))
-	b.SideBySide(func(i int) { out.Points[i], first[i] = dutyPoint(b, &b.Points[i]), precharge(b, &b.Points[i]) })
-	out.Precharge = overPoints(first)
-	return out
+	if !dutyLimits {
+		duty = nil
+	}
+	if !transient {
+		stress = nil
+	}
+	return duty, stress
 }
 
 func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {

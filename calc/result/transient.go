@@ -10,23 +10,12 @@ import (
 	"floatrail/calc/stage"
 )
 
-// Transient gives the switching events of every operating point, as closed forms estimate them.
-func Transient(b *rule.Bench) *finding.TransientStress {
-	points := make([][]finding.TransientEvent, len(b.Points))
-	b.SideBySide(func(i int) {
-		p := &b.Points[i]
-		if p.Operating == nil {
-			return
+// eventsOf gives the switching events of one operating point, as closed forms estimate them.
+func eventsOf(b *rule.Bench, p *rule.Point) (out []finding.TransientEvent) {
+	for _, e := range circuit.Events() {
+		if circuit.Occurs(b.Stage, p.Operating, e) && !b.Stopped() {
+			out = append(out, event(b, p, e))
 		}
-		for _, e := range circuit.Events() {
-			if circuit.Occurs(b.Stage, p.Operating, e) && !b.Stopped() {
-				points[i] = append(points[i], event(b, p, e))
-			}
-		}
-	})
-	out := &finding.TransientStress{}
-	for _, p := range points {
-		out.Events = append(out.Events, p...)
 	}
 	return out
 }

@@ -104,7 +104,7 @@ func (b *Bench) at(r *Rule, role string, p *Point) []result {
 	var out []result
 	searches := r.Searches(role)
 	for i, f := range searches {
-		for _, w := range corner.SearchSets(p.Spaces, f) {
+		for _, w := range corner.SearchSets(p.spaces(r), f) {
 			if last := i == len(searches)-1; math.IsInf(w.Value, 1) && (!last || len(out) > 0) { // an alternative that does not exist here
 				continue
 			}

@@ -52,6 +52,7 @@ type Rule struct {
 	Dimension quantity.Dimension
 	Sense     Sense
 	Roles     []string // paths of the parts judged, relative to the stage; none: the stage itself
+	Events    bool     // asks about switching events
 	Stagewide bool     // does not depend on the kind of mode: one finding for all operating points
 
 	// Inapplicable tells why the rule has nothing to judge; empty where it applies. The operating point may be nil.

@@ -25,10 +25,20 @@ type Bench struct {
 	assumed []stage.Assumption
 }
 
-// Point is one operating point with its spaces. The stage without any operating point has one Point without Operating.
+// Point is one operating point with its spaces. What asks about switching events has spaces of its own, so that both can be worked on side by
+// side. The stage without any operating point has one Point without Operating.
 type Point struct {
 	Operating *stage.OperatingPoint
 	Spaces    []*corner.Space
+	Events    []*corner.Space // of the same sets
+}
+
+// spaces are those that a rule is searched in.
+func (p *Point) spaces(r *Rule) []*corner.Space {
+	if r.Events {
+		return p.Events
+	}
+	return p.Spaces
 }
 
 // Name of the operating point.
@@ -54,13 +64,14 @@ func NewBench(s *stage.Stage, p *stage.Policy) *Bench {
 		op := &s.OperatingPoints.Items[i]
 		pt := Point{Operating: op}
 		for _, set := range corner.Sets(op) {
-			pt.Spaces = append(pt.Spaces, corner.NewSpace(s, p, op, set))
+			pt.Spaces, pt.Events = append(pt.Spaces, corner.NewSpace(s, p, op, set)), append(pt.Events, corner.NewSpace(s, p, op, set))
 		}
 		b.Points = append(b.Points, pt)
 	}
 	if len(b.Points) == 0 {
 		set := corner.Set{Name: "room", Junction: stage.ReferenceTemperature, Ambient: stage.ReferenceTemperature}
-		b.Points = []Point{{Spaces: []*corner.Space{corner.NewSpace(s, p, nil, set)}}}
+		one := func() []*corner.Space { return []*corner.Space{corner.NewSpace(s, p, nil, set)} }
+		b.Points = []Point{{Spaces: one(), Events: one()}}
 	}
 	return b
 }
@@ -178,14 +189,14 @@ func (b *Bench) settle(j *job) {
 	}
 }
 
-// eachPoint calls f for every job and point of its group, side by side for different points.
+// eachPoint calls f for every job and point of its group, side by side for different points, and for rules about events and others.
 func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
-	b.SideBySide(func(i int) {
+	SideBySide(2*len(b.Points), func(i int) {
 		for _, j := range jobs {
 			if b.Stopped() {
 				return
 			}
-			if k := slices.Index(j.group.points, i); k >= 0 {
+			if k := slices.Index(j.group.points, i/2); k >= 0 && j.rule.Events == (i%2 == 1) {
 				b.guarded(j, func() { f(j, k) })
 			}
 		}
@@ -239,7 +250,7 @@ func (w *work) add(s *corner.Space, j *job, do func()) {
 
 // do carries out work, side by side for different spaces.
 func (b *Bench) do(w *work) {
-	sideBySide(len(w.spaces), func(i int) {
+	SideBySide(len(w.spaces), func(i int) {
 		for _, t := range w.tasks[w.spaces[i]] {
 			if b.Stopped() {
 				return
@@ -261,11 +272,8 @@ func (b *Bench) guarded(j *job, f func()) {
 	f()
 }
 
-// SideBySide calls f with the index of every operating point, as many at once as there are processors.
-func (b *Bench) SideBySide(f func(point int)) { sideBySide(len(b.Points), f) }
-
-// sideBySide calls f with the numbers below n.
-func sideBySide(n int, f func(i int)) {
+// SideBySide calls f with the numbers below n, as many at once as there are processors.
+func SideBySide(n int, f func(i int)) {
 	var wg sync.WaitGroup
 	var next atomic.Int64
 	for range min(runtime.GOMAXPROCS(0), n) {
