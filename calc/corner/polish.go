@@ -104,16 +104,11 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 		try(s.low[id])
 		try(s.high[id])
 		if s.interior.has(id) && !w.turning.has(id) { // it may turn here although it does not at the typical draw
-			worse := func(step int8) (yes bool) {
-				s.Try(w.Draw, func(d *Draw) {
-					u, t := Evaluate(d, f)
-					yes = usable(u, t) && below(u, w.Value)
-				}, Change{id, s.sample(id, step)})
-				return yes
-			}
-			if worse(lookLow) || worse(lookHigh) {
-				w.turning.set(id)
-			}
+			s.Try(w.Draw, func(d *Draw) {
+				if u, t := Evaluate(d, f); usable(u, t) && below(u, w.Value) {
+					w.turning.set(id)
+				}
+			}, Change{id, s.sample(id, middle)})
 		}
 		if w.turning.has(id) {
 			for k := int8(firstInterior); k < firstInterior+interiorSamples; k++ {

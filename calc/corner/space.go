@@ -200,6 +200,7 @@ const (
 	interiorSamples = 9
 	lookLow         = 5
 	lookHigh        = 9
+	middle          = firstInterior + interiorSamples/2
 )
 
 // Replace is the space with other ranges of some inputs.
