@@ -51,11 +51,6 @@ func largest(c *circuit.Circuit, events []circuit.Event, f func(circuit.Event) f
 	return v
 }
 
-// smallest is the smallest of a number over events.
-func smallest(c *circuit.Circuit, events []circuit.Event, f func(circuit.Event) float64) float64 {
-	return -largest(c, events, func(e circuit.Event) float64 { return -f(e) })
-}
-
 // each makes one alternative of every event: a margin that is +Inf where the event cannot occur.
 func each(events []circuit.Event, margin func(c *circuit.Circuit, role string, e circuit.Event) float64) []func(*circuit.Circuit, string) float64 {
 	out := make([]func(*circuit.Circuit, string) float64, len(events))
@@ -75,7 +70,6 @@ var (
 	everyEvent = []circuit.Event{circuit.TurnOff, circuit.TurnOn, circuit.SinkingTurnOff, circuit.SinkingTurnOn}
 	falling    = []circuit.Event{circuit.TurnOff, circuit.SinkingTurnOn}
 	rising     = []circuit.Event{circuit.TurnOn, circuit.SinkingTurnOff}
-	turnOffs   = []circuit.Event{circuit.TurnOff, circuit.SinkingTurnOff}
 )
 
 // noEdge is why a rule about events has nothing to judge.

@@ -164,11 +164,11 @@ func (c *Circuit) channelSlope(e Event) float64 {
 	s, i := c.active(e), c.Current(e)
 	w := c.channel(s)
 	w.InputCapacitance, w.CommonSource = s.Count()*c.Need(&s.InputCapacitance), c.knownCommonSource(s)
-	if g := c.drive(s, !e.off(), true); !e.off() {
-		return transient.CurrentRise(i, &w, g)
-	} else {
+	g := c.drive(s, !e.off(), true)
+	if e.off() {
 		return transient.CurrentFall(i, &w, g)
 	}
+	return transient.CurrentRise(i, &w, g)
 }
 
 // knownCommonSource is commonSource where it slows an edge: not given it counts as none.

@@ -38,23 +38,21 @@ func (c *Circuit) gateSwing(s *stage.Switch, drive float64) (q, swing float64) {
 	return q * s.Count(), drive - bias.Voltage
 }
 
-// gateLoss is the gate loss of a position and the driver's share of it [W].
-func (c *Circuit) gateLoss(s *stage.Switch) (all, driver float64) {
+// gateLoss is the driver's share of the gate loss of a position [W].
+func (c *Circuit) gateLoss(s *stage.Switch) float64 {
 	if s.Kind == stage.DiodeOnly {
-		return 0, 0
+		return 0
 	}
 	q, v := c.gateSwing(s, c.driveVoltage(s))
-	all = loss.Gate(q, v, c.frequency())
 	on, off := c.driverResistance(true, false), c.driverResistance(false, false)
-	return all, loss.DriverGate(q, v, c.frequency(), on, off, c.resistorsOf(s, true), c.resistorsOf(s, false))
+	return loss.DriverGate(q, v, c.frequency(), on, off, c.resistorsOf(s, true), c.resistorsOf(s, false))
 }
 
 // DriverPower is the power that the driver dissipates [W]: its share of the gate losses, level shift, leakage and quiescent currents, and an
 // integrated element's own.
 func (c *Circuit) DriverPower() float64 {
 	d, vbs := &c.Stage.Driver, c.Ceiling()
-	_, high := c.gateLoss(&c.Stage.HighSide)
-	_, low := c.gateLoss(&c.Stage.LowSide)
+	high, low := c.gateLoss(&c.Stage.HighSide), c.gateLoss(&c.Stage.LowSide)
 	bus, f := c.bus(), c.frequency()
 	p := high + low + loss.LevelShift(bus, vbs, c.Need(&d.LevelShiftCharge), f) + loss.Leakage(bus, c.Need(&d.OffsetLeakage)) +
 		loss.Quiescent(c.Supply(), c.Need(&d.QuiescentCurrent), vbs, c.Need(&d.FloatingQuiescentCurrent))

@@ -9,6 +9,8 @@
 //	same        the same request gives the same report, whatever the order of its parts and operating points
 //	derive      derived limits turn where they say; spaces that rules share change no number
 //	catalogue   every rule passes, is marginal, is open and fails on some stage
+//	critical    of a sound stage one parameter makes each CRITICAL rule fail, and without its data it does not pass
+//	sound       well-designed stages raise no false alarm
 //	outcomes    the table of outcomes over the corpus
 //	sizing      the parts that sizing recommends pass the review
 package property

@@ -23,6 +23,10 @@ func TestOutcomesOfTheCorpus(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	sound, err := filepath.Glob(filepath.Join(stages, "..", "sound", "*.json"))
+	if err != nil || len(sound) == 0 {
+		t.Fatal("no sound stages", err)
+	}
 	counts := map[string]map[finding.Outcome]int{}
 	count := func(tree any) {
 		for f, v := range judge(t, bind(t, tree), catalog.All()).binding {
@@ -39,9 +43,17 @@ func TestOutcomesOfTheCorpus(t *testing.T) {
 			number++
 		}
 	}
+	for _, file := range sound {
+		raw, err := os.ReadFile(file)
+		if err != nil {
+			t.Fatal(err)
+		}
+		count(decode(t, raw))
+		number++
+	}
 	count(strained(t))
 	var text strings.Builder
-	fmt.Fprintf(&text, "Findings by rule and outcome over %d stages of this folder and buck48 strained by the property tests.\n\n", number)
+	fmt.Fprintf(&text, "Findings by rule and outcome over %d stages, those of this folder and of sound, and buck48 strained by the property tests.\n\n", number)
 	w := tabwriter.NewWriter(&text, 0, 0, 2, ' ', tabwriter.AlignRight)
 	columns := []finding.Outcome{finding.Pass, finding.Marginal, finding.Fail, finding.Open, finding.NotApplicable}
 	fmt.Fprint(w, "\t")

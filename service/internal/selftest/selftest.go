@@ -1,12 +1,15 @@
-// Package selftest reviews a small stage whose numbers are known from a closed form, along the way that every request takes: body, binding,
+// Package selftest reviews small stages whose numbers are known from closed forms, along the way that every request takes: body, binding,
 // models, rules, answer. A service that does not find them is not ready.
 package selftest
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 	"time"
+
+	"google.golang.org/protobuf/proto"
 
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/service/internal/rpc"
@@ -38,24 +41,64 @@ const body = `{
   }
 }`
 
+// The undershoot of a node from which 30 A move at 1 A/ns through 10 nH into a diode of 1.2 V: -(V_F + L2·di/dt) = -11.2 V.
+const undershoot = -(1.2 + 10e-9*1e9)
+
+const fastBody = `{
+  "stage": {
+    "id": "self-test", "highSide": {"kind": "SI_MOSFET"},
+    "lowSide": {"kind": "SI_MOSFET", "reverse": {"forwardPoints": [
+      {"current": "1 A", "voltage": {"min": "1.2 V", "typ": "1.2 V", "max": "1.2 V"}}, {"current": "50 A", "voltage": {"min": "1.2000001 V", "typ": "1.2000001 V", "max": "1.2000001 V"}}], "peakForwardRecovery": {"typ": "0 V"}}},
+    "layout": {"lowSideInductance": {"min": "10 nH", "typ": "10 nH", "max": "10 nH"}, "shunt": {"resistance": {"typ": "0R"}}, "nodeClamp": {"fit": "NOT_FITTED"},
+      "measured": {"turnOffCurrentSlope": {"typ": "1 A/ns"}}},
+    "operatingPoints": [{"name": "fast", "loadCurrent": {"typ": "30 A"}, "rippleCurrent": {"typ": "0 A"},
+      "junctionTemperature": {"typ": "25 degC"}, "ambientTemperature": {"typ": "25 degC"}, "heldOn": {"duration": {"typ": "1 ms"}}}]
+  }
+}`
+
 // patience is the time within which the answer must come.
 const patience = 5 * time.Second
 
 // Run runs the self-test.
 func Run() error {
-	var request pb.CheckDutyLimitsRequest
-	var report wire.Report
-	wire.NewDecoder().Decode([]byte(body), &request, &report)
-	if len(report.Faults) > 0 {
-		return fmt.Errorf("selftest: the body is refused: %v", report.Faults)
-	}
 	ctx, cancel := context.WithTimeout(context.Background(), patience)
 	defer cancel()
-	answer, err := rpc.New(rpc.Options{Version: "self-test"}).CheckDutyLimits(ctx, &request)
+	handlers := rpc.New(rpc.Options{Version: "self-test"})
+	var held pb.CheckDutyLimitsRequest
+	var fast pb.CheckTransientStressRequest
+	for text, request := range map[string]proto.Message{body: &held, fastBody: &fast} {
+		var report wire.Report
+		wire.NewDecoder().Decode([]byte(text), request, &report)
+		if len(report.Faults) > 0 {
+			return fmt.Errorf("selftest: the body is refused: %v", report.Faults)
+		}
+	}
+	answer, err := handlers.CheckDutyLimits(ctx, &held)
 	if err != nil {
 		return fmt.Errorf("selftest: %w", err)
 	}
-	return verify(answer)
+	if err := verify(answer); err != nil {
+		return err
+	}
+	stress, err := handlers.CheckTransientStress(ctx, &fast)
+	if err != nil {
+		return fmt.Errorf("selftest: %w", err)
+	}
+	return verifyUndershoot(stress)
+}
+
+// verifyUndershoot compares an answer with the closed form.
+func verifyUndershoot(answer *pb.CheckTransientStressResponse) error {
+	for _, e := range answer.GetTransientStress().GetEvents() {
+		if e.GetEvent() != pb.TransientEvent_Event_TURN_OFF {
+			continue
+		}
+		if got := e.GetNodeMin().GetMin(); !near(got.GetValue(), undershoot) {
+			return fmt.Errorf("selftest: undershoot is %q, want %.4g V", got.GetText(), undershoot)
+		}
+		return nil
+	}
+	return errors.New("selftest: the undershoot was not evaluated")
 }
 
 // verify compares an answer with the closed form.

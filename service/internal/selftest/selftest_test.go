@@ -15,6 +15,24 @@ func TestRun(t *testing.T) {
 	}
 }
 
+func TestVerifyUndershootRefusesOtherNumbers(t *testing.T) {
+	answer := func(event pb.TransientEvent_Event_Value, volts float64) *pb.CheckTransientStressResponse {
+		return &pb.CheckTransientStressResponse{TransientStress: &pb.TransientStressResult{Events: []*pb.TransientEvent{
+			{Event: event, NodeMin: &pb.Span{Min: &pb.Measure{Value: proto.Float64(volts)}}}}}}
+	}
+	if err := verifyUndershoot(answer(pb.TransientEvent_Event_TURN_OFF, -11.2)); err != nil {
+		t.Error(err)
+	}
+	for want, a := range map[string]*pb.CheckTransientStressResponse{
+		"undershoot is":     answer(pb.TransientEvent_Event_TURN_OFF, -11.3),
+		"was not evaluated": answer(pb.TransientEvent_Event_TURN_ON, -11.2),
+	} {
+		if err := verifyUndershoot(a); err == nil || !strings.Contains(err.Error(), want) {
+			t.Errorf("%v, want %q", err, want)
+		}
+	}
+}
+
 func TestVerifyRefusesOtherNumbers(t *testing.T) {
 	answer := func(volts float64, outcome pb.Outcome_Value, margin float64) *pb.CheckDutyLimitsResponse {
 		return &pb.CheckDutyLimitsResponse{
