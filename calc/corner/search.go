@@ -26,6 +26,7 @@ type Worst struct {
 	// Carried tells that the directions were found at another set.
 	Carried bool
 
+	hidden  bool  // an input with a range was not read at the typical draw: its direction is not seen from there
 	ends    []end // where each input stands that was moved from its typical value
 	turning Bits  // inputs in which the function turns between their ends
 }
@@ -76,7 +77,7 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 		return w
 	}
 	done := newBits(len(s.inputs))
-	for {
+	for pass := 0; ; pass++ {
 		fresh := slices.Clone(w.Trace.used)
 		for i := range fresh {
 			fresh[i] &^= done[i]
@@ -89,6 +90,7 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 			if !(s.low[id] < s.high[id]) {
 				return
 			}
+			w.hidden = w.hidden || pass > 0
 			best, at := v, int8(0)
 			try := func(step int8) float64 {
 				p := s.sample(id, step)
@@ -131,6 +133,9 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 		}
 	}
 	s.gather(&w, f)
+	if w.hidden {
+		s.Polish(&w, f)
+	}
 	return w
 }
 
@@ -204,6 +209,9 @@ func (s *Space) Ends(f Function) (low, high Worst) {
 		}
 	}
 	s.gather(&high, f.Negative())
+	if high.hidden = low.hidden; high.hidden {
+		s.Polish(&high, f.Negative())
+	}
 	return low, high
 }
 
@@ -253,6 +261,9 @@ func (s *Space) carry(ref *Worst, f Function) Worst {
 		return s.Search(f)
 	default:
 		s.gather(&w, f)
+		if w.hidden = ref.hidden; w.hidden {
+			s.Polish(&w, f)
+		}
 	}
 	return w
 }

@@ -45,7 +45,7 @@ func TestSearch(t *testing.T) {
 				return a - d.Need(b.b)
 			}
 			return 50
-		}, 50, 1 - 20, 1 - 30},
+		}, 50, 1 - 30, 1 - 30},
 		// At the typical draw a larger c is better, where a is largest it is worse.
 		{"coupling seen only at the corner", func(b *bench, d *corner.Draw) float64 {
 			return -10*d.Need(b.a) - (d.Need(b.a)-3)*d.Need(b.c)

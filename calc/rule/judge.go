@@ -104,8 +104,14 @@ func (b *Bench) at(r *Rule, role string, p *Point) []result {
 	var out []result
 	searches := r.Searches(role)
 	for i, f := range searches {
+		nothing := i == len(searches)-1 && len(out) == 0 // of no alternative that exists: the check itself at every set
+		if nothing && len(r.Alternatives) > 0 {
+			if ws := corner.SearchSets(p.spaces(r), f); math.IsInf(ws[0].Value, 1) {
+				f = r.function(role)
+			}
+		}
 		for _, w := range corner.SearchSets(p.spaces(r), f) {
-			if last := i == len(searches)-1; math.IsInf(w.Value, 1) && (!last || len(out) > 0) { // an alternative that does not exist here
+			if !nothing && math.IsInf(w.Value, 1) { // an alternative that does not exist here
 				continue
 			}
 			res := b.found(r, role, p, w)
