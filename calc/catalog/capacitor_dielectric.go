@@ -55,8 +55,8 @@ var capacitorDielectric = &rule.Rule{
 		class, _ := capacitor.ParseClass(component(c, role).Dielectric)
 		switch {
 		case ch.Floor == finding.Fail:
-			return []string{fmt.Sprintf("class %s changes by %s to %s over its range", class.Code,
-				quantity.Format(class.ChangeLow, quantity.Ratio), quantity.Format(class.ChangeHigh, quantity.Ratio))}
+			return []string{fmt.Sprintf("class %s changes by %+.4g %% to %+.4g %% over its range", class.Code,
+				100*class.ChangeLow, 100*class.ChangeHigh)}
 		case ch.Floor == finding.Marginal:
 			return []string{"the ESR of an aluminium capacitor rises manifold in the cold"}
 		}

@@ -9,7 +9,7 @@ import (
 
 var dutyIdleRefresh = &rule.Rule{
 	ID: "duty/idle-refresh", Title: "Floating supply at the first pulse on a pre-biased node", Since: second,
-	Equation: "without a pulse of the low side V_BS ends where i(V_DD - V_prebias - V_BS) = I_0, at most V_DD - V_F - V_prebias; with pulses by the exact law",
+	Equation: "without a pulse of the low side V_BS tends to where i(V_DD - V_prebias - V_BS) = I_0, at most V_DD - V_F - V_prebias; both ways by the exact law, in t_available",
 	Limit:    "rising lockout threshold V_UV+, largest", Guard: "limit + max(0.3 V, 5 % of the limit)",
 	Applies: "stages whose node stands at a voltage before the first pulse, and bursts",
 	Needs: []string{"startup.prebias", "driver.uvloRising", "gateSupply.voltage", "bootstrap.diode.forwardPoints", "bootstrap.resistor",
@@ -34,8 +34,12 @@ var dutyIdleRefresh = &rule.Rule{
 		return rule.Check{Value: c.PrebiasedVoltage(), Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
-		if k.Value < k.Limit && !c.Stage.Startup.PulseWidth.Given() {
-			return []string{"no pulse of the low side recharges C_B (startup.pulseWidth is not given): the stage never starts on a node that stands this high"}
+		switch {
+		case k.Value >= k.Limit:
+		case c.Stage.LowSide.Kind == stage.DiodeOnly:
+			return []string{"the diode of the low side does not pull the node down: C_B is charged against the raised node only, in startup.timeAvailable"}
+		case !c.Stage.Startup.PulseWidth.Given():
+			return []string{"no pulse of the low side pulls the node down (startup.pulseWidth is not given): C_B is charged against the raised node only, in startup.timeAvailable"}
 		}
 		return nil
 	},

@@ -1,6 +1,7 @@
 package catalog
 
 import (
+	"math"
 	"slices"
 
 	"floatrail/calc/circuit"
@@ -10,6 +11,9 @@ import (
 	"floatrail/calc/rule"
 	"floatrail/calc/stage"
 )
+
+// justBelow is by how much a duty that does not hold is shown above one that just does [1].
+const justBelow = 1e-3
 
 var dutyLargestDuty = &rule.Rule{
 	ID: "duty/largest-duty", Title: "Largest duty that the floating supply holds", Since: first,
@@ -35,6 +39,9 @@ var dutyLargestDuty = &rule.Rule{
 		}
 		if !l.Found && !l.Whole {
 			limit = 0
+		}
+		if derive.Hold(c) < 0 { // the limit may lie closer below the duty than a shown number tells, and is not reached
+			limit = math.Min(limit, (1-justBelow)*d)
 		}
 		return rule.Check{Value: d, Limit: limit, Guard: limit - c.Policy.GuardRatio*(1-limit)}
 	},

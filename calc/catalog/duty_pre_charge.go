@@ -28,9 +28,14 @@ var dutyPreCharge = &rule.Rule{
 			return []string{fmt.Sprintf("V_BS never reaches %s; it settles at %s", quantity.Format(c.FirstTarget(), quantity.Voltage),
 				quantity.Format(c.FirstSettled(), quantity.Voltage))}
 		}
-		if _, n := c.FirstChargeTime(); n > 0 {
+		switch _, n := c.FirstChargeTime(); {
+		case n == 1:
+			return []string{"one pulse of the low side"}
+		case n > 1:
 			return []string{fmt.Sprintf("%d pulses of the low side", n)}
+		case c.Stage.LowSide.Kind == stage.DiodeOnly:
+			return nil
 		}
-		return nil
+		return []string{"with the low side held on (startup.pulseWidth is not given)"}
 	},
 }

@@ -10,7 +10,7 @@ import (
 
 var nodeUndershootPulse = &rule.Rule{
 	ID: "node/undershoot-pulse", Title: "Undershoot of the node as a switch commutates", Since: second,
-	Equation: "high side off: -(V_F + V_fr + I·R_shunt + L2·di/dt) for I/(di/dt), di/dt at most I/sqrt((L1 + L2)·C_oss); low side on: -ΔV_recovery·L2/(L1 + L2) for half a ringing period",
+	Equation: "high side off: -(V_F + V_fr + I·R_shunt + L2·di/dt) for the fall of the current, I/(di/dt) where measured; di/dt at most I/sqrt((L1 + L2)·C_oss); low side on: -ΔV_recovery·L2/(L1 + L2) for half a ringing period",
 	Limit:    "deepest row of the driver's table that lasts as long as the undershoot", Guard: "10 % above the limit",
 	Applies: "operating points in which the high side turns off a sourcing current or the low side turns on a sinking one",
 	Needs: []string{"driver.nodeUndershoot", "layout.lowSideInductance", "layout.measured.turnOffCurrentSlope", "highSide.gateOff",

@@ -12,7 +12,7 @@ var nodeUndershootStatic = &rule.Rule{
 	Equation: "V_S = -(V_SD(I) + I·R_shunt) during the dead time, -I·(R_DS(on) + R_shunt) while the low side is on",
 	Limit:    "deepest row of the driver's table that lasts as long", Guard: "10 % above the limit", Applies: "every operating point",
 	Needs: []string{"driver.nodeUndershoot", "lowSide.reverse.forwardPoints", "lowSide.kind", "operatingPoints.loadCurrent",
-		"operatingPoints.deadTime", "lowSide.onResistance", "layout.shunt"},
+		"operatingPoints.deadTime", "lowSide.onResistance", "layout.shunt", "driver.minimumPulse"},
 	Events:  true,
 	Sources: []string{"lmg1210", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,

@@ -23,6 +23,9 @@ var supplyReservoirSag = &rule.Rule{
 		return rule.Check{Value: c.ReservoirLow(), Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
-		return []string{fmt.Sprintf("%d bootstrap capacitors at once", c.Simultaneous())}
+		if n := c.Simultaneous(); n > 1 {
+			return []string{fmt.Sprintf("%d bootstrap capacitors at once", n)}
+		}
+		return []string{"one bootstrap capacitor"}
 	},
 }

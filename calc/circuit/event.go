@@ -55,6 +55,13 @@ func (c *Circuit) Current(e Event) float64 {
 	if c.Point == nil {
 		return c.NoPoint()
 	}
+	sourcing, l := e == TurnOff || e == TurnOn, &c.Point.LoadCurrent
+	switch { // how large it becomes is not known
+	case sourcing && l.OpenAbove:
+		return c.Want(l.Field + ".max")
+	case !sourcing && l.OpenBelow:
+		return c.Want(l.Field + ".min")
+	}
 	var i float64
 	switch e {
 	case TurnOff:
@@ -69,6 +76,30 @@ func (c *Circuit) Current(e Event) float64 {
 	return max(i, 0) // NaN stays NaN
 }
 
+// carries is how many times the charge of the node a current must carry within the dead time before it is taken to bring the node over: the
+// current falls meanwhile, and windings and traces add to the capacitances of the switches [1].
+const carries = 2
+
+// absent tells whether an event does not happen at this draw. A switch that turns on moves the node although it takes over no current, unless a
+// current the other way has brought the node over within the dead time; a diode lets none flow the other way.
+func (c *Circuit) absent(e Event) bool {
+	if c.Current(e) != 0 { // NaN is not absent
+		return false
+	}
+	if e.off() {
+		return true
+	}
+	if c.Stage.LowSide.Kind == stage.DiodeOnly || c.Point.FixedDuty == nil {
+		return false
+	}
+	back := -c.valleyCurrent()
+	if e == SinkingTurnOn {
+		back = c.peakCurrent()
+	}
+	bus := c.bus()
+	return back*c.Need(&c.Point.DeadTime) >= carries*(c.outputCharge(&c.Stage.HighSide, bus)+c.outputCharge(&c.Stage.LowSide, bus))
+}
+
 // Occurs tells whether an event can occur at an operating point. What is not known may occur.
 func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
 	if op == nil {
@@ -80,13 +111,19 @@ func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
 	if s.LowSide.Kind == stage.DiodeOnly && (e == SinkingTurnOff || e == SinkingTurnOn) {
 		return false
 	}
-	i, r := &op.LoadCurrent, op.RippleCurrent.Triple
-	if !i.Known() || alternates(op) {
+	i, r := op.LoadCurrent.Triple, op.RippleCurrent.Triple
+	if !op.LoadCurrent.Known() || alternates(op) {
 		return true
+	}
+	if op.LoadCurrent.OpenBelow {
+		i.Min = math.Inf(-1)
+	}
+	if op.LoadCurrent.OpenAbove {
+		i.Max = math.Inf(1)
 	}
 	ripple := 0.0
 	switch {
-	case op.RippleCurrent.Assumption != nil: // not given: any event may occur
+	case op.RippleCurrent.Assumption != nil || op.RippleCurrent.OpenAbove: // not given: any event may occur
 		ripple = math.Inf(1)
 	case r.IsComplete():
 		ripple = r.Max / 2
@@ -95,11 +132,11 @@ func Occurs(s *stage.Stage, op *stage.OperatingPoint, e Event) bool {
 	case TurnOff:
 		return i.Max+ripple > 0
 	case TurnOn:
-		return i.Max > 0
+		return i.Max >= 0
 	case SinkingTurnOff:
 		return i.Min-ripple < 0
 	}
-	return i.Min < 0
+	return i.Min <= 0
 }
 
 // Swing is how the node moves from rail to rail in an event: as measured, or by the gate drive of the switch that acts.
@@ -114,6 +151,10 @@ func (c *Circuit) swing(e Event) transient.Swing {
 		slope = &m.TurnOffVoltageSlope
 	}
 	bus := c.bus()
+	if bus == 0 {
+		c.Open("the bus may stand at 0 V, where there is no edge to model")
+		return transient.UniformSwing(nan, nan)
+	}
 	if v, ok := c.Has(slope); ok {
 		return transient.UniformSwing(bus, v)
 	}
@@ -198,7 +239,7 @@ func (c *Circuit) Ring(e Event) transient.Ring {
 // period.
 func (c *Circuit) Width(e Event) float64 {
 	i := c.Current(e)
-	if i == 0 {
+	if c.absent(e) {
 		return i
 	}
 	if !e.off() {
@@ -226,8 +267,8 @@ func (c *Circuit) recovering(e Event) transient.Recovering {
 
 // Recovered is what the diode that recovers in a turn-on drives across its switch beyond V_BUS [V].
 func (c *Circuit) Recovered(e Event) float64 {
-	if i := c.Current(e); i == 0 {
-		return i
+	if c.absent(e) {
+		return 0
 	}
 	r := c.recovering(e)
 	return r.Overshoot(*c.Swing(e))
@@ -250,7 +291,7 @@ func (c *Circuit) commutated(e Event, inductance float64) float64 {
 // Dip is how far an event takes the node below COM [V], 0 or negative.
 func (c *Circuit) Dip(e Event) float64 {
 	switch i := c.Current(e); {
-	case i == 0, !e.Falls():
+	case !e.Falls(), c.absent(e):
 		return i * 0
 	case e == TurnOff:
 		return -c.commutated(e, c.LowInductance())
@@ -266,7 +307,7 @@ func (c *Circuit) PinDip(e Event) float64 { return c.clampedPin(c.Dip(e)) }
 func (c *Circuit) NodePeak(e Event) float64 {
 	bus := c.bus()
 	switch i := c.Current(e); {
-	case i == 0, e.Falls():
+	case e.Falls(), c.absent(e):
 		return bus + i*0
 	case e == SinkingTurnOff:
 		return bus + c.commutated(e, c.BusInductance())
@@ -279,7 +320,7 @@ func (c *Circuit) NodePeak(e Event) float64 {
 func (c *Circuit) SwitchPeak(e Event, s *stage.Switch) float64 {
 	bus := c.bus()
 	switch i := c.Current(e); {
-	case i == 0:
+	case c.absent(e):
 		return bus + i
 	case e.off() && s == c.active(e):
 		return bus + c.commutated(e, c.LoopInductance())
@@ -292,9 +333,8 @@ func (c *Circuit) SwitchPeak(e Event, s *stage.Switch) float64 {
 // Induced is the largest gate voltage that an event induces in the position that is off and whose voltage rises [V].
 func (c *Circuit) Induced(e Event) float64 {
 	off := c.Need(&c.passive(e).OffBias)
-	i := c.Current(e)
-	if i == 0 || e.off() {
-		return off + i*0
+	if e.off() || c.absent(e) {
+		return off + c.Current(e)*0
 	}
 	s := c.passive(e)
 	w, rg, swing := c.gateOf(s), c.gateResistance(s, false, false), c.Swing(e)
@@ -326,7 +366,7 @@ const liftDoubt = 1.75
 // Doubtful tells whether an induced gate voltage that is estimated, not measured, may exceed a limit although the estimate does not.
 func (c *Circuit) Doubtful(e Event, induced, limit float64) bool {
 	off := c.Need(&c.passive(e).OffBias)
-	return c.Current(e) > 0 && !c.slewMeasured(e) && off+liftDoubt*(induced-off) > limit
+	return !c.absent(e) && !c.slewMeasured(e) && off+liftDoubt*(induced-off) > limit
 }
 
 // gateOf is a position's gate as an edge of the other switch sees it.
@@ -341,8 +381,7 @@ func (c *Circuit) gateOf(s *stage.Switch) transient.Switch {
 // moves into.
 func (c *Circuit) Pulled(e Event) float64 {
 	off := c.Need(&c.passive(e).OffBias)
-	i := c.Current(e)
-	if i == 0 {
+	if c.absent(e) {
 		return off
 	}
 	s := c.passive(e)
@@ -454,6 +493,9 @@ func (c *Circuit) Plateaus() [3]Plateau {
 		return [3]Plateau{{min(0, c.clampedPin(c.freewheelNode(c.peakCurrent()))), c.offTime()}}
 	}
 	dead := c.Need(&c.Point.DeadTime)
+	if c.lowVanishes() { // both dead times and the pulse that vanished are one plateau
+		dead = c.offTime()
+	}
 	at := func(i float64) float64 { return min(0, c.clampedPin(c.freewheelNode(i))) }
 	return [3]Plateau{{at(c.peakCurrent()), dead}, {at(c.valleyCurrent()), dead}, {min(0, c.LowSideNode(c.peakCurrent())), c.offTime()}}
 }
@@ -477,8 +519,8 @@ func (c *Circuit) Commanded() float64 {
 
 // Slew is the fastest movement of the node in an event [V/s]; 0 where it does not occur at this draw.
 func (c *Circuit) Slew(e Event) float64 {
-	if i := c.Current(e); i == 0 {
-		return i
+	if c.absent(e) {
+		return 0
 	}
 	if e.off() || c.slewMeasured(e) {
 		return c.Swing(e).Peak()

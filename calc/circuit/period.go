@@ -326,13 +326,17 @@ func (c *Circuit) Settled() float64 {
 	}
 	p := c.Period()
 	el := p.Element
-	best := nan
+	best, recharged := nan, false
 	for i := range p.Off {
 		if iv := &p.Off[i]; iv.Conducts {
+			recharged = true
 			if v := el.Settled(iv.Drive, iv.Load); !(v <= best) {
 				best = v
 			}
 		}
+	}
+	if !recharged { // nothing does: what stands is what the first charge left
+		return el.Settled(c.Supply(), c.Loads().Total())
 	}
 	return best
 }
@@ -346,8 +350,11 @@ func (c *Circuit) recharged(q float64) float64 {
 			best, at = iv.Duration, i
 		}
 	}
-	if at < 0 || !p.complete() {
+	switch {
+	case !p.complete():
 		return nan
+	case at < 0:
+		return c.Open("nothing recharges C_B in a period")
 	}
 	return p.Off[at].Drive - p.Element.Drop(math.Max(q/p.Window, p.Off[at].Load))
 }
@@ -356,6 +363,20 @@ func (c *Circuit) recharged(q float64) float64 {
 func (c *Circuit) Hold() (h charge.Hold, duration float64) {
 	m := c.Point.HeldOn
 	return charge.Hold{Start: c.Need(&m.InitialVoltage), Capacitance: c.Capacitance(), Loads: c.Loads()}, c.Need(&m.Duration)
+}
+
+// lowVanishes tells whether the low-side pulse of a fixed duty is shorter than the driver passes.
+func (c *Circuit) lowVanishes() bool {
+	op := c.Point
+	if op.FixedDuty == nil {
+		return false
+	}
+	d := c.Need(&op.FixedDuty.Duty)
+	low := (1-d)/c.Need(&op.SwitchingFrequency) - c.Need(&op.DeadTime)
+	if t, ok := c.Has(&op.FixedDuty.LowSideOnTime); ok {
+		low = math.Min(low, t)
+	}
+	return d > 0 && low < c.Need(&c.Stage.Driver.MinimumPulse)+c.Need(&c.Stage.Driver.EdgeTime)
 }
 
 // HighPulse is the pulse that the high side is commanded for in a period, whether the driver passes it or not [s].

@@ -38,21 +38,34 @@ func (c *Circuit) pumped() Period {
 	for i := range p.Off {
 		iv, name := p.Off[i], p.Names[i]
 		for _, m := range pumps {
-			if !iv.Conducts || !follows(m.followed, name) || !Occurs(c.Stage, c.Point, m.event) || c.Current(m.event) == 0 {
+			if !iv.Conducts || !follows(m.followed, name) || !Occurs(c.Stage, c.Point, m.event) || c.absent(m.event) {
 				continue
 			}
-			dip := iv
-			dip.Duration, dip.Drive = math.Min(c.Width(m.event), iv.Duration), c.Supply()-m.mean*c.PinDip(m.event)
-			if dip.Drive <= iv.Drive { // not deeper than the interval itself
-				continue
+			for _, part := range c.parts(m.event, m.mean) {
+				dip := iv
+				dip.Duration, dip.Drive = math.Min(part.Duration, iv.Duration), c.Supply()-part.Node
+				if !(dip.Duration > 0) || dip.Drive <= iv.Drive { // not deeper than the interval itself
+					continue
+				}
+				iv.Duration -= dip.Duration
+				off, names = append(off, dip), append(names, m.name)
 			}
-			iv.Duration -= dip.Duration
-			off, names = append(off, dip), append(names, m.name)
 		}
 		off, names = append(off, iv), append(names, name)
 	}
 	p.Off, p.Names = off, names
 	return p
+}
+
+// parts divides the dip of an event. A current that falls drives the flux L2·I into the loop of COM, so that the inductance shares in the depth
+// for I/(di/dt) of the width; in the rest the diode alone does. The ringing after a turn-on stands at its mean for half a period.
+func (c *Circuit) parts(e Event, mean float64) [2]Plateau {
+	w := c.Width(e)
+	if e != TurnOff {
+		return [2]Plateau{{mean * c.PinDip(e), w}}
+	}
+	steep := math.Min(w, c.Current(e)/c.CurrentSlope(e))
+	return [2]Plateau{{mean * c.PinDip(e), steep}, {c.clampedPin(-c.commutated(e, 0)), w - steep}}
 }
 
 func follows(names []string, name string) bool {

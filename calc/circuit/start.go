@@ -18,11 +18,35 @@ func (c *Circuit) FirstTarget() float64 {
 	return v + c.Margin(v)
 }
 
+// pulsed tells whether the low side is pulsed before the first pulse of the high side, not held on.
+func (c *Circuit) pulsed() bool {
+	return c.Stage.Startup.PulseWidth.Given() || c.Stage.Startup.PulsePeriod.Given()
+}
+
+// pulses returns how long the low side is on and how often [s]; 0 long where the driver does not pass so short a pulse.
+func (c *Circuit) pulses() (width, period float64) {
+	s, d := &c.Stage.Startup, &c.Stage.Driver
+	width, period = c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod)
+	shortest, ok := c.Has(&d.MinimumPulse)
+	if !ok {
+		c.Assume(stage.Assumption{Field: d.MinimumPulse.Field, Assumed: "shorter than the pulse", Direction: stage.Optimistic,
+			Reason: "the shortest pulse that the driver passes is not given; those of the start are taken to pass"})
+		return width, period
+	}
+	if edge, ok := c.Has(&d.EdgeTime); ok {
+		shortest += edge
+	}
+	if width < shortest {
+		width = 0
+	}
+	return width, period
+}
+
 // chargeTime is the time and the pulses of the first charge of a capacitor to the target; 0 pulses where the low side is held on [s].
 func (c *Circuit) chargeTime(ch startup.Charge) (float64, int) {
-	s := &c.Stage.Startup
-	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
-		return ch.PulsedTime(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod), c.FirstTarget())
+	if c.pulsed() {
+		width, period := c.pulses()
+		return ch.PulsedTime(width, period, c.FirstTarget())
 	}
 	return ch.Time(c.FirstTarget()), 0
 }
@@ -50,9 +74,8 @@ func (c *Circuit) FirstSlew() float64 { return c.firstCharge().Slew() }
 // FirstSettled is the V_BS at which the first charge ends [V].
 func (c *Circuit) FirstSettled() float64 {
 	ch := c.firstCharge()
-	s := &c.Stage.Startup
-	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
-		return ch.PulsedSettled(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod))
+	if c.pulsed() {
+		return ch.PulsedSettled(c.pulses())
 	}
 	return ch.Settled()
 }
@@ -89,6 +112,9 @@ func (c *Circuit) ReservoirLow() float64 {
 		Element: c.Element(), Bootstrap: c.Fresh(), Reservoir: c.Effective(r, c.Supply), Count: c.Simultaneous(), Supply: c.Supply(),
 		Initial: c.Need(&c.Stage.Startup.InitialVoltage), Load: c.Loads().Total(),
 	}
+	if n.Reservoir <= 0 || n.Bootstrap <= 0 {
+		return c.Open("the bias curves leave no capacitance at this voltage")
+	}
 	if i, ok := c.Has(&c.Stage.GateSupply.CurrentLimit); ok {
 		n.SupplyCurrent = i
 	}
@@ -101,12 +127,13 @@ func (c *Circuit) PrebiasedVoltage() float64 {
 	s := &c.Stage.Startup
 	ch := c.firstCharge()
 	node := c.Need(&s.Prebias)
-	if s.PulseWidth.Given() || s.PulsePeriod.Given() {
-		return ch.PulsedReached(c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod), c.Need(&s.TimeAvailable))
+	if c.pulsed() && c.Stage.LowSide.Kind != stage.DiodeOnly { // a diode does not pull the node down
+		width, period := c.pulses()
+		return ch.PulsedReached(width, period, c.Need(&s.TimeAvailable))
 	}
 	if c.Stage.Bootstrap.Element == stage.IntegratedSwitch { // it conducts only while the low-side gate is on
 		return ch.Initial + node*0
 	}
 	ch.Node = node
-	return max(0, ch.Settled())
+	return max(0, ch.Reached(c.Need(&s.TimeAvailable)))
 }

@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"floatrail/calc/circuit"
+	"floatrail/calc/corner"
 	"floatrail/calc/finding"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -43,7 +44,7 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 		{&out.RailMax, quantity.Voltage, !e.Falls(), func(c *circuit.Circuit) float64 { return c.NodePeak(e) + c.Highest() }},
 		{&out.HighSidePeak, quantity.Voltage, e.Falls(), func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, high) }},
 		{&out.LowSidePeak, quantity.Voltage, !e.Falls(), func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, low) }},
-		{&out.SlewPeak, quantity.VoltageSlew, true, func(c *circuit.Circuit) float64 { return c.Swing(e).Peak() }},
+		{&out.SlewPeak, quantity.VoltageSlew, true, func(c *circuit.Circuit) float64 { return c.Slew(e) }},
 		{&out.Slew10To90, quantity.VoltageSlew, true, func(c *circuit.Circuit) float64 { return c.Swing(e).Mean() }},
 		{&out.MillerLow, quantity.Voltage, turnsOn && sourcing && switched, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
 		{&out.MillerHigh, quantity.Voltage, turnsOn && !sourcing, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
@@ -54,26 +55,33 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 	} {
 		*n.to = finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: n.dim}
 		if n.show {
-			*n.to = b.Range(p, n.of, n.dim).Span
+			low := n.to == &out.NodeMin || n.to == &out.PinMin || n.to == &out.RailToCOMMin || n.to == &out.GateMin
+			*n.to = b.Adverse(p, n.of, n.dim, !low).Span
 		}
 	}
 	if !e.Falls() {
 		return out
 	}
+	deepest := b.Adverse(p, func(c *circuit.Circuit) float64 { return c.PinDip(e) }, quantity.Voltage, false).Low
 	rows := b.Stage.Driver.NodeUndershoot.Items
 	for i := range rows {
 		level := rows[i].Voltage.Typ
+		below := func(c *circuit.Circuit) float64 {
+			switch v, w := c.PinDip(e), c.Width(e); {
+			case v != v || w != w:
+				return math.NaN()
+			case v < level:
+				return w
+			}
+			return 0
+		}
+		span := b.Range(p, below, quantity.Time).Span
+		if deepest.Space != nil { // a level that only the deepest dips pass is a step that a search from the typical draw does not see
+			w, _ := corner.Evaluate(deepest.Draw, func(d *corner.Draw) float64 { return below(circuit.Of(d)) })
+			span.Max = math.Max(span.Max, rule.Significant(w)) // NaN stays NaN
+		}
 		out.Undershoots = append(out.Undershoots, finding.Undershoot{
-			Level: finding.Measure{Value: level, Dimension: quantity.Voltage},
-			Duration: b.Range(p, func(c *circuit.Circuit) float64 {
-				switch v, w := c.PinDip(e), c.Width(e); {
-				case v != v || w != w:
-					return math.NaN()
-				case v < level:
-					return w
-				}
-				return 0
-			}, quantity.Time).Span,
+			Level: finding.Measure{Value: level, Dimension: quantity.Voltage}, Duration: span,
 		})
 	}
 	return out

@@ -275,7 +275,11 @@ func message(r *Rule, f *finding.Finding, unlimited, unbounded bool) string {
 	if m := f.Margin.Absolute; m.Value == m.Value {
 		if m.Value < 0 {
 			m.Value = -m.Value
-			fmt.Fprintf(&s, ": beyond it by %s", text(m))
+			how := "beyond it"
+			if r.Sense == AtLeast && f.Limit.Value >= 0 {
+				how = "short of it"
+			}
+			fmt.Fprintf(&s, ": %s by %s", how, text(m))
 		} else {
 			fmt.Fprintf(&s, ": margin %s", text(m))
 		}

@@ -1,6 +1,7 @@
 package rule
 
 import (
+	"cmp"
 	"math"
 	"slices"
 	"strings"
@@ -89,10 +90,8 @@ func (b *Bench) note(s *corner.Space, t *corner.Trace) {
 func (b *Bench) Assumptions() []stage.Assumption {
 	out := slices.Clone(b.assumed)
 	slices.SortFunc(out, func(x, y stage.Assumption) int {
-		if c := strings.Compare(x.Field, y.Field); c != 0 {
-			return c
-		}
-		return strings.Compare(x.Assumed, y.Assumed)
+		return cmp.Or(strings.Compare(x.Field, y.Field), strings.Compare(x.Assumed, y.Assumed), strings.Compare(x.Reason, y.Reason),
+			cmp.Compare(x.Direction, y.Direction))
 	})
 	return out
 }
