@@ -254,6 +254,11 @@ func (c *Circuit) forwardRecovery(s *stage.Switch, current, slope float64) float
 	}
 	n := s.Count()
 	i, a, t := c.Need(&r.ForwardRecoveryTestCurrent), c.Need(&r.ForwardRecoveryTestSlope), c.Need(&r.ForwardRecoveryTime)
+	if q, rise := &r.ForwardRecoveryTime, i/a; q.FilledBelow { // the policy's spread is one of what follows the ramp of the test
+		if typ := c.Space.Range(q).Typ; t < typ && rise < typ {
+			t = rise + (typ-rise)*t/typ
+		}
+	}
 	static := c.staticDrop(s, i)
 	if sum := peak + i + a + t + static; sum != sum {
 		return nan

@@ -166,9 +166,7 @@ func (c *Circuit) swing(e Event) transient.Swing {
 	if e.off() {
 		return transient.TurnOffSwing(bus, i, &w, passive, g)
 	}
-	if g.On <= w.Plateau(i) {
-		c.Open("at its gate drive the switch that turns on cannot carry the current")
-	}
+	c.carried(e, &w, g)
 	return transient.TurnOnSwing(bus, i, &w, passive, g)
 }
 
@@ -209,7 +207,15 @@ func (c *Circuit) channelSlope(e Event) float64 {
 	if e.off() {
 		return transient.CurrentFall(i, &w, g)
 	}
+	c.carried(e, &w, g)
 	return transient.CurrentRise(i, &w, g)
+}
+
+// carried opens the circuit where the gate drive of the switch that acts does not reach the plateau of the current.
+func (c *Circuit) carried(e Event, w *transient.Switch, g transient.Gate) {
+	if g.On <= w.Plateau(c.Current(e)) {
+		c.Open("at its gate drive the switch that turns " + [...]string{"off", "on", "off", "on"}[e] + " cannot carry the current")
+	}
 }
 
 // knownCommonSource is commonSource where it slows an edge: not given it counts as none.
@@ -427,7 +433,9 @@ func (c *Circuit) TurnOffTime(e Event) float64 {
 	if i != 0 {
 		bus, fall = c.bus(), c.Need(&s.CurrentFallTime)
 	}
-	return transient.TurnOffTime(i, &w, c.drive(s, false, false), bus, fall)
+	g := c.drive(s, false, false)
+	c.carried(e, &w, g)
+	return transient.TurnOffTime(i, &w, g, bus, fall)
 }
 
 // GateDamping is the smaller damping of a position's gate loop over both directions [1].

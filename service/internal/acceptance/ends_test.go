@@ -69,3 +69,25 @@ func TestLevelOfAnUndershootAtTheCornerOnly(t *testing.T) {
 	near(t, "typical", d.GetTyp(), 0, 0)
 	near(t, "largest", d.GetMax(), 10/0.6e9, 1e-12)
 }
+
+// A forward recovery time of 45 ns after a ramp of 25 ns is a valid test; the policy's spread of half of it must not make it one that ends before
+// the current is there.
+func TestForwardRecoveryTimeOfATypicalValue(t *testing.T) {
+	c := serve(t)
+	f := find(t, c.review(request(t, switching("20 kHz", "50 %", "100 ns"), edits{
+		"operatingPoints.0.loadCurrent": "10 A", "lowSide.reverse.forwardPoints": drops(0.8), "lowSide.reverse.peakForwardRecovery": "2 V",
+		"lowSide.reverse.forwardRecoveryTime": `{"typ":"45 ns"}`, "lowSide.reverse.forwardRecoveryTestCurrent": `"50 A"`,
+		"lowSide.reverse.forwardRecoveryTestSlope": `"2 A/ns"`,
+	})).GetFindings(), "node/undershoot-pulse", "driver")
+	judged(t, f, pass, none)
+}
+
+// With 10 mS a switch at 12 V does not carry 10 A: what depends on how it turns off is OPEN and says so.
+func TestDriveThatDoesNotCarryTheCurrent(t *testing.T) {
+	c := serve(t)
+	f := find(t, c.review(request(t, switching("20 kHz", "50 %", "100 ns"), edits{
+		"operatingPoints.0.loadCurrent": "10 A", "highSide.transconductance": "10 mS",
+	})).GetFindings(), "duty/dead-time", "")
+	judged(t, f, open, major)
+	says(t, f, "cannot carry the current")
+}
