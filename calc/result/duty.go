@@ -69,7 +69,11 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	out.FloatingVoltageLow, low = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage, false))
 	out.FloatingVoltageHigh, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage, true))
 	if p.Operating.LoadCurrent.Known() && p.Operating.LoadCurrent.Max+firstKnown(p.Operating.RippleCurrent.Max)/2 > 0 {
-		out.GateVoltageLow, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage, false))
+		if h := &b.Stage.HighSide; h.OffBias.Known() && h.OffBias.Min == 0 && h.OffBias.Max == 0 { // all of V_BS drives the gate
+			out.GateVoltageLow = out.FloatingVoltageLow
+		} else {
+			out.GateVoltageLow, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage, false))
+		}
 	}
 	if p.Operating.HeldOn != nil {
 		out.Limits = heldLimits(b, p)

@@ -70,6 +70,8 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 		for _, n := range numbers {
 			switch {
 			case last != (n.end == neither):
+			case n.to == &out.PinMin && n.show && b.Stage.Layout.NodeClamp.Presence() == stage.NotFitted: // nothing between the node and the pin
+				out.PinMin = out.NodeMin
 			case !n.show:
 				*n.to = finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: n.dim}
 			case last:
@@ -87,7 +89,7 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 				if w.Space != nil {
 					draws = append(draws, w.Draw)
 				}
-				if n.to == &out.PinMin {
+				if n.to == &out.NodeMin || n.to == &out.PinMin {
 					deepest = r.Low
 				}
 			}
