@@ -1,7 +1,6 @@
 package catalog
 
 import (
-	"math"
 	"slices"
 
 	"floatrail/calc/circuit"
@@ -40,8 +39,8 @@ var dutyLargestDuty = &rule.Rule{
 		if !l.Found && !l.Whole {
 			limit = 0
 		}
-		if derive.Hold(c) < 0 { // the limit may lie closer below the duty than a shown number tells, and is not reached
-			limit = math.Min(limit, (1-justBelow)*d)
+		if derive.Hold(c) < 0 && rule.Significant(limit) >= rule.Significant(d) { // it lies closer below the duty than a shown number tells
+			limit = (1 - justBelow) * d
 		}
 		return rule.Check{Value: d, Limit: limit, Guard: limit - c.Policy.GuardRatio*(1-limit)}
 	},

@@ -186,7 +186,7 @@ func (c *Circuit) period() Period {
 	dead := c.Need(&op.DeadTime)
 	bus, vdd := c.Need(&op.BusVoltage), c.Supply()
 	load, peak, valley := c.Need(&op.LoadCurrent), c.peakCurrent(), c.valleyCurrent()
-	shortest := c.Need(&s.Driver.MinimumPulse) + c.Need(&s.Driver.EdgeTime)
+	shortest := c.shortestPulse()
 	el, loads, e := c.Element(), c.Loads(), c.edge()
 	if s.LowSide.Kind == "" {
 		c.Want(s.LowSide.Field + ".kind")
@@ -376,7 +376,12 @@ func (c *Circuit) lowVanishes() bool {
 	if t, ok := c.Has(&op.FixedDuty.LowSideOnTime); ok {
 		low = math.Min(low, t)
 	}
-	return d > 0 && low < c.Need(&c.Stage.Driver.MinimumPulse)+c.Need(&c.Stage.Driver.EdgeTime)
+	return d > 0 && low < c.shortestPulse()
+}
+
+// shortestPulse is the shortest command that the driver passes whole [s].
+func (c *Circuit) shortestPulse() float64 {
+	return c.Need(&c.Stage.Driver.MinimumPulse) + c.Need(&c.Stage.Driver.EdgeTime)
 }
 
 // HighPulse is the pulse that the high side is commanded for in a period, whether the driver passes it or not [s].

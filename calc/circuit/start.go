@@ -27,16 +27,14 @@ func (c *Circuit) pulsed() bool {
 func (c *Circuit) pulses() (width, period float64) {
 	s, d := &c.Stage.Startup, &c.Stage.Driver
 	width, period = c.Need(&s.PulseWidth), c.Need(&s.PulsePeriod)
-	shortest, ok := c.Has(&d.MinimumPulse)
-	if !ok {
-		c.Assume(stage.Assumption{Field: d.MinimumPulse.Field, Assumed: "shorter than the pulse", Direction: stage.Optimistic,
-			Reason: "the shortest pulse that the driver passes is not given; those of the start are taken to pass"})
-		return width, period
+	for _, q := range []*stage.Quantity{&d.MinimumPulse, &d.EdgeTime} {
+		if _, ok := c.Has(q); !ok {
+			c.Assume(stage.Assumption{Field: q.Field, Assumed: "shorter than the pulse", Direction: stage.Optimistic,
+				Reason: "what the driver passes is not given; the pulses of the start are taken to pass"})
+			return width, period
+		}
 	}
-	if edge, ok := c.Has(&d.EdgeTime); ok {
-		shortest += edge
-	}
-	if width < shortest {
+	if width < c.shortestPulse() {
 		width = 0
 	}
 	return width, period
