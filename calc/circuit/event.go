@@ -307,7 +307,15 @@ func (c *Circuit) Dip(e Event) float64 {
 }
 
 // PinDip is Dip at the driver's V_S pin [V].
-func (c *Circuit) PinDip(e Event) float64 { return c.clampedPin(c.Dip(e)) }
+func (c *Circuit) PinDip(e Event) float64 {
+	dip := c.Dip(e)
+	pin := c.clampedPin(dip)
+	if l := &c.Stage.Layout; pin > dip {
+		c.Assume(stage.Assumption{Field: l.NodeClamp.Field, Assumed: "its static drop at once", Direction: stage.Optimistic,
+			Reason: "the forward recovery of the clamp is not known; it lets a fast undershoot through"})
+	}
+	return pin
+}
 
 // NodePeak is the highest node voltage in an event [V].
 func (c *Circuit) NodePeak(e Event) float64 {
