@@ -91,3 +91,28 @@ func TestDriveThatDoesNotCarryTheCurrent(t *testing.T) {
 	judged(t, f, open, major)
 	says(t, f, "cannot carry the current")
 }
+
+// A clamp from COM to V_S behind 10 Ω holds the pin at its static drop; what it lets through before it conducts is not known, so that its help is
+// never more than MARGINAL.
+func TestNodeClampIsAnOptimisticAssumption(t *testing.T) {
+	c := serve(t)
+	stage := edits{"operatingPoints.0.loadCurrent": "10 A", "layout.lowSideInductance": "10 nH", "layout.measured.turnOffCurrentSlope": "1 A/ns",
+		"driver.nodeUndershoot": `[{"voltage":"-5 V"}]`, "layout.nodeResistor.resistance": "10 ohm"}
+	running := switching("20 kHz", "50 %", "100 ns")
+	judged(t, find(t, c.review(request(t, running, stage)).GetFindings(), "node/undershoot-pulse", "driver"), fail, critical)
+	f := find(t, c.review(request(t, running, stage, edits{"layout.nodeClamp": `{"forwardPoints":` + drops(0.7) + `}`})).GetFindings(),
+		"node/undershoot-pulse", "driver")
+	judged(t, f, marginal, major)
+	says(t, f, "forward recovery of the clamp")
+}
+
+// Start pulses of a driver whose shortest pulse or edge is not given are no sure pass.
+func TestStartPulsesOfAnUnknownDriver(t *testing.T) {
+	c := serve(t)
+	for _, field := range []string{"driver.minimumPulse", "driver.edgeTime"} {
+		f := find(t, c.review(request(t, exactLockout, switching("20 kHz", "50 %", "0 s"), edits{field: "", "startup.pulseWidth": "5 us",
+			"startup.pulsePeriod": "50 us"})).GetFindings(), "duty/pre-charge", "")
+		judged(t, f, marginal, minor)
+		says(t, f, field)
+	}
+}
