@@ -29,7 +29,7 @@ var thermalDiode = &rule.Rule{
 	},
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.Bootstrap.Diode.JunctionMax)
-		return rule.Check{Value: c.DiodeTemperature(), Limit: limit, Guard: limit - c.Policy.JunctionMargin}
+		return rule.Check{Value: lasting(c, c.DiodeTemperature), Limit: limit, Guard: limit - c.Policy.JunctionMargin}
 	},
 	Explain: func(_ *circuit.Circuit, _ string, k rule.Check) []string {
 		if math.IsInf(k.Value, 1) {

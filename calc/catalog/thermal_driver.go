@@ -7,12 +7,25 @@ import (
 	"floatrail/calc/stage"
 )
 
-// briefly is why a rule about temperatures does not judge an overload.
-func briefly(_ *stage.Stage, op *stage.OperatingPoint, _ string) string {
-	if op != nil && op.Overload {
-		return "an overload is short against thermal time constants"
+// briefly is why a rule about temperatures does not judge an overload: another operating point lasts.
+func briefly(s *stage.Stage, op *stage.OperatingPoint, _ string) string {
+	if op == nil || !op.Overload {
+		return ""
+	}
+	for i := range s.OperatingPoints.Items {
+		if !s.OperatingPoints.Items[i].Overload {
+			return "an overload is short against thermal time constants"
+		}
 	}
 	return ""
+}
+
+// lasting is a temperature [°C] where the operating point lasts; where all that is given is an overload the circuit is open.
+func lasting(c *circuit.Circuit, temperature func() float64) float64 {
+	if c.Point != nil && c.Point.Overload {
+		return c.Open("every operating point is an overload; one that lasts is needed")
+	}
+	return temperature()
 }
 
 var thermalDriver = &rule.Rule{
@@ -28,6 +41,6 @@ var thermalDriver = &rule.Rule{
 	Roles: []string{roleDriver}, Inapplicable: briefly,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.Driver.JunctionMax)
-		return rule.Check{Value: c.DriverTemperature(), Limit: limit, Guard: limit - c.Policy.JunctionMargin}
+		return rule.Check{Value: lasting(c, c.DriverTemperature), Limit: limit, Guard: limit - c.Policy.JunctionMargin}
 	},
 }

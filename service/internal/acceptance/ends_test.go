@@ -116,3 +116,16 @@ func TestStartPulsesOfAnUnknownDriver(t *testing.T) {
 		says(t, f, field)
 	}
 }
+
+// Temperatures are judged where the stage lasts; overloads alone leave them open.
+func TestOverloadsAloneLeaveTemperaturesOpen(t *testing.T) {
+	c := serve(t)
+	running := switching("20 kHz", "50 %", "100 ns")
+	judged(t, find(t, c.review(request(t, running)).GetFindings(), "thermal/driver", "driver"), pass, none)
+	answer := c.review(request(t, running, edits{"operatingPoints.0.overload": "true"}))
+	for rule, role := range map[string]string{"thermal/driver": "driver", "thermal/diode": "bootstrap.diode"} {
+		f := find(t, answer.GetFindings(), rule, role)
+		judged(t, f, open, major)
+		says(t, f, "every operating point is an overload")
+	}
+}
