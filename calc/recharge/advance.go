@@ -63,7 +63,8 @@ func (w *law) advance(v0 float64, iv *Interval, c float64) (v1, slope, charge fl
 		s1 = math.Exp(logS1)
 		slope = math.Min(math.Exp(logS1-logS0-x), 1)
 	} else {
-		a := w.decay(s0, logS0, k, t/c)
+		var a float64
+		a, logS1 = w.decay(s0, logS0, k, t/c)
 		var lost float64 // 1 - e^-a
 		if a < 0.5 {
 			lost = -math.Expm1(-a)
@@ -73,24 +74,31 @@ func (w *law) advance(v0 float64, iv *Interval, c float64) (v1, slope, charge fl
 			lost = 1 - slope
 		}
 		s1 = s0*slope + k*lost // eq. (4)
-		logS1 = math.Log(s1)
+		if logS1 != logS1 {
+			logS1 = math.Log(s1)
+		}
 	}
 	v1 = w.voltage(iv.Drive, logS1, s1)
 	return v1, slope, c*(v1-v0) + load*t
 }
 
-// decay returns A >= 0 of eq. (3) for the time tc = t/C [s/F], by the two forms under eq. (5).
-func (w *law) decay(s0, logS0, k, tc float64) float64 {
+// decay returns A >= 0 of eq. (3) for the time tc = t/C [s/F], by the two forms under eq. (5), and ln s1 [1] where (3) gives it without a
+// logarithm, else NaN: its second term is (n·V_T/K)·(A + ln s1 - ln s0). Where A or K·tc/(n·V_T) is large the difference has no digits left.
+func (w *law) decay(s0, logS0, k, tc float64) (a, logS1 float64) {
 	if s0 >= k {
-		return softRise{a: w.r, b: w.slope / k, p: k / s0, k: k, logS0: logS0, bp: w.slope / s0}.solve(tc)
+		a = softRise{a: w.r, b: w.slope / k, p: k / s0, k: k, logS0: logS0, bp: w.slope / s0}.solve(tc)
+		if x := tc * k / w.slope; a < 2 && x < 2 {
+			return a, logS0 - a + x - w.r*a*k/w.slope
+		}
+		return a, math.NaN()
 	}
 	rise := softRise{a: w.slope / k, b: w.r, p: s0 / k, k: k, inverse: true, logS0: logS0, bp: w.r * s0 / k}
 	u := rise.solve(tc)
-	a := rise.soft(u)
+	a = rise.soft(u)
 	if u > bend && rise.a < rise.b*math.Min(a, 1) {
-		return (tc - rise.a*u) / rise.b // the same from (3), but for the cancellation of u and ln p
+		return (tc - rise.a*u) / rise.b, math.NaN() // the same from (3), but for the cancellation of u and ln p
 	}
-	return a
+	return a, math.NaN()
 }
 
 // softRise is the function h(x) = a·x + b·log1p(p·expm1(x)) with a, b > 0 and 0 <= p <= 1: increasing and convex.

@@ -30,7 +30,7 @@ func LogLambertPair(y float64) (l, w float64) {
 	}
 	w = math.Exp(l)
 	e := lambertCorrection(y-l-w, w)
-	l += math.Log(1 + e) // absolute accuracy counts
+	l += e * (1 - e*(1./2-e*(1./3-e*(1./4-e*(1./5-e*(1./6-e*(1./7-e/8))))))) // ln(1 + e), |e| < 0.02
 	w += w * e
 	e = lambertCorrection(y-l-w, w)
 	return l + e, w + w*e
