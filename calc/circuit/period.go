@@ -303,15 +303,34 @@ func (p *Period) complete() bool {
 
 // Steady is the periodic steady state; its numbers are NaN where the period is incomplete.
 func (c *Circuit) Steady() *recharge.Steady {
-	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady { return c.solve(c.Period()) })
+	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady {
+		start := nan
+		if typ := c.typical(slotSteady); typ != nil {
+			start = near(c.Period(), typ.Period(), &typ.steadyAt)
+		}
+		return c.solve(c.Period(), start)
+	})
 }
 
-// solve finds the periodic steady state of a period.
-func (c *Circuit) solve(p *Period) recharge.Steady {
+// typical is the circuit at the typical draw of the space where that keeps a result, else nil.
+func (c *Circuit) typical(slot int) *Circuit {
+	if d := c.Space.Typical(); d != c.Draw && d.Keeps(slot) {
+		return Of(d)
+	}
+	return nil
+}
+
+// near is a start for the steady state of a period [V]: as far from the guess as that of another period was from its own.
+func near(p, other *Period, at *recharge.Steady) float64 {
+	return p.Guess() + (at.BeforeEdge - other.Guess())
+}
+
+// solve finds the periodic steady state of a period, from a start [V], NaN where there is none.
+func (c *Circuit) solve(p *Period, start float64) recharge.Steady {
 	if !p.complete() {
 		return recharge.Steady{Low: nan, High: nan, AfterEdge: nan, BeforeEdge: nan, Deficit: nan, Recovery: nan, Charge: nan}
 	}
-	st := p.SteadyState()
+	st := p.SteadyStateFrom(start)
 	if !st.Converged && !st.Collapses {
 		c.Open("the periodic steady state was not found")
 	}

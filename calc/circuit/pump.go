@@ -79,7 +79,16 @@ func follows(names []string, name string) bool {
 
 // pumpedSteadyState is the periodic steady state with the undershoots.
 func (c *Circuit) pumpedSteadyState() *recharge.Steady {
-	return corner.Memo(c.Draw, slotPumpedSteady, true, &c.kept().steady, func() recharge.Steady { return c.solve(c.Pumped()) })
+	return corner.Memo(c.Draw, slotPumpedSteady, true, &c.kept().steady, func() recharge.Steady {
+		if len(c.Pumped().Off) == len(c.Period().Off) { // nothing dips
+			return *c.Steady()
+		}
+		start := nan
+		if typ := c.typical(slotPumpedSteady); typ != nil {
+			start = near(c.Pumped(), typ.Pumped(), &typ.kept().steady)
+		}
+		return c.solve(c.Pumped(), start)
+	})
 }
 
 // Highest is the highest V_BS of the operating point with what undershoots add to it, limited by a clamp where one is fitted [V].

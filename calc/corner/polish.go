@@ -86,7 +86,7 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 	here := w.Value
 	s.beyond(w, w.Draw, f, here, id)
 	changed := func(u float64) {
-		if d := math.Abs(u - here); d > swing && !math.IsInf(d, 0) {
+		if d := math.Abs(above(u, here)); d > swing && !math.IsInf(d, 0) {
 			swing = d
 		}
 	}

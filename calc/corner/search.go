@@ -53,6 +53,14 @@ func usable(v float64, t *Trace) bool { return v == v && t.Complete() }
 // tolerance below which two values count as equal, relative.
 const tolerance = 1e-12
 
+// above returns how far a lies above b, 0 where both count as equal.
+func above(a, b float64) float64 {
+	if d := a - b; !(math.Abs(d) <= tolerance*math.Abs(b)) {
+		return d
+	}
+	return 0
+}
+
 func below(a, b float64) bool {
 	return a < b-tolerance*math.Abs(b) || (math.IsInf(a, -1) && !math.IsInf(b, -1))
 }
@@ -113,10 +121,11 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 				return u
 			}
 			lo, hi := try(1), try(2)
-			turns := (lo-v)*(hi-v) > 0
+			turns := above(lo, v)*above(hi, v) > 0
 			if s.interior.has(id) && !turns { // look between the ends for a turn
 				a, b := try(lookLow), try(lookHigh)
-				turns = (a-lo)*(hi-lo) < 0 || (b-lo)*(hi-lo) < 0 || (a-hi)*(lo-hi) < 0 || (b-hi)*(lo-hi) < 0 || (b-a)*(hi-lo) < 0
+				way := hi - lo
+				turns = above(a, lo)*way < 0 || above(b, lo)*way < 0 || above(hi, a)*way < 0 || above(hi, b)*way < 0 || above(b, a)*way < 0
 			}
 			if turns {
 				w.turning.set(id)

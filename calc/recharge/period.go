@@ -32,6 +32,11 @@ func (p Period) Map(v float64) (v1, dv float64) {
 // trace is what happens within a period.
 type trace struct {
 	after, low, high float64 // after the rising edge, lowest, highest [V]
+	afterSlope       float64 // their derivatives by v before the edge [1]
+	lowSlope         float64
+	highSlope        float64
+	recoverySlope    float64 // of recovery and drawn [F]
+	drawnSlope       float64
 	highest          int     // where high is: index into Off, -1: end of the on-time with Return
 	recovery         float64 // Q_rr [C]
 	drawn            float64 // edges and loads less Return [C]
@@ -48,11 +53,12 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 	c := p.Capacitance
 	recovery, falls := p.recovered(w, v)
 	after, taken := (c*v-p.Charge-recovery)/(c+p.ChargePerVolt), c+p.ChargePerVolt
-	left := p.Charge + p.ChargePerVolt*after
+	left, perVolt := p.Charge+p.ChargePerVolt*after, p.ChargePerVolt
 	if left < p.ChargeLeast {
-		after, taken, left = v-(p.ChargeLeast+recovery)/c, c, p.ChargeLeast
+		after, taken, left, perVolt = v-(p.ChargeLeast+recovery)/c, c, p.ChargeLeast, 0
 	}
 	dv = (c + falls) / taken
+	edge := dv
 	v1, slope, carried := w.advance(after, &p.On, c)
 	dv *= slope
 	if tr == nil {
@@ -63,14 +69,24 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 		}
 		return v1, dv
 	}
-	*tr = trace{after: after, low: math.Min(after, v1), recovery: recovery, highest: -1, carried: carried}
+	*tr = trace{after: after, low: after, afterSlope: edge, lowSlope: edge, recovery: recovery, recoverySlope: -falls, highest: -1, carried: carried}
+	if v1 < after {
+		tr.low, tr.lowSlope = v1, dv
+	}
 	tr.drawn = left + recovery - p.Return + carried - c*(v1-after)
+	tr.drawnSlope = perVolt*edge - falls
+	if p.On.Conductance > 0 {
+		tr.drawnSlope -= c * (dv - edge) // as the element blocks; see shortStep
+	}
 	for k := range p.Off {
 		tr.drawn += p.Off[k].Load * math.Max(p.Off[k].Duration, 0)
 	}
 	tr.count(carried, p.On.Duration)
 	v1 += p.Return / c
-	tr.high = math.Max(after, v1)
+	tr.high, tr.highSlope = after, edge
+	if v1 > after {
+		tr.high, tr.highSlope = v1, dv
+	}
 	for k := range p.Off {
 		iv := &p.Off[k]
 		start := v1
@@ -81,9 +97,11 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 			tr.drawn += carried - c*(v1-start) - iv.Load*iv.Duration
 		}
 		tr.count(carried, iv.Duration)
-		tr.low = math.Min(tr.low, v1)
+		if v1 < tr.low {
+			tr.low, tr.lowSlope = v1, dv
+		}
 		if v1 > tr.high {
-			tr.high, tr.highest = v1, k
+			tr.high, tr.highSlope, tr.highest = v1, dv, k
 		}
 	}
 	return v1, dv

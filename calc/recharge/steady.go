@@ -33,9 +33,12 @@ const (
 // SteadyState finds the fixed point of Map on [0, E_max], bracketed. From the second evaluation on, the inverse cubic through the last
 // two values of Map(v) - v and their analytic derivatives gives the next v; before that, and where that leaves the bracket,
 // Newton's method, on ln(charge in/charge drawn) when these differ by more than a factor of 2, as that is the straighter function
-// where the diode's exponential rules; else bisection. It ends when the charge of one period balances to 1e-10 and the last
-// step is below 1e-10 V, or at the last digit of V_BS.
-func (p Period) SteadyState() Steady {
+// where the diode's exponential rules; else bisection. It ends with a step of Newton's method of 1e-8 V at most, which leaves an error of its
+// square, and moves the voltages of that pass along their tangents; or at the last digit of V_BS.
+func (p Period) SteadyState() Steady { return p.SteadyStateFrom(math.NaN()) }
+
+// SteadyStateFrom is SteadyState with a V_BS before the rising edge at which to start, such as Guess [V]; NaN: Guess.
+func (p *Period) SteadyStateFrom(start float64) Steady {
 	w := p.Element.law()
 	var tr trace
 	emax := p.strongestDrive()
@@ -46,7 +49,11 @@ func (p Period) SteadyState() Steady {
 	}
 	low, high := 0.0, top
 	zeroRises := false // Map(0) > 0 is known
-	v := math.Min(math.Max(p.guess(&w, emax), low), high)
+	if start != start {
+		start = p.guess(&w, emax)
+	}
+	v := math.Min(math.Max(start, low), high)
+	short := p.shortStep()
 	var before node
 	for n := 1; n <= mostIterations; n++ {
 		next, slope := p.pass(&w, v, &tr)
@@ -61,8 +68,11 @@ func (p Period) SteadyState() Steady {
 		if ratio := tr.carried / tr.drawn; tr.drawn > 0 && (ratio > 2 || ratio > 0 && ratio < 0.5) {
 			step = math.Log(ratio) * tr.carried / (-here.slope * p.Capacitance)
 		}
-		if v > 0 && p.atRoot(here, step, tr.drawn, high-low) {
-			return p.steady(&w, v, &tr, n)
+		if v > 0 && p.atRoot(here, step, short, tr.drawn, high-low) {
+			if !(math.Abs(step) <= short) { // at the last digit already
+				step = 0
+			}
+			return p.steady(&w, v, step, &tr, n)
 		}
 		if here.rise > 0 {
 			low, zeroRises = v, true
@@ -85,7 +95,7 @@ func (p Period) SteadyState() Steady {
 				if high == top && here.rise > 0 {
 					return p.nothing(n, false)
 				}
-				return p.steady(&w, v, &tr, n)
+				return p.steady(&w, v, 0, &tr, n)
 			}
 		}
 		before, v = here, to
@@ -93,10 +103,23 @@ func (p Period) SteadyState() Steady {
 	return p.nothing(mostIterations, false)
 }
 
-// atRoot tells whether the iteration may end at a node: the charge of the period balances and the next step [V] is nothing, or the rise is at
-// the last digit of v, in a bracket of a width [V]. With slope 1 nothing is drawn and nothing carried, and any such v stays.
-func (p *Period) atRoot(here node, step, drawn, width float64) bool {
-	if math.Abs(p.Capacitance*here.rise) <= 1e-10*drawn && math.Abs(step) <= 1e-10 {
+// shortStep is the longest step that is taken along the tangents [V]: shorter where an interval conducts beside a conductance, as then the tangent of
+// the charge drawn is not known.
+func (p *Period) shortStep() float64 {
+	leaky := p.On.Conducts && p.On.Conductance > 0
+	for k := range p.Off {
+		leaky = leaky || p.Off[k].Conductance > 0
+	}
+	if leaky {
+		return 1e-10
+	}
+	return 1e-8
+}
+
+// atRoot tells whether the iteration may end at a node: the charge of the period nearly balances and the next step [V] is short, or the rise is
+// at the last digit of v, in a bracket of a width [V]. With slope 1 nothing is drawn and nothing carried, and any such v stays.
+func (p *Period) atRoot(here node, step, short, drawn, width float64) bool {
+	if math.Abs(p.Capacitance*here.rise) <= 1e-6*drawn && math.Abs(step) <= short {
 		return true
 	}
 	return math.Abs(here.rise) <= 4e-15*math.Max(here.v, 1e-3) && (math.Abs(step) <= 1e-9 || width <= 1e-9 || here.slope > -1e-13)
@@ -131,6 +154,12 @@ func (p *Period) strongestDrive() float64 {
 	return most
 }
 
+// Guess is where SteadyState starts when nothing better is known [V].
+func (p *Period) Guess() float64 {
+	w := p.Element.law()
+	return p.guess(&w, p.strongestDrive())
+}
+
 // guess returns a start for the iteration [V]: the best V_BS that one interval alone would leave if it had to bring the whole charge Q. The
 // exponential of R·C then ends with the current i = (Q/(R·C))/(e^(t/(R·C)) - 1), R with the junction's n·V_T/(Q/t); the
 // junction's own tail with C·n·V_T/t; the larger of the two counts.
@@ -160,11 +189,13 @@ func (p *Period) guess(w *law, emax float64) float64 {
 	return best
 }
 
-// steady describes the fixed point v [V] whose pass left tr.
-func (p *Period) steady(w *law, v float64, tr *trace, n int) Steady {
+// steady describes the fixed point a step [V] from v [V], whose pass left tr.
+func (p *Period) steady(w *law, v, step float64, tr *trace, n int) Steady {
+	v += step
 	s := Steady{
-		Low: math.Min(tr.low, v), High: tr.high, HighInterval: tr.highest, AfterEdge: tr.after, BeforeEdge: v,
-		Recovery: tr.recovery, Charge: tr.drawn, TimeConducting: tr.conducting, Iterations: n, Converged: true,
+		Low: math.Min(tr.low+step*tr.lowSlope, v), High: tr.high + step*tr.highSlope, HighInterval: tr.highest,
+		AfterEdge: tr.after + step*tr.afterSlope, BeforeEdge: v,
+		Recovery: tr.recovery + step*tr.recoverySlope, Charge: tr.drawn + step*tr.drawnSlope, TimeConducting: tr.conducting, Iterations: n, Converged: true,
 	}
 	ideal := p.strongestDrive()
 	if !w.linear {
