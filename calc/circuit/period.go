@@ -304,11 +304,11 @@ func (p *Period) complete() bool {
 // Steady is the periodic steady state; its numbers are NaN where the period is incomplete.
 func (c *Circuit) Steady() *recharge.Steady {
 	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady {
-		start := nan
+		offset := nan
 		if typ := c.typical(slotSteady); typ != nil {
-			start = near(c.Period(), typ.Period(), &typ.steadyAt)
+			offset = typ.steadyAt.Offset
 		}
-		return c.solve(c.Period(), start)
+		return c.solve(c.Period(), offset)
 	})
 }
 
@@ -320,17 +320,12 @@ func (c *Circuit) typical(slot int) *Circuit {
 	return nil
 }
 
-// near is a start for the steady state of a period [V]: as far from the guess as that of another period was from its own.
-func near(p, other *Period, at *recharge.Steady) float64 {
-	return p.Guess() + (at.BeforeEdge - other.Guess())
-}
-
-// solve finds the periodic steady state of a period, from a start [V], NaN where there is none.
-func (c *Circuit) solve(p *Period, start float64) recharge.Steady {
+// solve finds the periodic steady state of a period, whose offset is that of the typical draw, NaN where that is not known.
+func (c *Circuit) solve(p *Period, offset float64) recharge.Steady {
 	if !p.complete() {
 		return recharge.Steady{Low: nan, High: nan, AfterEdge: nan, BeforeEdge: nan, Deficit: nan, Recovery: nan, Charge: nan}
 	}
-	st := p.SteadyStateFrom(start)
+	st := p.SteadyStateNear(offset)
 	if !st.Converged && !st.Collapses {
 		c.Open("the periodic steady state was not found")
 	}

@@ -83,11 +83,11 @@ func (c *Circuit) pumpedSteadyState() *recharge.Steady {
 		if len(c.Pumped().Off) == len(c.Period().Off) { // nothing dips
 			return *c.Steady()
 		}
-		start := nan
+		offset := nan
 		if typ := c.typical(slotPumpedSteady); typ != nil {
-			start = near(c.Pumped(), typ.Pumped(), &typ.kept().steady)
+			offset = typ.kept().steady.Offset
 		}
-		return c.solve(c.Pumped(), start)
+		return c.solve(c.Pumped(), offset)
 	})
 }
 

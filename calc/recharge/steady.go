@@ -19,10 +19,11 @@ type Steady struct {
 	Charge         float64 // drawn per period: edges, less Return, and loads; equal to ∫i dt through the element [C]
 	TimeConducting float64 // length of the intervals that each bring at least 1 % of Charge [s]
 
-	Collapses        bool // Map(0) <= 0: no positive steady state
-	PeriodsToLockout int  // from Period.Start to below Period.Lockout; 0: not asked, -1: not within 20000 periods
-	Iterations       int  // evaluations of the map
-	Converged        bool // false: OPEN, never a number
+	Collapses        bool    // Map(0) <= 0: no positive steady state
+	PeriodsToLockout int     // from Period.Start to below Period.Lockout; 0: not asked, -1: not within 20000 periods
+	Iterations       int     // evaluations of the map
+	Offset           float64 // of BeforeEdge from where the iteration starts by itself [V]
+	Converged        bool    // false: OPEN, never a number
 }
 
 const (
@@ -35,10 +36,11 @@ const (
 // Newton's method, on ln(charge in/charge drawn) when these differ by more than a factor of 2, as that is the straighter function
 // where the diode's exponential rules; else bisection. It ends with a step of Newton's method of 1e-8 V at most, which leaves an error of its
 // square, and moves the voltages of that pass along their tangents; or at the last digit of V_BS.
-func (p Period) SteadyState() Steady { return p.SteadyStateFrom(math.NaN()) }
+func (p Period) SteadyState() Steady { return p.SteadyStateNear(0) }
 
-// SteadyStateFrom is SteadyState with a V_BS before the rising edge at which to start, such as Guess [V]; NaN: Guess.
-func (p *Period) SteadyStateFrom(start float64) Steady {
+// SteadyStateNear is SteadyState for a period whose steady state is taken to lie as far from where the iteration starts [V] as Steady.Offset
+// says of a similar one; NaN: not known.
+func (p *Period) SteadyStateNear(offset float64) Steady {
 	w := p.Element.law()
 	var tr trace
 	emax := p.strongestDrive()
@@ -49,8 +51,10 @@ func (p *Period) SteadyStateFrom(start float64) Steady {
 	}
 	low, high := 0.0, top
 	zeroRises := false // Map(0) > 0 is known
-	if start != start {
-		start = p.guess(&w, emax)
+	guess := p.guess(&w, emax)
+	start := guess + offset
+	if offset != offset {
+		start = guess
 	}
 	v := math.Min(math.Max(start, low), high)
 	short := p.shortStep()
@@ -72,7 +76,7 @@ func (p *Period) SteadyStateFrom(start float64) Steady {
 			if !(math.Abs(step) <= short) { // at the last digit already
 				step = 0
 			}
-			return p.steady(&w, v, step, &tr, n)
+			return p.steady(&w, v, step, guess, &tr, n)
 		}
 		if here.rise > 0 {
 			low, zeroRises = v, true
@@ -95,7 +99,7 @@ func (p *Period) SteadyStateFrom(start float64) Steady {
 				if high == top && here.rise > 0 {
 					return p.nothing(n, false)
 				}
-				return p.steady(&w, v, 0, &tr, n)
+				return p.steady(&w, v, 0, guess, &tr, n)
 			}
 		}
 		before, v = here, to
@@ -154,12 +158,6 @@ func (p *Period) strongestDrive() float64 {
 	return most
 }
 
-// Guess is where SteadyState starts when nothing better is known [V].
-func (p *Period) Guess() float64 {
-	w := p.Element.law()
-	return p.guess(&w, p.strongestDrive())
-}
-
 // guess returns a start for the iteration [V]: the best V_BS that one interval alone would leave if it had to bring the whole charge Q. The
 // exponential of R·C then ends with the current i = (Q/(R·C))/(e^(t/(R·C)) - 1), R with the junction's n·V_T/(Q/t); the
 // junction's own tail with C·n·V_T/t; the larger of the two counts.
@@ -190,12 +188,13 @@ func (p *Period) guess(w *law, emax float64) float64 {
 }
 
 // steady describes the fixed point a step [V] from v [V], whose pass left tr.
-func (p *Period) steady(w *law, v, step float64, tr *trace, n int) Steady {
+func (p *Period) steady(w *law, v, step, guess float64, tr *trace, n int) Steady {
 	v += step
 	s := Steady{
 		Low: math.Min(tr.low+step*tr.lowSlope, v), High: tr.high + step*tr.highSlope, HighInterval: tr.highest,
 		AfterEdge: tr.after + step*tr.afterSlope, BeforeEdge: v,
 		Recovery: tr.recovery + step*tr.recoverySlope, Charge: tr.drawn + step*tr.drawnSlope, TimeConducting: tr.conducting, Iterations: n, Converged: true,
+		Offset: v - guess,
 	}
 	ideal := p.strongestDrive()
 	if !w.linear {
@@ -220,7 +219,7 @@ func (p *Period) nothing(n int, collapses bool) Steady {
 	nan := math.NaN()
 	s := Steady{
 		Low: nan, High: nan, AfterEdge: nan, BeforeEdge: nan, Deficit: nan, Recovery: nan, Charge: nan, TimeConducting: nan,
-		HighInterval: -1, Collapses: collapses, Converged: collapses, Iterations: n,
+		Offset: nan, HighInterval: -1, Collapses: collapses, Converged: collapses, Iterations: n,
 	}
 	if collapses && p.Lockout > 0 {
 		s.PeriodsToLockout = p.PeriodsUntil(p.Start, p.Lockout, mostCountedPeriods)

@@ -22,12 +22,13 @@ func OfPoints(b *rule.Bench, dutyLimits, transient bool) (*finding.DutyLimits, *
 	if n := len(b.Points); b.Points[0].Operating != nil {
 		first, events := make([]finding.Precharge, n), make([][]finding.TransientEvent, n)
 		duty.Points = make([]finding.DutyPoint, n)
-		rule.SideBySide(2*n, func(i int) {
-			switch p := &b.Points[i/2]; {
-			case i%2 == 0 && dutyLimits:
-				duty.Points[i/2], first[i/2] = dutyPoint(b, p), precharge(b, p)
-			case i%2 == 1 && transient:
-				events[i/2] = eventsOf(b, &rule.Point{Operating: p.Operating, Spaces: p.Events})
+		rule.SideBySide(2*n, func(i int) { // the events first: they take most
+			k := i % n
+			switch p := &b.Points[k]; {
+			case i < n && transient:
+				events[k] = eventsOf(b, &rule.Point{Operating: p.Operating, Spaces: p.Events})
+			case i >= n && dutyLimits:
+				duty.Points[k], first[k] = dutyPoint(b, p), precharge(b, p)
 			}
 		})
 		duty.Precharge = overPoints(first)
