@@ -305,20 +305,15 @@ func (p *Period) complete() bool {
 func (c *Circuit) Steady() *recharge.Steady {
 	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady {
 		offset := nan
-		if typ := c.typical(slotSteady); typ != nil {
-			offset = typ.steadyAt.Offset
+		if typ := c.typical(); typ != c {
+			offset = typ.Steady().Offset
 		}
 		return c.solve(c.Period(), offset)
 	})
 }
 
-// typical is the circuit at the typical draw of the space where that keeps a result, else nil.
-func (c *Circuit) typical(slot int) *Circuit {
-	if d := c.Space.Typical(); d != c.Draw && d.Keeps(slot) {
-		return Of(d)
-	}
-	return nil
-}
+// typical is the circuit at the typical draw of the stage as it was given.
+func (c *Circuit) typical() *Circuit { return Of(c.Space.Origin().Typical()) }
 
 // solve finds the periodic steady state of a period, whose offset is that of the typical draw, NaN where that is not known.
 func (c *Circuit) solve(p *Period, offset float64) recharge.Steady {

@@ -84,8 +84,8 @@ func (c *Circuit) pumpedSteadyState() *recharge.Steady {
 			return *c.Steady()
 		}
 		offset := nan
-		if typ := c.typical(slotPumpedSteady); typ != nil {
-			offset = typ.kept().steady.Offset
+		if typ := c.typical(); typ != c {
+			offset = typ.pumpedSteadyState().Offset
 		}
 		return c.solve(c.Pumped(), offset)
 	})

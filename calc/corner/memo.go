@@ -82,9 +82,6 @@ func (m *memory) keep(slot int, d *Draw, e *entry) {
 	g.entries[g.hash(d)] = e
 }
 
-// Keeps tells whether the result of a slot stands at the draw.
-func (d *Draw) Keeps(slot int) bool { return d.memo[slot] != nil && d.memo[slot].valid }
-
 // Memo returns f's value at a draw, evaluated once per draw into the place given; what f reads counts as read by every caller. A shared
 // result is also looked for among those of other draws with the same numbers of all that f reads.
 func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {

@@ -56,6 +56,7 @@ type Space struct {
 	scratch        []float64          // where numbers are put together
 	words          Bits               // clear memory for traces
 	memory         *memory            // shared by the spaces that Replace makes: results do not depend on ranges
+	origin         *Space             // of which Replace made this one; nil: none
 }
 
 type probe struct {
@@ -165,6 +166,14 @@ type Change struct {
 // Typical is the draw with every input at its typical value.
 func (s *Space) Typical() *Draw { return s.probe(0, 0, 0) }
 
+// Origin is the space of which Replace made this one, else the space itself.
+func (s *Space) Origin() *Space {
+	if s.origin != nil {
+		return s.origin
+	}
+	return s
+}
+
 // probe is the typical draw with one input moved; kept, so that functions share what models compute there.
 func (s *Space) probe(id int, step int8, v float64) *Draw {
 	key := probe{id, step}
@@ -206,6 +215,7 @@ const (
 // Replace is the space with other ranges of some inputs.
 func (s *Space) Replace(changes ...Replacement) *Space {
 	o := *s
+	o.origin = s.Origin()
 	o.low, o.typ, o.high = append([]float64(nil), s.low...), append([]float64(nil), s.typ...), append([]float64(nil), s.high...)
 	for _, c := range changes {
 		o.low[c.ID], o.typ[c.ID], o.high[c.ID] = c.Min, c.Typ, c.Max

@@ -27,6 +27,7 @@ type Steady struct {
 }
 
 const (
+	nearby             = 0.1 // offset that is taken over, as a share of the guess; another period may lie farther away
 	mostIterations     = 120
 	mostCountedPeriods = 20_000
 )
@@ -39,7 +40,7 @@ const (
 func (p Period) SteadyState() Steady { return p.SteadyStateNear(0) }
 
 // SteadyStateNear is SteadyState for a period whose steady state is taken to lie as far from where the iteration starts [V] as Steady.Offset
-// says of a similar one; NaN: not known.
+// says of a similar one. NaN, or more than nearby: not known.
 func (p *Period) SteadyStateNear(offset float64) Steady {
 	w := p.Element.law()
 	var tr trace
@@ -52,9 +53,9 @@ func (p *Period) SteadyStateNear(offset float64) Steady {
 	low, high := 0.0, top
 	zeroRises := false // Map(0) > 0 is known
 	guess := p.guess(&w, emax)
-	start := guess + offset
-	if offset != offset {
-		start = guess
+	start := guess
+	if math.Abs(offset) <= nearby*guess {
+		start += offset
 	}
 	v := math.Min(math.Max(start, low), high)
 	short := p.shortStep()
