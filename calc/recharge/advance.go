@@ -86,14 +86,19 @@ func (w *law) advance(v0 float64, iv *Interval, c float64) (v1, slope, charge fl
 // logarithm, else NaN: its second term is (n·V_T/K)·(A + ln s1 - ln s0). Where A or K·tc/(n·V_T) is large the difference has no digits left.
 func (w *law) decay(s0, logS0, k, tc float64) (a, logS1 float64) {
 	if s0 >= k {
-		a = softRise{a: w.r, b: w.slope / k, p: k / s0, k: k, logS0: logS0, bp: w.slope / s0}.solve(tc)
+		rise := softRise{a: w.r, b: w.slope / k, p: k / s0, k: k, logS0: logS0, bp: w.slope / s0}
+		last := &w.before[w.interval]
+		a = rise.solve(tc, *last)
+		if w.interval > 0 {
+			*last = a
+		}
 		if x := tc * k / w.slope; a < 2 && x < 2 {
 			return a, logS0 - a + x - w.r*a*k/w.slope
 		}
 		return a, math.NaN()
 	}
 	rise := softRise{a: w.slope / k, b: w.r, p: s0 / k, k: k, inverse: true, logS0: logS0, bp: w.r * s0 / k}
-	u := rise.solve(tc)
+	u := rise.solve(tc, 0)
 	a = rise.soft(u)
 	if u > bend && rise.a < rise.b*math.Min(a, 1) {
 		return (tc - rise.a*u) / rise.b, math.NaN() // the same from (3), but for the cancellation of u and ln p
@@ -177,11 +182,13 @@ func (h *softRise) alone(y float64) float64 {
 }
 
 // solve returns the root of h(x) = y >= 0. It lies below the roots of both terms alone, and h there is at most 2·y. Householder's method
-// of fourth order from their parallel sum, kept inside the bracket by Newton's or bisection; 2 or 3 steps as a rule, 100 at most.
-func (h softRise) solve(y float64) float64 {
-	x1, x2 := y/h.a, h.alone(y)
-	low, high := 0.0, math.Min(x1, x2)
-	x := high / (1 + high/math.Max(x1, x2))
+// of fourth order from near, or where that is 0 from their parallel sum, kept inside the bracket by Newton's or bisection; 2 or 3 steps as a
+// rule, 100 at most.
+func (h softRise) solve(y, near float64) float64 {
+	low, high, x := 0.0, math.Inf(1), near
+	if !(near > 0) {
+		high, x = h.bracket(y)
+	}
 	for range 100 {
 		f, d, d2, d3 := h.at(x)
 		f, d = f+h.a*x-y, d+h.a
@@ -202,11 +209,21 @@ func (h softRise) solve(y float64) float64 {
 			next = x - f/d
 		}
 		if !(next > low && next < high) {
+			if math.IsInf(high, 1) {
+				high, _ = h.bracket(y)
+			}
 			next = low + (high-low)/2
 		}
 		x = next
 	}
 	return x
+}
+
+// bracket returns an upper limit of the root of h(x) = y, and the parallel sum of the roots of both terms alone.
+func (h *softRise) bracket(y float64) (high, x float64) {
+	x1, x2 := y/h.a, h.alone(y)
+	high = math.Min(x1, x2)
+	return high, high / (1 + high/math.Max(x1, x2))
 }
 
 // logFloor returns a value at most ln 2 below ln x [1], -Inf for 0.

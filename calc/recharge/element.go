@@ -21,6 +21,9 @@ type law struct {
 	r      float64 // R [ohm]
 	logRn  float64 // ln(R/(n·V_T)), ln of [1/A]
 	linear bool    // switch
+
+	interval int         // number of the interval whose A of eq. (3) is kept for the next pass; 0: none is
+	before   [14]float64 // A in the pass before, by interval; 0: not known [1]
 }
 
 func (e Element) law() law {

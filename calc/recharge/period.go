@@ -59,6 +59,9 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 	}
 	dv = (c + falls) / taken
 	edge := dv
+	if tr != nil {
+		w.interval = 1
+	}
 	v1, slope, carried := w.advance(after, &p.On, c)
 	dv *= slope
 	if tr == nil {
@@ -90,6 +93,9 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 	for k := range p.Off {
 		iv := &p.Off[k]
 		start := v1
+		if w.interval = k + 2; w.interval >= len(w.before) {
+			w.interval = 0
+		}
 		v1, slope, carried = w.advance(start, iv, c)
 		dv *= slope
 		tr.carried += carried
@@ -104,6 +110,7 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 			tr.high, tr.highSlope, tr.highest = v1, dv, k
 		}
 	}
+	w.interval = 0
 	return v1, dv
 }
 
