@@ -1,0 +1,263 @@
+package transient
+
+import (
+	"encoding/json"
+	"math"
+	"os"
+	"testing"
+
+	"floatrail/calc/recharge"
+)
+
+// referenceCell is one position as testdata/reference/event.py writes it, with the fits that event.py used itself.
+type referenceCell struct {
+	Kind             string       `json:"kind"`
+	Output           [][2]float64 `json:"c_oss"`
+	Transfer         [][2]float64 `json:"c_rss"`
+	Transconductance float64      `json:"transconductance"`
+	Threshold        float64      `json:"threshold"`
+	OnResistance     float64      `json:"on_resistance"`
+	GateSource       float64      `json:"c_gs"`
+	GateResistance   float64      `json:"gate_resistance"`
+	OffBias          float64      `json:"off_bias"`
+	Reverse          struct {
+		Slope         float64 `json:"nvt"`
+		LogSaturation float64 `json:"ln_is"`
+		Resistance    float64 `json:"resistance"`
+		Offset        float64 `json:"offset"`
+		Follows       bool    `json:"offset_follows_gate"`
+		Recovery      *struct {
+			Tau, Transit float64
+		} `json:"recovery"`
+		Forward *struct {
+			Inductance, Resistance float64
+		} `json:"forward_recovery"`
+	} `json:"reverse"`
+}
+
+type referenceJunction struct {
+	Slope         float64 `json:"nvt"`
+	LogSaturation float64 `json:"ln_is"`
+	Resistance    float64 `json:"resistance"`
+}
+
+func (j referenceJunction) junction() recharge.Junction {
+	return recharge.Junction{Slope: j.Slope, LogSaturation: j.LogSaturation, Resistance: j.Resistance}
+}
+
+type referenceCase struct {
+	Name  string `json:"name"`
+	Input struct {
+		Event      string             `json:"event"`
+		Bus        float64            `json:"bus"`
+		Load       float64            `json:"load"`
+		Supply     float64            `json:"vdd"`
+		LowDrive   float64            `json:"drive2_on"`
+		L1         float64            `json:"l1"`
+		L2         float64            `json:"l2"`
+		R1         float64            `json:"r1"`
+		R2         float64            `json:"r2"`
+		HighSource float64            `json:"common_source1"`
+		LowSource  float64            `json:"common_source2"`
+		Node       float64            `json:"node_resistor"`
+		Ringing    float64            `json:"ringing_resistance"`
+		Pin        float64            `json:"pin_capacitance"`
+		Bootstrap  float64            `json:"bootstrap_capacitance"`
+		Floating   float64            `json:"floating_start"`
+		Element    referenceJunction  `json:"bootstrap"`
+		Clamp      *referenceJunction `json:"clamp"`
+		High, Low  referenceCell
+		End        float64 `json:"t_end"`
+	} `json:"input"`
+	Settles bool               `json:"settles"`
+	Start   map[string]float64 `json:"start"`
+	Result  referenceResult    `json:"result"`
+}
+
+// referenceResult is one case's results; the named ones that are no numbers apart.
+type referenceResult struct {
+	number map[string]float64
+	below  []struct {
+		Signal                string
+		Level, Total, Longest float64
+	}
+	end map[string]float64
+}
+
+func (r *referenceResult) UnmarshalJSON(raw []byte) error {
+	var parts map[string]json.RawMessage
+	if err := json.Unmarshal(raw, &parts); err != nil {
+		return err
+	}
+	r.number = map[string]float64{}
+	for k, v := range parts {
+		var err error
+		switch k {
+		case "below":
+			err = json.Unmarshal(v, &r.below)
+		case "states_end":
+			err = json.Unmarshal(v, &r.end)
+		default:
+			number := math.NaN() // null: not found
+			if string(v) != "null" {
+				err = json.Unmarshal(v, &number)
+			}
+			r.number[k] = number
+		}
+		if err != nil {
+			return err
+		}
+	}
+	return nil
+}
+
+func (c *referenceCell) cell() Cell {
+	out := Cell{
+		GateSource: c.GateSource, Transfer: curveOf(c.Transfer), Output: curveOf(c.Output), Transconductance: c.Transconductance, Threshold: c.Threshold,
+		OnResistance: c.OnResistance, Unidirectional: c.Kind == "IGBT", GateResistance: c.GateResistance, OffBias: c.OffBias,
+		Reverse: recharge.Junction{Slope: c.Reverse.Slope, LogSaturation: c.Reverse.LogSaturation, Resistance: c.Reverse.Resistance},
+		Offset:  c.Reverse.Offset, FollowsGate: c.Reverse.Follows,
+	}
+	if r := c.Reverse.Recovery; r != nil {
+		out.Recovery = Recovery{Tau: r.Tau, Transit: r.Transit, TauRR: 1 / (1/r.Tau + 1/r.Transit)}
+	}
+	if f := c.Reverse.Forward; f != nil {
+		out.Forward = ForwardRecovery{Inductance: f.Inductance, Resistance: f.Resistance}
+	}
+	return out
+}
+
+func (c *referenceCase) bridge() *Bridge {
+	in := &c.Input
+	event := map[string]Event{"TURN_OFF": TurnOff, "TURN_ON": TurnOn, "SINKING_TURN_OFF": SinkingTurnOff, "SINKING_TURN_ON": SinkingTurnOn}
+	b := &Bridge{
+		Event: event[in.Event], Bus: in.Bus, Load: in.Load, Supply: in.Supply, LowDrive: in.LowDrive, Floating: in.Floating, L1: in.L1, L2: in.L2, R1: in.R1, R2: in.R2,
+		HighCommonSource: in.HighSource, LowCommonSource: in.LowSource, RingingResistance: in.Ringing, NodeResistor: in.Node, PinCapacitance: in.Pin,
+		BootstrapCapacitance: in.Bootstrap, Element: recharge.Element{Junction: in.Element.junction(), Resistance: in.Element.Resistance},
+		High: in.High.cell(), Low: in.Low.cell(),
+	}
+	b.Element.Junction.Resistance = 0 // in the element's
+	if in.Clamp != nil {
+		b.Clamped, b.Clamp = true, in.Clamp.junction()
+	}
+	return b
+}
+
+func (c *referenceCase) levels() (levels []float64) {
+	for _, b := range c.Result.below {
+		if b.Signal == "node" {
+			levels = append(levels, b.Level)
+		}
+	}
+	return levels
+}
+
+func referenceCases(tb testing.TB) []referenceCase {
+	tb.Helper()
+	raw, err := os.ReadFile("../../testdata/reference/event.json")
+	if err != nil {
+		tb.Fatal(err)
+	}
+	var document struct{ Cases []referenceCase }
+	if err := json.Unmarshal(raw, &document); err != nil {
+		tb.Fatal(err)
+	}
+	return document.Cases
+}
+
+// deviation of a result in the measure of its kind.
+type deviation struct {
+	kind, what string
+	value      float64 // of 1
+}
+
+// compare holds a course to the reference. Voltages of the power circuit count over V_BUS, gate voltages over the drive, V_BS over itself;
+// extremes below COM also over their own depth beyond the static drop; everything else over itself.
+func (c *referenceCase) compare(co *Course) (out []deviation) {
+	r, in := c.Result.number, &c.Input
+	add := func(kind, what string, got, want, scale float64) {
+		out = append(out, deviation{kind, what, math.Abs(got-want) / scale})
+	}
+	for _, s := range []struct {
+		signal Signal
+		name   string
+		scale  float64
+	}{
+		{Node, "node", in.Bus}, {Pin, "pin", in.Bus}, {Rail, "rail", in.Bus}, {HighDrain, "v_ds1", in.Bus}, {LowDrain, "v_ds2", in.Bus},
+		{HighGate, "v_gs1", in.Supply}, {LowGate, "v_gs2", in.Supply}, {Floating, "floating", in.Supply},
+	} {
+		g := &co.Ranges[s.signal]
+		add("peaks", s.name+"_min", g.Min, r[s.name+"_min"], s.scale)
+		add("peaks", s.name+"_max", g.Max, r[s.name+"_max"], s.scale)
+		if s.name == "node" || s.name == "pin" {
+			if depth := -r[s.name+"_min"]; depth > 0 {
+				add("undershoot over itself", s.name+"_min", g.Min, r[s.name+"_min"], depth)
+			}
+		}
+	}
+	if gain := r["floating_gain"]; math.Abs(gain) > 1e-3 {
+		add("gain", "floating_gain", co.Gain, gain, math.Abs(gain))
+	}
+	k := map[string]int{}
+	for _, b := range c.Result.below {
+		all := map[string][]Dips{"node": co.BelowNode, "pin": co.BelowPin, "rail": co.BelowRail}[b.Signal]
+		d := all[k[b.Signal]]
+		k[b.Signal]++
+		if math.Max(b.Total, d.Total) > 0 {
+			scale := math.Max(b.Total, 1e-9)
+			add("durations", "below, total", d.Total, b.Total, scale)
+			add("durations", "below, longest", d.Longest, b.Longest, scale)
+		}
+	}
+	itself := func(kind, name string, got float64) {
+		want := r[name]
+		switch {
+		case want != want && got == 0:
+		case want != want:
+			add(kind, name+", without reference", got, 0, math.Abs(got))
+		default:
+			add(kind, name, got, want, math.Abs(want))
+		}
+	}
+	itself("slopes", "slew_peak_node", co.NodeSlew)
+	itself("slopes", "slew_peak_pin", co.PinSlew)
+	itself("slopes", "slew_10_90", co.Slew)
+	itself("slopes", "didt_1", co.HighSlope)
+	itself("slopes", "didt_2", co.LowSlope)
+	itself("slopes", "didt_channel", co.ChannelSlope)
+	itself("durations", "t_channel", co.ChannelTime)
+	itself("ringing", "ring_frequency", co.RingFrequency)
+	itself("damping", "ring_damping", co.RingDamping)
+	return out
+}
+
+// TestReference holds the simulation to SciPy's LSODA at a tolerance of 1e-9, over the same window.
+func TestReference(t *testing.T) {
+	limits := map[string]float64{
+		"peaks": 0.005, "undershoot over itself": 0.005, "gain": 0.005, "durations": 0.01, "slopes": 0.01, "ringing": 0.01, "damping": 0.03,
+	}
+	var s Simulator
+	worst := map[string]deviation{}
+	for _, c := range referenceCases(t) {
+		b := c.bridge()
+		co, err := s.Run(b, Window{Limit: c.Input.End, Whole: true, Levels: c.levels()})
+		if err != nil {
+			t.Errorf("%s: %v", c.Name, err)
+			continue
+		}
+		if testing.Verbose() {
+			t.Logf("%s: %d steps, %d rejected, %d evaluations, settled %v", c.Name, co.Steps, co.Rejected, co.Evaluations, co.Settled)
+		}
+		for _, d := range c.compare(co) {
+			if d.value > worst[d.kind].value {
+				worst[d.kind] = deviation{d.kind, c.Name + ": " + d.what, d.value}
+			}
+			if !(d.value <= limits[d.kind]) {
+				t.Errorf("%s: %s deviates by %.3g %%", c.Name, d.what, 100*d.value)
+			}
+		}
+	}
+	for kind, d := range worst {
+		t.Logf("%s: %.3g %%, %s", kind, 100*d.value, d.what)
+	}
+}

@@ -1,0 +1,146 @@
+package transient
+
+import (
+	"fmt"
+	"math"
+
+	"floatrail/calc/internal/numeric"
+)
+
+// Window is how an event is watched.
+type Window struct {
+	Limit       float64     // latest end [s]
+	Whole       bool        // go on to Limit, also after the event has settled
+	Tolerance   float64     // relative tolerance of the integrator; 0: DefaultTolerance [1]
+	Levels      []float64   // voltages for which the times below are wanted [V]
+	Waveforms   []Signal    // wanted
+	Interrupted func() bool // polled now and then; true ends the run with ErrInterrupted. May be nil
+}
+
+// DefaultTolerance is the relative tolerance of a simulation, at which its peaks are within 0.5 % of the solution. [1]
+const DefaultTolerance = 1e-3
+
+const (
+	mostSteps = 20000 // of a run
+	pollEvery = 16    // steps
+)
+
+// Simulator simulates events. The zero value is ready; its memory is used again by every run, a result depends on its own run alone. Not for
+// two goroutines at once.
+type Simulator struct {
+	circuit  circuit
+	stiff    [most + 1]*numeric.Stiff // by the number of states
+	y0, atol [most]float64
+	span     span
+	watch    watch
+	calm     calm
+	spans    []span // for the waveforms
+	points   points
+	seen     func(*span) // tests look on
+}
+
+// Run simulates the event. Errors: ErrOutside with what is missing or does not fit, ErrUnsolved, ErrInterrupted.
+func (s *Simulator) Run(b *Bridge, w Window) (*Course, error) {
+	if err := b.check(); err != nil {
+		return nil, err
+	}
+	if !(w.Limit > 0) || math.IsInf(w.Limit, 1) {
+		return nil, outside("the window of %g s has no end", w.Limit)
+	}
+	rtol := w.Tolerance
+	if rtol == 0 {
+		rtol = DefaultTolerance
+	}
+	c := &s.circuit
+	c.prepare(b)
+	y := s.y0[:c.n]
+	if err := c.start(b, y); err != nil {
+		return nil, err
+	}
+	s.tolerances(b, rtol)
+	if s.stiff[c.n] == nil {
+		s.stiff[c.n] = numeric.NewStiff(c.n)
+	}
+	stiff := s.stiff[c.n]
+	if err := stiff.Start(c, y, 0, rtol, s.atol[:c.n]); err != nil {
+		return nil, fmt.Errorf("%w: %w", ErrUnsolved, err)
+	}
+	course := &Course{}
+	s.spans = s.spans[:0]
+	s.watch.begin(b, c, course, y, w.Levels)
+	s.calm.begin(b, c, course.Ranges[Node].Min)
+	if err := s.march(stiff, &w, course); err != nil {
+		return nil, err
+	}
+	at := &s.span
+	course.End = at.at(1)
+	at.states(1, s.watch.y[:])
+	s.watch.end(s.watch.y[:])
+	course.Steps, course.Rejected, course.Evaluations = stiff.Accepted, stiff.Rejected, stiff.Evaluations
+	for _, signal := range w.Waveforms {
+		if signal < 0 || signal >= signals {
+			return nil, outside("there is no waveform %d", signal)
+		}
+		course.Waveforms = append(course.Waveforms, s.waveform(signal))
+	}
+	return course, nil
+}
+
+// march steps to the end of the window.
+func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error {
+	at := &s.span
+	at.n = s.circuit.n
+	for stiff.To < w.Limit && (w.Whole || !course.Settled) {
+		if w.Interrupted != nil && stiff.Accepted%pollEvery == 0 && w.Interrupted() {
+			return ErrInterrupted
+		}
+		if err := stiff.Step(w.Limit); err != nil {
+			return fmt.Errorf("%w %.4g s after the command: %w", ErrUnsolved, stiff.To, err)
+		}
+		if stiff.Accepted > mostSteps {
+			return fmt.Errorf("%w: more than %d steps in %.4g s", ErrUnsolved, mostSteps, stiff.To)
+		}
+		at.from, at.length = stiff.From, stiff.To-stiff.From
+		for i := range at.n {
+			at.state[i] = stiff.Dense(i)
+		}
+		node := s.circuit.node.of(&at.state)
+		s.watch.pieces[Node].divide(&node)
+		if theta, ok := s.calm.over(at, &s.watch.pieces[Node]); ok {
+			course.Settled = true
+			if theta < 1 && !w.Whole {
+				at.cut(theta)
+				node = s.circuit.node.of(&at.state)
+				s.watch.pieces[Node].divide(&node)
+			}
+		}
+		s.watch.update(at)
+		if len(w.Waveforms) > 0 {
+			s.spans = append(s.spans, *at)
+		}
+		if s.seen != nil {
+			s.seen(at)
+		}
+	}
+	return nil
+}
+
+// tolerances puts the absolute tolerances, rtol of each state's natural size.
+func (s *Simulator) tolerances(b *Bridge, rtol float64) {
+	c, a := &s.circuit, &s.atol
+	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
+	current := math.Max(math.Abs(b.Load), 0.1*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
+	gate := math.Max(math.Abs(b.Floating), math.Abs(b.LowDrive))
+	a[stateI1], a[stateI2] = rtol*current, rtol*current
+	a[stateVd1], a[stateVd2], a[statePin] = rtol*0.1*b.Bus, rtol*0.1*b.Bus, rtol*0.1*b.Bus
+	a[stateVg1], a[stateVg2] = rtol*gate, rtol*gate
+	a[stateGain] = rtol * 0.1
+	for _, d := range [2]*device{&c.high, &c.low} {
+		if d.charge >= 0 {
+			a[d.charge] = rtol * current * math.Min(d.reverse.lifetime, d.reverse.transit)
+		}
+		if d.inductance >= 0 {
+			a[d.inductance] = rtol * current
+		}
+	}
+}
