@@ -68,6 +68,13 @@ func (c *condition) edge(k int) float64 {
 func (c *condition) unrest() (first, last float64) {
 	first, last = 2, -1
 	s := &c.piece
+	switch {
+	case s.least >= c.least && s.most <= c.top:
+		return first, last
+	case s.most < c.least, s.least > c.top:
+		return 0, 1
+	}
+	s.divide()
 	for k := range s.n {
 		out, before := c.outside(s.value[k]), k > 0 && c.outside(s.value[k-1])
 		switch {
@@ -86,6 +93,7 @@ func (c *condition) unrest() (first, last float64) {
 // grow beyond the band.
 func (c *calm) ring(s *piece) (first, last float64) {
 	first, last = 2, -1
+	s.divide()
 	for k := 1; k < s.n; k++ {
 		v := s.value[k]
 		bound := math.NaN()
@@ -118,7 +126,7 @@ func (c *calm) over(at *span, node *piece) (theta float64, ok bool) {
 	for k := range c.conditions {
 		q := &c.conditions[k]
 		p := q.form.of(&at.state)
-		q.piece.divide(&p)
+		q.piece.set(&p)
 		f, l := q.unrest()
 		first, last = math.Min(first, f), math.Max(last, l)
 	}

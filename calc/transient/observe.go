@@ -38,9 +38,13 @@ func (s *span) states(theta float64, y []float64) {
 	}
 }
 
-// piece is a signal on a span, divided where it turns, so that it is monotone between neighbouring points.
+// piece is a signal on a span. What surely contains its values decides whether it is looked at more closely: then it is divided where it
+// turns, so that it is monotone between neighbouring points.
 type piece struct {
-	p     numeric.Polynomial
+	p           numeric.Polynomial
+	least, most float64 // the values lie between them
+	divided     bool
+
 	theta [5]float64
 	value [5]float64
 	n     int // points, first at 0, last at 1
@@ -48,17 +52,37 @@ type piece struct {
 	high  int
 }
 
-func (s *piece) divide(p *numeric.Polynomial) {
-	s.p = *p
-	at, n := p.Stationary()
+// set takes the polynomial over. A polynomial lies between its Bernstein coefficients over [0, 1].
+func (s *piece) set(p *numeric.Polynomial) {
+	s.p, s.divided = *p, false
+	q := p[0] + p[1]/2 + p[2]/6
+	low, high := p[0], p[0]
+	for _, b := range [4]float64{p[0] + p[1]/4, q, p[0] + 0.75*p[1] + 0.5*p[2] + p[3]/4, p[0] + p[1] + p[2] + p[3] + p[4]} {
+		if b < low {
+			low = b
+		}
+		if b > high {
+			high = b
+		}
+	}
+	s.least, s.most = low, high
+}
+
+// divide finds where the signal turns.
+func (s *piece) divide() {
+	if s.divided {
+		return
+	}
+	s.divided = true
+	at, n := s.p.Stationary()
 	s.n, s.low, s.high = n+2, 0, 0
-	s.theta[0], s.value[0] = 0, p[0]
+	s.theta[0], s.value[0] = 0, s.p[0]
 	for k := 1; k < s.n; k++ {
 		theta := 1.0
 		if k <= n {
 			theta = at[k-1]
 		}
-		v := p.At(theta)
+		v := s.p.At(theta)
 		s.theta[k], s.value[k] = theta, v
 		if v < s.value[s.low] {
 			s.low = k
@@ -69,8 +93,14 @@ func (s *piece) divide(p *numeric.Polynomial) {
 	}
 }
 
-// spans tells whether the signal is on both sides of the level.
-func (s *piece) spans(level float64) bool { return s.value[s.low] <= level && s.value[s.high] > level }
+// spans tells whether the signal is on both sides of the level; then it is divided.
+func (s *piece) spans(level float64) bool {
+	if s.least > level || s.most <= level {
+		return false
+	}
+	s.divide()
+	return s.value[s.low] <= level && s.value[s.high] > level
+}
 
 // cross returns where the signal passes the level between points k-1 and k, and the direction: +1 from at or below to above it, -1 back,
 // 0 not at all.
@@ -91,6 +121,10 @@ func (s *piece) cross(k int, level float64) (theta float64, way int) {
 }
 
 func (r *Range) update(at *span, s *piece) {
+	if s.least >= r.Min && s.most <= r.Max {
+		return
+	}
+	s.divide()
 	if v := s.value[s.low]; v < r.Min {
 		r.Min, r.MinTime = v, at.at(s.theta[s.low])
 	}
@@ -185,8 +219,8 @@ func (p *passage) update(at *span, s *piece) {
 	}
 }
 
-// ringing is the highest maximum of a signal, the minimum after it and the maximum after that one. Turns of less than half of what counts as
-// ringing are passed over.
+// ringing is the highest maximum of a signal, the minimum after it and the maximum after that one. Turns of less than a twentieth of what
+// counts as ringing are passed over.
 type ringing struct {
 	least     float64 // [V]
 	t, v      [3]float64
@@ -198,6 +232,10 @@ type ringing struct {
 }
 
 func (r *ringing) update(at *span, s *piece) {
+	if r.found == 3 && s.most <= r.v[0] {
+		return
+	}
+	s.divide()
 	if !r.begun {
 		r.begun, r.turnV, r.turnT, r.direction = true, s.value[0], at.from, 1
 	}
@@ -206,7 +244,7 @@ func (r *ringing) update(at *span, s *piece) {
 		switch {
 		case d*(v-r.turnV) >= 0:
 			r.turnV, r.turnT = v, at.at(s.theta[k])
-		case d*(r.turnV-v) > r.least/2:
+		case d*(r.turnV-v) > r.least/20:
 			r.turn()
 			r.direction = -r.direction
 			r.turnV, r.turnT = v, at.at(s.theta[k])

@@ -18,7 +18,7 @@ type Window struct {
 }
 
 // DefaultTolerance is the relative tolerance of a simulation, at which its peaks are within 0.5 % of the solution. [1]
-const DefaultTolerance = 1e-3
+const DefaultTolerance = 2e-4
 
 const (
 	mostSteps = 20000 // of a run
@@ -105,13 +105,13 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 			at.state[i] = stiff.Dense(i)
 		}
 		node := s.circuit.node.of(&at.state)
-		s.watch.pieces[Node].divide(&node)
+		s.watch.pieces[Node].set(&node)
 		if theta, ok := s.calm.over(at, &s.watch.pieces[Node]); ok {
 			course.Settled = true
 			if theta < 1 && !w.Whole {
 				at.cut(theta)
 				node = s.circuit.node.of(&at.state)
-				s.watch.pieces[Node].divide(&node)
+				s.watch.pieces[Node].set(&node)
 			}
 		}
 		s.watch.update(at)
@@ -125,22 +125,24 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 	return nil
 }
 
-// tolerances puts the absolute tolerances, rtol of each state's natural size.
+// tolerances puts the absolute tolerances, rtol of a size of each state below which its own digits do not matter. For the pin that is 2 V: the
+// undershoot is judged by the volt, not by the bus.
 func (s *Simulator) tolerances(b *Bridge, rtol float64) {
+	const bus, pin, gate, charge, gain = 0.1, 2.0, 0.3, 0.3, 0.1
 	c, a := &s.circuit, &s.atol
 	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
-	current := math.Max(math.Abs(b.Load), 0.1*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
-	gate := math.Max(math.Abs(b.Floating), math.Abs(b.LowDrive))
+	current := math.Max(math.Abs(b.Load), bus*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
+	drive := gate * math.Max(math.Max(math.Abs(b.Floating), math.Abs(b.LowDrive)), 1)
 	a[stateI1], a[stateI2] = rtol*current, rtol*current
-	a[stateVd1], a[stateVd2], a[statePin] = rtol*0.1*b.Bus, rtol*0.1*b.Bus, rtol*0.1*b.Bus
-	a[stateVg1], a[stateVg2] = rtol*gate, rtol*gate
-	a[stateGain] = rtol * 0.1
+	a[stateVd1], a[stateVd2], a[statePin] = rtol*bus*b.Bus, rtol*bus*b.Bus, rtol*math.Min(bus*b.Bus, pin)
+	a[stateVg1], a[stateVg2] = rtol*drive, rtol*drive
+	a[stateGain] = rtol * gain
 	for _, d := range [2]*device{&c.high, &c.low} {
 		if d.charge >= 0 {
-			a[d.charge] = rtol * current * math.Min(d.reverse.lifetime, d.reverse.transit)
+			a[d.charge] = rtol * charge * current * math.Min(d.reverse.lifetime, d.reverse.transit)
 		}
 		if d.inductance >= 0 {
-			a[d.inductance] = rtol * current
+			a[d.inductance] = rtol * charge * current
 		}
 	}
 }

@@ -13,6 +13,7 @@ type watch struct {
 	course  *Course
 
 	pieces           [ranged]piece
+	voltage          piece // of an inductance
 	node, pin, rail  []below
 	slew             passage
 	channel          passage
@@ -26,19 +27,19 @@ type watch struct {
 	slewLow, slewTop float64 // [V]
 }
 
-// polynomials puts the signals that have a range over the span into the pieces, those without the node, which the run divides itself.
-func (w *watch) polynomials(at *span) {
+// set puts the signals that have a range over the span into the pieces, without the node, which the run has put there.
+func (w *watch) set(at *span) {
 	c := w.circuit
 	rail := c.rail.of(&at.state)
 	floating := at.state[stateGain]
 	floating[0] += c.floating
-	w.pieces[Pin].divide(&at.state[statePin])
-	w.pieces[Rail].divide(&rail)
-	w.pieces[Floating].divide(&floating)
-	w.pieces[HighDrain].divide(&at.state[stateVd1])
-	w.pieces[LowDrain].divide(&at.state[stateVd2])
-	w.pieces[HighGate].divide(&at.state[stateVg1])
-	w.pieces[LowGate].divide(&at.state[stateVg2])
+	w.pieces[Pin].set(&at.state[statePin])
+	w.pieces[Rail].set(&rail)
+	w.pieces[Floating].set(&floating)
+	w.pieces[HighDrain].set(&at.state[stateVd1])
+	w.pieces[LowDrain].set(&at.state[stateVd2])
+	w.pieces[HighGate].set(&at.state[stateVg1])
+	w.pieces[LowGate].set(&at.state[stateVg2])
 }
 
 func (w *watch) begin(b *Bridge, c *circuit, course *Course, y []float64, levels []float64) {
@@ -79,7 +80,7 @@ func (w *watch) begin(b *Bridge, c *circuit, course *Course, y []float64, levels
 // update takes in one span.
 func (w *watch) update(at *span) {
 	course := w.course
-	w.polynomials(at)
+	w.set(at)
 	for k := range w.pieces {
 		course.Ranges[k].update(at, &w.pieces[k])
 	}
@@ -105,21 +106,27 @@ func (w *watch) update(at *span) {
 // slopes takes the steepest current of both inductances.
 func (w *watch) slopes(at *span) {
 	u1, u2 := w.circuit.u1.of(&at.state), w.circuit.u2.of(&at.state)
-	most := func(p *numeric.Polynomial, perL float64, best *float64) {
-		low, high := p.Extremes()
-		*best = math.Max(*best, math.Max(-low.Value, high.Value)*perL)
+	w.slope(&u1, w.circuit.perL1, &w.course.HighSlope)
+	w.slope(&u2, w.circuit.perL2, &w.course.LowSlope)
+}
+
+func (w *watch) slope(p *numeric.Polynomial, perL float64, best *float64) {
+	s := &w.voltage
+	s.set(p)
+	if math.Max(-s.least, s.most)*perL > *best {
+		s.divide()
+		*best = math.Max(*best, math.Max(-s.value[s.low], s.value[s.high])*perL)
 	}
-	most(&u1, w.circuit.perL1, &w.course.HighSlope)
-	most(&u2, w.circuit.perL2, &w.course.LowSlope)
 }
 
 // slews takes the steepest voltages while the node is between the levels. The rates are those of the equations at the states of the dense
 // output; where even the derivative of the dense output is far below what has been found, nothing is evaluated.
 func (w *watch) slews(at *span) {
 	s := &w.pieces[Node]
-	if s.value[s.high] <= w.slewLow || s.value[s.low] >= w.slewTop {
+	if s.most <= w.slewLow || s.least >= w.slewTop {
 		return
 	}
+	s.divide()
 	for k := 1; k < s.n; k++ {
 		a, b := s.theta[k-1], s.theta[k]
 		va, vb := s.value[k-1], s.value[k]

@@ -61,7 +61,8 @@ func (s *Simulator) waveform(signal Signal) Waveform {
 	for k := range s.spans {
 		at := &s.spans[k]
 		if q, ok := s.circuit.polynomial(signal, at); ok {
-			turns.divide(&q)
+			turns.set(&q)
+			turns.divide()
 			i := 1
 			if k == 0 {
 				p.add(at.from, q[0])
