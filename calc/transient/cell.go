@@ -6,6 +6,8 @@ import "math"
 type device struct {
 	gateSource         float64
 	transfer, output   capacity
+	atOutput           place // of C_oss at v_ds
+	atTransfer, atGate place // of C_rss at v_ds and at v_ds - v_gs
 	gfs, threshold     float64
 	onResistance       float64
 	oneWay             bool
@@ -22,7 +24,7 @@ func (d *device) prepare(c *Cell, load float64, gate, next int) int {
 	d.gateSource, d.gfs, d.threshold, d.onResistance, d.oneWay = c.GateSource, c.Transconductance, c.Threshold, c.OnResistance, c.Unidirectional
 	d.offBias, d.follows, d.diode = c.OffBias, c.FollowsGate && !c.Diode, c.Diode
 	d.output.prepare(&c.Output)
-	d.transfer.x = d.transfer.x[:0]
+	d.atOutput, d.atTransfer, d.atGate = place{}, place{}, place{} // nowhere
 	if !c.Diode {
 		d.transfer.prepare(&c.Transfer)
 	}
@@ -48,21 +50,17 @@ type capacitances struct {
 }
 
 func (d *device) capacitances(vg, vd float64) (c capacitances) {
-	u, du := abscissa(vd)
-	oss, p := d.output.at(u)
-	c.ds, c.dsSlope = oss, oss*p*du
+	c.ds, c.dsSlope = d.output.at(vd, &d.atOutput)
 	if d.diode {
 		return c
 	}
-	rss, r := d.transfer.at(u)
-	if rest := oss - rss; rest > leastShare*oss {
-		c.ds, c.dsSlope = rest, (oss*p-rss*r)*du
+	rss, slope := d.transfer.at(vd, &d.atTransfer)
+	if rest := c.ds - rss; rest > leastShare*c.ds {
+		c.ds, c.dsSlope = rest, c.dsSlope-slope
 	} else {
 		c.ds, c.dsSlope = leastShare*c.ds, leastShare*c.dsSlope
 	}
-	u, du = abscissa(vd - vg)
-	c.gd, r = d.transfer.at(u)
-	c.gdSlope = c.gd * r * du
+	c.gd, c.gdSlope = d.transfer.at(vd-vg, &d.atGate)
 	return c
 }
 

@@ -45,8 +45,8 @@ type piece struct {
 	least, most float64 // the values lie between them
 	divided     bool
 
-	theta [5]float64
-	value [5]float64
+	theta [4]float64
+	value [4]float64
 	n     int // points, first at 0, last at 1
 	low   int // of the lowest and of the highest point
 	high  int
@@ -55,9 +55,8 @@ type piece struct {
 // set takes the polynomial over. A polynomial lies between its Bernstein coefficients over [0, 1].
 func (s *piece) set(p *numeric.Polynomial) {
 	s.p, s.divided = *p, false
-	q := p[0] + p[1]/2 + p[2]/6
 	low, high := p[0], p[0]
-	for _, b := range [4]float64{p[0] + p[1]/4, q, p[0] + 0.75*p[1] + 0.5*p[2] + p[3]/4, p[0] + p[1] + p[2] + p[3] + p[4]} {
+	for _, b := range [3]float64{p[0] + p[1]/3, p[0] + (2*p[1]+p[2])/3, p[0] + p[1] + p[2] + p[3]} {
 		if b < low {
 			low = b
 		}

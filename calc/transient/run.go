@@ -18,7 +18,7 @@ type Window struct {
 }
 
 // DefaultTolerance is the relative tolerance of a simulation, at which its peaks are within 0.5 % of the solution. [1]
-const DefaultTolerance = 2e-4
+const DefaultTolerance = 3e-4
 
 const (
 	mostSteps = 20000 // of a run
