@@ -9,6 +9,7 @@ import (
 const (
 	lowLevel, highLevel = 0.1, 0.9 // of V_BUS or of |I|, ends of a passage [1]
 	leastRing           = 0.002    // of V_BUS: a smaller ringing is none [1]
+	leastTurn           = 0.001    // of V_BUS: where a signal comes back by less it has not turned [1]
 )
 
 // span is one step, or the part of it that belongs to the window, with the states over it.
@@ -218,10 +219,11 @@ func (p *passage) update(at *span, s *piece) {
 	}
 }
 
-// ringing is the highest maximum of a signal, the minimum after it and the maximum after that one. Turns of less than a twentieth of what
-// counts as ringing are passed over.
+// ringing is the highest maximum of a signal, the minimum after it and the maximum after that one. Where the signal comes
+// back by no more than a ripple it has not turned.
 type ringing struct {
-	least     float64 // [V]
+	least     float64 // e2 - e1 of a ringing [V]
+	ripple    float64 // [V]
 	t, v      [3]float64
 	found     int // 1: a maximum, 2: and a minimum, 3: both maxima
 	direction int // of the signal since its last turn
@@ -243,7 +245,7 @@ func (r *ringing) update(at *span, s *piece) {
 		switch {
 		case d*(v-r.turnV) >= 0:
 			r.turnV, r.turnT = v, at.at(s.theta[k])
-		case d*(r.turnV-v) > r.least/20:
+		case d*(r.turnV-v) > r.ripple:
 			r.turn()
 			r.direction = -r.direction
 			r.turnV, r.turnT = v, at.at(s.theta[k])

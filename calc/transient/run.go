@@ -21,7 +21,7 @@ type Window struct {
 const DefaultTolerance = 3e-4
 
 const (
-	mostSteps = 20000 // of a run
+	mostSteps = 50000 // of a run
 	pollEvery = 16    // steps
 )
 
@@ -128,7 +128,7 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 // tolerances puts the absolute tolerances, rtol of a size of each state below which its own digits do not matter. For the pin that is 2 V: the
 // undershoot is judged by the volt, not by the bus.
 func (s *Simulator) tolerances(b *Bridge, rtol float64) {
-	const bus, pin, gate, charge, gain = 0.1, 2.0, 0.3, 0.3, 0.1
+	const bus, pin, gate, charge, gain = 0.1, 2.0, 1.0, 1.0, 0.1
 	c, a := &s.circuit, &s.atol
 	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
 	current := math.Max(math.Abs(b.Load), bus*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))

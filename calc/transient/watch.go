@@ -20,6 +20,7 @@ type watch struct {
 	channelSince     float64 // its value at the end of the last span [A]
 	ring             ringing
 	ringing          Signal
+	everyTurn        bool // tests: no ripple is too small
 	commanded        *device
 	commandedGate    Signal
 	gateCharge       float64 // out of C_B into the high side's gate [C]
@@ -73,7 +74,10 @@ func (w *watch) begin(b *Bridge, c *circuit, course *Course, y []float64, levels
 	w.slew = newPassage(w.slewLow, w.slewTop, b.Event.falls())
 	w.channel = newPassage(lowLevel*load, highLevel*load, b.Event.off())
 	w.channelSince, _, _ = w.commanded.channel(y[w.commanded.gate], y[w.commanded.drain])
-	w.ring = ringing{least: leastRing * b.Bus}
+	w.ring = ringing{least: leastRing * b.Bus, ripple: leastTurn * b.Bus}
+	if w.everyTurn {
+		w.ring.ripple = 0
+	}
 	w.gateCharge = 0
 }
 
