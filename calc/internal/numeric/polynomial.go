@@ -78,7 +78,7 @@ func (p Polynomial) Crossing(level, a, b float64, direction int) (theta float64,
 }
 
 // Stationary is the places strictly within (0, 1) at which p turns, in rising order. The formula of the quadratic subtracts no
-// nearly equal numbers outside the discriminant and holds for a leading coefficient of 0.
+// nearly equal numbers outside the discriminant and holds for a leading coefficient of 0; for coefficients up to 1e150.
 func (p Polynomial) Stationary() (theta [2]float64, n int) {
 	c0, c1, c2 := p[1], 2*p[2], 3*p[3]
 	// Bernstein's coefficients of the derivative over [0, 1]: without a change of sign among them it has no root there
