@@ -18,7 +18,7 @@ type Window struct {
 }
 
 // DefaultTolerance is the relative tolerance of a simulation, at which its peaks are within 0.5 % of the solution. [1]
-const DefaultTolerance = 3e-4
+const DefaultTolerance = 5e-4
 
 const (
 	mostSteps = 50000 // of a run
@@ -28,15 +28,16 @@ const (
 // Simulator simulates events. The zero value is ready; its memory is used again by every run, a result depends on its own run alone. Not for
 // two goroutines at once.
 type Simulator struct {
-	circuit  circuit
-	stiff    [most + 1]*numeric.Stiff // by the number of states
-	y0, atol [most]float64
-	span     span
-	watch    watch
-	calm     calm
-	spans    []span // for the waveforms
-	points   points
-	seen     func(*span) // tests look on
+	circuit         circuit
+	stiff           [most + 1]*numeric.Stiff // by the number of states
+	y0, atol, sizes [most]float64
+	rtol, bus       float64
+	span            span
+	watch           watch
+	calm            calm
+	spans           []span // for the waveforms
+	points          points
+	seen            func(*span) // tests look on
 }
 
 // Run simulates the event. Errors: ErrOutside with what is missing or does not fit, ErrUnsolved, ErrInterrupted.
@@ -57,12 +58,14 @@ func (s *Simulator) Run(b *Bridge, w Window) (*Course, error) {
 	if err := c.start(b, y); err != nil {
 		return nil, err
 	}
-	s.tolerances(b, rtol)
+	s.bus, s.rtol = b.Bus, rtol
+	s.setSizes(b)
+	s.tolerate(y, rtol, s.atol[:c.n])
 	if s.stiff[c.n] == nil {
 		s.stiff[c.n] = numeric.NewStiff(c.n)
 	}
 	stiff := s.stiff[c.n]
-	if err := stiff.Start(c, y, 0, rtol, s.atol[:c.n]); err != nil {
+	if err := stiff.Start(c, y, 0, 0, s.atol[:c.n]); err != nil {
 		return nil, fmt.Errorf("%w: %w", ErrUnsolved, err)
 	}
 	course := &Course{}
@@ -94,6 +97,7 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 		if w.Interrupted != nil && stiff.Accepted%pollEvery == 0 && w.Interrupted() {
 			return ErrInterrupted
 		}
+		s.tolerate(stiff.Y1, s.rtol, stiff.Tolerances())
 		if err := stiff.Step(w.Limit); err != nil {
 			return fmt.Errorf("%w %.4g s after the command: %w", ErrUnsolved, stiff.To, err)
 		}
@@ -125,24 +129,37 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 	return nil
 }
 
-// tolerances puts the absolute tolerances, rtol of a size of each state below which its own digits do not matter. For the pin that is 2 V: the
-// undershoot is judged by the volt, not by the bus.
-func (s *Simulator) tolerances(b *Bridge, rtol float64) {
-	const bus, pin, gate, charge, gain = 0.1, 2.0, 1.0, 1.0, 0.1
-	c, a := &s.circuit, &s.atol
+// setSizes puts the size of each state below which its own digits do not matter. For the pin that is 2 V: the undershoot is judged by the volt,
+// not by the bus.
+func (s *Simulator) setSizes(b *Bridge) {
+	const bus, pin, gain = 0.1, 2.0, 0.1 // of V_BUS; [V], [V]
+	c, a := &s.circuit, &s.sizes
 	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
 	current := math.Max(math.Abs(b.Load), bus*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
-	drive := gate * math.Max(math.Max(math.Abs(b.Floating), math.Abs(b.LowDrive)), 1)
-	a[stateI1], a[stateI2] = rtol*current, rtol*current
-	a[stateVd1], a[stateVd2], a[statePin] = rtol*bus*b.Bus, rtol*bus*b.Bus, rtol*math.Min(bus*b.Bus, pin)
-	a[stateVg1], a[stateVg2] = rtol*drive, rtol*drive
-	a[stateGain] = rtol * gain
+	drive := math.Max(math.Max(math.Abs(b.Floating), math.Abs(b.LowDrive)), 1)
+	a[stateI1], a[stateI2] = current, current
+	a[stateVd1], a[stateVd2], a[statePin] = bus*b.Bus, bus*b.Bus, math.Min(bus*b.Bus, pin)
+	a[stateVg1], a[stateVg2] = drive, drive
+	a[stateGain] = gain
 	for _, d := range [2]*device{&c.high, &c.low} {
 		if d.charge >= 0 {
-			a[d.charge] = rtol * charge * current * math.Min(d.reverse.lifetime, d.reverse.transit)
+			a[d.charge] = current * math.Min(d.reverse.lifetime, d.reverse.transit)
 		}
 		if d.inductance >= 0 {
-			a[d.inductance] = rtol * charge * current
+			a[d.inductance] = current
 		}
+	}
+}
+
+// tolerate puts the tolerances at the states y: rtol of what is left of each state, beyond its size. The digits of a voltage of the power circuit
+// count from the nearer rail, for there lie the drops of what conducts, the undershoot and the kinks of the capacitances; and what one switch
+// lacks to V_BUS is what the other one has.
+func (s *Simulator) tolerate(y []float64, rtol float64, atol []float64) {
+	for i, v := range y {
+		v = math.Abs(v)
+		if i == stateVd1 || i == stateVd2 || i == statePin {
+			v = math.Min(v, math.Abs(s.bus-v))
+		}
+		atol[i] = rtol * (s.sizes[i] + v)
 	}
 }
