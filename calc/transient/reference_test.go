@@ -6,6 +6,7 @@ import (
 	"os"
 	"testing"
 
+	"floatrail/calc/internal/numeric"
 	"floatrail/calc/recharge"
 )
 
@@ -172,7 +173,8 @@ type deviation struct {
 }
 
 // compare holds a course to the reference. Voltages of the power circuit count over V_BUS, gate voltages over the drive, V_BS over itself;
-// extremes below COM over their own depth as well; everything else over itself, damping absolutely. Durations below a level count over
+// extremes below COM over their own depth as well; everything else over itself, di/dt over 2 % of V_BUS/L where it is
+// less. Durations below a level count over
 // themselves where the level may move by 0.3 % of the deepest point: close to the bottom of a dip its length says nothing else.
 func (c *referenceCase) compare(co, lower, upper *Course) (out []deviation) {
 	r, in := c.Result.number, &c.Input
@@ -227,8 +229,12 @@ func (c *referenceCase) compare(co, lower, upper *Course) (out []deviation) {
 	itself("slopes", "slew_peak_node", co.NodeSlew)
 	itself("slopes", "slew_peak_pin", co.PinSlew)
 	itself("slopes", "slew_10_90", co.Slew)
-	itself("slopes", "didt_1", co.HighSlope)
-	itself("slopes", "didt_2", co.LowSlope)
+	for _, d := range []struct {
+		name   string
+		got, l float64
+	}{{"didt_1", co.HighSlope, in.L1}, {"didt_2", co.LowSlope, in.L2}} {
+		add("slopes", d.name, d.got, r[d.name], math.Max(r[d.name], 0.02*in.Bus/d.l))
+	}
 	itself("slopes", "didt_channel", co.ChannelSlope)
 	itself("durations", "t_channel", co.ChannelTime)
 	return out
@@ -259,12 +265,71 @@ func (w *worst) report(t *testing.T) {
 	}
 }
 
-// ringing is the deviation of frequency and damping from those wanted, absent where there is no ringing.
-func ringingDeviation(co *Course, frequency, damping float64) []deviation {
-	if !(frequency > 0) { // null
+// ringingDeviation is the deviation of frequency and damping, the latter absolute, from the nearest of those wanted; none: no ringing.
+func ringingDeviation(co *Course, wanted [][2]float64) (out []deviation) {
+	if len(wanted) == 0 {
 		return []deviation{{"ringing", "ringing where there is none", co.RingFrequency}}
 	}
-	return []deviation{{"ringing", "frequency", math.Abs(co.RingFrequency/frequency - 1)}, {"damping", "damping", math.Abs(co.RingDamping - damping)}}
+	best := math.Inf(1)
+	for _, w := range wanted {
+		if d := math.Abs(co.RingFrequency/w[0] - 1); d < best {
+			best = d
+			out = []deviation{{"ringing", "frequency", d}, {"damping", "damping", math.Abs(co.RingDamping - w[1])}}
+		}
+	}
+	return out
+}
+
+func boolean(b bool) int {
+	if b {
+		return 1
+	}
+	return 0
+}
+
+// turns collects the turns of the signal that rings.
+type turns struct {
+	signal func(at *span) numeric.Polynomial
+	piece  piece
+	t, v   []float64
+}
+
+func (r *turns) seen(at *span) {
+	p := r.signal(at)
+	r.piece.set(&p)
+	r.piece.divide()
+	for k := 1; k < r.piece.n-1; k++ {
+		r.t, r.v = append(r.t, at.at(r.piece.theta[k])), append(r.v, r.piece.value[k])
+	}
+}
+
+// wanted are frequency and damping from each maximum that is the highest one within what counts as ringing: where two tops are level, the smallest
+// error decides which is the higher one. Turns smaller than a ripple do not count.
+func (r *turns) wanted(bus float64) (out [][2]float64) {
+	t, v := []float64{}, []float64{}
+	for k := range r.t {
+		n := len(v)
+		switch {
+		case n > 1 && (v[n-1] > v[n-2]) == (r.v[k] > v[n-1]): // on in the same direction
+			t[n-1], v[n-1] = r.t[k], r.v[k]
+		case n > 0 && math.Abs(r.v[k]-v[n-1]) <= leastTurn*bus: // a ripple
+		default:
+			t, v = append(t, r.t[k]), append(v, r.v[k])
+		}
+	}
+	top := math.Inf(-1)
+	for _, x := range v {
+		top = math.Max(top, x)
+	}
+	for k := 0; k+2 < len(v); k++ {
+		e0, e1, e2 := v[k], v[k+1], v[k+2]
+		if e0 < top-leastRing*bus || e0 < e1 || e2 < e1 || e0 < e2 || e2-e1 < leastRing*bus {
+			continue
+		}
+		x := math.Log((e0 - e1) / (e2 - e1))
+		out = append(out, [2]float64{1 / (t[k+2] - t[k]), x / math.Sqrt(math.Pi*math.Pi+x*x)})
+	}
+	return out
 }
 
 func (c *referenceCase) run(t *testing.T, s *Simulator, tolerance, levelFactor float64) *Course {
@@ -296,7 +361,11 @@ func TestReferenceTight(t *testing.T) {
 	for _, c := range cases {
 		co := c.run(t, &s, 1e-7, 0)
 		w.take(t, c.Name, c.compare(co, co, co))
-		w.take(t, c.Name, ringingDeviation(co, c.Result.number["ring_frequency"], c.Result.number["ring_damping"]))
+		var wanted [][2]float64
+		if f := c.Result.number["ring_frequency"]; f > 0 {
+			wanted = [][2]float64{{f, c.Result.number["ring_damping"]}}
+		}
+		w.take(t, c.Name, ringingDeviation(co, wanted))
 		end, l := c.Result.end, &co.Last
 		load, bus := math.Abs(c.Input.Load), c.Input.Bus
 		for name, v := range map[string][2]float64{
@@ -310,19 +379,23 @@ func TestReferenceTight(t *testing.T) {
 	w.report(t)
 }
 
-// TestReference holds the default tolerance to the reference: peaks within 0.5 %, durations within 1 %; and to ten times the tolerance, as an
-// answer reports it, what rings included.
+// TestReference holds the default tolerance to the reference: peaks within 0.5 %, durations and slopes within 1 %; and to a fine run of its own what
+// rings, frequency within 4 % as its tops are flat.
 func TestReference(t *testing.T) {
 	w := worst{map[string]float64{
-		"peaks": 0.005, "undershoot over itself": 0.005, "gain": 0.005, "durations": 0.01, "slopes": 0.01, "ringing": 0.01, "damping": 0.005,
+		"peaks": 0.005, "undershoot over itself": 0.005, "gain": 0.005, "durations": 0.01, "slopes": 0.01, "ringing": 0.04, "damping": 0.01,
 	}, map[string]deviation{}}
 	var s Simulator
+	const fine = 1e-6
 	steps, rejected, evaluations := 0, 0, 0
 	for _, c := range referenceCases(t) {
 		co := c.run(t, &s, 0, 0)
-		fine := c.run(t, &s, DefaultTolerance/1000, 0)
-		w.take(t, c.Name, c.compare(co, c.run(t, &s, DefaultTolerance/1000, -0.003), c.run(t, &s, DefaultTolerance/1000, 0.003)))
-		w.take(t, c.Name, ringingDeviation(co, fine.RingFrequency, fine.RingDamping))
+		r := turns{signal: func(at *span) numeric.Polynomial { return at.state[stateVd1+2*boolean(!c.bridge().Event.falls())] }}
+		s.seen = r.seen
+		c.run(t, &s, fine, 0)
+		s.seen = nil
+		w.take(t, c.Name, c.compare(co, c.run(t, &s, fine, -0.003), c.run(t, &s, fine, 0.003)))
+		w.take(t, c.Name, ringingDeviation(co, r.wanted(c.Input.Bus)))
 		steps, rejected, evaluations = steps+co.Steps, rejected+co.Rejected, evaluations+co.Evaluations
 		if co.Settled != c.Settles {
 			t.Errorf("%s: settled %v by the time the reference says %v", c.Name, co.Settled, c.Settles)

@@ -151,13 +151,12 @@ func (s *Simulator) setSizes(b *Bridge) {
 	}
 }
 
-// tolerate puts the tolerances at the states y: rtol of what is left of each state, beyond its size. The digits of a voltage of the power circuit
-// count from the nearer rail, for there lie the drops of what conducts, the undershoot and the kinks of the capacitances; and what one switch
-// lacks to V_BUS is what the other one has.
+// tolerate puts the tolerances at the states y: rtol of what is left of each state, beyond its size. While the node is low,
+// the high side's voltage counts by what it lacks to V_BUS: what is wrong with it is wrong with the undershoot.
 func (s *Simulator) tolerate(y []float64, rtol float64, atol []float64) {
 	for i, v := range y {
 		v = math.Abs(v)
-		if i == stateVd1 || i == stateVd2 || i == statePin {
+		if i == stateVd1 {
 			v = math.Min(v, math.Abs(s.bus-v))
 		}
 		atol[i] = rtol * (s.sizes[i] + v)
