@@ -132,7 +132,7 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 // setSizes puts the size of each state below which its own digits do not matter. For the pin that is 2 V: the undershoot is judged by the volt,
 // not by the bus.
 func (s *Simulator) setSizes(b *Bridge) {
-	const bus, pin, gain = 0.1, 2.0, 0.1 // of V_BUS; [V], [V]
+	const bus, pin, gain = 0.1, 2.0, 0.01 // of V_BUS; [V], [V]
 	c, a := &s.circuit, &s.sizes
 	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
 	current := math.Max(math.Abs(b.Load), bus*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
