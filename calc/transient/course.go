@@ -13,6 +13,7 @@ type Dips struct {
 	Longest float64 // the longest time without a break [s]
 	Start   float64 // when that one began [s]
 	Count   int     // number of times
+	Lasting bool    // the last of them still went on at the end of the window
 }
 
 // Signal names a waveform.

@@ -267,6 +267,7 @@ func (w *watch) end(y []float64) {
 		for k := range all {
 			if all[k].inside {
 				all[k].close(course.End)
+				all[k].Lasting = true
 			}
 			out[k] = all[k].Dips
 		}
