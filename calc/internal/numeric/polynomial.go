@@ -69,9 +69,6 @@ func (p Polynomial) Crossing(level, a, b float64, direction int) (theta float64,
 		if left < 0 && right >= 0 && direction >= 0 || left > 0 && right <= 0 && direction <= 0 {
 			return p.between(level, a, end, left, right), true
 		}
-		if end == b {
-			break
-		}
 		a, left = end, right
 	}
 	return math.NaN(), false
