@@ -88,10 +88,7 @@ func (p Polynomial) Stationary() (theta [2]float64, n int) {
 		return theta, 0
 	}
 	q := -0.5 * (c1 + math.Copysign(math.Sqrt(d), c1))
-	x, y := c0/q, q/c2
-	if x > y {
-		x, y = y, x
-	}
+	x, y := c0/q, q/c2 // |x| < |y|
 	if x > 0 && x < 1 {
 		theta[0], n = x, 1
 	}
