@@ -41,8 +41,10 @@ func goOn(t testing.TB, s *Stiff, end float64) {
 	}
 }
 
-// Robertson's kinetics, Hairer and Wanner, "Solving ODEs II", eq. IV.1.4. Reference at t = 40: 0.7158270687, 9.185534764e-6,
-// 0.2841637457 from memory, with the digits beyond by SciPy 1.17's Radau method as published with a test of another solver.
+// Robertson's kinetics, Hairer and Wanner, "Solving ODEs II", eq. IV.1.4. Reference at t = 40: problem D2 of the test package for
+// stiff methods of Enright and Pryce (ACM Transactions on Mathematical Software 13(1), 1987, algorithm 648; the title from
+// memory), whose states 2 and 3 are 1e4 and 1e2 times these; Hairer and Wanner's 0.7158270687, 9.185534764e-6, 0.2841637457,
+// from memory, agree.
 func TestRobertson(t *testing.T) {
 	p := model{
 		func(y, dy []float64) bool {
