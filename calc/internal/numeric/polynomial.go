@@ -69,9 +69,6 @@ func (p Polynomial) Crossing(level, a, b float64, direction int) (theta float64,
 		if left < 0 && right >= 0 && direction >= 0 || left > 0 && right <= 0 && direction <= 0 {
 			return p.between(level, a, end, left, right), true
 		}
-		if end == b {
-			break
-		}
 		a, left = end, right
 	}
 	return math.NaN(), false
@@ -91,10 +88,7 @@ func (p Polynomial) Stationary() (theta [2]float64, n int) {
 		return theta, 0
 	}
 	q := -0.5 * (c1 + math.Copysign(math.Sqrt(d), c1))
-	x, y := c0/q, q/c2
-	if x > y {
-		x, y = y, x
-	}
+	x, y := c0/q, q/c2 // |x| < |y|
 	if x > 0 && x < 1 {
 		theta[0], n = x, 1
 	}

@@ -35,6 +35,7 @@ func TestStationary(t *testing.T) {
 		"turns at both ends":        {Polynomial{0, 0, 3, -2}, nil},
 		"leading coefficient fades": {Polynomial{0, -1, 1, 1e-300}, []float64{0.5}},
 		"large scale":               {Polynomial{0, -1e150, 1e150, 0}, []float64{0.5}},
+		"cubic, falling":            {Polynomial{0, -3. / 16 * 3, 1.5, -1}, []float64{0.25, 0.75}},
 		"NaN":                       {Polynomial{0, math.NaN(), 1, 1}, nil},
 	} {
 		at, n := c.p.Stationary()
@@ -109,6 +110,8 @@ func TestCrossing(t *testing.T) {
 		"wave, first":                  {wave, 0.03125, 0, 1, 0, 0.0669872981077807},  // 1/2 - sqrt(3)/4, rounded
 		"wave, second":                 {wave, 0.03125, 0.1, 1, 0, 0.5},               // level and wave are symmetric about 1/2
 		"wave, third":                  {wave, 0.03125, 0.1, 1, 1, 0.933012701892219}, // 1/2 + sqrt(3)/4, rounded
+		"wave, third from behind":      {wave, 0.03125, 0.6, 1, 0, 0.933012701892219},
+		"peak, before it":              {peak, 0.1875, 0, 0.2, 0, math.NaN()},
 		"wave, to the bottom":          {wave, 0, 0.1, 1, 0, 0.75},
 		"NaN":                          {Polynomial{math.NaN(), 1}, 0, 0, 1, 0, math.NaN()},
 		"steep in one corner":          {Polynomial{-1, 1e9, 0, 1}, 0, 0, 1, 1, 1e-9},

@@ -14,9 +14,9 @@ const (
 //	y1 = y0 + Σ a_6k·u_k + u_6, error estimate u_6                          (2)
 //	y(θ) = (1-θ)·y0 + θ·(y1 + (1-θ)·Σ (d_1k + θ·d_2k)·u_k)                  (3)
 //
-// Rodas5P of Steinebach (BIT Numerical Mathematics 63, 27, 2023), order 5(4) in 8 stages, takes two thirds of the steps at a
-// given tolerance, but no less time at equal accuracy of the peaks of switching events: the kinks of interpolated capacitances
-// take the gain of the higher order.
+// Rodas5P of Steinebach (BIT Numerical Mathematics 63, 27, 2023), order 5(4) in 8 stages, takes 0.7 of the steps at a given
+// tolerance, but about 1.15 of the time at equal accuracy of the peaks of switching events: the kinks of interpolated
+// capacitances take the gain of the higher order, and the turns of its quartics have no closed form.
 var table = struct {
 	a, c [stages][stages]float64
 	d    [2][stages]float64
