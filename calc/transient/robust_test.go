@@ -23,7 +23,7 @@ func randomBridge(seed uint64) *Bridge {
 	if bus > 30 {
 		drive = span(5, 20)
 	}
-	figure := span(0.3, 3) // of merit
+	figure := span(0.3, 3)                        // of merit
 	size := span(0.3, 3) * math.Max(load, 4) / 20 // parts are not made arbitrarily small
 	junction := func(current, drop float64) recharge.Junction {
 		slope := span(0.026, 0.055)

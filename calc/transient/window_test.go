@@ -267,7 +267,9 @@ func TestUnusualParts(t *testing.T) {
 	}{
 		{"no series resistance", func(b *Bridge) { b.Low.Reverse.Resistance = 0 }, 0.02},
 		{"tiny series resistance", func(b *Bridge) { b.Low.Reverse.Resistance = 1e-9 }, 0.02},
-		{"fixed drop", func(b *Bridge) { b.Low.Reverse = recharge.Junction{Slope: 1e-5, LogSaturation: math.Log(30) - 0.88/1e-5} }, 0.02},
+		{"fixed drop", func(b *Bridge) {
+			b.Low.Reverse = recharge.Junction{Slope: 1e-5, LogSaturation: math.Log(30) - 0.88/1e-5}
+		}, 0.02},
 		{"ideal diode", func(b *Bridge) { b.Low.Reverse = recharge.Junction{} }, 0.15},
 		{"no R_VS, tiny R_VS", func(b *Bridge) { b.NodeResistor = 1e-6 }, 0.001},
 		{"no ringing resistance", func(b *Bridge) { b.RingingResistance = 0; b.R1, b.R2 = 0.1, 0.1 }, 0.5},
