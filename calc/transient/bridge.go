@@ -37,7 +37,7 @@ type Cell struct {
 	OffBias          float64           // gate drive while off, 0 or negative [V]
 	Reverse          recharge.Junction // static law of the reverse path
 	Offset           float64           // constant part of its drop, of a HEMT that its off bias holds off [V]
-	FollowsGate      bool              // the reverse path opens with v_gs, so that Offset holds at v_gs = OffBias, and less by what v_gs is above it up to V_th
+	FollowsGate      bool              // a HEMT opens backwards with v_gs: Offset holds at OffBias, less what v_gs is above that, up to V_th
 	Recovery         Recovery          // zero: its charge follows at once
 	Forward          ForwardRecovery   // zero: none
 	Diode            bool              // no switch, a diode: Output is its capacitance; what belongs to channel and gate is not used
@@ -112,7 +112,8 @@ func (b *Bridge) check() error {
 	}
 	err := checked("", []quantity{
 		{"the bus voltage", b.Bus, true, 0}, {"the load current", b.Load, false, any}, {"the gate supply", b.Supply, false, any},
-		{"the low side's drive", b.LowDrive, false, any}, {"the floating voltage", b.Floating, false, any}, {"the bias taken out of V_BS", b.Split, false, any},
+		{"the low side's drive", b.LowDrive, false, any}, {"the floating voltage", b.Floating, false, any},
+		{"the bias taken out of V_BS", b.Split, false, any},
 		{"L1", b.L1, true, 0}, {"L2", b.L2, true, 0}, {"R1", b.R1, false, 0}, {"R2", b.R2, false, 0},
 		{"the high side's common source inductance", b.HighCommonSource, false, 0}, {"the low side's common source inductance", b.LowCommonSource, false, 0},
 		{"the ringing resistance", b.RingingResistance, false, 0}, {"the node resistor", b.NodeResistor, false, 0},

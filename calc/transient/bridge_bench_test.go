@@ -2,10 +2,13 @@ package transient
 
 import "testing"
 
-// BenchmarkEvent simulates events that ring, one of them for 400 ns.
+// BenchmarkEvent simulates events that ring, each for 400 ns.
 func BenchmarkEvent(b *testing.B) {
 	for _, c := range referenceCases(b) {
-		for _, name := range []string{"mosfet48, turn_off, fast", "mosfet48, turn_off, fast, q 25.0", "gan100, sinking_turn_on, fast", "superjunction400, turn_on, fast", "igbt400, turn_off, fast", "mosfet48, turn_on, fast"} {
+		for _, name := range []string{
+			"mosfet48, turn_off, fast", "mosfet48, turn_off, fast, q 25.0", "gan100, sinking_turn_on, fast", "superjunction400, turn_on, fast",
+			"igbt400, turn_off, fast", "mosfet48, turn_on, fast",
+		} {
 			if c.Name != name {
 				continue
 			}
@@ -55,4 +58,21 @@ func benchCircuit(b *testing.B) (*Simulator, []float64) {
 	}
 	b.Fatal("no such case")
 	return nil, nil
+}
+
+// BenchmarkWindow simulates every reference case up to its own end, the mean of them.
+func BenchmarkWindow(b *testing.B) {
+	var s Simulator
+	var all []*Bridge
+	for _, c := range referenceCases(b) {
+		all = append(all, c.bridge())
+	}
+	levels := []float64{-1, -5, -10}
+	runs := 0
+	for b.Loop() {
+		if _, err := s.Run(all[runs%len(all)], Window{Limit: 1e-6, Levels: levels}); err != nil {
+			b.Fatal(err)
+		}
+		runs++
+	}
 }

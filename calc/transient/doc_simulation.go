@@ -1,3 +1,5 @@
+// Package transient also simulates, where a closed form does not decide.
+//
 // # Simulation
 //
 // A Simulator solves one Event of a Bridge as an initial value problem and takes its results from the dense output. The circuit: bus - R1 - L1 -

@@ -132,7 +132,8 @@ func (c *referenceCase) bridge() *Bridge {
 	in := &c.Input
 	event := map[string]Event{"TURN_OFF": TurnOff, "TURN_ON": TurnOn, "SINKING_TURN_OFF": SinkingTurnOff, "SINKING_TURN_ON": SinkingTurnOn}
 	b := &Bridge{
-		Event: event[in.Event], Bus: in.Bus, Load: in.Load, Supply: in.Supply, LowDrive: in.LowDrive, Floating: in.Floating, L1: in.L1, L2: in.L2, R1: in.R1, R2: in.R2,
+		Event: event[in.Event], Bus: in.Bus, Load: in.Load, Supply: in.Supply, LowDrive: in.LowDrive, Floating: in.Floating,
+		L1: in.L1, L2: in.L2, R1: in.R1, R2: in.R2,
 		HighCommonSource: in.HighSource, LowCommonSource: in.LowSource, RingingResistance: in.Ringing, NodeResistor: in.Node, PinCapacitance: in.Pin,
 		BootstrapCapacitance: in.Bootstrap, Element: recharge.Element{Junction: in.Element.junction(), Resistance: in.Element.Resistance},
 		High: in.High.cell(), Low: in.Low.cell(),

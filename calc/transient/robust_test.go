@@ -43,8 +43,10 @@ func randomBridge(seed uint64) *Bridge {
 		gan := chance(0.2)
 		threshold := span(0.8, 5)
 		c := Cell{
-			GateSource: figure * size * span(1e-9, 4e-9), Transconductance: span(1, 5) * math.Max(load, 1) / math.Max(drive-threshold, 1), Threshold: math.Min(threshold, 0.5*drive),
-			OnResistance: span(0.1, 2) / math.Max(load, 1), Unidirectional: bus > 200 && chance(0.2), GateResistance: span(1, 60), Reverse: junction(math.Max(load, 0.1), span(0.5, 2)),
+			GateSource: figure * size * span(1e-9, 4e-9), Threshold: math.Min(threshold, 0.5*drive),
+			Transconductance: span(1, 5) * math.Max(load, 1) / math.Max(drive-threshold, 1),
+			OnResistance:     span(0.1, 2) / math.Max(load, 1), Unidirectional: bus > 200 && chance(0.2),
+			GateResistance: span(1, 60), Reverse: junction(math.Max(load, 0.1), span(0.5, 2)),
 		}
 		steep := span(0.25, 0.7)
 		share := span(0.02, 0.6)

@@ -102,7 +102,7 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 			return fmt.Errorf("%w %.4g s after the command: %w", ErrUnsolved, stiff.To, err)
 		}
 		if stiff.Accepted > mostSteps {
-			return fmt.Errorf("%w: more than %d steps in %.4g s", ErrUnsolved, mostSteps, stiff.To)
+			return fmt.Errorf("%w: more than %d steps in %.4g s, it keeps oscillating", ErrUnsolved, mostSteps, stiff.To)
 		}
 		at.from, at.length = stiff.From, stiff.To-stiff.From
 		for i := range at.n {

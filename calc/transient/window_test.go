@@ -320,3 +320,66 @@ func TestUnusualParts(t *testing.T) {
 		t.Errorf("the integrated switch of a low side that turns on gains %g V", co.Gain)
 	}
 }
+
+// TestDips counts dips in samples of the dense output.
+func TestDips(t *testing.T) {
+	levels := []float64{-0.5, -1.5, -2.5, -3.5, 5, 1e6}
+	var s Simulator
+	dips := 0
+	for _, c := range referenceCases(t) {
+		type sampled struct {
+			inside                bool
+			since, total, longest float64
+			count                 int
+		}
+		all := make([]sampled, len(levels))
+		last, coarse := 0.0, 0.0
+		s.seen = func(at *span) {
+			p := s.circuit.node.of(&at.state)
+			const n = 200
+			coarse = math.Max(coarse, at.length/n)
+			for k := range n + 1 {
+				v, now := p.At(float64(k)/n), at.at(float64(k)/n)
+				for i := range all {
+					a := &all[i]
+					switch below := v <= levels[i]; {
+					case below && !a.inside:
+						a.inside, a.since = true, now
+						a.count++
+					case !below && a.inside:
+						a.inside = false
+						a.total += now - a.since
+						a.longest = math.Max(a.longest, now-a.since)
+					}
+				}
+				last = now
+			}
+		}
+		co, err := s.Run(c.bridge(), Window{Limit: 1e-6, Levels: levels})
+		if err != nil {
+			t.Fatal(err)
+		}
+		for i := range all {
+			a, d := &all[i], &co.BelowNode[i]
+			if a.inside {
+				a.total += last - a.since
+				a.longest = math.Max(a.longest, last-a.since)
+			}
+			if d.Lasting != a.inside || d.Level != levels[i] {
+				t.Errorf("%s: below %g V at the end: %v, samples %v", c.Name, levels[i], d.Lasting, a.inside)
+			}
+			if d.Count != a.count {
+				t.Errorf("%s: %d dips below %g V, samples %d", c.Name, d.Count, levels[i], a.count)
+			}
+			near(t, c.Name+", total", d.Total, a.total, 3*coarse*float64(a.count)+1e-18)
+			near(t, c.Name+", longest", d.Longest, a.longest, 3*coarse+1e-18)
+			if d.Count > 0 && (d.Start < 0 || d.Start+d.Longest > co.End*(1+1e-12)) {
+				t.Errorf("%s: longest dip from %g s for %g s in %g s", c.Name, d.Start, d.Longest, co.End)
+			}
+			dips += d.Count
+		}
+	}
+	if dips < 200 {
+		t.Errorf("only %d dips", dips)
+	}
+}
