@@ -9,6 +9,7 @@ type calm struct {
 	since float64 // until then something was not calm [s]
 
 	band, low, high float64 // of the node: width allowed, and what it has covered since [V]
+	arrived         bool    // turn-off: the switch that takes over has begun to conduct backwards
 	conditions      [3]condition
 }
 
@@ -19,9 +20,12 @@ type condition struct {
 	piece      piece
 }
 
+// takesOver is the condition on the switch that takes over.
+const takesOver = 1
+
 const (
 	calmRing    = 0.02 // of V_BUS, to either side; and that of |I| that may be left in the branch [1]
-	calmVoltage = 0.1  // of V_BUS, along the switch that takes over [1]
+	calmVoltage = 0.02 // of V_BUS, along the switch that takes over, beyond what it drops while on [1]
 )
 
 func (c *calm) begin(b *Bridge, n *circuit, node float64) {
@@ -29,7 +33,7 @@ func (c *calm) begin(b *Bridge, n *circuit, node float64) {
 	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
 	period := math.Sqrt((b.L1 + b.L2) * capacitance) // over 2π
 	ringing := calmRing * b.Bus * period / (b.L1 + b.L2)
-	*c = calm{hold: 2 * math.Pi * period, band: 2 * calmRing * b.Bus, low: node, high: node}
+	*c = calm{hold: 2 * math.Pi * period, band: 2 * calmRing * b.Bus, low: node, high: node, arrived: !b.Event.off()}
 	left := calmRing*load + ringing
 	out, into, cell, gate := n.j1, stateVd2, &b.Low, stateVg2
 	if b.Event == TurnOn || b.Event == SinkingTurnOff {
@@ -89,6 +93,28 @@ func (c *condition) unrest() (first, last float64) {
 	return first, last
 }
 
+// arrival is the same of a switch that is still to begin conducting: not at rest until its voltage has first come down to 0.
+func (c *calm) arrival(s *piece) (first, last float64) {
+	if s.least > 0 {
+		return 0, 1
+	}
+	s.divide()
+	for k := range s.n {
+		if s.value[k] > 0 {
+			continue
+		}
+		c.arrived = true
+		if k == 0 {
+			return 0, 0
+		}
+		if theta, way := s.cross(k, 0); way != 0 {
+			return 0, theta
+		}
+		return 0, s.theta[k]
+	}
+	return 0, 1
+}
+
 // ring is the same of the node: it is at rest from when its range first fits into the band for good. The range starts anew where it would
 // grow beyond the band.
 func (c *calm) ring(s *piece) (first, last float64) {
@@ -128,6 +154,9 @@ func (c *calm) over(at *span, node *piece) (theta float64, ok bool) {
 		p := q.form.of(&at.state)
 		q.piece.set(&p)
 		f, l := q.unrest()
+		if k == takesOver && !c.arrived {
+			f, l = c.arrival(&q.piece)
+		}
 		first, last = math.Min(first, f), math.Max(last, l)
 	}
 	if theta = (c.since + c.hold - at.from) / at.length; theta <= math.Min(first, 1) {

@@ -53,7 +53,7 @@
 //	dq_M/dt = i_D - q_M/τ,   L_fr·di_Lfr/dt = R_fr·(i_D - i_Lfr)                                                   (28)
 //
 // with Lambert's W in logarithmic form, exact for any v, a line of slope 1/a beyond the exponential. Where there is no resistance, a is 1e-6·n·V_T/I,
-// which drops 1e-6·n·V_T at the load current I; n·V_T is at least 0.1 mV, with the drop at I kept. Bootstrap element and clamp are the same law
+// which drops 1e-6·n·V_T at the load current I; n·V_T is at least 5 mV, with the drop at I kept. Bootstrap element and clamp are the same law
 // without charge. An integrated switch is open but after the command that turns the low side on. Then it conducts towards the rail only: while
 // the node still is at the bus the driver holds it off, and what flowed back through it after that within a window is below a window's share
 // of its time constant R·C_B.
@@ -70,7 +70,8 @@
 // nearer end, as near V_BUS its error is one of the undershoot.
 //
 // Window: it is over when, for one period 2π·sqrt((L1 + L2)·C_oss(V_BUS)), the branch that carried the current has carried no more than 2 % of it and
-// of what a ringing of 2 % of V_BUS drives through the loop, the switch that takes over has had at most 10 % of V_BUS, the commanded gate has been
+// of what a ringing of 2 % of V_BUS drives through the loop, the switch that takes over has had at most 2 % of V_BUS beyond what it drops while on (on turn-off:
+// its diode has begun to conduct), the commanded gate has been
 // beyond what counts (V_th, on turn-on V_th + I/g_fs) and the node has stayed within a band 4 % of V_BUS wide. All of these are looked up in the dense
 // output, so the end does not lie on a step. At the limit the window ends as it is, not settled.
 //

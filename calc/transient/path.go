@@ -9,8 +9,9 @@ import (
 
 const (
 	// A junction in the simulation has an n·V_T of at least sharpest [V], with the drop at the load current kept, and at least bluntness·n·V_T
-	// there, so that it blocks: a fixed drop or an ideal diode moves by no more than millivolts, and its knee is seen by the steps.
-	sharpest, bluntness = 1e-4, 20
+	// there, so that it blocks. A fixed drop is then 12 mV less at a tenth of the current, an ideal diode drops 50 mV; a sharper knee would be
+	// finer than what steps of the default tolerance see of the power circuit's voltages.
+	sharpest, bluntness = 5e-3, 10
 	// Series resistance of a junction at least this·n·V_T over the load current: it drops nothing there, and beyond any current the law
 	// becomes a line instead of an exponential that overflows.
 	leastSeries = 1e-6

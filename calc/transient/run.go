@@ -132,10 +132,10 @@ func (s *Simulator) march(stiff *numeric.Stiff, w *Window, course *Course) error
 // setSizes puts the size of each state below which its own digits do not matter. For the pin that is 2 V: the undershoot is judged by the volt,
 // not by the bus.
 func (s *Simulator) setSizes(b *Bridge) {
-	const bus, pin, gain = 0.1, 2.0, 0.01 // of V_BUS; [V], [V]
+	const bus, pin, gain, small = 0.1, 2.0, 0.01, 0.01 // of V_BUS; [V]; [V]; of the current that V_BUS makes ring
 	c, a := &s.circuit, &s.sizes
 	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
-	current := math.Max(math.Abs(b.Load), bus*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
+	current := math.Max(math.Abs(b.Load), small*b.Bus*math.Sqrt(capacitance/(b.L1+b.L2)))
 	drive := math.Max(math.Max(math.Abs(b.Floating), math.Abs(b.LowDrive)), 1)
 	a[stateI1], a[stateI2] = current, current
 	a[stateVd1], a[stateVd2], a[statePin] = bus*b.Bus, bus*b.Bus, math.Min(bus*b.Bus, pin)
@@ -160,5 +160,16 @@ func (s *Simulator) tolerate(y []float64, rtol float64, atol []float64) {
 			v = math.Min(v, math.Abs(s.bus-v))
 		}
 		atol[i] = rtol * (s.sizes[i] + v)
+	}
+	// While a diode or an ohmic channel conducts, a step sees it as a line, along which a current that is missing is no more than a voltage of
+	// i·n·V_T/i_D or i·R_on: without a tolerance of that size the end of the diode's charge, or of the channel, would be stepped over.
+	const knee = 100
+	for _, d := range [2]*device{&s.circuit.high, &s.circuit.low} {
+		vd, sat := y[d.drain], d.gfs*(y[d.gate]-d.threshold)
+		if vd < 0 {
+			atol[d.drain] = math.Min(atol[d.drain], knee*rtol*d.reverse.slope)
+		} else if !d.diode && sat > 0 && vd < d.onResistance*sat {
+			atol[d.drain] = math.Min(atol[d.drain], knee*rtol*d.onResistance*s.sizes[stateI1])
+		}
 	}
 }
