@@ -1,0 +1,21 @@
+package transient
+
+import (
+	"math"
+	"testing"
+
+	"floatrail/calc/internal/numeric"
+)
+
+func TestLambert(t *testing.T) {
+	worst := 0.0
+	for y := -800.0; y < 1e6; y += 0.01 * (1 + math.Abs(y)/20) {
+		_, want := numeric.LogLambertPair(y)
+		if want > 0 {
+			worst = math.Max(worst, math.Abs(lambert(y)/want-1))
+		}
+	}
+	if !(worst < 3e-9) {
+		t.Errorf("w deviates by %.3g", worst)
+	}
+}
