@@ -5,7 +5,9 @@ Problem   event.py's, equation by equation; states that a case has no use for (t
 Method    CVODE's variable-order BDF in CV_ONE_STEP mode, its Newton iteration, SUNDIALS' own dense LU, analytic Jacobian (-j difference:
           CVODE's difference quotients). Absolute tolerances factor·rtol·scale, scale |load| for currents, V_DD for v_gs and v_BS, the bus
           for v_ds and v_pin, |load|·tau for charges. Extremes: values at step ends, and wherever a signal's derivative changes sign within a
-          step the extremum of the cubic through both ends, evaluated anew on CVodeGetDky's polynomial.
+          step the extremum of the cubic through both ends, evaluated anew on CVodeGetDky's polynomial. Against 64
+          points a step: within 0.06 % from rtol 1e-3 on, 0.02 % from 3e-4 on (relative as in event_cvode.py); about 1 % at looser ones,
+          whose own error is larger.
 Tuning    In the library's favour over event.json's cases: factor 0.1 and a Newton coefficient of 0.03 (CVODE: 0.1) took the least time for
           0.5 % error; order 5, CVODE's rules for renewing matrices, first step; fused vector operations on. The optimum is flat. The analytic
           Jacobian is a few per cent faster than the difference quotients.
