@@ -90,10 +90,10 @@ func (c *condition) unrest() (first, last float64) {
 	return first, last
 }
 
-// arriving is the same of a switch that is still to begin conducting: not at rest until its voltage has first come down.
-func (c *calm) arriving(s *piece) (first, last float64) {
+// arriving returns the last place at which a switch that is still to begin conducting is not at rest: where its voltage has first come down.
+func (c *calm) arriving(s *piece) (last float64) {
 	if s.least > c.arrival {
-		return 0, 1
+		return 1
 	}
 	s.divide()
 	for k := range s.n {
@@ -102,14 +102,14 @@ func (c *calm) arriving(s *piece) (first, last float64) {
 		}
 		c.arrived = true
 		if k == 0 {
-			return 0, 0
+			return 0
 		}
 		if theta, way := s.cross(k, c.arrival); way != 0 {
-			return 0, theta
+			return theta
 		}
-		return 0, s.theta[k]
+		return s.theta[k]
 	}
-	return 0, 1
+	return 1
 }
 
 // ring is the same of the node: it is at rest from when its range first fits into the band for good. The range starts anew where it would
@@ -152,7 +152,7 @@ func (c *calm) over(at *span, node *piece) (theta float64, ok bool) {
 		q.piece.set(&p)
 		f, l := q.unrest()
 		if k == takesOver && !c.arrived {
-			f, l = c.arriving(&q.piece)
+			f, l = 0, c.arriving(&q.piece)
 		}
 		first, last = math.Min(first, f), math.Max(last, l)
 	}
