@@ -2,15 +2,16 @@ package transient
 
 import "math"
 
-// calm decides when an event is over: after the current has left the branch that carried it, the switch that takes over has its voltage, the
-// commanded gate is past what counts, and the node has stayed for one period of the loop's ringing within 2 % of V_BUS to either side.
+// calm decides when an event is over: after the current has left the branch that carried it, the switch that takes over conducts, and the node has
+// stayed for one period of the loop's ringing within 2 % of V_BUS to either side.
 type calm struct {
 	hold  float64 // one period [s]
 	since float64 // until then something was not calm [s]
 
 	band, low, high float64 // of the node: width allowed, and what it has covered since [V]
-	arrived         bool    // turn-off: the switch that takes over has begun to conduct backwards
-	conditions      [3]condition
+	arrived         bool    // turn-off: the switch that takes over has had the voltage arrival or less
+	arrival         float64 // [V]
+	conditions      [2]condition
 }
 
 // condition is a signal that must lie between two values.
@@ -29,29 +30,25 @@ const (
 )
 
 func (c *calm) begin(b *Bridge, n *circuit, node float64) {
-	load, low, high := math.Abs(b.Load), math.Inf(-1), math.Inf(1)
-	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus))
-	period := math.Sqrt((b.L1 + b.L2) * capacitance) // over 2π
-	ringing := calmRing * b.Bus * period / (b.L1 + b.L2)
+	load := math.Abs(b.Load)
+	capacitance := math.Max(b.High.Output.At(b.Bus), b.Low.Output.At(b.Bus)) + b.PinCapacitance
+	inductance := b.L1 + b.L2 + math.Max(b.High.Forward.Inductance, b.Low.Forward.Inductance)
+	period := math.Sqrt(inductance * capacitance) // over 2π
+	ringing := calmRing * b.Bus * period / inductance
 	*c = calm{hold: 2 * math.Pi * period, band: 2 * calmRing * b.Bus, low: node, high: node, arrived: !b.Event.off()}
 	left := calmRing*load + ringing
-	out, into, cell, gate := n.j1, stateVd2, &b.Low, stateVg2
+	out, into, cell := n.j1, stateVd2, &b.Low
 	if b.Event == TurnOn || b.Event == SinkingTurnOff {
 		out, into, cell = n.j2, stateVd1, &b.High
 	}
-	commanded := &b.Low
-	if b.Event.high() {
-		commanded, gate = &b.High, stateVg1
-	}
 	voltage := calmVoltage * b.Bus
-	from, to := low, commanded.Threshold
 	if !b.Event.off() {
 		voltage += 2 * cell.OnResistance * load
-		from, to = commanded.Threshold+load/commanded.Transconductance, high
+	} else if b.Event == TurnOff && !b.Element.Switch {
+		c.arrival = math.Max(0, b.Supply-b.Floating) // there the bootstrap element may carry all of a small load
 	}
 	c.conditions[0] = condition{form: out, least: -left, top: left}
-	c.conditions[1] = condition{form: unit(into), least: low, top: voltage}
-	c.conditions[2] = condition{form: unit(gate), least: from, top: to}
+	c.conditions[takesOver] = condition{form: unit(into), least: math.Inf(-1), top: voltage}
 }
 
 func (c *condition) outside(v float64) bool { return v < c.least || v > c.top }
@@ -93,26 +90,26 @@ func (c *condition) unrest() (first, last float64) {
 	return first, last
 }
 
-// arrival is the same of a switch that is still to begin conducting: not at rest until its voltage has first come down to 0.
-func (c *calm) arrival(s *piece) (first, last float64) {
-	if s.least > 0 {
-		return 0, 1
+// arriving returns the last place at which a switch that is still to begin conducting is not at rest: where its voltage has first come down.
+func (c *calm) arriving(s *piece) (last float64) {
+	if s.least > c.arrival {
+		return 1
 	}
 	s.divide()
 	for k := range s.n {
-		if s.value[k] > 0 {
+		if s.value[k] > c.arrival {
 			continue
 		}
 		c.arrived = true
 		if k == 0 {
-			return 0, 0
+			return 0
 		}
-		if theta, way := s.cross(k, 0); way != 0 {
-			return 0, theta
+		if theta, way := s.cross(k, c.arrival); way != 0 {
+			return theta
 		}
-		return 0, s.theta[k]
+		return s.theta[k]
 	}
-	return 0, 1
+	return 1
 }
 
 // ring is the same of the node: it is at rest from when its range first fits into the band for good. The range starts anew where it would
@@ -155,7 +152,7 @@ func (c *calm) over(at *span, node *piece) (theta float64, ok bool) {
 		q.piece.set(&p)
 		f, l := q.unrest()
 		if k == takesOver && !c.arrived {
-			f, l = c.arrival(&q.piece)
+			f, l = 0, c.arriving(&q.piece)
 		}
 		first, last = math.Min(first, f), math.Max(last, l)
 	}

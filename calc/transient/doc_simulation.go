@@ -65,18 +65,18 @@
 //
 // is monotone in it: one bracketed root. A channel that does not carry the current at any v_ds up to V_BUS is refused. q_M = τ·i_D, i_Lfr = i_D.
 //
-// States are i1, i2, both v_gs and v_ds, v_pin, v_BS less its start (its tolerance is that of the gain) and q_M, i_Lfr where there are any. A voltage
-// is tolerated by what is left of it beyond a size below which its digits do not matter (Simulator.setSizes); v_ds of the high side counts from the
-// nearer end, as near V_BUS its error is one of the undershoot.
+// States are i1, i2, both v_gs and v_ds, v_pin, v_BS less its start (its tolerance is that of the gain) and q_M, i_Lfr where there are any. Their
+// tolerances follow them (Simulator.tolerate): relative beyond a size below which digits do not matter; v_ds of the high side counts from the
+// nearer end, as near V_BUS its error is one of the undershoot; and what conducts is tolerated by its own knee.
 //
-// Window: it is over when, for one period 2π·sqrt((L1 + L2)·C_oss(V_BUS)), the branch that carried the current has carried no more than 2 % of it and
-// of what a ringing of 2 % of V_BUS drives through the loop, the switch that takes over has had at most 2 % of V_BUS beyond what it drops while on (on turn-off:
-// its diode has begun to conduct), the commanded gate has been
-// beyond what counts (V_th, on turn-on V_th + I/g_fs) and the node has stayed within a band 4 % of V_BUS wide. All of these are looked up in the dense
-// output, so the end does not lie on a step. At the limit the window ends as it is, not settled.
+// Window: it is over when, for one period 2π·sqrt((L1 + L2 + L_fr)·(C_oss(V_BUS) + C_pin)), the branch that carried the current has carried no
+// more than 2 % of it and of what a ringing of 2 % of V_BUS drives through the loop, the switch that takes over has had at most 2 % of V_BUS beyond
+// what it drops while on (on turn-off: since it first had no voltage, or the bootstrap element could take over a small load), and the node has
+// stayed within a band 4 % of V_BUS wide. All of these are looked up in the dense output, so the end does not lie on a step. A tail that is slower
+// than that, such as forward recovery, may go on; Dips.Lasting says so. At the limit the window ends as it is, not settled.
 //
-// Results. Extremes, passages and dips come from the places where the polynomials turn or cross; |dv/dt| from the rates of the equations at states of the
-// dense output; charges are integrals of polynomials. Ringing is that of v_ds of the switch that blocks at the end, from its highest maximum e0, the
+// Results. Extremes, passages and dips come from the places where the polynomials turn or cross; |dv/dt| from the rates of the equations at states
+// of the dense output; charges are integrals of polynomials. Ringing is that of v_ds of the switch that blocks at the end, from its highest maximum e0, the
 // minimum e1 and the maximum e2 after it:
 //
 //	f = 1/(t2 - t0),   damping = x/sqrt(π² + x²),   x = ln((e0 - e1)/(e2 - e1))                                    (30)

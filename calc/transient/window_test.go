@@ -96,7 +96,7 @@ func TestTighter(t *testing.T) {
 		if z.Ranges[Node].Min < 0 {
 			check("undershoot", a.Ranges[Node].Min, z.Ranges[Node].Min, math.Max(1, -z.Ranges[Node].Min), 0.005)
 		}
-		check("end of the window", a.End, z.End, z.End, 0.1) // one swing more or less
+		check("end of the window", a.End, z.End, z.End, 0.02)
 		if math.Abs(z.Gain) > 1e-3 {
 			check("gain", a.Gain, z.Gain, math.Abs(z.Gain), 0.01)
 		}
