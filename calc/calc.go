@@ -29,8 +29,10 @@ import (
 
 // Options is what an answer shall contain.
 type Options struct {
-	PerPoint bool     // every operating point of a finding
-	Families []string // families of rules; empty: all
+	PerPoint  bool     // every operating point of a finding
+	Families  []string // families of rules; empty: all
+	Simulate  bool     // judge simulated switching events
+	Waveforms bool     // give the waveforms of simulated events
 }
 
 // Request is a stage with the policy and the waivers under which it is judged. The stage has passed stage.Check and is completed here.
@@ -60,6 +62,9 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 	bench := rule.NewBench(r.Stage, &policy)
 	bench.EveryPoint = r.Options.PerPoint
 	bench.Interrupted = func() bool { return ctx.Err() != nil }
+	if r.Options.Simulate {
+		bench.Simulate()
+	}
 	out := finding.Report{StageID: r.Stage.ID}
 	asked := func(id string) bool {
 		return len(r.Options.Families) == 0 || slices.Contains(r.Options.Families, rule.FamilyOf(id))
@@ -76,7 +81,7 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 		}
 	}
 	if ctx.Err() == nil {
-		out.DutyLimits, out.Transient = result.OfPoints(bench, parts&WithDutyLimits != 0, parts&WithTransient != 0)
+		out.DutyLimits, out.Transient = result.OfPoints(bench, parts&WithDutyLimits != 0, parts&WithTransient != 0, r.Options.Waveforms)
 	}
 	if parts&WithSizing != 0 && ctx.Err() == nil {
 		out.Sizing = result.Sizing(bench, trial, &policy)

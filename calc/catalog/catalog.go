@@ -4,7 +4,7 @@ package catalog
 import "floatrail/calc/rule"
 
 // RuleSet is the version of the catalogue. It changes whenever a rule's verdict on some stage may change.
-const RuleSet = "2026.12.2"
+const RuleSet = "2026.12.3"
 
 // All lists the rules in their order.
 func All() []*rule.Rule {
@@ -18,7 +18,7 @@ func All() []*rule.Rule {
 		dutyRechargeWindow, dutyLargestDuty, dutyLongestOnTime, dutyShortestPulse, dutyDeadTime, dutyIdleRefresh, dutyPreCharge,
 		gateOvervoltage, gateClampWindow, gateMillerLow, gateMillerHigh, gateNodeResistor, gateNegative, gateDriveCurrent, gateDamping,
 		nodeUndershootStatic, nodeUndershootPulse, nodeRailBelowCOM, nodeOperationalRange, nodeRailOvershoot, nodeSwitchOvershoot, nodeSlew,
-		nodeOverload,
+		nodeOverload, nodeMeasuredSlope,
 		thermalDriver, thermalDiode,
 		dataAssumption,
 	}

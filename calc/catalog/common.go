@@ -16,6 +16,7 @@ import (
 const (
 	first  = "2026.12"
 	second = "2026.12.2"
+	third  = "2026.12.3"
 )
 
 // Roles: paths of parts relative to the stage.

@@ -13,7 +13,7 @@ var diodeReverseVoltage = &rule.Rule{
 	Limit:    "rated repetitive reverse voltage", Guard: "70 % of the rating", Applies: "stages with a discrete bootstrap diode",
 	Needs: []string{"bootstrap.diode.reverseVoltageMax", "operatingPoints.busVoltage", "gateSupply.voltage",
 		"layout.busLoopInductance", "layout.measured", "highSide.reverse", "lowSide.reverse"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"nasa-eee-inst-002", "src-derating", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Reverse voltage of the bootstrap diode", Against: "rated reverse voltage", Dimension: quantity.Voltage, Sense: rule.AtMost,

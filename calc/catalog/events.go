@@ -65,6 +65,9 @@ func each(events []circuit.Event, margin func(c *circuit.Circuit, role string, e
 	return out
 }
 
+// everyRole is for rules that judge simulated events in all of their roles.
+func everyRole(string) bool { return true }
+
 // Lists of events.
 var (
 	everyEvent = []circuit.Event{circuit.TurnOff, circuit.TurnOn, circuit.SinkingTurnOff, circuit.SinkingTurnOn}

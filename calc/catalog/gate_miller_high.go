@@ -19,7 +19,7 @@ var gateMillerHigh = &rule.Rule{
 		"highSide.reverseTransferCapacitance", "highSide.gateOff", "highSide.internalGateResistance", "driver.pullDownResistance",
 		"driver.passivePullDown", "highSide.gatePullDown", "startup.prebias", "layout.measured.turnOnVoltageSlope", "operatingPoints.busVoltage",
 		"highSide.reverse.recoveryCharge", "layout.highSideCommonSource"},
-	Events:  true,
+	Events: true, Simulated: func(role string) bool { return role == roleHighSide },
 	Sources: []string{"slup169", "an6076", "lauritzen-ma-1991", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Gate voltage induced in the high side", Against: "smallest threshold", Dimension: quantity.Voltage, Sense: rule.AtMost,
@@ -62,6 +62,10 @@ func induced(c *circuit.Circuit, e circuit.Event, limit float64) rule.Check {
 
 // swingNote tells how fast the node moves in an event, and where the estimate alone keeps the rule from passing.
 func swingNote(c *circuit.Circuit, e circuit.Event, k rule.Check) []string {
+	if c.Simulates(e) {
+		return []string{"the node moves with " + quantity.Format(c.Slew(e), quantity.VoltageSlew) + " at its fastest, " +
+			quantity.Format(c.MeanSlew(e), quantity.VoltageSlew) + " from 10 to 90 % of V_BUS"}
+	}
 	w := c.Swing(e)
 	notes := []string{fmt.Sprintf("the node moves with %s at its fastest, in %s from rail to rail", quantity.Format(w.Peak(), quantity.VoltageSlew),
 		quantity.Format(w.Time(), quantity.Time))}

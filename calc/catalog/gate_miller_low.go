@@ -15,7 +15,7 @@ var gateMillerLow = &rule.Rule{
 	Needs: []string{"lowSide.thresholdVoltage", "lowSide.thresholdTemperatureCoefficient", "lowSide.inputCapacitance",
 		"lowSide.reverseTransferCapacitance", "lowSide.gateOff", "lowSide.internalGateResistance", "driver.pullDownResistance",
 		"layout.measured.turnOnVoltageSlope", "operatingPoints.busVoltage", "lowSide.reverse.recoveryCharge", "layout.lowSideCommonSource"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"slup169", "an6076", "lauritzen-ma-1991", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Gate voltage induced in the low side", Against: "smallest threshold", Dimension: quantity.Voltage, Sense: rule.AtMost,

@@ -13,7 +13,7 @@ var gateNegative = &rule.Rule{
 	Limit:    "absolute minimum of the gate voltage", Guard: "10 % above the limit", Applies: "positions with a gate",
 	Needs: []string{"highSide.gateVoltageMin", "lowSide.gateVoltageMin", "highSide.offBias", "lowSide.offBias", "lowSide.reverseTransferCapacitance",
 		"lowSide.gateOff", "layout.lowSideCommonSource", "layout.highSideCommonSource"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"slup169", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Lowest gate voltage", Against: "absolute minimum", Dimension: quantity.Voltage, Sense: rule.AtLeast,
@@ -21,31 +21,15 @@ var gateNegative = &rule.Rule{
 	Check: func(c *circuit.Circuit, role string) rule.Check {
 		limit := c.Need(&position(c, role).GateVoltageMin)
 		v := c.Need(&position(c, role).OffBias)
-		for _, e := range pulls(role) {
+		for _, e := range everyEvent {
 			if circuit.Occurs(c.Stage, c.Point, e) {
-				v = min(v, c.Pulled(e))
+				v = min(v, c.GateLow(e, position(c, role)))
 			}
 		}
 		return rule.Check{Value: v, Limit: limit, Guard: raised(c, limit)}
 	},
-	Alternatives: []func(*circuit.Circuit, string) float64{
-		func(c *circuit.Circuit, role string) float64 { return pulled(c, role, 0) },
-		func(c *circuit.Circuit, role string) float64 { return pulled(c, role, 1) },
-	},
-}
-
-// pulls are the events that pull a position's gate down.
-func pulls(role string) []circuit.Event {
-	if role == roleLowSide {
-		return []circuit.Event{circuit.TurnOff, circuit.TurnOn}
-	}
-	return []circuit.Event{circuit.SinkingTurnOff, circuit.SinkingTurnOn}
-}
-
-func pulled(c *circuit.Circuit, role string, k int) float64 {
-	v := c.Need(&position(c, role).OffBias)
-	if e := pulls(role)[k]; circuit.Occurs(c.Stage, c.Point, e) {
-		v = c.Pulled(e)
-	}
-	return v - c.Need(&position(c, role).GateVoltageMin)
+	Alternatives: each(everyEvent, func(c *circuit.Circuit, role string, e circuit.Event) float64 {
+		s := position(c, role)
+		return c.GateLow(e, s) - c.Need(&s.GateVoltageMin)
+	}),
 }

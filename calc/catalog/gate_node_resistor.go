@@ -9,11 +9,11 @@ import (
 
 var gateNodeResistor = &rule.Rule{
 	ID: "gate/node-resistor", Title: "Gate of the high side lifted by the recharge current through the V_S-line resistor", Since: second,
-	Equation: "v_GS = V_off + i_B·R_VS, i_B the peak of the first charge, or of the steady state with undershoot",
+	Equation: "v_GS = V_off + i_B·R_VS, i_B the peak of the first charge, or of the steady state with undershoot; simulated: v_GS once off, at its highest",
 	Limit:    "smallest threshold at the junction temperature", Guard: "80 % of the limit", Applies: "stages with a resistor in the V_S line",
 	Needs: []string{"layout.nodeResistor", "highSide.thresholdVoltage", "highSide.thresholdTemperatureCoefficient", "bootstrap.resistor",
 		"bootstrap.diode.forwardPoints", "gateSupply.voltage", "layout.lowSideInductance"},
-	Events:  true,
+	Events: true, Simulated: func(role string) bool { return role == repetitive },
 	Sources: []string{"sluscj9", "slup169", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Gate voltage of the high side while it is off", Against: "smallest threshold", Dimension: quantity.Voltage, Sense: rule.AtMost,
@@ -35,6 +35,9 @@ var gateNodeResistor = &rule.Rule{
 			v = c.FirstPeak() * r
 		} else {
 			v = c.Need(&c.Stage.HighSide.OffBias) + c.PumpedPeak()*r
+			if circuit.Occurs(c.Stage, c.Point, circuit.TurnOff) && c.Simulates(circuit.TurnOff) {
+				v = c.Lifted(circuit.TurnOff)
+			}
 		}
 		return rule.Check{Value: v, Limit: limit, Guard: heldOff * limit}
 	},

@@ -17,7 +17,7 @@ var gateOvervoltage = &rule.Rule{
 	Limit: "absolute maximum of V_BS, or of the gate voltage", Guard: "90 % of the limit", Applies: "driver and high-side gate",
 	Needs: []string{"driver.floatingVoltageMax", "highSide.gateVoltageMax", "gateSupply.voltage", "lowSide.reverse.forwardPoints",
 		"operatingPoints.deadTime", "bootstrap.resistor", "bootstrap.clamp", "layout.lowSideInductance", "layout.measured.turnOffCurrentSlope"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"snvaa94", "lmg1210", "snosdg7a", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Highest V_BS", Against: "absolute maximum", Dimension: quantity.Voltage, Sense: rule.AtMost,

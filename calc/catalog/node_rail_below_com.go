@@ -14,7 +14,7 @@ var nodeRailBelowCOM = &rule.Rule{
 	Limit:    "lowest permitted V_B to COM", Guard: "10 % above the limit", Applies: "every operating point",
 	Needs: []string{"driver.railMin", "driver.uvloFalling", "layout.lowSideInductance", "layout.measured.turnOffCurrentSlope",
 		"highSide.gateOff", "lowSide.reverse", "operatingPoints.loadCurrent"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"lmg1210", "an6076", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Lowest V_B to COM", Against: "lowest permitted", Dimension: quantity.Voltage, Sense: rule.AtLeast,
@@ -39,5 +39,5 @@ func railAfter(c *circuit.Circuit, e circuit.Event) float64 {
 	if !circuit.Occurs(c.Stage, c.Point, e) {
 		return math.Inf(1)
 	}
-	return c.PinDip(e) + c.Need(&c.Stage.Driver.UVLOFalling)
+	return c.RailLow(e)
 }

@@ -13,7 +13,7 @@ var nodeRailOvershoot = &rule.Rule{
 	Limit:    "rated offset voltage", Guard: "90 % of the limit", Applies: "every operating point",
 	Needs: []string{"driver.offsetVoltageMax", "operatingPoints.busVoltage", "layout.busLoopInductance", "layout.lowSideInductance",
 		"layout.measured", "highSide.reverse", "lowSide.reverse", "bootstrap.clamp"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"lauritzen-ma-1991", "textbook", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Highest V_B to COM", Against: "rated offset voltage", Dimension: quantity.Voltage, Sense: rule.AtMost,

@@ -19,7 +19,7 @@ var nodeSlew = &rule.Rule{
 	Needs: []string{"driver.slewMax", "layout.measured.turnOnVoltageSlope", "layout.measured.turnOffVoltageSlope", "highSide.gateOn",
 		"highSide.gateOff", "highSide.thresholdVoltage", "highSide.transconductance", "highSide.reverseTransferCapacitance", "highSide.outputCapacitance",
 		"lowSide.outputCapacitance", "operatingPoints.busVoltage"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"an6076", "slup169", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Peak slew of the node", Against: "rated slew", Dimension: quantity.VoltageSlew, Sense: rule.AtMost,
@@ -34,7 +34,7 @@ var nodeSlew = &rule.Rule{
 	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
 		for _, e := range everyEvent {
 			if circuit.Occurs(c.Stage, c.Point, e) && c.Slew(e) == k.Value {
-				return []string{fmt.Sprintf("%s; from 10 to 90 %% of V_BUS %s", phrase(e), quantity.Format(c.Swing(e).Mean(), quantity.VoltageSlew))}
+				return []string{fmt.Sprintf("%s; from 10 to 90 %% of V_BUS %s", phrase(e), quantity.Format(c.MeanSlew(e), quantity.VoltageSlew))}
 			}
 		}
 		return nil

@@ -13,7 +13,7 @@ var nodeSwitchOvershoot = &rule.Rule{
 	Limit:    "rated blocking voltage", Guard: "90 % of the limit", Applies: "operating points with an edge that stresses the position",
 	Needs: []string{"highSide.blockingVoltage", "lowSide.blockingVoltage", "operatingPoints.busVoltage", "layout.busLoopInductance",
 		"layout.lowSideInductance", "layout.measured", "highSide.outputCapacitance", "lowSide.outputCapacitance", "highSide.reverse", "lowSide.reverse"},
-	Events:  true,
+	Events: true, Simulated: everyRole,
 	Sources: []string{"lauritzen-ma-1991", "textbook", "common-practice"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Highest drain-source voltage", Against: "rated blocking voltage", Dimension: quantity.Voltage, Sense: rule.AtMost,

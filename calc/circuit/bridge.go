@@ -138,11 +138,16 @@ func (c *Circuit) gateResistance(s *stage.Switch, on, fast bool) float64 {
 
 // resistorsOf is what lies between the driver and the gates of a position [ohm]. The gate current of the high side returns through R_VS.
 func (c *Circuit) resistorsOf(s *stage.Switch, on bool) float64 {
-	r := (c.series(external(s, on)) + c.Need(&s.InternalGateResistance)) / s.Count()
+	r := c.loopResistors(s, on)
 	if s == &c.Stage.HighSide {
 		r += c.series(&c.Stage.Layout.NodeResistor)
 	}
 	return r
+}
+
+// loopResistors is resistorsOf without R_VS [ohm].
+func (c *Circuit) loopResistors(s *stage.Switch, on bool) float64 {
+	return (c.series(external(s, on)) + c.Need(&s.InternalGateResistance)) / s.Count()
 }
 
 // driverResistance is the output resistance of the driver [ohm]. A driver that is given by its peak current has at most V_DD over that, and
@@ -239,35 +244,45 @@ func (c *Circuit) fitRecovery(s *stage.Switch) transient.Recovery {
 
 // forwardRecovery is what a position's diode drops beyond its static law while its current rises at a slope up to a current [V].
 func (c *Circuit) forwardRecovery(s *stage.Switch, current, slope float64) float64 {
+	f, n := c.forward(s), s.Count()
+	if f == (transient.ForwardRecovery{}) {
+		return 0
+	}
+	return f.Peak(slope/n, current/n)
+}
+
+// forward is the forward recovery of one device's diode.
+func (c *Circuit) forward(s *stage.Switch) (none transient.ForwardRecovery) {
 	r := &s.Reverse
 	if s.Kind == stage.GaNHEMT { // reverse conduction of the channel knows no conductivity modulation
-		return 0
+		return none
 	}
 	if !r.PeakForwardRecovery.Given() {
 		c.Assume(stage.Assumption{Field: r.PeakForwardRecovery.Field, Assumed: "no forward recovery", Direction: stage.Optimistic,
 			Reason: "the peak forward recovery voltage is not given; it deepens the undershoot"})
-		return 0
+		return none
 	}
 	peak := c.Need(&r.PeakForwardRecovery)
 	if peak == 0 {
-		return 0
+		return none
 	}
-	n := s.Count()
 	i, a, t := c.Need(&r.ForwardRecoveryTestCurrent), c.Need(&r.ForwardRecoveryTestSlope), c.Need(&r.ForwardRecoveryTime)
 	if q, rise := &r.ForwardRecoveryTime, i/a; q.FilledBelow { // the policy's spread is one of what follows the ramp of the test
 		if typ := c.Space.Range(q).Typ; t < typ && rise < typ {
 			t = rise + (typ-rise)*t/typ
 		}
 	}
+	bad := transient.ForwardRecovery{Inductance: nan, Resistance: nan}
 	static := c.staticDrop(s, i)
 	if sum := peak + i + a + t + static; sum != sum {
-		return nan
+		return bad
 	}
 	fit, err := transient.FitForwardRecovery(i, a, peak, static, t)
 	if err != nil {
-		return c.Open(stage.Relative(r.Field) + ": " + err.Error())
+		c.Open(stage.Relative(r.Field) + ": " + err.Error())
+		return bad
 	}
-	return fit.Peak(slope/n, current/n)
+	return fit
 }
 
 // staticDrop is the drop of one device's diode at a current of its forward recovery test [V].

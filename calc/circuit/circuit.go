@@ -35,6 +35,7 @@ type Circuit struct {
 	namesAt       [8]string
 	curveAt       [curves][]transient.CurvePoint
 	events        *events // nil: none asked for yet
+	estimating    bool    // events by closed forms, whatever the space says
 }
 
 // events are the results about switching events.
@@ -46,6 +47,7 @@ type events struct {
 	steady      recharge.Steady
 	pumpedOff   [10]recharge.Interval
 	pumpedNames [10]string
+	course      [charges][eventCount]*transient.Course
 }
 
 // kept is where results about switching events are kept.
@@ -80,6 +82,7 @@ const (
 	slotSwing    // one for each event
 	slotSlope    = slotSwing + int(eventCount)
 	slotRecovery = slotSlope + int(eventCount)
+	slotCourse   = slotRecovery + 2 // one for each event and state of charge
 )
 
 var nan = math.NaN()

@@ -248,6 +248,12 @@ func (c *Circuit) Width(e Event) float64 {
 	if c.absent(e) {
 		return i
 	}
+	if c.Simulates(e) {
+		if k := c.Course(e, Running); k != nil {
+			return k.BelowPin[len(k.BelowPin)-len(dipLevels)].Longest
+		}
+		return nan
+	}
 	if !e.off() {
 		return 0.5 / c.Ring(e).Frequency()
 	}
@@ -299,6 +305,8 @@ func (c *Circuit) Dip(e Event) float64 {
 	switch i := c.Current(e); {
 	case !e.Falls(), c.absent(e):
 		return i * 0
+	case c.Simulates(e):
+		return c.least(e, transient.Node)
 	case e == TurnOff:
 		return -c.commutated(e, c.LowInductance())
 	}
@@ -308,6 +316,9 @@ func (c *Circuit) Dip(e Event) float64 {
 
 // PinDip is Dip at the driver's V_S pin [V].
 func (c *Circuit) PinDip(e Event) float64 {
+	if c.Simulates(e) {
+		return c.least(e, transient.Pin)
+	}
 	dip := c.Dip(e)
 	pin := c.clampedPin(dip)
 	if l := &c.Stage.Layout; pin > dip {
@@ -323,6 +334,8 @@ func (c *Circuit) NodePeak(e Event) float64 {
 	switch i := c.Current(e); {
 	case e.Falls(), c.absent(e):
 		return bus + i*0
+	case c.Simulates(e):
+		return math.Max(bus, c.most(e, Running, transient.Node))
 	case e == SinkingTurnOff:
 		return bus + c.commutated(e, c.BusInductance())
 	}
@@ -336,6 +349,10 @@ func (c *Circuit) SwitchPeak(e Event, s *stage.Switch) float64 {
 	switch i := c.Current(e); {
 	case c.absent(e):
 		return bus + i
+	case c.Simulates(e) && s == &c.Stage.HighSide:
+		return c.most(e, Running, transient.HighDrain)
+	case c.Simulates(e):
+		return c.most(e, Running, transient.LowDrain)
 	case e.off() && s == c.active(e):
 		return bus + c.commutated(e, c.LoopInductance())
 	case !e.off() && s == c.passive(e):
@@ -351,6 +368,9 @@ func (c *Circuit) Induced(e Event) float64 {
 		return off + c.Current(e)*0
 	}
 	s := c.passive(e)
+	if c.Simulates(e) {
+		return c.most(e, Running, c.gateSignal(s)) + 0*c.commonSource(s)
+	}
 	w, rg, swing := c.gateOf(s), c.gateResistance(s, false, false), c.Swing(e)
 	v := transient.Lift(&w, rg, *swing)
 	r := c.recovering(e)
@@ -380,7 +400,7 @@ const liftDoubt = 1.75
 // Doubtful tells whether an induced gate voltage that is estimated, not measured, may exceed a limit although the estimate does not.
 func (c *Circuit) Doubtful(e Event, induced, limit float64) bool {
 	off := c.Need(&c.passive(e).OffBias)
-	return !c.absent(e) && !c.slewMeasured(e) && off+liftDoubt*(induced-off) > limit
+	return !c.absent(e) && !c.Simulates(e) && !c.slewMeasured(e) && off+liftDoubt*(induced-off) > limit
 }
 
 // gateOf is a position's gate as an edge of the other switch sees it.
@@ -399,6 +419,12 @@ func (c *Circuit) Pulled(e Event) float64 {
 		return off
 	}
 	s := c.passive(e)
+	if c.Simulates(e) {
+		if k := c.Course(e, Running); k != nil {
+			return k.Ranges[c.gateSignal(s)].Min + 0*c.commonSource(s)
+		}
+		return nan
+	}
 	if !e.off() { // the current leaves the diode, and its slope acts on the source that gate and load share
 		return off - c.commonSource(s)*c.CurrentSlope(e)
 	}
@@ -537,6 +563,12 @@ func (c *Circuit) Commanded() float64 {
 func (c *Circuit) Slew(e Event) float64 {
 	if c.absent(e) {
 		return 0
+	}
+	if c.Simulates(e) {
+		if k := c.Course(e, Running); k != nil {
+			return math.Max(k.NodeSlew, k.PinSlew)
+		}
+		return nan
 	}
 	if e.off() || c.slewMeasured(e) {
 		return c.Swing(e).Peak()

@@ -6,6 +6,7 @@ import (
 	"floatrail/calc/corner"
 	"floatrail/calc/recharge"
 	"floatrail/calc/stage"
+	"floatrail/calc/transient"
 )
 
 // Names of the intervals in which an undershoot adds to V_BS.
@@ -32,16 +33,19 @@ func (c *Circuit) Pumped() *Period {
 }
 
 func (c *Circuit) pumped() Period {
+	defer func(was bool) { c.estimating = was }(c.estimating)
+	c.estimating = false // what is kept with the draw is what the space asks for
 	p := *c.Period()
 	k := c.kept()
 	off, names := k.pumpedOff[:0], k.pumpedNames[:0]
+	var buf [len(dipLevels)]Plateau
 	for i := range p.Off {
 		iv, name := p.Off[i], p.Names[i]
 		for _, m := range pumps {
 			if !iv.Conducts || !follows(m.followed, name) || !Occurs(c.Stage, c.Point, m.event) || c.absent(m.event) {
 				continue
 			}
-			for _, part := range c.parts(m.event, m.mean) {
+			for _, part := range c.parts(m.event, m.mean, buf[:0]) {
 				dip := iv
 				dip.Duration, dip.Drive = math.Min(part.Duration, iv.Duration), c.Supply()-part.Node
 				if !(dip.Duration > 0) || dip.Drive <= iv.Drive { // not deeper than the interval itself
@@ -59,13 +63,36 @@ func (c *Circuit) pumped() Period {
 
 // parts divides the dip of an event. A current that falls drives the flux L2·I into the loop of COM, so that the inductance shares in the depth
 // for I/(di/dt) of the width; in the rest the diode alone does. The ringing after a turn-on stands at its mean for half a period.
-func (c *Circuit) parts(e Event, mean float64) [2]Plateau {
+func (c *Circuit) parts(e Event, mean float64, out []Plateau) []Plateau {
+	if c.Simulates(e) {
+		return c.strata(e, out)
+	}
 	w := c.Width(e)
 	if e != TurnOff {
-		return [2]Plateau{{mean * c.PinDip(e), w}}
+		return append(out, Plateau{mean * c.PinDip(e), w})
 	}
 	steep := math.Min(w, c.Current(e)/c.CurrentSlope(e))
-	return [2]Plateau{{mean * c.PinDip(e), steep}, {c.clampedPin(-c.commutated(e, 0)), w - steep}}
+	return append(out, Plateau{mean * c.PinDip(e), steep}, Plateau{c.clampedPin(-c.commutated(e, 0)), w - steep})
+}
+
+// strata is how long a simulated event holds the pin between neighbouring levels, all its dips together, ringing included.
+func (c *Circuit) strata(e Event, out []Plateau) []Plateau {
+	k := c.Course(e, Running)
+	if k == nil {
+		return append(out, Plateau{nan, nan})
+	}
+	dips := k.BelowPin[len(k.BelowPin)-len(dipLevels):]
+	for i := range dips {
+		if !(dips[i].Total > 0) {
+			break
+		}
+		bottom, deeper := k.Ranges[transient.Pin].Min, 0.0
+		if i+1 < len(dips) && dips[i+1].Total > 0 {
+			bottom, deeper = dips[i+1].Level, dips[i+1].Total
+		}
+		out = append(out, Plateau{(dips[i].Level + bottom) / 2, dips[i].Total - deeper})
+	}
+	return out
 }
 
 func follows(names []string, name string) bool {

@@ -6,7 +6,7 @@ import (
 )
 
 // memoSlots bounds the number of results that models keep.
-const memoSlots = 20
+const memoSlots = 32
 
 // cell tells whether a result stands at a draw, and what its evaluation read.
 type cell struct {

@@ -48,11 +48,22 @@ func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
 	return u
 }
 
-// Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there.
+// frugalMoves is the number of inputs that are moved where evaluations are dear.
+const frugalMoves = 6
+
+// Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there. A frugal space moves those alone that
+// had most effect at the typical draw, once.
 func (s *Space) Polish(w *Worst, f Function) {
-	const passes = 4
+	passes := 4
 	var ids []int
-	w.Trace.used.each(func(id int) { ids = append(ids, id) })
+	if s.Frugal {
+		passes = 1
+		for _, e := range w.effects[:min(frugalMoves, len(w.effects))] {
+			ids = append(ids, e.Input.ID)
+		}
+	} else {
+		w.Trace.used.each(func(id int) { ids = append(ids, id) })
+	}
 	swings := make([]float64, len(ids))
 	calm := 0 // inputs moved in a row without getting worse; all of them: done
 	for k := 0; calm < len(ids) && k < passes*len(ids); k++ {
@@ -61,7 +72,7 @@ func (s *Space) Polish(w *Worst, f Function) {
 		if calm++; below(w.Value, start) {
 			calm = 1 // this input's swing was measured from the new worst draw's own end
 			w.Trace.used.each(func(id int) {
-				if !slices.Contains(ids, id) { // read for the first time
+				if !s.Frugal && !slices.Contains(ids, id) { // read for the first time
 					ids, swings = append(ids, id), append(swings, 0)
 				}
 			})
@@ -103,7 +114,7 @@ func (s *Space) move(w *Worst, f Function, id int) (swing float64) {
 	if s.low[id] < s.high[id] {
 		try(s.low[id])
 		try(s.high[id])
-		if s.interior.has(id) && !w.turning.has(id) { // it may turn here although it does not at the typical draw
+		if s.interior.has(id) && !w.turning.has(id) && !s.Frugal { // it may turn here although it does not at the typical draw
 			s.Try(w.Draw, func(d *Draw) {
 				if u, t := Evaluate(d, f); usable(u, t) && below(u, w.Value) {
 					w.turning.set(id)

@@ -1,6 +1,7 @@
 package corner
 
 import (
+	"cmp"
 	"math"
 	"slices"
 
@@ -26,9 +27,10 @@ type Worst struct {
 	// Carried tells that the directions were found at another set.
 	Carried bool
 
-	hidden  bool  // an input with a range was not read at the typical draw: its direction is not seen from there
-	ends    []end // where each input stands that was moved from its typical value
-	turning Bits  // inputs in which the function turns between their ends
+	effects []Swing // of a frugal search, largest first: of each input from its typical value to one end
+	hidden  bool    // an input with a range was not read at the typical draw: its direction is not seen from there
+	ends    []end   // where each input stands that was moved from its typical value
+	turning Bits    // inputs in which the function turns between their ends
 }
 
 // Decided tells whether the function could be evaluated at every draw of the search.
@@ -49,6 +51,9 @@ func Evaluate(d *Draw, f Function) (float64, *Trace) {
 
 // usable tells whether a value counts: not NaN, and nothing was missing.
 func usable(v float64, t *Trace) bool { return v == v && t.Complete() }
+
+// Effects are, of a frugal search, how far each input moves the function from its typical draw to one end, largest first.
+func (w *Worst) Effects() []Swing { return w.effects }
 
 // tolerance below which two values count as equal, relative.
 const tolerance = 1e-12
@@ -120,6 +125,24 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 				}
 				return u
 			}
+			if s.Frugal {
+				far := s.farEnd(id)
+				u := try(far)
+				other := 2*v - u // were the function a straight line
+				if log != nil {
+					*log = append(*log, seen{end{id, 3 - far}, nil, other})
+				}
+				if below(other, best) {
+					at = 3 - far
+				}
+				if d := math.Abs(above(u, v)); d > 0 && !math.IsInf(d, 0) {
+					w.effects = append(w.effects, Swing{s.inputs[id], d})
+				}
+				if at != 0 {
+					w.ends = append(w.ends, end{id, at})
+				}
+				return
+			}
 			lo, hi := try(1), try(2)
 			turns := above(lo, v)*above(hi, v) > 0
 			if s.interior.has(id) && !turns { // look between the ends for a turn
@@ -141,11 +164,20 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 			break
 		}
 	}
+	slices.SortStableFunc(w.effects, func(a, b Swing) int { return cmp.Compare(b.Range, a.Range) })
 	s.gather(&w, f)
 	if w.hidden {
 		s.Polish(&w, f)
 	}
 	return w
+}
+
+// farEnd is the end of an input that is farther from its typical value: the sample number.
+func (s *Space) farEnd(id int) int8 {
+	if s.typ[id]-s.low[id] > s.high[id]-s.typ[id] {
+		return 1
+	}
+	return 2
 }
 
 // end is one input's sample number.
@@ -188,7 +220,8 @@ func (s *Space) Ends(f Function) (low, high Worst) {
 	var log []seen
 	low = s.search(f, &log)
 	v := low.Typical
-	high = Worst{Space: s, Value: -low.Typical, Draw: s.Typical(), Typical: -low.Typical, Trace: low.Trace.clone(), Partial: false, turning: slices.Clone(low.turning)}
+	high = Worst{Space: s, Value: -low.Typical, Draw: s.Typical(), Typical: -low.Typical, Trace: low.Trace.clone(), Partial: false,
+		turning: slices.Clone(low.turning), effects: low.effects}
 	if low.Value != low.Value {
 		high.Value = math.NaN()
 		return low, high
@@ -203,13 +236,13 @@ func (s *Space) Ends(f Function) (low, high Worst) {
 		id, best, at := log[i].id, -v, int8(0)
 		for ; i < len(log) && log[i].id == id; i++ {
 			u := -log[i].value
-			if u != u {
+			if u != u && log[i].draw != nil {
 				high.Partial = true
 			}
 			if below(u, best) {
 				best, at = u, log[i].step
 			}
-			if below(u, high.Value) {
+			if log[i].draw != nil && below(u, high.Value) {
 				high.Value, high.Draw = u, log[i].draw
 			}
 		}
@@ -262,7 +295,8 @@ func (s *Space) carry(ref *Worst, f Function) Worst {
 	}
 	d := s.Typical()
 	v, t := Evaluate(d, f)
-	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends, turning: slices.Clone(ref.turning), Carried: true}
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), ends: ref.ends,
+		turning: slices.Clone(ref.turning), effects: ref.effects, Carried: true}
 	switch {
 	case !usable(v, t):
 		w.Value = math.NaN()

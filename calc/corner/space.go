@@ -47,6 +47,12 @@ type Space struct {
 	Point  *stage.OperatingPoint // nil: none
 	Set    Set
 
+	// Model is free for what a model keeps with the space; the spaces that Replace makes share it.
+	Model any
+	// Frugal tells that evaluations are dear: of each input one end is tried, and the other one taken to act the other way; the worst draw is
+	// moved only in the inputs that matter most.
+	Frugal bool
+
 	low, typ, high []float64
 	interior       Bits // inputs in which a turn is looked for between their ends
 	inputs         []*stage.Quantity

@@ -24,6 +24,10 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 		}
 		return u
 	}
+	digits := float64(breakEvenDigits)
+	if s.Frugal {
+		digits = frugalDigits
+	}
 	best, found := math.NaN(), false
 	for _, end := range []float64{low, high} {
 		if v := at(end); start == end || v != v || (v < 0) == (v0 < 0) {
@@ -32,10 +36,10 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 		var p float64
 		var ok bool
 		if start > 0 && end > 0 && (end > 4*start || start > 4*end) { // far apart: over the logarithm
-			p, ok = numeric.Root(func(u float64) float64 { return at(math.Exp(u)) }, math.Log(start), math.Log(end), breakEvenDigits)
+			p, ok = numeric.Root(func(u float64) float64 { return at(math.Exp(u)) }, math.Log(start), math.Log(end), digits)
 			p = math.Exp(p)
 		} else {
-			p, ok = numeric.Root(at, start, end, breakEvenDigits*math.Max(math.Abs(start), math.Abs(end)))
+			p, ok = numeric.Root(at, start, end, digits*math.Max(math.Abs(start), math.Abs(end)))
 		}
 		if ok && (!found || distance(p, start) < distance(best, start)) {
 			best, found = p, true
@@ -44,8 +48,11 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 	return best, found
 }
 
-// breakEvenDigits is how exactly a break-even value is found, relative.
-const breakEvenDigits = 1e-4
+// How exactly a break-even value is found, relative; frugalDigits where evaluations are dear.
+const (
+	breakEvenDigits = 1e-4
+	frugalDigits    = 5e-3
+)
 
 func distance(a, b float64) float64 {
 	return math.Abs(a-b) / (math.Abs(a) + math.Abs(b) + math.SmallestNonzeroFloat64)

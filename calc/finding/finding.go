@@ -270,13 +270,36 @@ type Precharge struct {
 
 // TransientStress is the switching events of each operating point.
 type TransientStress struct {
-	Events []TransientEvent
+	Events    []TransientEvent
+	Waveforms []Waveform
+}
+
+// Waveform is a signal of a simulated event at its worst draw, time rising, at most 2,000 points with the peaks among them.
+type Waveform struct {
+	Name  string // operating point, event and signal
+	Unit  string
+	Time  []float64 // since the command [s]
+	Value []float64 // in Unit
+}
+
+// Methods by which the numbers of an event were found.
+const (
+	Estimate   = "ESTIMATE"
+	Simulation = "SIMULATION"
+)
+
+// Comparison is a number at its worst draw, as simulated and as closed forms estimate it there.
+type Comparison struct {
+	Name                 string // of the number in the contract
+	Simulated, Estimated Measure
+	Difference           float64 // of the estimate from the simulation, as a share of that [1]
 }
 
 // TransientEvent is one event at one operating point.
 type TransientEvent struct {
 	Event               string // name in the contract
 	OperatingPoint      string
+	Method              string
 	NodeMin             Span
 	PinMin              Span
 	RailToCOMMin        Span
@@ -294,6 +317,13 @@ type TransientEvent struct {
 	CurrentSlope        Span
 	RingFrequency       Span
 	RingDamping         Span
+
+	// Of a simulation.
+	Steps       int     // of the integrator at the worst draw
+	Convergence float64 // largest change of an extreme there under a ten times tighter tolerance [1]; NaN: not known
+	Comparisons []Comparison
+	Missing     []string // what keeps the event from being simulated
+	Reason      string
 }
 
 // Undershoot is the time below one level.

@@ -16,24 +16,30 @@ import (
 	"floatrail/calc/stage"
 )
 
-// OfPoints gives what is known of each operating point: the floating voltages with their derived limits, and the switching events, as asked for.
-func OfPoints(b *rule.Bench, dutyLimits, transient bool) (*finding.DutyLimits, *finding.TransientStress) {
+// OfPoints gives what is known of each operating point: the floating voltages with their derived limits, and the switching events, with their waveforms
+// where they are simulated, as asked for.
+func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.DutyLimits, *finding.TransientStress) {
 	duty, stress := &finding.DutyLimits{}, &finding.TransientStress{}
 	if n := len(b.Points); b.Points[0].Operating != nil {
 		first, events := make([]finding.Precharge, n), make([][]finding.TransientEvent, n)
+		waves := make([][]finding.Waveform, n)
 		duty.Points = make([]finding.DutyPoint, n)
 		rule.SideBySide(2*n, func(i int) { // the events first: they take most
 			k := i % n
 			switch p := &b.Points[k]; {
 			case i < n && transient:
-				events[k] = eventsOf(b, &rule.Point{Operating: p.Operating, Spaces: p.Events})
+				spaces := p.Events
+				if b.Simulates() {
+					spaces = p.Simulated
+				}
+				events[k], waves[k] = eventsOf(b, &rule.Point{Operating: p.Operating, Spaces: spaces}, waveforms)
 			case i >= n && dutyLimits:
 				duty.Points[k], first[k] = dutyPoint(b, p), precharge(b, p)
 			}
 		})
 		duty.Precharge = overPoints(first)
-		for _, e := range events {
-			stress.Events = append(stress.Events, e...)
+		for i, e := range events {
+			stress.Events, stress.Waveforms = append(stress.Events, e...), append(stress.Waveforms, waves[i]...)
 		}
 	}
 	if !dutyLimits {

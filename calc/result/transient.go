@@ -2,6 +2,7 @@ package result
 
 import (
 	"math"
+	"strings"
 
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
@@ -9,17 +10,18 @@ import (
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
 	"floatrail/calc/stage"
+	"floatrail/calc/transient"
 )
 
-// eventsOf gives the switching events of one operating point, as closed forms estimate them.
-func eventsOf(b *rule.Bench, p *rule.Point) (out []finding.TransientEvent) {
+// eventsOf gives the switching events of one operating point, simulated where the bench does that, else as closed forms estimate them.
+func eventsOf(b *rule.Bench, p *rule.Point, waveforms bool) (out []finding.TransientEvent, waves []finding.Waveform) {
 	unset := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: quantity.Voltage}
 	gain := unset // of all undershoots of the period together
 	for _, e := range circuit.Events() {
 		if !circuit.Occurs(b.Stage, p.Operating, e) || b.Stopped() {
 			continue
 		}
-		one := event(b, p, e)
+		one, worst := event(b, p, e)
 		one.FloatingVoltageGain = unset
 		if e.Falls() {
 			if gain.Max != gain.Max {
@@ -27,43 +29,87 @@ func eventsOf(b *rule.Bench, p *rule.Point) (out []finding.TransientEvent) {
 			}
 			one.FloatingVoltageGain = gain
 		}
+		if one.Method == finding.Simulation && worst != nil {
+			corner.Evaluate(worst, func(d *corner.Draw) float64 {
+				c := circuit.Of(d)
+				if k := c.Course(e, circuit.Running); k != nil {
+					one.Steps, one.Convergence = k.Steps, rule.Significant(c.Convergence(e))
+					if waveforms {
+						waves = append(waves, waveformsOf(c, p, e)...)
+					}
+				}
+				return 0
+			})
+		}
 		out = append(out, one)
+	}
+	return out, waves
+}
+
+// shown are the signals whose waveforms are given, with their names.
+var shown = []struct {
+	signal transient.Signal
+	name   string
+	unit   string
+}{
+	{transient.Node, "node", "V"}, {transient.Pin, "V_S pin", "V"}, {transient.Rail, "V_B", "V"}, {transient.Floating, "V_BS", "V"},
+	{transient.HighDrain, "v_DS high side", "V"}, {transient.LowDrain, "v_DS low side", "V"}, {transient.HighGate, "v_GS high side", "V"},
+	{transient.LowGate, "v_GS low side", "V"}, {transient.HighCurrent, "current from the bus", "A"}, {transient.LowCurrent, "current from COM", "A"},
+	{transient.ElementCurrent, "bootstrap current", "A"},
+}
+
+// waveformsOf gives the waveforms of an event at a draw.
+func waveformsOf(c *circuit.Circuit, p *rule.Point, e circuit.Event) (out []finding.Waveform) {
+	signals := make([]transient.Signal, len(shown))
+	for i, s := range shown {
+		signals[i] = s.signal
+	}
+	k := c.Again(e, 1, signals)
+	if k == nil {
+		return nil
+	}
+	for i, w := range k.Waveforms {
+		out = append(out, finding.Waveform{Name: p.Name() + ", " + e.String() + ", " + shown[i].name, Unit: shown[i].unit, Time: w.Time, Value: w.Value})
 	}
 	return out
 }
 
-// event gives the numbers of one event. What it does not stress stays unset.
-func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent {
-	out := finding.TransientEvent{Event: e.String(), OperatingPoint: p.Name()}
+// event gives the numbers of one event, and the draw at which it takes the node farthest beyond a rail. What it does not stress stays unset.
+func event(b *rule.Bench, p *rule.Point, e circuit.Event) (out finding.TransientEvent, farthest *corner.Draw) {
+	out = finding.TransientEvent{Event: e.String(), OperatingPoint: p.Name(), Method: finding.Estimate, Convergence: math.NaN()}
+	if circuit.Of(p.Spaces[0].Typical()).Simulates(e) {
+		out.Method = finding.Simulation
+	}
 	turnsOn := e == circuit.TurnOn || e == circuit.SinkingTurnOn
 	switched := b.Stage.LowSide.Kind != stage.DiodeOnly
 	sourcing := e == circuit.TurnOff || e == circuit.TurnOn
 	const low, high, neither = -1, 1, 0 // the end that matters
 	var deepest corner.Worst
 	numbers := []struct {
+		name string // in the contract, of those that are compared with their estimates
 		to   *finding.Span
 		dim  quantity.Dimension
 		show bool
 		end  int
 		of   rule.Number
 	}{
-		{&out.NodeMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.Dip(e) }},
-		{&out.PinMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.PinDip(e) }},
-		{&out.RailToCOMMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 {
-			return c.PinDip(e) + c.Need(&c.Stage.Driver.UVLOFalling)
+		{"nodeMin", &out.NodeMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.Dip(e) }},
+		{"pinMin", &out.PinMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.PinDip(e) }},
+		{"railToComMin", &out.RailToCOMMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 {
+			return c.RailLow(e)
 		}},
-		{&out.NodeMax, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.NodePeak(e) }},
-		{&out.RailMax, quantity.Voltage, !e.Falls(), neither, func(c *circuit.Circuit) float64 { return c.NodePeak(e) + c.Highest() }},
-		{&out.HighSidePeak, quantity.Voltage, e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &b.Stage.HighSide) }},
-		{&out.LowSidePeak, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &b.Stage.LowSide) }},
-		{&out.SlewPeak, quantity.VoltageSlew, true, high, func(c *circuit.Circuit) float64 { return c.Slew(e) }},
-		{&out.Slew10To90, quantity.VoltageSlew, true, neither, func(c *circuit.Circuit) float64 { return c.Swing(e).Mean() }},
-		{&out.MillerLow, quantity.Voltage, turnsOn && sourcing && switched, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
-		{&out.MillerHigh, quantity.Voltage, turnsOn && !sourcing, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
-		{&out.GateMin, quantity.Voltage, !sourcing || switched, low, func(c *circuit.Circuit) float64 { return c.Pulled(e) }},
-		{&out.CurrentSlope, quantity.CurrentSlew, true, neither, func(c *circuit.Circuit) float64 { return c.CurrentSlope(e) }},
-		{&out.RingFrequency, quantity.Frequency, true, neither, func(c *circuit.Circuit) float64 { return c.Ring(e).Frequency() }},
-		{&out.RingDamping, quantity.Ratio, true, neither, func(c *circuit.Circuit) float64 { return c.Ring(e).Damping() }},
+		{"nodeMax", &out.NodeMax, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.NodePeak(e) }},
+		{"", &out.RailMax, quantity.Voltage, !e.Falls(), neither, func(c *circuit.Circuit) float64 { return c.NodePeak(e) + c.Highest() }},
+		{"highSidePeak", &out.HighSidePeak, quantity.Voltage, e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &b.Stage.HighSide) }},
+		{"lowSidePeak", &out.LowSidePeak, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &b.Stage.LowSide) }},
+		{"slewPeak", &out.SlewPeak, quantity.VoltageSlew, true, high, func(c *circuit.Circuit) float64 { return c.Slew(e) }},
+		{"", &out.Slew10To90, quantity.VoltageSlew, true, neither, func(c *circuit.Circuit) float64 { return c.MeanSlew(e) }},
+		{"millerLow", &out.MillerLow, quantity.Voltage, turnsOn && sourcing && switched, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
+		{"millerHigh", &out.MillerHigh, quantity.Voltage, turnsOn && !sourcing, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
+		{"gateMin", &out.GateMin, quantity.Voltage, !sourcing || switched, low, func(c *circuit.Circuit) float64 { return c.Pulled(e) }},
+		{"", &out.CurrentSlope, quantity.CurrentSlew, true, neither, func(c *circuit.Circuit) float64 { return c.Steepness(e) }},
+		{"", &out.RingFrequency, quantity.Frequency, true, neither, func(c *circuit.Circuit) float64 { f, _ := c.Ringing(e); return f }},
+		{"", &out.RingDamping, quantity.Ratio, true, neither, func(c *circuit.Circuit) float64 { _, z := c.Ringing(e); return z }},
 	}
 	var draws []*corner.Draw // the worst of the numbers with an end that matters; those without one reach as far there as they do anywhere
 	for _, last := range []bool{false, true} {
@@ -88,6 +134,12 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 				}
 				if w.Space != nil {
 					draws = append(draws, w.Draw)
+					compare(&out, n.name, n.dim, w, n.of)
+				}
+				if n.to == &out.NodeMin || n.to == &out.NodeMax {
+					if out.Missing, out.Reason = r.Missing, strings.Join(r.Reasons, "; "); w.Space != nil {
+						farthest = w.Draw
+					}
 				}
 				if n.to == &out.NodeMin || n.to == &out.PinMin {
 					deepest = r.Low
@@ -96,12 +148,15 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 		}
 	}
 	if !e.Falls() {
-		return out
+		return out, farthest
 	}
 	rows := b.Stage.Driver.NodeUndershoot.Items
 	for i := range rows {
 		level := rows[i].Voltage.Typ
 		below := func(c *circuit.Circuit) float64 {
+			if c.Simulates(e) {
+				return c.LongestBelow(e, i)
+			}
 			switch v, w := c.PinDip(e), c.Width(e); {
 			case v != v || w != w:
 				return math.NaN()
@@ -118,7 +173,27 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) finding.TransientEvent
 			Level: finding.Measure{Value: level, Dimension: quantity.Voltage}, Duration: span,
 		})
 	}
-	return out
+	return out, farthest
+}
+
+// compare puts a simulated number beside what closed forms estimate at the same draw.
+func compare(out *finding.TransientEvent, name string, dim quantity.Dimension, w *corner.Worst, of rule.Number) {
+	if out.Method != finding.Simulation || name == "" {
+		return
+	}
+	corner.Evaluate(w.Draw, func(d *corner.Draw) float64 {
+		c := circuit.Of(d)
+		v, estimate := rule.Significant(of(c)), rule.Significant(c.Estimated(of))
+		if v == v && estimate == estimate {
+			one := finding.Comparison{Name: name, Simulated: finding.Measure{Value: v, Dimension: dim},
+				Estimated: finding.Measure{Value: estimate, Dimension: dim}, Difference: math.NaN()}
+			if v != 0 {
+				one.Difference = rule.Significant(estimate/v - 1)
+			}
+			out.Comparisons = append(out.Comparisons, one)
+		}
+		return 0
+	})
 }
 
 // widen lets a span reach the number at another draw; NaN stays NaN.

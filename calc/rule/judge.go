@@ -106,11 +106,11 @@ func (b *Bench) at(r *Rule, role string, p *Point) []result {
 	for i, f := range searches {
 		nothing := i == len(searches)-1 && len(out) == 0 // of no alternative that exists: the check itself at every set
 		if nothing && len(r.Alternatives) > 0 {
-			if ws := corner.SearchSets(p.spaces(r), f); math.IsInf(ws[0].Value, 1) {
+			if ws := corner.SearchSets(b.spaces(p, r, role), f); math.IsInf(ws[0].Value, 1) {
 				f = r.function(role)
 			}
 		}
-		for _, w := range corner.SearchSets(p.spaces(r), f) {
+		for _, w := range corner.SearchSets(b.spaces(p, r, role), f) {
 			if !nothing && math.IsInf(w.Value, 1) { // an alternative that does not exist here
 				continue
 			}
@@ -124,7 +124,7 @@ func (b *Bench) at(r *Rule, role string, p *Point) []result {
 
 // closer looks closer at a result near its guard: it polishes it, and searches its set with directions of its own as well.
 func (b *Bench) closer(r *Rule, role string, res *result) {
-	if res.search == nil || !b.near(r, res) {
+	if res.search == nil || res.worst.Space.Frugal || !b.near(r, res) {
 		return
 	}
 	w, f := res.worst, res.search

@@ -132,7 +132,25 @@ func (b *Bench) notes(r *Rule, role string, res *result) []string {
 			return 0
 		})
 	}
+	if res.worst.Space.Model != nil {
+		corner.Evaluate(res.worst.Draw, func(d *corner.Draw) float64 {
+			c := circuit.Of(d)
+			estimate := c.Estimated(func(c *circuit.Circuit) float64 { return r.Check(c, role).Value })
+			if v := res.check.Value; estimate == estimate && !math.IsInf(estimate, 0) && significant(estimate) != significant(v) {
+				out = append(out, fmt.Sprintf("simulated; closed forms estimate %s here, %s", quantity.Format(estimate, r.Dimension), apart(estimate, v)))
+			}
+			return 0
+		})
+	}
 	return append(slices.Clone(res.notes), out...) // what keeps the rule from passing comes first
+}
+
+// apart tells how far an estimate lies from a value.
+func apart(estimate, v float64) string {
+	if v == 0 || estimate/v < 0.1 || estimate/v > 10 {
+		return "of another size"
+	}
+	return fmt.Sprintf("%+.0f %%", 100*(estimate/v-1))
 }
 
 // unknownBreakEven finds, where one value alone is missing, the value of it at which the rule turns.
@@ -141,7 +159,14 @@ func (b *Bench) unknownBreakEven(r *Rule, role string, f *finding.Finding, res *
 	if q == nil || q.Declare == nil || math.IsInf(q.Declare.Low, 0) || math.IsInf(q.Declare.High, 0) {
 		return
 	}
-	if v, ok := res.worst.Space.Turn(q, r.function(role)); ok {
+	f1 := r.function(role)
+	if res.worst.Space.Frugal { // a search for every value tried is too dear to simulate
+		inner := f1
+		f1 = func(d *corner.Draw) float64 {
+			return circuit.Of(d).Estimated(func(*circuit.Circuit) float64 { return inner(d) })
+		}
+	}
+	if v, ok := res.worst.Space.Turn(q, f1); ok {
 		f.BreakEven = append(f.BreakEven, finding.BreakEven{Field: q.Field, Measure: finding.Measure{Value: significant(v), Dimension: q.Declare.Dimension}})
 	}
 }
@@ -194,7 +219,14 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 	if f.Outcome == finding.Pass {
 		most = passBreakEvens
 	}
-	for _, s := range w.Swings {
+	swings := w.Swings
+	if w.Space.Frugal {
+		swings, most = b.frugalSwings(w), frugalBreakEvens
+		if f.Outcome == finding.Pass {
+			return
+		}
+	}
+	for _, s := range swings {
 		if len(f.BreakEven) == most || s.Range < leastSwing*w.Swings[0].Range {
 			return
 		}
@@ -202,11 +234,42 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 		if d == nil || math.IsInf(d.Low, 0) || math.IsInf(d.High, 0) {
 			continue
 		}
-		if v, ok := w.Space.BreakEven(w.Draw, s.Input, fn, d.Low, d.High); ok {
+		low, high := d.Low, d.High
+		if w.Space.Frugal { // beyond that another design is needed
+			at := w.Draw.Value(s.Input)
+			low, high = math.Max(low, at/frugalReach), math.Min(high, at*frugalReach)
+			if at < 0 {
+				low, high = math.Max(d.Low, at*frugalReach), math.Min(d.High, at/frugalReach)
+			}
+		}
+		if v, ok := w.Space.BreakEven(w.Draw, s.Input, fn, low, high); ok {
 			f.BreakEven = append(f.BreakEven, finding.BreakEven{Field: s.Input.Field,
 				Measure: finding.Measure{Value: significant(v), Dimension: d.Dimension}})
 		}
 	}
+}
+
+// What is sought where every value tried is a simulation.
+const (
+	frugalBreakEvens = 2
+	frugalReach      = 16.0 // times the value at the worst draw, and as small
+)
+
+// frugalSwings are those of what a board can change: the loop's inductances, gate resistors and the current.
+func (b *Bench) frugalSwings(w *corner.Worst) []corner.Swing {
+	l, high, low := &b.Stage.Layout, &b.Stage.HighSide, &b.Stage.LowSide
+	changeable := []*stage.Quantity{&l.LowSideInductance, &l.BusLoopInductance, &l.LoopInductance, &high.GateOff.Resistance, &high.GateOn.Resistance,
+		&low.GateOff.Resistance, &low.GateOn.Resistance, &l.NodeResistor.Resistance}
+	if p := w.Space.Point; p != nil {
+		changeable = append(changeable, &p.LoadCurrent)
+	}
+	var out []corner.Swing
+	for _, s := range w.Effects() {
+		if slices.Contains(changeable, s.Input) {
+			out = append(out, s)
+		}
+	}
+	return out
 }
 
 // tally is the finding of a rule that judges what the others assumed and left open.

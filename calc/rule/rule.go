@@ -53,7 +53,11 @@ type Rule struct {
 	Sense     Sense
 	Roles     []string // paths of the parts judged, relative to the stage; none: the stage itself
 	Events    bool     // asks about switching events
-	Stagewide bool     // does not depend on the kind of mode: one finding for all operating points
+	// Simulated tells for which roles the rule judges simulated events where a review asks for them; nil: for none.
+	Simulated func(role string) bool
+	// OnlySimulated rules judge nothing where no event is simulated.
+	OnlySimulated bool
+	Stagewide     bool // does not depend on the kind of mode: one finding for all operating points
 
 	// Inapplicable tells why the rule has nothing to judge; empty where it applies. The operating point may be nil.
 	Inapplicable func(s *stage.Stage, op *stage.OperatingPoint, role string) string

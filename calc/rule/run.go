@@ -6,6 +6,7 @@ import (
 	"sync"
 	"sync/atomic"
 
+	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
 	"floatrail/calc/finding"
 	"floatrail/calc/stage"
@@ -21,25 +22,59 @@ type Bench struct {
 	// EveryPoint asks for the worst draws of all operating points as exactly as for those that bind.
 	EveryPoint bool
 
-	mu      sync.Mutex
-	assumed []stage.Assumption
+	simulated bool
+	mu        sync.Mutex
+	assumed   []stage.Assumption
 }
 
 // Point is one operating point with its spaces. What asks about switching events has spaces of its own, so that both can be worked on side by
-// side. The stage without any operating point has one Point without Operating.
+// side, and what simulates them again others. The stage without any operating point has one Point without Operating.
 type Point struct {
 	Operating *stage.OperatingPoint
 	Spaces    []*corner.Space
 	Events    []*corner.Space // of the same sets
+	Simulated []*corner.Space // of the same sets; none where nothing is simulated
 }
 
-// spaces are those that a rule is searched in.
-func (p *Point) spaces(r *Rule) []*corner.Space {
-	if r.Events {
-		return p.Events
+// Lanes of work on one point.
+const (
+	laneMain = iota
+	laneEvents
+	laneSimulated
+	lanes
+)
+
+// lane is that in which a rule of a role is searched.
+func (b *Bench) lane(r *Rule, role string) int {
+	switch {
+	case b.simulated && r.Simulated != nil && r.Simulated(role):
+		return laneSimulated
+	case r.Events:
+		return laneEvents
 	}
-	return p.Spaces
+	return laneMain
 }
+
+// spaces are those that a rule of a role is searched in.
+func (b *Bench) spaces(p *Point, r *Rule, role string) []*corner.Space {
+	return [lanes][]*corner.Space{p.Spaces, p.Events, p.Simulated}[b.lane(r, role)]
+}
+
+// Simulate makes the rules and results that know how judge simulated events. It is called before anything runs.
+func (b *Bench) Simulate() {
+	b.simulated = true
+	for i := range b.Points {
+		p := &b.Points[i]
+		for _, s := range p.Spaces {
+			n := corner.NewSpace(b.Stage, b.Policy, p.Operating, s.Set)
+			n.Frugal, n.Model = true, &circuit.Simulation{Interrupted: b.Interrupted}
+			p.Simulated = append(p.Simulated, n)
+		}
+	}
+}
+
+// Simulates tells whether events are simulated.
+func (b *Bench) Simulates() bool { return b.simulated }
 
 // Name of the operating point.
 func (p *Point) Name() string {
@@ -85,7 +120,7 @@ func (b *Bench) Stopped() bool { return b.Interrupted != nil && b.Interrupted() 
 func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 	var jobs []*job
 	for _, r := range rules {
-		if r.Tally != nil {
+		if r.Tally != nil || r.OnlySimulated && !b.simulated {
 			continue
 		}
 		roles := r.Roles
@@ -191,12 +226,12 @@ func (b *Bench) settle(j *job) {
 
 // eachPoint calls f for every job and point of its group, side by side for different points, and for rules about events and others.
 func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
-	SideBySide(2*len(b.Points), func(i int) {
+	SideBySide(lanes*len(b.Points), func(i int) { // what simulates takes most and comes first
 		for _, j := range jobs {
 			if b.Stopped() {
 				return
 			}
-			if k := slices.Index(j.group.points, i/2); k >= 0 && j.rule.Events == (i%2 == 1) {
+			if k := slices.Index(j.group.points, i%len(b.Points)); k >= 0 && b.lane(j.rule, j.role) == lanes-1-i/len(b.Points) {
 				b.guarded(j, func() { f(j, k) })
 			}
 		}

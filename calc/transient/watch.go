@@ -23,6 +23,7 @@ type watch struct {
 	everyTurn        bool // tests: no ripple is too small
 	commanded        *device
 	commandedGate    Signal
+	gateLow          float64 // lowest v_gs of the commanded switch since it has turned off, +Inf: not yet [V]
 	gateCharge       float64 // out of C_B into the high side's gate [C]
 	y, dy            [most]float64
 	slewLow, slewTop float64 // [V]
@@ -78,7 +79,7 @@ func (w *watch) begin(b *Bridge, c *circuit, course *Course, y []float64, levels
 	if w.everyTurn {
 		w.ring.ripple = 0
 	}
-	w.gateCharge = 0
+	w.gateCharge, w.gateLow = 0, math.Inf(1)
 }
 
 // update takes in one span.
@@ -98,6 +99,7 @@ func (w *watch) update(at *span) {
 	w.slopes(at)
 	w.slews(at)
 	w.threshold(at)
+	w.lift()
 	w.channels(at)
 	if w.circuit.driven {
 		p := w.circuit.ig1.of(&at.state)
@@ -215,6 +217,26 @@ func (w *watch) threshold(at *span) {
 			if !off {
 				return
 			}
+		}
+	}
+}
+
+// leastLift is the share of the threshold by which a gate that is off must rise to count as lifted [1].
+const leastLift = 1e-3
+
+// lift takes how high the commanded gate rises after it has turned off.
+func (w *watch) lift() {
+	s, level := &w.pieces[w.commandedGate], w.commanded.threshold
+	if !w.bridge.Event.off() || w.gateLow > level && s.least > level {
+		return
+	}
+	s.divide()
+	for k := range s.n {
+		switch v := s.value[k]; {
+		case v < w.gateLow && v < level:
+			w.gateLow = v
+		case v > w.gateLow+leastLift*level && (w.course.Lift == 0 || v > w.course.Lift):
+			w.course.Lift = v
 		}
 	}
 }

@@ -1,0 +1,120 @@
+package circuit
+
+import (
+	"cmp"
+	"math"
+	"slices"
+
+	"floatrail/calc/transient"
+)
+
+// Undershoot is a simulated event against the driver's table of negative node voltages, by depth: the time below the level of a row must not exceed the
+// duration of the next deeper one, and be nothing below the last. The limit [V] is the level of the first row that is broken, else that of the first
+// one that is not reached. Near tells that it is broken where the level of every row stands its guard higher, or the dips of an event count together.
+func (c *Circuit) Undershoot(e Event) (value, limit float64, near bool) {
+	rows := c.Stage.Driver.NodeUndershoot.Items
+	if len(rows) == 0 {
+		c.Want(c.Stage.Driver.NodeUndershoot.Field)
+		return nan, nan, false
+	}
+	value = c.PinDip(e)
+	if value != value {
+		return nan, nan, false
+	}
+	order := make([]int, len(rows))
+	for i := range order {
+		order[i] = i
+		c.Need(&rows[i].Voltage)
+	}
+	slices.SortFunc(order, func(a, b int) int { return cmp.Compare(c.Value(&rows[b].Voltage), c.Value(&rows[a].Voltage)) })
+	broken, free := nan, nan
+	for k, i := range order {
+		allowed := 0.0 // below the level of this row [s]
+		if k+1 < len(order) {
+			if d := &rows[order[k+1]].Duration; d.Given() {
+				allowed = c.Need(d)
+			} else {
+				allowed = math.Inf(1)
+			}
+		}
+		level := c.Value(&rows[i].Voltage)
+		longest, together, guarded := c.timesBelow(e, i)
+		near = near || together > allowed || guarded > allowed
+		if broken != broken && longest > allowed {
+			broken = level
+		}
+		if free != free && value >= level {
+			free = level
+		}
+	}
+	if limit = broken; limit != limit {
+		limit = free
+	}
+	if first := &rows[order[0]].Duration; first.Given() && c.below(e, 2*len(rows), longestDip) > c.Need(first) {
+		c.Open("the driver's table of negative node voltages has no row that lasts as long as the undershoot")
+		return nan, nan, false
+	}
+	return value, limit, near
+}
+
+// timesBelow are the longest time below the level of a row of the driver's table, that of all dips of an event together, and the longest below the
+// level with its guard, from any state of charge [s].
+func (c *Circuit) timesBelow(e Event, row int) (longest, together, guarded float64) {
+	return c.below(e, 2*row, longestDip), c.below(e, 2*row, func(d *transient.Dips) float64 { return d.Total }), c.below(e, 2*row+1, longestDip)
+}
+
+// longestDip is the longest time without a break.
+func longestDip(d *transient.Dips) float64 { return d.Longest }
+
+// below is a time below a level, by its number, from any state of charge [s]. A dip that lasts beyond the end of the watch lasts for the dead time.
+func (c *Circuit) below(e Event, level int, of func(*transient.Dips) float64) float64 {
+	t := 0.0
+	for q := range e.charges() {
+		k := c.Course(e, q)
+		if k == nil {
+			return nan
+		}
+		d := &k.BelowPin[level]
+		t = math.Max(t, of(d))
+		if d.Lasting {
+			t = math.Max(t, c.window(e))
+		}
+	}
+	return t
+}
+
+// Spare is the time that a row of the driver's table leaves to a simulated event below its level, as a share of what it permits there, of that level
+// [V]: negative where the event stays too long; +Inf where the row permits no time or any.
+func (c *Circuit) Spare(e Event, row int) float64 {
+	rows := c.Stage.Driver.NodeUndershoot.Items
+	level := c.Need(&rows[row].Voltage)
+	allowed, next := 0.0, math.Inf(-1)
+	for i := range rows {
+		if v := c.Need(&rows[i].Voltage); v < level && v > next {
+			next = v
+			if allowed = math.Inf(1); rows[i].Duration.Given() {
+				allowed = c.Need(&rows[i].Duration)
+			}
+		}
+	}
+	longest, _, _ := c.timesBelow(e, row)
+	if allowed == 0 || math.IsInf(allowed, 1) {
+		return math.Inf(1)
+	}
+	return -level * (allowed - longest) / allowed
+}
+
+// DeepestRow is the lowest level of the driver's table [V].
+func (c *Circuit) DeepestRow() float64 {
+	v := 0.0
+	for i := range c.Stage.Driver.NodeUndershoot.Items {
+		v = math.Min(v, c.Need(&c.Stage.Driver.NodeUndershoot.Items[i].Voltage))
+	}
+	return v
+}
+
+// LongestBelow is the longest time that a simulated event stays below the level of a row of the driver's table, from any state of charge [s].
+func (c *Circuit) LongestBelow(e Event, row int) float64 {
+	c.Need(&c.Stage.Driver.NodeUndershoot.Items[row].Voltage)
+	return c.below(e, 2*row, longestDip)
+}
