@@ -28,7 +28,10 @@ var nodeRailBelowCOM = &rule.Rule{
 		return rule.Check{Value: v, Limit: limit, Guard: raised(c, limit)}
 	},
 	Alternatives: append(each(falling, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
-		return railAfter(c, e) - c.Need(&c.Stage.Driver.RailMin)
+		if !circuit.Occurs(c.Stage, c.Point, e) { // with the undershoot of normal operation, which is that and not less: no simulation of its own
+			return math.Inf(1)
+		}
+		return c.PinDip(e) + c.Need(&c.Stage.Driver.UVLOFalling) - c.Need(&c.Stage.Driver.RailMin)
 	}), func(c *circuit.Circuit, _ string) float64 {
 		return c.Need(&c.Stage.Startup.InitialVoltage) - c.Need(&c.Stage.Driver.RailMin)
 	}),

@@ -7,17 +7,13 @@ import (
 	"floatrail/calc/transient"
 )
 
-// least is the lowest a signal goes in an event, from any state of charge, 0 or negative [V].
+// least is the lowest a signal of the node goes in an event, 0 or negative [V]. Of all states of charge that of normal operation takes it deepest: the less
+// V_BS is, the more current the element sends into the node.
 func (c *Circuit) least(e Event, s transient.Signal) float64 {
-	v := 0.0
-	for q := range e.charges() {
-		k := c.Course(e, q)
-		if k == nil {
-			return nan
-		}
-		v = math.Min(v, k.Ranges[s].Min)
+	if k := c.Course(e, Running); k != nil {
+		return math.Min(0, k.Ranges[s].Min)
 	}
-	return v
+	return nan
 }
 
 // most is the highest a signal goes in an event [V].
@@ -112,20 +108,18 @@ func (c *Circuit) GateLow(e Event, s *stage.Switch) float64 {
 	return nan
 }
 
-// Lifted is the highest gate voltage to which a simulated event lifts the gate that it has turned off, from any state of charge [V].
+// Lifted is the highest gate voltage to which a simulated event lifts the gate that it has turned off [V]: the less V_BS is, the more
+// current of the element flows through R_VS.
 func (c *Circuit) Lifted(e Event) float64 {
 	v := c.Need(&c.active(e).OffBias)
 	if c.absent(e) {
 		return v
 	}
-	for q := range e.charges() {
-		k := c.Course(e, q)
-		if k == nil {
-			return nan
-		}
-		if k.Lift != 0 {
-			v = math.Max(v, k.Lift)
-		}
+	switch k := c.Course(e, e.charges()-1); {
+	case k == nil:
+		return nan
+	case k.Lift != 0:
+		return k.Lift
 	}
 	return v
 }

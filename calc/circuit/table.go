@@ -58,7 +58,7 @@ func (c *Circuit) Undershoot(e Event) (value, limit float64, near bool) {
 }
 
 // timesBelow are the longest time below the level of a row of the driver's table, that of all dips of an event together, and the longest below the
-// level with its guard, from any state of charge [s].
+// level with its guard [s].
 func (c *Circuit) timesBelow(e Event, row int) (longest, together, guarded float64) {
 	return c.below(e, 2*row, longestDip), c.below(e, 2*row, func(d *transient.Dips) float64 { return d.Total }), c.below(e, 2*row+1, longestDip)
 }
@@ -66,21 +66,17 @@ func (c *Circuit) timesBelow(e Event, row int) (longest, together, guarded float
 // longestDip is the longest time without a break.
 func longestDip(d *transient.Dips) float64 { return d.Longest }
 
-// below is a time below a level, by its number, from any state of charge [s]. A dip that lasts beyond the end of the watch lasts for the dead time.
+// below is a time below a level, by its number [s]. A dip that lasts beyond the end of the watch lasts for the dead time.
 func (c *Circuit) below(e Event, level int, of func(*transient.Dips) float64) float64 {
-	t := 0.0
-	for q := range e.charges() {
-		k := c.Course(e, q)
-		if k == nil {
-			return nan
-		}
-		d := &k.BelowPin[level]
-		t = math.Max(t, of(d))
-		if d.Lasting {
-			t = math.Max(t, c.window(e))
-		}
+	k := c.Course(e, Running)
+	if k == nil {
+		return nan
 	}
-	return t
+	d := &k.BelowPin[level]
+	if d.Lasting {
+		return math.Max(of(d), c.window(e))
+	}
+	return of(d)
 }
 
 // Spare is the time that a row of the driver's table leaves to a simulated event below its level, as a share of what it permits there, of that level
@@ -113,7 +109,7 @@ func (c *Circuit) DeepestRow() float64 {
 	return v
 }
 
-// LongestBelow is the longest time that a simulated event stays below the level of a row of the driver's table, from any state of charge [s].
+// LongestBelow is the longest time that a simulated event stays below the level of a row of the driver's table [s].
 func (c *Circuit) LongestBelow(e Event, row int) float64 {
 	c.Need(&c.Stage.Driver.NodeUndershoot.Items[row].Voltage)
 	return c.below(e, 2*row, longestDip)

@@ -270,17 +270,32 @@ func SearchSets(sets []*Space, f Function) []Worst {
 	return out
 }
 
-// EndsOfSets is SearchSets for the smallest and the largest value.
+// EndsOfSets is SearchSets for the smallest and the largest value. Frugal spaces are searched at one set, and looked at at the typical draw of the others.
 func EndsOfSets(sets []*Space, f Function) (lows, highs []Worst) {
 	home := homeOf(sets)
 	lows, highs = make([]Worst, len(sets)), make([]Worst, len(sets))
 	lows[home], highs[home] = sets[home].Ends(f)
 	for i, s := range sets {
-		if i != home {
+		switch {
+		case i == home:
+		case s.Frugal:
+			lows[i], highs[i] = s.typicalAlone(f), s.typicalAlone(f.Negative())
+		default:
 			lows[i], highs[i] = s.carry(&lows[home], f), s.carry(&highs[home], f.Negative())
 		}
 	}
 	return lows, highs
+}
+
+// typicalAlone is a function at the typical draw.
+func (s *Space) typicalAlone(f Function) Worst {
+	d := s.Typical()
+	v, t := Evaluate(d, f)
+	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs))}
+	if !usable(v, t) {
+		w.Value = math.NaN()
+	}
+	return w
 }
 
 // homeOf is the set at which directions are found.

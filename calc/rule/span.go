@@ -63,6 +63,17 @@ func (b *Bench) Range(p *Point, f Number, d quantity.Dimension) Range {
 func (b *Bench) Adverse(p *Point, f Number, d quantity.Dimension, high bool) Range {
 	out := b.Range(p, f, d)
 	fn := corner.Function(func(d *corner.Draw) float64 { return f(circuit.Of(d)) })
+	if out.Low.Space != nil && out.Low.Space.Frugal { // of which Range has searched one set
+		end, adverse := &out.Low, fn
+		if high {
+			end, adverse = &out.High, fn.Negative()
+		}
+		for _, w := range corner.SearchSets(p.Spaces, adverse) {
+			if w.Decided() && w.Value < end.Value {
+				*end = w
+			}
+		}
+	}
 	switch {
 	case out.Low.Space == nil:
 	case high:
