@@ -165,6 +165,9 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 		}
 	}
 	slices.SortStableFunc(w.effects, func(a, b Swing) int { return cmp.Compare(b.Range, a.Range) })
+	if s.Frugal && log != nil {
+		return w
+	}
 	s.gather(&w, f)
 	if w.hidden {
 		s.Polish(&w, f)
@@ -215,7 +218,8 @@ func (s *Space) corner(ends []end) *Draw {
 	return d
 }
 
-// Ends finds the smallest and, as that of the negative function, the largest value of a function. Both are seen from the same draws.
+// Ends finds the smallest and, as that of the negative function, the largest value of a function. Both are seen from the same draws. In a frugal space
+// they are those with one input moved.
 func (s *Space) Ends(f Function) (low, high Worst) {
 	var log []seen
 	low = s.search(f, &log)
@@ -249,6 +253,9 @@ func (s *Space) Ends(f Function) (low, high Worst) {
 		if at != 0 {
 			high.ends = append(high.ends, end{id, at})
 		}
+	}
+	if s.Frugal {
+		return low, high
 	}
 	s.gather(&high, f.Negative())
 	if high.hidden = low.hidden; high.hidden {
