@@ -25,6 +25,7 @@ var diodeReverseVoltage = &rule.Rule{
 		limit := c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax)
 		return rule.Check{Value: c.NodeHigh() + c.Highest() - c.Supply(), Limit: limit, Guard: limit * c.Policy.DiodeReverseRatio}
 	},
+	EventOf: rising,
 	Alternatives: each(rising, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
 		return c.Need(&c.Stage.Bootstrap.Diode.ReverseVoltageMax) - c.NodePeak(e) - c.Highest() + c.Supply()
 	}),

@@ -44,7 +44,7 @@ func during(reason string, events ...circuit.Event) func(*stage.Stage, *stage.Op
 func largest(c *circuit.Circuit, events []circuit.Event, f func(circuit.Event) float64) float64 {
 	v := math.Inf(-1)
 	for _, e := range events {
-		if circuit.Occurs(c.Stage, c.Point, e) {
+		if c.Occurs(e) {
 			v = math.Max(v, f(e))
 		}
 	}
@@ -56,7 +56,7 @@ func each(events []circuit.Event, margin func(c *circuit.Circuit, role string, e
 	out := make([]func(*circuit.Circuit, string) float64, len(events))
 	for i, e := range events {
 		out[i] = func(c *circuit.Circuit, role string) float64 {
-			if !circuit.Occurs(c.Stage, c.Point, e) {
+			if !c.Occurs(e) {
 				return math.Inf(1)
 			}
 			return margin(c, role, e)

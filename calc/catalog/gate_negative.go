@@ -22,12 +22,13 @@ var gateNegative = &rule.Rule{
 		limit := c.Need(&position(c, role).GateVoltageMin)
 		v := c.Need(&position(c, role).OffBias)
 		for _, e := range everyEvent {
-			if circuit.Occurs(c.Stage, c.Point, e) {
+			if c.Occurs(e) {
 				v = min(v, c.GateLow(e, position(c, role)))
 			}
 		}
 		return rule.Check{Value: v, Limit: limit, Guard: raised(c, limit)}
 	},
+	EventOf: everyEvent,
 	Alternatives: each(everyEvent, func(c *circuit.Circuit, role string, e circuit.Event) float64 {
 		s := position(c, role)
 		return c.GateLow(e, s) - c.Need(&s.GateVoltageMin)

@@ -6,6 +6,7 @@ import (
 	"floatrail/calc/rule"
 	"floatrail/calc/stage"
 	"math"
+	"slices"
 )
 
 var nodeRailBelowCOM = &rule.Rule{
@@ -27,8 +28,9 @@ var nodeRailBelowCOM = &rule.Rule{
 		}
 		return rule.Check{Value: v, Limit: limit, Guard: raised(c, limit)}
 	},
+	EventOf: slices.Concat(falling, []circuit.Event{circuit.NoEvent}),
 	Alternatives: append(each(falling, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
-		if !circuit.Occurs(c.Stage, c.Point, e) { // with the undershoot of normal operation, which is that and not less: no simulation of its own
+		if !c.Occurs(e) { // with the undershoot of normal operation, which is that and not less: no simulation of its own
 			return math.Inf(1)
 		}
 		return c.PinDip(e) + c.Need(&c.Stage.Driver.UVLOFalling) - c.Need(&c.Stage.Driver.RailMin)
@@ -39,7 +41,7 @@ var nodeRailBelowCOM = &rule.Rule{
 
 // railAfter is the lowest V_B to COM in an event at the lowest V_BS at which the driver still commands it [V].
 func railAfter(c *circuit.Circuit, e circuit.Event) float64 {
-	if !circuit.Occurs(c.Stage, c.Point, e) {
+	if !c.Occurs(e) {
 		return math.Inf(1)
 	}
 	return c.RailLow(e)

@@ -22,6 +22,7 @@ var nodeRailOvershoot = &rule.Rule{
 		limit := c.Need(&c.Stage.Driver.OffsetVoltageMax)
 		return rule.Check{Value: c.NodeHigh() + c.Highest(), Limit: limit, Guard: below(c, limit)}
 	},
+	EventOf: rising,
 	Alternatives: each(rising, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
 		return c.Need(&c.Stage.Driver.OffsetVoltageMax) - c.NodePeak(e) - c.Highest()
 	}),

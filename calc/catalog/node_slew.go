@@ -28,12 +28,13 @@ var nodeSlew = &rule.Rule{
 		limit := c.Need(&c.Stage.Driver.SlewMax)
 		return rule.Check{Value: largest(c, everyEvent, c.Slew), Limit: limit, Guard: slewShare * limit}
 	},
+	EventOf: everyEvent,
 	Alternatives: each(everyEvent, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
 		return c.Need(&c.Stage.Driver.SlewMax) - c.Slew(e)
 	}),
 	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
 		for _, e := range everyEvent {
-			if circuit.Occurs(c.Stage, c.Point, e) && c.Slew(e) == k.Value {
+			if c.Occurs(e) && c.Slew(e) == k.Value {
 				return []string{fmt.Sprintf("%s; from 10 to 90 %% of V_BUS %s", phrase(e), quantity.Format(c.MeanSlew(e), quantity.VoltageSlew))}
 			}
 		}

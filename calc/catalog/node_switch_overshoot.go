@@ -24,6 +24,7 @@ var nodeSwitchOvershoot = &rule.Rule{
 		v := largest(c, everyEvent, func(e circuit.Event) float64 { return c.SwitchPeak(e, s) })
 		return rule.Check{Value: max(v, c.Bus()), Limit: limit, Guard: below(c, limit)}
 	},
+	EventOf: everyEvent,
 	Alternatives: each(everyEvent, func(c *circuit.Circuit, role string, e circuit.Event) float64 {
 		s := position(c, role)
 		return c.Need(&s.BlockingVoltage) - c.SwitchPeak(e, s)

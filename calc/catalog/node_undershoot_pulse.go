@@ -28,12 +28,13 @@ var nodeUndershootPulse = &rule.Rule{
 		var buf [2]rule.Check
 		checks := buf[:0]
 		for _, e := range falling {
-			if circuit.Occurs(c.Stage, c.Point, e) {
+			if c.Occurs(e) {
 				checks = append(checks, undershoot(c, e))
 			}
 		}
 		return worst(rule.AtLeast, checks...)
 	},
+	EventOf: slices.Concat(falling, falling),
 	Alternatives: slices.Concat(
 		each(falling, func(c *circuit.Circuit, _ string, e circuit.Event) float64 {
 			k := undershoot(c, e)
@@ -52,7 +53,7 @@ var nodeUndershootPulse = &rule.Rule{
 	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
 		var out []string
 		for _, e := range falling {
-			if circuit.Occurs(c.Stage, c.Point, e) && c.Current(e) > 0 {
+			if c.Occurs(e) && c.Current(e) > 0 {
 				out = append(out, fmt.Sprintf("%s for %s at %s (%s)", quantity.Format(c.PinDip(e), quantity.Voltage),
 					quantity.Format(c.Width(e), quantity.Time), quantity.Format(c.Steepness(e), quantity.CurrentSlew), phrase(e)))
 			}

@@ -36,6 +36,7 @@ type Circuit struct {
 	curveAt       [curves][]transient.CurvePoint
 	events        *events // nil: none asked for yet
 	estimating    bool    // events by closed forms, whatever the space says
+	focus         *Event  // the event that alone counts as occurring; nil: all that can
 }
 
 // events are the results about switching events.

@@ -584,7 +584,7 @@ func (c *Circuit) Bus() float64 { return c.bus() }
 func (c *Circuit) NodeHigh() float64 {
 	v := c.bus()
 	for _, e := range Events() {
-		if Occurs(c.Stage, c.Point, e) {
+		if c.Occurs(e) {
 			v = math.Max(v, c.NodePeak(e))
 		}
 	}

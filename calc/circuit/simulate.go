@@ -98,6 +98,21 @@ func (c *Circuit) Estimated(f func(*Circuit) float64) float64 {
 	return f(c)
 }
 
+// NoEvent is none of the events.
+const NoEvent = eventCount
+
+// Focused runs f as if one event alone could occur.
+func (c *Circuit) Focused(e Event, f func()) {
+	defer func(was *Event) { c.focus = was }(c.focus)
+	c.focus = &e
+	f()
+}
+
+// Occurs tells whether an event can occur at the operating point, and counts.
+func (c *Circuit) Occurs(e Event) bool {
+	return (c.focus == nil || *c.focus == e) && Occurs(c.Stage, c.Point, e)
+}
+
 // Course is what an event does in a simulation, from a state of charge; nil where that cannot be had, of which the circuit keeps the reason.
 func (c *Circuit) Course(e Event, q StateOfCharge) *transient.Course {
 	slot := slotCourse + int(q)*int(eventCount) + int(e)

@@ -51,7 +51,7 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 // How exactly a break-even value is found, relative; frugalDigits where evaluations are dear.
 const (
 	breakEvenDigits = 1e-4
-	frugalDigits    = 5e-3
+	frugalDigits    = 1e-2
 )
 
 func distance(a, b float64) float64 {

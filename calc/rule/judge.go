@@ -22,6 +22,7 @@ type result struct {
 	reason  string // why not applicable
 	refined bool
 	search  corner.Function // by which it was found; nil where nothing was searched
+	rule    *Rule           // that of the alternative searched; nil: the whole
 	thin    bool            // the alternative that was searched may turn where its draw is polished
 }
 
@@ -114,7 +115,11 @@ func (b *Bench) at(r *Rule, role string, p *Point) []result {
 			if !nothing && math.IsInf(w.Value, 1) { // an alternative that does not exist here
 				continue
 			}
-			res := b.found(r, role, p, w)
+			var alternative *Rule
+			if w.Space.Frugal && len(r.EventOf) > 0 && !nothing {
+				alternative = r.about(i)
+			}
+			res := b.found(r, alternative, role, p, w)
 			res.search = f
 			out = append(out, res)
 		}
@@ -132,7 +137,7 @@ func (b *Bench) closer(r *Rule, role string, res *result) {
 	if !w.Carried {
 		return
 	}
-	if own := b.found(r, role, res.point, w.Space.Search(f)); own.worst.Value != w.Value {
+	if own := b.found(r, nil, role, res.point, w.Space.Search(f)); own.worst.Value != w.Value {
 		b.refine(r, role, &own)
 		if worse(&own, res) {
 			*res = own
@@ -141,8 +146,11 @@ func (b *Bench) closer(r *Rule, role string, res *result) {
 }
 
 // found is the result of a search.
-func (b *Bench) found(r *Rule, role string, p *Point, w corner.Worst) result {
-	res := result{point: p, worst: w}
+func (b *Bench) found(r, alternative *Rule, role string, p *Point, w corner.Worst) result {
+	res := result{point: p, worst: w, rule: alternative}
+	if alternative != nil {
+		r = alternative
+	}
 	b.decide(r, role, &res)
 	if len(r.Alternatives) > 0 && w.Value == w.Value {
 		res.thin = !(w.Value > nearShare*(w.Typical-w.Value)) // of its own: what the smallest of all hides
@@ -251,6 +259,9 @@ func (b *Bench) refine(r *Rule, role string, res *result) {
 		return
 	}
 	res.refined = true
+	if res.rule != nil {
+		r = res.rule
+	}
 	before := *res
 	res.worst.Space.Polish(&res.worst, r.function(role))
 	b.decide(r, role, res)

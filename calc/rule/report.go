@@ -23,6 +23,9 @@ const (
 // report words the finding.
 func (b *Bench) report(r *Rule, role, mode string, all []result, best int) finding.Finding {
 	res := &all[best]
+	if res.rule != nil {
+		r = res.rule
+	}
 	f := finding.Finding{
 		Rule: r.ID, Role: role, Mode: mode, Outcome: res.outcome, Title: r.Title, Equation: r.Equation, Sources: r.Sources,
 		Severity: r.severity(res.outcome, b.Stage, role, b.Policy), Subjects: b.subjects(role),
@@ -252,7 +255,7 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 // What is sought where every value tried is a simulation.
 const (
 	frugalBreakEvens = 2
-	frugalReach      = 16.0 // times the value at the worst draw, and as small
+	frugalReach      = 8.0 // times the value at the worst draw, and as small
 )
 
 // frugalSwings are those of what a board can change: the loop's inductances, gate resistors and the current.

@@ -70,6 +70,9 @@ type Rule struct {
 	// Alternatives, where set, are margins of which Check's is the smallest, or numbers with their signs. The worst draw of each is searched
 	// for: at the typical draw the smallest hides what the others read. One that does not exist at a draw is +Inf.
 	Alternatives []func(c *circuit.Circuit, role string) float64
+	// EventOf is, where each alternative is about one event, which; NoEvent for one that is about none. Where evaluations are dear the check at the worst
+	// draw of an alternative looks at its event alone.
+	EventOf []circuit.Event
 	// ProxyDimension is the dimension of Proxy.
 	ProxyDimension quantity.Dimension
 	// Tally, where set, stands in the place of Check: the rule judges the assumptions that the rules before it made, and how many of them are
@@ -171,6 +174,22 @@ func (r *Rule) Searches(role string) []corner.Function {
 		out[i] = func(d *corner.Draw) float64 { return f(circuit.Of(d), role) }
 	}
 	return out
+}
+
+// about is the rule of one alternative, which looks at its event alone.
+func (r *Rule) about(alternative int) *Rule {
+	one, e := *r, r.EventOf[alternative]
+	one.Check = func(c *circuit.Circuit, role string) (k Check) {
+		c.Focused(e, func() { k = r.Check(c, role) })
+		return k
+	}
+	if r.Explain != nil {
+		one.Explain = func(c *circuit.Circuit, role string, k Check) (notes []string) {
+			c.Focused(e, func() { notes = r.Explain(c, role, k) })
+			return notes
+		}
+	}
+	return &one
 }
 
 // Worst is the function whose smallest value is the rule's worst draw.

@@ -28,3 +28,18 @@ func benchmark(b *testing.B, parts int) {
 
 // BenchmarkRules is the rules alone.
 func BenchmarkRules(b *testing.B) { benchmark(b, 0) }
+
+// BenchmarkSimulatedReview is a review of three operating points whose switching events are simulated.
+func BenchmarkSimulatedReview(b *testing.B) {
+	tree := document(b, "buck48")
+	b.ReportAllocs()
+	for range b.N {
+		b.StopTimer()
+		r := bind(b, tree)
+		r.Options.Simulate = true
+		b.StartTimer()
+		if _, err := calc.Review(context.Background(), *r, calc.WithDutyLimits|calc.WithTransient); err != nil {
+			b.Fatal(err)
+		}
+	}
+}
