@@ -30,7 +30,10 @@ type signature struct {
 
 // memory keeps results across the draws of a space. An evaluation depends on the numbers it reads and on nothing else, so that a draw which
 // agrees in all of them has the same result.
-type memory [memoSlots][]*signature
+type memory struct {
+	slots [memoSlots][]*signature
+	known []*memory // of twins, which nobody changes any more
+}
 
 func (g *signature) hash(d *Draw) uint64 {
 	h := uint64(14695981039346656037)
@@ -43,7 +46,12 @@ func (g *signature) hash(d *Draw) uint64 {
 
 // find gives the kept result for the numbers of a draw.
 func (m *memory) find(slot int, d *Draw) *entry {
-	for _, g := range m[slot] {
+	for _, o := range m.known {
+		if e := o.find(slot, d); e != nil {
+			return e
+		}
+	}
+	for _, g := range m.slots[slot] {
 		e := g.entries[g.hash(d)]
 		if e == nil {
 			continue
@@ -65,7 +73,7 @@ func (m *memory) find(slot int, d *Draw) *entry {
 // keep stores a result under the inputs that its evaluation read.
 func (m *memory) keep(slot int, d *Draw, e *entry) {
 	var g *signature
-	for _, o := range m[slot] {
+	for _, o := range m.slots[slot] {
 		if slices.Equal(o.used, e.trace.used) {
 			g = o
 		}
@@ -73,7 +81,7 @@ func (m *memory) keep(slot int, d *Draw, e *entry) {
 	if g == nil {
 		g = &signature{used: slices.Clone(e.trace.used), entries: map[uint64]*entry{}}
 		g.used.each(func(id int) { g.ids = append(g.ids, id) })
-		m[slot] = append(m[slot], g)
+		m.slots[slot] = append(m.slots[slot], g)
 	}
 	e.values = make([]float64, len(g.ids))
 	for i, id := range g.ids {

@@ -230,6 +230,33 @@ func (s *Space) Replace(changes ...Replacement) *Space {
 	return &o
 }
 
+// Twin is the same space with nothing kept, to be worked on beside it, with a model of its own.
+func (s *Space) Twin(model any) *Space {
+	o := s.Replace()
+	o.Model, o.origin, o.memory = model, nil, &memory{}
+	return o
+}
+
+// Adopt makes what a twin keeps known to the space. The twin is not used any more.
+func (s *Space) Adopt(twin *Space) { s.memory.known = append(s.memory.known, twin.memory) }
+
+// Survey evaluates a function where a frugal search will: at the typical draw, and one of several parts of the draws with one input at an end.
+func (s *Space) Survey(f Function, part, parts int) {
+	_, t := Evaluate(s.Typical(), f)
+	k := 0
+	t.clone().used.each(func(id int) {
+		if s.low[id] < s.high[id] {
+			if k++; k%parts == part {
+				far := s.farEnd(id)
+				Evaluate(s.probe(id, far, s.sample(id, far)), f)
+			}
+		}
+	})
+}
+
+// Home is the one of an operating point's spaces at which directions are found.
+func Home(sets []*Space) *Space { return sets[homeOf(sets)] }
+
 // Replacement is another range of one input.
 type Replacement struct {
 	ID int

@@ -133,6 +133,7 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 			}
 		}
 	}
+	b.survey()
 	b.eachPoint(jobs, func(j *job, k int) { j.found[k] = b.at(j.rule, j.role, &b.Points[j.group.points[k]]) })
 	b.eachFound(jobs, func(j *job, res *result) { b.closer(j.rule, j.role, res) })
 	for _, j := range jobs {
@@ -221,6 +222,46 @@ func (b *Bench) settle(j *job) {
 			return
 		}
 		b.refine(j.rule, j.role, w)
+	}
+}
+
+// surveyParts is the number of parts in which the draws of one event are surveyed.
+const surveyParts = 3
+
+// survey simulates the events of all operating points where their searches will look first. As any of these draws may be taken by any processor, none
+// of them waits for a point that takes long.
+func (b *Bench) survey() {
+	if !b.simulated {
+		return
+	}
+	type task struct {
+		home, twin *corner.Space
+		event      circuit.Event
+		part       int
+	}
+	var tasks []task
+	for i := range b.Points {
+		home := corner.Home(b.Points[i].Simulated)
+		for _, e := range circuit.Events() {
+			if !circuit.Occurs(b.Stage, b.Points[i].Operating, e) {
+				continue
+			}
+			for part := range surveyParts {
+				tasks = append(tasks, task{home, home.Twin(&circuit.Simulation{Interrupted: b.Interrupted}), e, part})
+			}
+		}
+	}
+	SideBySide(len(tasks), func(i int) {
+		t := &tasks[i]
+		if b.Stopped() {
+			return
+		}
+		b.guarded(&job{}, func() {
+			t.twin.Survey(func(d *corner.Draw) float64 { return circuit.Of(d).Survey(t.event) }, t.part, surveyParts)
+		})
+	})
+	for i := range tasks {
+		tasks[i].home.Adopt(tasks[i].twin)
 	}
 }
 
