@@ -21,7 +21,7 @@ const (
 )
 
 // Events lists them.
-func Events() [eventCount]Event { return [...]Event{TurnOff, TurnOn, SinkingTurnOff, SinkingTurnOn} }
+func Events() []Event { return []Event{TurnOff, TurnOn, SinkingTurnOff, SinkingTurnOn} }
 
 // String gives the contract's name of the event.
 func (e Event) String() string {

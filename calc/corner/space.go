@@ -230,15 +230,21 @@ func (s *Space) Replace(changes ...Replacement) *Space {
 	return &o
 }
 
-// Twin is the same space with nothing kept, to be worked on beside it, with a model of its own.
+// Twin is the same space with a model of its own. It knows what the space keeps, which itself is not worked on as long as twins of it are.
 func (s *Space) Twin(model any) *Space {
 	o := s.Replace()
-	o.Model, o.origin, o.memory = model, nil, &memory{}
+	o.Model, o.origin, o.memory = model, nil, &memory{known: []*memory{s.memory}}
 	return o
 }
 
-// Adopt makes what a twin keeps known to the space. The twin is not used any more.
-func (s *Space) Adopt(twin *Space) { s.memory.known = append(s.memory.known, twin.memory) }
+// Adopt makes what a twin has come to keep known to the space. The twin is not used any more.
+func (s *Space) Adopt(twin *Space) { s.memory.known = append(s.memory.known, &memory{slots: twin.memory.slots}) }
+
+// On is the worst draw in a twin of its space.
+func (w Worst) On(twin *Space) Worst {
+	w.Space, w.Draw = twin, twin.at(w.Draw.numbers())
+	return w
+}
 
 // Survey evaluates a function where a frugal search will: at the typical draw, and one of several parts of the draws with one input at an end.
 func (s *Space) Survey(f Function, part, parts int) {

@@ -21,25 +21,32 @@ import (
 func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.DutyLimits, *finding.TransientStress) {
 	duty, stress := &finding.DutyLimits{}, &finding.TransientStress{}
 	if n := len(b.Points); b.Points[0].Operating != nil {
-		first, events := make([]finding.Precharge, n), make([][]finding.TransientEvent, n)
-		waves := make([][]finding.Waveform, n)
+		kinds := [][]circuit.Event{circuit.Events()} // of work on the events of one point, each simulated one by itself
+		if b.Simulates() {
+			kinds = kinds[:0]
+			for _, e := range circuit.Events() {
+				kinds = append(kinds, []circuit.Event{e})
+			}
+		}
+		first := make([]finding.Precharge, n)
+		events := make([]finding.TransientStress, n*len(kinds))
 		duty.Points = make([]finding.DutyPoint, n)
-		rule.SideBySide(2*n, func(i int) { // the events first: they take most
+		rule.SideBySide(n*(len(kinds)+1), func(i int) { // the events first: they take most
 			k := i % n
-			switch p := &b.Points[k]; {
-			case i < n && transient:
-				spaces := p.Events
+			switch p, kind := &b.Points[k], i/n; {
+			case kind < len(kinds) && transient:
+				at := &rule.Point{Operating: p.Operating, Spaces: p.Events}
 				if b.Simulates() {
-					spaces = p.Simulated
+					at = b.Twins(p)
 				}
-				events[k], waves[k] = eventsOf(b, &rule.Point{Operating: p.Operating, Spaces: spaces}, waveforms)
-			case i >= n && dutyLimits:
+				events[k*len(kinds)+kind] = eventsOf(b, at, kinds[kind], waveforms)
+			case kind == len(kinds) && dutyLimits:
 				duty.Points[k], first[k] = dutyPoint(b, p), precharge(b, p)
 			}
 		})
 		duty.Precharge = overPoints(first)
-		for i, e := range events {
-			stress.Events, stress.Waveforms = append(stress.Events, e...), append(stress.Waveforms, waves[i]...)
+		for _, e := range events {
+			stress.Events, stress.Waveforms = append(stress.Events, e.Events...), append(stress.Waveforms, e.Waveforms...)
 		}
 	}
 	if !dutyLimits {

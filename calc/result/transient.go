@@ -13,11 +13,11 @@ import (
 	"floatrail/calc/transient"
 )
 
-// eventsOf gives the switching events of one operating point, simulated where the bench does that, else as closed forms estimate them.
-func eventsOf(b *rule.Bench, p *rule.Point, waveforms bool) (out []finding.TransientEvent, waves []finding.Waveform) {
+// eventsOf gives switching events of one operating point, simulated where its spaces do that, else as closed forms estimate them.
+func eventsOf(b *rule.Bench, p *rule.Point, events []circuit.Event, waveforms bool) (out finding.TransientStress) {
 	unset := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: quantity.Voltage}
 	gain := unset // of all undershoots of the period together
-	for _, e := range circuit.Events() {
+	for _, e := range events {
 		if !circuit.Occurs(b.Stage, p.Operating, e) || b.Stopped() {
 			continue
 		}
@@ -35,15 +35,15 @@ func eventsOf(b *rule.Bench, p *rule.Point, waveforms bool) (out []finding.Trans
 				if k := c.Course(e, circuit.Running); k != nil {
 					one.Steps, one.Convergence = k.Steps, rule.Significant(c.Convergence(e))
 					if waveforms {
-						waves = append(waves, waveformsOf(c, p, e)...)
+						out.Waveforms = append(out.Waveforms, waveformsOf(c, p, e)...)
 					}
 				}
 				return 0
 			})
 		}
-		out = append(out, one)
+		out.Events = append(out.Events, one)
 	}
-	return out, waves
+	return out
 }
 
 // shown are the signals whose waveforms are given, with their names.

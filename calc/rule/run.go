@@ -67,10 +67,19 @@ func (b *Bench) Simulate() {
 		p := &b.Points[i]
 		for _, s := range p.Spaces {
 			n := corner.NewSpace(b.Stage, b.Policy, p.Operating, s.Set)
-			n.Frugal, n.Model = true, &circuit.Simulation{Interrupted: b.Interrupted}
+			n.Frugal, n.Model = true, b.simulation()
 			p.Simulated = append(p.Simulated, n)
 		}
 	}
+}
+
+// Twins are twins of the simulated spaces of a point.
+func (b *Bench) Twins(p *Point) *Point {
+	out := Point{Operating: p.Operating}
+	for _, s := range p.Simulated {
+		out.Spaces = append(out.Spaces, s.Twin(b.simulation()))
+	}
+	return &out
 }
 
 // Simulates tells whether events are simulated.
@@ -158,6 +167,7 @@ func (b *Bench) Run(rules ...*Rule) (findings []finding.Finding, broken int) {
 		b.guarded(j, func() { b.settle(j) })
 	}
 	binding(func(j *job) { j.finding = b.report(j.rule, j.role, j.group.mode, j.results, j.best) })
+	b.adopt(jobs)
 	for _, j := range jobs {
 		if j.panicked {
 			if broken == 0 || findings[len(findings)-1].Rule != j.rule.ID {
@@ -185,6 +195,8 @@ type job struct {
 	results  []result   // the worst of each point
 	best     int        // index of the worst result
 	finding  finding.Finding
+	twin     *corner.Space // in which the worst result is worked on where its space is frugal
+	home     *corner.Space
 	panicked bool
 }
 
@@ -247,7 +259,7 @@ func (b *Bench) survey() {
 				continue
 			}
 			for part := range surveyParts {
-				tasks = append(tasks, task{home, home.Twin(&circuit.Simulation{Interrupted: b.Interrupted}), e, part})
+				tasks = append(tasks, task{home, home.Twin(b.simulation()), e, part})
 			}
 		}
 	}
@@ -284,9 +296,26 @@ func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
 func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
 	var w work
 	for _, j := range jobs {
-		w.add(j.worst().worst.Space, j, func() { f(j) })
+		res := j.worst()
+		if s := res.worst.Space; s != nil && s.Frugal && j.twin == nil && res.worst.Draw != nil { // its simulations take long enough to be shared out
+			j.twin, j.home = s.Twin(b.simulation()), s
+			res.worst = res.worst.On(j.twin)
+		}
+		w.add(res.worst.Space, j, func() { f(j) })
 	}
 	b.do(&w)
+}
+
+// simulation is a model that simulates events.
+func (b *Bench) simulation() *circuit.Simulation { return &circuit.Simulation{Interrupted: b.Interrupted} }
+
+// adopt brings what was simulated for single findings back to the spaces.
+func (b *Bench) adopt(jobs []*job) {
+	for _, j := range jobs {
+		if j.twin != nil {
+			j.home.Adopt(j.twin)
+		}
+	}
 }
 
 // eachFound calls f for everything found, side by side where it lies in different spaces.
