@@ -49,7 +49,7 @@ func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
 }
 
 // frugalMoves is the number of inputs that are moved where evaluations are dear.
-const frugalMoves = 6
+const frugalMoves = 4
 
 // Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there. A frugal space moves those alone that
 // had most effect at the typical draw, once.

@@ -238,7 +238,9 @@ func (s *Space) Twin(model any) *Space {
 }
 
 // Adopt makes what a twin has come to keep known to the space. The twin is not used any more.
-func (s *Space) Adopt(twin *Space) { s.memory.known = append(s.memory.known, &memory{slots: twin.memory.slots}) }
+func (s *Space) Adopt(twin *Space) {
+	s.memory.known = append(s.memory.known, &memory{slots: twin.memory.slots})
+}
 
 // On is the worst draw in a twin of its space.
 func (w Worst) On(twin *Space) Worst {

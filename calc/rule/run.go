@@ -307,7 +307,9 @@ func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
 }
 
 // simulation is a model that simulates events.
-func (b *Bench) simulation() *circuit.Simulation { return &circuit.Simulation{Interrupted: b.Interrupted} }
+func (b *Bench) simulation() *circuit.Simulation {
+	return &circuit.Simulation{Interrupted: b.Interrupted}
+}
 
 // adopt brings what was simulated for single findings back to the spaces.
 func (b *Bench) adopt(jobs []*job) {
