@@ -12,10 +12,13 @@ import (
 // slopesApart is the ratio of a measured slope and a simulated one from which on one of both is taken to be wrong [common-practice].
 const slopesApart = 2
 
+// slopesNear is the guard of that ratio [common-practice].
+const slopesNear = 1.5
+
 var nodeMeasuredSlope = &rule.Rule{
 	ID: "node/measured-slope", Title: "Measured slopes against the simulated ones", Since: third,
 	Equation: "the larger over the smaller of a measured slope and the simulated one, of currents and of voltages from 10 to 90 %",
-	Limit:    "a factor of two", Guard: "as the limit", Applies: "stages with measured slopes whose events are simulated",
+	Limit:    "a factor of two", Guard: "a factor of 1.5", Applies: "stages with measured slopes whose events are simulated",
 	Needs:  []string{"layout.measured"},
 	Events: true, Simulated: everyRole, OnlySimulated: true,
 	Sources: []string{"common-practice"},
@@ -38,7 +41,7 @@ var nodeMeasuredSlope = &rule.Rule{
 		for _, e := range everyEvent {
 			v = math.Max(v, c.Usual(func(c *circuit.Circuit) float64 { return slopeRatio(c, role, e) }))
 		}
-		return rule.Check{Value: v, Limit: slopesApart, Guard: slopesApart}
+		return rule.Check{Value: v, Limit: slopesApart, Guard: slopesNear}
 	},
 	Explain: func(c *circuit.Circuit, role string, _ rule.Check) []string {
 		var out []string
@@ -64,7 +67,10 @@ const (
 // slopeRatio is the larger over the smaller of a measured and a simulated slope [1]; 1 where one of them is none.
 func slopeRatio(c *circuit.Circuit, role string, e circuit.Event) float64 {
 	measured, simulated, ok := slopes(c, role, e)
-	if !ok {
+	switch {
+	case c.Occurs(e) && circuit.MeasuredSlope(c.Stage, e, role == roleCurrent).Given() && !c.Simulates(e):
+		return c.Unsimulated()
+	case !ok:
 		return 1
 	}
 	return math.Max(simulated/measured, measured/simulated)
@@ -73,7 +79,7 @@ func slopeRatio(c *circuit.Circuit, role string, e circuit.Event) float64 {
 // slopes are those of an event as measured and as simulated; false where one of them is none.
 func slopes(c *circuit.Circuit, role string, e circuit.Event) (measured, simulated float64, ok bool) {
 	q := circuit.MeasuredSlope(c.Stage, e, role == roleCurrent)
-	if !circuit.Occurs(c.Stage, c.Point, e) || !q.Given() || !c.Simulates(e) {
+	if !c.Occurs(e) || !q.Given() || !c.Simulates(e) {
 		return 0, 0, false
 	}
 	measured, simulated = c.Need(q), c.MeanSlew(e)

@@ -99,7 +99,7 @@ func (c *Circuit) GateLow(e Event, s *stage.Switch) float64 {
 	switch {
 	case s == c.passive(e):
 		return c.Pulled(e)
-	case c.absent(e) || !c.Simulates(e):
+	case !c.Simulates(e) || c.absent(e):
 		return c.Need(&s.OffBias)
 	}
 	if k := c.Course(e, Running); k != nil {

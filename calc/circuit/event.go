@@ -250,7 +250,7 @@ func (c *Circuit) Width(e Event) float64 {
 	}
 	if c.Simulates(e) {
 		if k := c.Course(e, Running); k != nil {
-			return k.BelowPin[len(k.BelowPin)-len(dipLevels)].Longest
+			return width(k)
 		}
 		return nan
 	}

@@ -2,9 +2,9 @@ package circuit
 
 import (
 	"math"
-	"strings"
 
 	"floatrail/calc/corner"
+	"floatrail/calc/quantity"
 	"floatrail/calc/recharge"
 	"floatrail/calc/stage"
 	"floatrail/calc/transient"
@@ -50,7 +50,7 @@ func (c *Circuit) Simulates(e Event) bool {
 	if c.simulation() == nil || c.estimating {
 		return false
 	}
-	return !c.measured(e) || lacking(c.Stage) == ""
+	return !c.measured(e) || len(lacking(c.Stage)) == 0
 }
 
 // measured tells whether the slopes of an event are measured ones.
@@ -62,12 +62,11 @@ func (c *Circuit) measured(e Event) bool {
 	return m.TurnOnCurrentSlope.Given() || m.TurnOnVoltageSlope.Given()
 }
 
-// lacking names what a simulation needs and the stage does not give; empty where it has all.
-func lacking(s *stage.Stage) string {
-	var out []string
+// lacking are the paths of what a simulation needs and the stage does not give; none where it has all.
+func lacking(s *stage.Stage) (out []string) {
 	need := func(given bool, field string) {
 		if !given {
-			out = append(out, stage.Relative(field))
+			out = append(out, field)
 		}
 	}
 	for _, w := range []*stage.Switch{&s.HighSide, &s.LowSide} {
@@ -88,7 +87,15 @@ func lacking(s *stage.Stage) string {
 	l := &s.Layout
 	need(l.LoopInductance.Given() || l.LowSideInductance.Given(), l.LowSideInductance.Field)
 	need(l.LoopInductance.Given() || l.BusLoopInductance.Given(), l.BusLoopInductance.Field)
-	return strings.Join(out, ", ")
+	return out
+}
+
+// Unsimulated notes what keeps an event from being simulated.
+func (c *Circuit) Unsimulated() float64 {
+	for _, field := range lacking(c.Stage) {
+		c.Want(field)
+	}
+	return nan
 }
 
 // Estimated evaluates a number by closed forms, also where the space simulates.
@@ -147,8 +154,12 @@ func (c *Circuit) run(b *transient.Bridge, w transient.Window) *transient.Course
 		return nil
 	}
 	s.Steps += course.Steps
-	if e := Event(b.Event); !e.off() && course.Slew == 0 {
-		c.Open(phrases[e] + ": the switch has not taken the node over by the end of its on-time")
+	switch e := Event(b.Event); {
+	case e.off() && !course.Settled && course.ChannelTime == 0:
+		c.Open(phrases[e] + ": the gate has not turned off within " + quantity.Format(w.Limit, quantity.Time))
+		return nil
+	case !e.off() && course.Slew == 0:
+		c.Open(phrases[e] + ": the switch has not taken the node over within " + quantity.Format(w.Limit, quantity.Time))
 		return nil
 	}
 	return course
@@ -170,20 +181,10 @@ func (c *Circuit) levels() []float64 {
 	return append(out, dipLevels[:]...)
 }
 
-// window is the time for which an event is watched, unless it settles before [s]: the dead time after a switch has turned off, with one turn-off delay,
-// and the on-time of one that turns on.
+// window is the time for which an event is watched, unless it settles before [s]: the on-time of a switch that turns on. A turn-off is watched until the
+// current has left it, also beyond the dead time: what happens in one that is too short is no smaller for that, and duty/dead-time judges it.
 func (c *Circuit) window(e Event) float64 {
-	if e.off() {
-		if c.Stage.LowSide.Kind == stage.DiodeOnly {
-			return c.offTime()
-		}
-		delay, ok := c.Has(&c.Stage.Driver.TurnOffDelay)
-		if !ok {
-			delay = 0
-		}
-		return c.Need(&c.Point.DeadTime) + delay
-	}
-	if c.Point.FixedDuty == nil {
+	if e.off() || c.Point.FixedDuty == nil {
 		return longestWindow
 	}
 	p := c.Period()
@@ -194,7 +195,8 @@ func (c *Circuit) window(e Event) float64 {
 	return math.Min(t+0*p.T, longestWindow)
 }
 
-// longestWindow is where the watch of a turn-on ends [s]: by then any bridge has switched.
+// longestWindow is where the watch of an event ends [s]: by then any gate has switched, and a current that has not brought the node over does it no
+// harm.
 const longestWindow = 20e-6
 
 // bridge puts together what the simulation takes. False: something is missing or cannot be, of which the circuit keeps the reason.

@@ -10,7 +10,7 @@ import (
 
 // Undershoot is a simulated event against the driver's table of negative node voltages, by depth: the time below the level of a row must not exceed the
 // duration of the next deeper one, and be nothing below the last. The limit [V] is the level of the first row that is broken, else that of the first
-// one that is not reached. Near tells that it is broken where the level of every row stands its guard higher, or the dips of an event count together.
+// one that would be if the undershoot reached it, at the time that it spends below the level before. Near tells that it is broken where the level of every row stands its guard higher, or the dips of an event count together.
 func (c *Circuit) Undershoot(e Event) (value, limit float64, near bool) {
 	rows := c.Stage.Driver.NodeUndershoot.Items
 	if len(rows) == 0 {
@@ -27,7 +27,8 @@ func (c *Circuit) Undershoot(e Event) (value, limit float64, near bool) {
 		c.Need(&rows[i].Voltage)
 	}
 	slices.SortFunc(order, func(a, b int) int { return cmp.Compare(c.Value(&rows[b].Voltage), c.Value(&rows[a].Voltage)) })
-	broken, free := nan, nan
+	limit = nan
+	t := c.Width(e) // below the deepest level reached so far [s]
 	for k, i := range order {
 		allowed := 0.0 // below the level of this row [s]
 		if k+1 < len(order) {
@@ -40,17 +41,14 @@ func (c *Circuit) Undershoot(e Event) (value, limit float64, near bool) {
 		level := c.Value(&rows[i].Voltage)
 		longest, together, guarded := c.timesBelow(e, i)
 		near = near || together > allowed || guarded > allowed
-		if broken != broken && longest > allowed {
-			broken = level
+		if value < level {
+			t = longest
 		}
-		if free != free && value >= level {
-			free = level
+		if limit != limit && (t > allowed || k+1 == len(order)) {
+			limit = level
 		}
 	}
-	if limit = broken; limit != limit {
-		limit = free
-	}
-	if first := &rows[order[0]].Duration; first.Given() && c.below(e, 2*len(rows), longestDip) > c.Need(first) {
+	if first := &rows[order[0]].Duration; first.Given() && c.Width(e) > c.Need(first) {
 		c.Open("the driver's table of negative node voltages has no row that lasts as long as the undershoot")
 		return nan, nan, false
 	}
@@ -73,8 +71,8 @@ func (c *Circuit) below(e Event, level int, of func(*transient.Dips) float64) fl
 		return nan
 	}
 	d := &k.BelowPin[level]
-	if d.Lasting {
-		return math.Max(of(d), c.window(e))
+	if d.Lasting { // to the end of the dead time
+		return math.Max(of(d), c.Need(&c.Point.DeadTime))
 	}
 	return of(d)
 }
@@ -113,4 +111,15 @@ func (c *Circuit) DeepestRow() float64 {
 func (c *Circuit) LongestBelow(e Event, row int) float64 {
 	c.Need(&c.Stage.Driver.NodeUndershoot.Items[row].Voltage)
 	return c.below(e, 2*row, longestDip)
+}
+
+// width is the longest time that a simulated event spends beyond the plateau of the diode that takes over: below the first of dipLevels at which the
+// node does not stay [s].
+func width(k *transient.Course) float64 {
+	for _, d := range k.BelowPin[len(k.BelowPin)-len(dipLevels):] {
+		if !d.Lasting {
+			return d.Longest
+		}
+	}
+	return math.Inf(1)
 }

@@ -230,7 +230,7 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 		}
 	}
 	for _, s := range swings {
-		if len(f.BreakEven) == most || s.Range < leastSwing*w.Swings[0].Range {
+		if len(f.BreakEven) == most || s.Range < leastSwing*swings[0].Range {
 			return
 		}
 		d := s.Input.Declare

@@ -23,7 +23,7 @@ type watch struct {
 	everyTurn        bool // tests: no ripple is too small
 	commanded        *device
 	commandedGate    Signal
-	gateLow          float64 // lowest v_gs of the commanded switch since it has turned off, +Inf: not yet [V]
+	gateLow          float64 // lowest v_gs of the commanded switch since it has turned off and the node has gone over, +Inf: not yet [V]
 	gateCharge       float64 // out of C_B into the high side's gate [C]
 	y, dy            [most]float64
 	slewLow, slewTop float64 // [V]
@@ -222,12 +222,12 @@ func (w *watch) threshold(at *span) {
 }
 
 // leastLift is the share of the threshold by which a gate that is off must rise to count as lifted [1].
-const leastLift = 1e-3
+const leastLift = 0.1
 
-// lift takes how high the commanded gate rises after it has turned off.
+// lift takes how high the commanded gate rises after it has turned off and the node has gone over: what holds it up before is the charge of its own C_gd.
 func (w *watch) lift() {
 	s, level := &w.pieces[w.commandedGate], w.commanded.threshold
-	if !w.bridge.Event.off() || w.gateLow > level && s.least > level {
+	if !w.bridge.Event.off() || !w.slew.done || w.gateLow > level && s.least > level {
 		return
 	}
 	s.divide()

@@ -1215,7 +1215,7 @@ const file_floatrail_v1_stage_proto_rawDesc = "" +
 	"\x03_idB\f\n" +
 	"\n" +
 	"_former_idB\b\n" +
-	"\x06_title\"\xd0\b\n" +
+	"\x06_title\"\xcf\b\n" +
 	"\x06Layout\x12f\n" +
 	"\x13low_side_inductance\x18\x01 \x01(\v2\x16.floatrail.v1.QuantityB\x1e\xb2\xe1\x18\x1a\b\x05\x12\a0.05 nH\x1a\x0510 uH \x01@\x06R\x02L2R\x11lowSideInductance\x12f\n" +
 	"\x13bus_loop_inductance\x18\x02 \x01(\v2\x16.floatrail.v1.QuantityB\x1e\xb2\xe1\x18\x1a\b\x05\x12\a0.05 nH\x1a\x0510 uH \x01@\x06R\x02L1R\x11busLoopInductance\x12c\n" +
@@ -1223,9 +1223,9 @@ const file_floatrail_v1_stage_proto_rawDesc = "" +
 	"\x17high_side_common_source\x18\x04 \x01(\v2\x16.floatrail.v1.QuantityB\x1c\xb2\xe1\x18\x18\b\x05\x12\x030 H\x1a\x041 uH \x01@\x06R\x05L_cs1R\x14highSideCommonSource\x12i\n" +
 	"\x16low_side_common_source\x18\x05 \x01(\v2\x16.floatrail.v1.QuantityB\x1c\xb2\xe1\x18\x18\b\x05\x12\x030 H\x1a\x041 uH \x01@\x06R\x05L_cs2R\x13lowSideCommonSource\x12,\n" +
 	"\x05shunt\x18\x06 \x01(\v2\x16.floatrail.v1.ResistorR\x05shunt\x12b\n" +
-	"\x0floop_resistance\x18\a \x01(\v2\x16.floatrail.v1.QuantityB!\xb2\xe1\x18\x1d\b\x03\x12\x050 ohm\x1a\x0610 ohm \x01@\x02R\x06R_loopR\x0eloopResistance\x12\x8d\x01\n" +
-	"\x0fringing_quality\x18\b \x01(\v2\x16.floatrail.v1.QuantityBL\xb2\xe1\x18H\b\v\x12\x030.5\x1a\x03100 \x02*\f\n" +
-	"\x0210\x12\x0210\x1a\x02100\x01:#quality of the ringing is not given@\x0fR\x01qR\x0eringingQuality\x12;\n" +
+	"\x0floop_resistance\x18\a \x01(\v2\x16.floatrail.v1.QuantityB!\xb2\xe1\x18\x1d\b\x03\x12\x050 ohm\x1a\x0610 ohm \x01@\x02R\x06R_loopR\x0eloopResistance\x12\x8c\x01\n" +
+	"\x0fringing_quality\x18\b \x01(\v2\x16.floatrail.v1.QuantityBK\xb2\xe1\x18G\b\v\x12\x030.5\x1a\x03100 \x02*\v\n" +
+	"\x015\x12\x0210\x1a\x02200\x01:#quality of the ringing is not given@\x0fR\x01qR\x0eringingQuality\x12;\n" +
 	"\rnode_resistor\x18\t \x01(\v2\x16.floatrail.v1.ResistorR\fnodeResistor\x122\n" +
 	"\n" +
 	"node_clamp\x18\n" +

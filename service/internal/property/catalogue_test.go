@@ -15,6 +15,7 @@ type example struct {
 	rule, role                 string
 	when                       string // what base makes of the stage, where a rule has several examples in a role
 	base, fail, marginal, open []edit
+	simulated                  bool // with the switching events simulated
 	// neverFails and neverMarginal tell why a rule has no such outcome in the role; it must not have it on the stages of tried either.
 	neverFails, neverMarginal string
 	tried                     [][]edit
@@ -42,6 +43,12 @@ var (
 	// slowOn and slowOff leave the slopes to the estimate, with a gate resistor that keeps them small.
 	slowOn  = list(to("stage.layout.measured", ``), to("stage.highSide.gateOn.resistance.typ", `"47R ±1 %"`))
 	slowOff = list(to("stage.layout.measured", ``), to("stage.highSide.gateOff.resistance.typ", `"47R ±1 %"`))
+	// slow is a stage whose simulated events stay within its ratings.
+	slow = list(to("stage.layout.measured", ``), to("stage.highSide.gateOff.resistance.typ", `"22R ±1 %"`), to("stage.highSide.gateOn.resistance.typ", `"22R ±1 %"`),
+		to("stage.lowSide.gateOn.resistance.typ", `"22R ±1 %"`), to("stage.driver.railMin", `"-4 V"`),
+		to("stage.lowSide.blockingVoltage", `"120 V"`), to("stage.highSide.blockingVoltage", `"120 V"`),
+		to("stage.lowSide.plateauVoltage", `{"min": "4.5 V", "typ": "4.8 V", "max": "5.1 V"}`),
+		to("stage.lowSide.thresholdVoltage", `{"min": "3 V", "typ": "3.3 V", "max": "3.6 V"}`))
 )
 
 func list(e ...edit) []edit { return append([]edit{}, e...) }
@@ -231,6 +238,51 @@ var examples = []example{
 	{rule: "node/slew", role: "driver", when: "estimated", base: slowOn,
 		fail: list(to("stage.highSide.gateOn.resistance.typ", `"10R ±1 %"`)), marginal: list(to("stage.highSide.gateOn.resistance.typ", `"33R ±1 %"`)),
 		open: list(to("stage.highSide.thresholdVoltage", ``))},
+	{rule: "node/undershoot-pulse", role: "driver", simulated: true, base: slow,
+		fail:     list(to("stage.driver.nodeUndershoot.0.voltage", `"-4 V"`), to("stage.driver.nodeUndershoot.1.duration", `"2 ns"`)),
+		marginal: list(to("stage.driver.nodeUndershoot.1.voltage", `"-9 V"`)), open: list(to("stage.highSide.transconductance", ``))},
+	{rule: "node/rail-below-com", role: "driver", simulated: true, base: slow,
+		fail: list(to("stage.driver.railMin", `"-300 mV"`)), marginal: list(to("stage.driver.railMin", `"-1.8 V"`)),
+		open: list(to("stage.highSide.outputCapacitance", ``))},
+	{rule: "node/rail-overshoot", role: "driver", simulated: true, base: slow,
+		fail: list(to("stage.driver.offsetVoltageMax", `"85 V"`)), marginal: list(to("stage.driver.offsetVoltageMax", `"90 V"`)),
+		open: list(to("stage.layout.busLoopInductance", ``))},
+	{rule: "node/switch-overshoot", role: "highSide", simulated: true, base: slow,
+		fail: list(to("stage.highSide.blockingVoltage", `"72 V"`)), marginal: list(to("stage.highSide.blockingVoltage", `"80 V"`)),
+		open: list(to("stage.highSide.onResistance", ``))},
+	{rule: "node/switch-overshoot", role: "lowSide", simulated: true, base: slow,
+		fail: list(to("stage.lowSide.blockingVoltage", `"85 V"`)), marginal: list(to("stage.lowSide.blockingVoltage", `"98 V"`)),
+		open: list(to("stage.lowSide.reverse.recoveryTime", ``))},
+	{rule: "node/slew", role: "driver", simulated: true, base: slow,
+		fail: list(to("stage.driver.slewMax", `"30 V/ns"`)), marginal: list(to("stage.driver.slewMax", `"40 V/ns"`)),
+		open: list(to("stage.driver.slewMax", ``))},
+	{rule: "node/measured-slope", role: "current slope", simulated: true,
+		base: append(list(to("stage.layout.measured", `{"turnOffCurrentSlope": {"min": "2 A/ns", "typ": "2.2 A/ns", "max": "2.4 A/ns"}}`)), slow[1:]...),
+		fail: list(to("stage.layout.measured.turnOffCurrentSlope", `{"typ": "9 A/ns"}`)), marginal: list(to("stage.layout.measured.turnOffCurrentSlope", `{"typ": "1.5 A/ns"}`)),
+		open: list(to("stage.lowSide.outputCapacitance", ``))},
+	{rule: "node/measured-slope", role: "voltage slope", simulated: true,
+		base: append(list(to("stage.layout.measured", `{"turnOnVoltageSlope": {"typ": "5 V/ns"}, "turnOnCurrentSlope": {"typ": "4 A/ns"}}`)), slow[1:]...),
+		fail: list(to("stage.layout.measured.turnOnVoltageSlope.typ", `"12 V/ns"`)), marginal: list(to("stage.layout.measured.turnOnVoltageSlope.typ", `"8 V/ns"`)),
+		open: list(to("stage.lowSide.outputCapacitance", ``))},
+	{rule: "gate/miller-low", role: "lowSide", simulated: true, base: slow,
+		fail: list(to("stage.lowSide.thresholdVoltage.min", `"1.8 V"`)), marginal: list(to("stage.lowSide.thresholdVoltage.min", `"2.3 V"`)),
+		open: list(to("stage.lowSide.inputCapacitance", ``))},
+	{rule: "gate/miller-high", role: "highSide", simulated: true,
+		base: append(append(list(to("stage.highSide.plateauVoltage", `{"min": "4.5 V", "typ": "4.8 V", "max": "5.1 V"}`), to("stage.highSide.thresholdVoltage", `{"min": "3 V", "typ": "3.3 V", "max": "3.6 V"}`)), slow...), append(sinking, to("stage.highSide.gateOff.resistance.typ", `"2R2 ±1 %"`))...),
+		fail: list(to("stage.highSide.thresholdVoltage.min", `"2 V"`)), marginal: list(to("stage.highSide.gateOff.resistance.typ", `"22R ±1 %"`)),
+		open: list(to("stage.highSide.internalGateResistance", ``))},
+	{rule: "gate/negative", role: "lowSide", simulated: true, base: slow,
+		fail: list(to("stage.lowSide.gateVoltageMin", `"-1.7 V"`)), marginal: list(to("stage.lowSide.gateVoltageMin", `"-1.9 V"`)),
+		open: list(to("stage.layout.lowSideCommonSource", ``))},
+	{rule: "gate/overvoltage", role: "driver", simulated: true, base: slow,
+		fail: list(to("stage.driver.floatingVoltageMax", `"10 V"`)), marginal: list(to("stage.driver.floatingVoltageMax", `"11 V"`)),
+		open: list(to("stage.bootstrap.clamp", ``))},
+	{rule: "gate/node-resistor", role: "repetitive", simulated: true, base: append(slow, withNodeResistor...),
+		fail: list(to("stage.layout.nodeResistor.resistance.typ", `"10 ohm ±1 %"`)), marginal: list(to("stage.layout.nodeResistor.resistance.typ", `"2.2 ohm ±1 %"`)),
+		open: list(to("stage.layout.nodeResistor", ``))},
+	{rule: "diode/reverse-voltage", simulated: true, base: slow,
+		fail: list(to("stage.bootstrap.diode.reverseVoltageMax", `"75 V"`)), marginal: list(to("stage.bootstrap.diode.reverseVoltageMax", `"100 V"`)),
+		open: list(to("stage.bootstrap.diode.reverseVoltageMax", ``))},
 	{rule: "node/overload",
 		open: list(to("stage.operatingPoints.2.overload", `false`)), neverFails: "an operating point that nobody gave cannot be judged",
 		neverMarginal: "one operating point for overload is there or is not",
@@ -248,9 +300,12 @@ var examples = []example{
 }
 
 // found is what a rule finds in a role; rules that judge what the others found are run with all of them.
-func found(t *testing.T, tree any, rl *rule.Rule, role string) (finding.Finding, *rule.Bench) {
+func found(t *testing.T, tree any, rl *rule.Rule, role string, simulated bool) (finding.Finding, *rule.Bench) {
 	t.Helper()
 	bench, rules := judge(t, bind(t, tree), nil).bench, []*rule.Rule{rl}
+	if simulated {
+		bench.Simulate()
+	}
 	if rl.Tally != nil {
 		rules = catalog.All()
 	}
@@ -263,7 +318,11 @@ func found(t *testing.T, tree any, rl *rule.Rule, role string) (finding.Finding,
 
 // name of an example among the tests.
 func (x *example) name() string {
-	return strings.TrimRight(x.rule+" "+x.role+" "+x.when, " ")
+	name := x.rule + " " + x.role + " " + x.when
+	if x.simulated {
+		name += " simulated"
+	}
+	return strings.TrimRight(name, " ")
 }
 
 // TestEveryRuleHasEveryOutcome shows each rule, in each role, a stage on which it passes, is marginal, fails and is open.
@@ -295,12 +354,12 @@ func TestEveryRuleHasEveryOutcome(t *testing.T) {
 					t.Errorf("%s needs either an example or a reason why there is none", c.want)
 				case c.never != "":
 					for _, s := range append(stages, with(base, x.marginal...), with(base, x.fail...), with(base, x.open...)) {
-						if f, _ := found(t, s, rl, x.role); f.Outcome == c.want {
+						if f, _ := found(t, s, rl, x.role, x.simulated); f.Outcome == c.want {
 							t.Errorf("%s although %s: %s", c.want, c.never, f.Message)
 						}
 					}
 				default:
-					if f, _ := found(t, with(base, c.edits...), rl, x.role); f.Outcome != c.want {
+					if f, _ := found(t, with(base, c.edits...), rl, x.role, x.simulated); f.Outcome != c.want {
 						t.Errorf("%s, want %s: value %g, limit %g: %s", f.Outcome, c.want, f.Value.Value, f.Limit.Value, f.Message)
 					}
 				}

@@ -52,8 +52,16 @@ var excuses = []excuse{
 	{field: "highSide.gateSourceCharge", reason: "the slope of the gate charge is taken at its worse end"},
 	{field: "highSide.gateDrainCharge", reason: "the slope of the gate charge is taken at its worse end"},
 	{field: "highSide.plateauVoltage", reason: "the slope of the gate charge is taken at its worse end"},
+	{field: "layout.lowSideCommonSource", assumed: "layout.lowSideCommonSource", reason: "nothing slows the steepest current"},
+	{field: "layout.loopResistance", assumed: "layout.loopResistance", reason: "nothing damps the ringing"},
+	{field: "layout.driverPinCapacitance", assumed: "layout.driverPinCapacitance", reason: "the smallest that drivers have"},
+	{field: "layout.ringingQuality", assumed: "layout.ringingQuality", reason: "a wide range is taken"},
 	{field: "highSide.inputCapacitance", reason: "it bounds the slope of the gate charge only where Q_GS, Q_GD and V_pl do not give it"},
 }
+
+// simulatedWithin is by how much of the limit the margin of a simulated event may be better without a field: its numbers are good to 0.3 % of the bus,
+// and its V_BS at the start is that of typical values.
+const simulatedWithin = 5e-3
 
 // critical tells whether a failure of a rule is CRITICAL, on some stage at least.
 func critical(rl *rule.Rule) bool { return rl.GuardsDestruction() || rl.FailSeverity != nil }
@@ -87,10 +95,10 @@ func TestCriticalRulesTurn(t *testing.T) {
 			turned := false
 			for _, x := range criticalExamples(rl, role) {
 				base := with(tree, x.base...)
-				if f, _ := found(t, base, rl, role); f.Outcome != finding.Pass {
+				if f, _ := found(t, base, rl, role, x.simulated); f.Outcome != finding.Pass {
 					t.Errorf("%s: %s before anything is changed: %s", x.name(), f.Outcome, f.Message)
 				}
-				f, _ := found(t, with(base, x.fail...), rl, role)
+				f, _ := found(t, with(base, x.fail...), rl, role, x.simulated)
 				if rl.GuardsDestruction() && f.Severity != stage.Critical {
 					t.Errorf("%s: fails at %s", x.name(), f.Severity)
 				}
@@ -128,11 +136,16 @@ func given(node any, p path) bool {
 	return true
 }
 
+// everySimulated is the stride through the fields of examples whose events are simulated, each of which takes some hundred simulations.
+const everySimulated = 3
+
 // cut is a deletion from the stage of an example.
 type cut struct {
 	field  string // as findings name it
 	tree   any
 	before finding.Finding
+	// simulated tells that the events are.
+	simulated bool
 }
 
 // excuseOf gives the excuse of a field; nil where it has none.
@@ -164,7 +177,7 @@ func (l *deletionLedger) judgeCut(t *testing.T, rl *rule.Rule, role string, c cu
 		}
 		return false, ""
 	}
-	f, bench := found(t, c.tree, rl, role)
+	f, bench := found(t, c.tree, rl, role, c.simulated)
 	switch f.Outcome {
 	case finding.Fail:
 		return false, ""
@@ -192,14 +205,18 @@ func (l *deletionLedger) excused(t *testing.T, rl *rule.Rule, role string, c cut
 		return "is PASS: " + f.Message
 	}
 	l.use(e.field)
-	was, is := c.before.Margin.Absolute.Value, f.Margin.Absolute.Value-e.within*math.Abs(f.Limit.Value)
+	within := e.within
+	if c.simulated {
+		within += simulatedWithin
+	}
+	was, is := c.before.Margin.Absolute.Value, f.Margin.Absolute.Value-within*math.Abs(f.Limit.Value)
 	switch {
 	case len(e.instead) > 0:
 		bare := c.tree
 		for _, other := range e.instead {
 			bare = without(bare, field("stage."+other))
 		}
-		if g, _ := found(t, bare, rl, role); g.Outcome == finding.Pass {
+		if g, _ := found(t, bare, rl, role, c.simulated); g.Outcome == finding.Pass {
 			return fmt.Sprintf("is PASS without %s too: %s", e.instead, g.Message)
 		}
 		return ""
@@ -225,16 +242,16 @@ func TestCriticalRulesOpen(t *testing.T) {
 			opened := 0
 			for _, x := range criticalExamples(rl, role) {
 				base := with(tree, x.base...)
-				before, _ := found(t, base, rl, role)
+				before, _ := found(t, base, rl, role, x.simulated)
 				if len(before.Inputs) == 0 {
 					t.Fatalf("%s read nothing", x.name())
 				}
 				for i, in := range before.Inputs {
-					if i%every != 0 {
+					if i%every != 0 || x.simulated && i%everySimulated != 0 {
 						continue
 					}
 					if p := field(in.Field); given(base, p) {
-						open, wrong := ledger.judgeCut(t, rl, role, cut{in.Field, without(base, p), before})
+						open, wrong := ledger.judgeCut(t, rl, role, cut{in.Field, without(base, p), before, x.simulated})
 						if open {
 							opened++
 						}
@@ -244,7 +261,7 @@ func TestCriticalRulesOpen(t *testing.T) {
 					}
 				}
 				for _, need := range rl.Needs {
-					if every > 1 {
+					if every > 1 || x.simulated {
 						break
 					}
 					tree, ok := withoutEverywhere(base, need)
@@ -255,9 +272,9 @@ func TestCriticalRulesOpen(t *testing.T) {
 						needed[need] = true
 						continue
 					}
-					f, bench := found(t, tree, rl, role)
+					f, bench := found(t, tree, rl, role, x.simulated)
 					needed[need] = needed[need] || f.Outcome != finding.Pass ||
-						ledger.excused(t, rl, role, cut{"stage." + need, tree, before}, &f, bench) == ""
+						ledger.excused(t, rl, role, cut{"stage." + need, tree, before, x.simulated}, &f, bench) == ""
 				}
 			}
 			if opened == 0 && every == 1 {
