@@ -9,7 +9,7 @@ import (
 
 var gateNodeResistor = &rule.Rule{
 	ID: "gate/node-resistor", Title: "Gate of the high side lifted by the recharge current through the V_S-line resistor", Since: second,
-	Equation: "v_GS = V_off + i_B·R_VS, i_B the peak of the first charge, or of the steady state with undershoot; simulated: v_GS once off, at its highest",
+	Equation: "v_GS = V_off + i_B·R_VS, i_B the peak of the first charge, or of the steady state with undershoot; simulated: the smaller of v_GS and V_off + v_pin - v_node, at its highest after the node has fallen, from V_UV- on",
 	Limit:    "smallest threshold at the junction temperature", Guard: "80 % of the limit", Applies: "stages with a resistor in the V_S line",
 	Needs: []string{"layout.nodeResistor", "highSide.thresholdVoltage", "highSide.thresholdTemperatureCoefficient", "bootstrap.resistor",
 		"bootstrap.diode.forwardPoints", "gateSupply.voltage", "layout.lowSideInductance"},
@@ -36,7 +36,7 @@ var gateNodeResistor = &rule.Rule{
 		} else {
 			v = c.Need(&c.Stage.HighSide.OffBias) + c.PumpedPeak()*r
 			if circuit.Occurs(c.Stage, c.Point, circuit.TurnOff) && c.Simulates(circuit.TurnOff) {
-				v = c.Lifted(circuit.TurnOff)
+				v = c.Lifted()
 			}
 		}
 		return rule.Check{Value: v, Limit: limit, Guard: heldOff * limit}

@@ -108,20 +108,17 @@ func (c *Circuit) GateLow(e Event, s *stage.Switch) float64 {
 	return nan
 }
 
-// Lifted is the highest gate voltage to which a simulated event lifts the gate that it has turned off [V]: the less V_BS is, the more
-// current of the element flows through R_VS.
-func (c *Circuit) Lifted(e Event) float64 {
-	v := c.Need(&c.active(e).OffBias)
-	if c.absent(e) {
-		return v
+// Lifted is the highest gate voltage at which a turn-off of the high side leaves its gate through R_VS [V]: the less V_BS is, the more current of the
+// element flows through that.
+func (c *Circuit) Lifted() float64 {
+	off := c.Need(&c.Stage.HighSide.OffBias)
+	if c.absent(TurnOff) {
+		return off
 	}
-	switch k := c.Course(e, e.charges()-1); {
-	case k == nil:
-		return nan
-	case k.Lift != 0:
+	if k := c.Course(TurnOff, AtLockout); k != nil {
 		return k.Lift
 	}
-	return v
+	return nan
 }
 
 // MeasuredSlope is the slope of an event as measured on the board: of the current, else of the node's voltage.

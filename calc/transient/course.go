@@ -67,7 +67,7 @@ type Course struct {
 	Slew                         float64 // of the node from 10 to 90 % of V_BUS in the event's direction, 0: not passed [V/s]
 	HighSlope, LowSlope          float64 // largest |di/dt| of L1 and of L2 [A/s]
 	ChannelSlope                 float64 // of the commanded switch's channel current between 10 and 90 % of |I|, 0: not passed [A/s]
-	Lift                         float64 // highest v_gs to which the gate that turns off is lifted again once the node has gone over; 0: it only falls, or is turned on [V]
+	Lift                         float64 // v_gs at which R_VS holds the gate of a high side that turns off, at most, once the node has gone over [V]
 	ChannelTime                  float64 // last fall (off) or first rise (on) of that switch's v_gs through V_th, 0: none [s]
 	Gain                         float64 // V_BS at the end less V_BS at the start [V]
 	ElementCharge                float64 // through the bootstrap element into the floating rail [C]

@@ -23,7 +23,6 @@ type watch struct {
 	everyTurn        bool // tests: no ripple is too small
 	commanded        *device
 	commandedGate    Signal
-	gateLow          float64 // lowest v_gs of the commanded switch since it has turned off and the node has gone over, +Inf: not yet [V]
 	gateCharge       float64 // out of C_B into the high side's gate [C]
 	y, dy            [most]float64
 	slewLow, slewTop float64 // [V]
@@ -79,7 +78,8 @@ func (w *watch) begin(b *Bridge, c *circuit, course *Course, y []float64, levels
 	if w.everyTurn {
 		w.ring.ripple = 0
 	}
-	w.gateCharge, w.gateLow = 0, math.Inf(1)
+	w.gateCharge = 0
+	course.Lift = b.High.OffBias
 }
 
 // update takes in one span.
@@ -99,7 +99,7 @@ func (w *watch) update(at *span) {
 	w.slopes(at)
 	w.slews(at)
 	w.threshold(at)
-	w.lift()
+	w.lift(at)
 	w.channels(at)
 	if w.circuit.driven {
 		p := w.circuit.ig1.of(&at.state)
@@ -221,23 +221,18 @@ func (w *watch) threshold(at *span) {
 	}
 }
 
-// leastLift is the share of the threshold by which a gate that is off must rise to count as lifted [1].
-const leastLift = 0.1
-
-// lift takes how high the commanded gate rises after it has turned off and the node has gone over: what holds it up before is the charge of its own C_gd.
-func (w *watch) lift() {
-	s, level := &w.pieces[w.commandedGate], w.commanded.threshold
-	if !w.bridge.Event.off() || !w.slew.done || w.gateLow > level && s.least > level {
+// lift takes how high the return of the gate current through R_VS holds the gate of a high side that turns off, once the node has gone over: the drive
+// V_off + v_pin - v_node where the gate lies above it and falls, and the gate where that rises toward it.
+func (w *watch) lift(at *span) {
+	const places = 4 // of a span
+	if w.bridge.Event != TurnOff || !w.slew.done {
 		return
 	}
-	s.divide()
-	for k := range s.n {
-		switch v := s.value[k]; {
-		case v < w.gateLow && v < level:
-			w.gateLow = v
-		case v > w.gateLow+leastLift*level && (w.course.Lift == 0 || v > w.course.Lift):
-			w.course.Lift = v
-		}
+	drive, gate := w.pieces[Pin].p.Plus(w.pieces[Node].p.Scaled(-1)), w.pieces[HighGate].p
+	drive[0] += w.bridge.High.OffBias
+	for k := range places + 1 {
+		theta := float64(k) / places
+		w.course.Lift = math.Max(w.course.Lift, math.Min(drive.At(theta), gate.At(theta)))
 	}
 }
 

@@ -278,7 +278,7 @@ var examples = []example{
 		fail: list(to("stage.driver.floatingVoltageMax", `"10 V"`)), marginal: list(to("stage.driver.floatingVoltageMax", `"11 V"`)),
 		open: list(to("stage.bootstrap.clamp", ``))},
 	{rule: "gate/node-resistor", role: "repetitive", simulated: true, base: append(slow, withNodeResistor...),
-		fail: list(to("stage.layout.nodeResistor.resistance.typ", `"10 ohm ±1 %"`)), marginal: list(to("stage.layout.nodeResistor.resistance.typ", `"2.2 ohm ±1 %"`)),
+		fail: list(to("stage.layout.nodeResistor.resistance.typ", `"1 ohm ±1 %"`)), marginal: list(to("stage.layout.nodeResistor.resistance.typ", `"0.68 ohm ±1 %"`)),
 		open: list(to("stage.layout.nodeResistor", ``))},
 	{rule: "diode/reverse-voltage", simulated: true, base: slow,
 		fail: list(to("stage.bootstrap.diode.reverseVoltageMax", `"75 V"`)), marginal: list(to("stage.bootstrap.diode.reverseVoltageMax", `"100 V"`)),
