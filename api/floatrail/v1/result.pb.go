@@ -1110,9 +1110,9 @@ type TransientEvent struct {
 	OperatingPoint *string `protobuf:"bytes,2,opt,name=operating_point,json=operatingPoint,proto3,oneof" json:"operating_point,omitempty"`
 	// How the numbers were found.
 	Method TransientEvent_Method_Value `protobuf:"varint,3,opt,name=method,proto3,enum=floatrail.v1.TransientEvent_Method_Value" json:"method,omitempty"`
-	// Lowest node voltage.
+	// Lowest node voltage, 0 where it does not go below COM.
 	NodeMin *Span `protobuf:"bytes,4,opt,name=node_min,json=nodeMin,proto3" json:"node_min,omitempty"`
-	// Lowest V_S at the pin.
+	// Lowest V_S at the pin, 0 where it does not go below COM.
 	PinMin *Span `protobuf:"bytes,5,opt,name=pin_min,json=pinMin,proto3" json:"pin_min,omitempty"`
 	// Lowest V_B to COM.
 	RailToComMin *Span `protobuf:"bytes,6,opt,name=rail_to_com_min,json=railToComMin,proto3" json:"rail_to_com_min,omitempty"`
@@ -1120,7 +1120,7 @@ type TransientEvent struct {
 	Undershoots []*UndershootDuration `protobuf:"bytes,7,rep,name=undershoots,proto3" json:"undershoots,omitempty"`
 	// What the event adds to V_BS.
 	FloatingVoltageGain *Span `protobuf:"bytes,8,opt,name=floating_voltage_gain,json=floatingVoltageGain,proto3" json:"floating_voltage_gain,omitempty"`
-	// Highest node voltage.
+	// Highest node voltage, that of the bus where it does not go above.
 	NodeMax *Span `protobuf:"bytes,9,opt,name=node_max,json=nodeMax,proto3" json:"node_max,omitempty"`
 	// Highest V_B.
 	RailMax *Span `protobuf:"bytes,10,opt,name=rail_max,json=railMax,proto3" json:"rail_max,omitempty"`
@@ -1152,7 +1152,7 @@ type TransientEvent struct {
 	Comparisons []*Comparison `protobuf:"bytes,23,rep,name=comparisons,proto3" json:"comparisons,omitempty"`
 	// Fields whose absence keeps the event from being evaluated.
 	Missing []string `protobuf:"bytes,24,rep,name=missing,proto3" json:"missing,omitempty"`
-	// Why the event was not evaluated, or not at every draw.
+	// Why the event was not evaluated.
 	Reason        *string `protobuf:"bytes,25,opt,name=reason,proto3,oneof" json:"reason,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
