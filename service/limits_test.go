@@ -234,13 +234,13 @@ func TestCancelStopsTheComputation(t *testing.T) {
 		return h
 	})
 	calls := map[string]func(context.Context) error{}
-	for kind, body := range map[string]string{"": wide(t), " simulated": simulated(wide(t))} {
+	for kind, body := range map[string]string{"estimated": wide(t), "simulated": simulated(wide(t))} {
 		request := parse(t, body, new(pb.ReviewStageRequest))
-		calls["gRPC"+kind] = func(ctx context.Context) error {
+		calls["gRPC, "+kind] = func(ctx context.Context) error {
 			_, err := r.client.ReviewStage(ctx, request)
 			return err
 		}
-		calls["REST"+kind] = func(ctx context.Context) error {
+		calls["REST, "+kind] = func(ctx context.Context) error {
 			q, err := http.NewRequestWithContext(ctx, http.MethodPost, r.http+"/v1/reviews", strings.NewReader(body))
 			if err != nil {
 				t.Error(err)
