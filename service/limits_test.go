@@ -260,7 +260,7 @@ func TestCancelStopsTheComputation(t *testing.T) {
 			done := make(chan error, 1)
 			go func() { done <- call(ctx) }()
 			<-h.began
-			time.Sleep(slowdown * time.Duration(50+80*i) * time.Millisecond) // at another stage of the work each time
+			time.Sleep(slowdown * time.Duration(50+30*i) * time.Millisecond) // at another stage of the work each time
 			left := time.Now()
 			cancel()
 			if err := <-done; err == nil {

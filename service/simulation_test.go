@@ -1,6 +1,7 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"math"
 	"net/http"
@@ -35,6 +36,9 @@ func TestSimulatedEventsOverREST(t *testing.T) {
 			t.Fatalf("%s: %d %.500s", path, answer.StatusCode, body)
 		}
 		t.Logf("%s: %d bytes", path, len(body))
+		if _, again := r.post(path, simulated(string(data))); !bytes.Equal(body, again) {
+			t.Errorf("%s: the same request is answered differently", path)
+		}
 		s := stress(body)
 		if len(s.GetEvents()) == 0 {
 			t.Fatalf("%s: no events", path)
