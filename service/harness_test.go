@@ -85,7 +85,7 @@ func (l *lines) String() string {
 
 func settings() config.Config {
 	return config.Config{HTTPAddr: "127.0.0.1:0", GRPCAddr: "127.0.0.1:0", OpsAddr: "127.0.0.1:0", Deadline: 30 * time.Second,
-		MaxRequest: 1 << 20, MaxBoard: 32 << 20, Workers: 2, Queue: 32, DrainTimeout: 20 * time.Second, LogLevel: slog.LevelInfo}
+		MaxRequest: 1 << 20, MaxBoard: 32 << 20, Workers: 2, Queue: 32, SimulationWorkers: 2, SimulationQueue: 8, DrainTimeout: 20 * time.Second, LogLevel: slog.LevelInfo}
 }
 
 func realHandlers(o rpc.Options) pb.FloatRailServer { return rpc.New(o) }

@@ -104,6 +104,47 @@ func TestFullQueueIsRejected(t *testing.T) {
 	within(t, 5*time.Second, "the lane is empty", func() bool { return r.metric("floatrail_lane_running") == 0 && r.metric("floatrail_queue_depth") == 0 })
 }
 
+// Simulations have places and a queue of their own: that both are full keeps nothing else from being answered, and the other way round.
+func TestLanesAreApart(t *testing.T) {
+	g, handlers := newGated()
+	c := settings()
+	c.Workers, c.Queue, c.SimulationWorkers, c.SimulationQueue = 1, 0, 1, 1
+	r := start(t, c, handlers)
+	quick, slow := parse(t, small, new(pb.SizeSupplyRequest)), parse(t, simulated(small), new(pb.SizeSupplyRequest))
+	results := make(chan codes.Code, 3)
+	send := func(q *pb.SizeSupplyRequest) {
+		_, err := r.client.SizeSupply(context.Background(), q)
+		results <- status.Code(err)
+	}
+	full := func(q *pb.SizeSupplyRequest) {
+		t.Helper()
+		if _, err := r.client.SizeSupply(context.Background(), q); status.Code(err) != codes.ResourceExhausted {
+			t.Errorf("in a full lane: %v", err)
+		}
+	}
+	go send(slow)
+	go send(slow)
+	within(t, 5*time.Second, "one simulation runs and one waits", func() bool {
+		return r.metric("floatrail_lane_running", `lane="simulation"`) == 1 && r.metric("floatrail_queue_depth", `lane="simulation"`) == 1
+	})
+	full(slow)
+	go send(quick)
+	within(t, 5*time.Second, "a closed form runs beside it", func() bool { return r.metric("floatrail_lane_running", `lane="closed_form"`) == 1 })
+	full(quick)
+	if len(results) != 0 {
+		t.Error("a call was answered before it was let go")
+	}
+	close(g.release)
+	got := map[codes.Code]int{}
+	for range 3 {
+		got[<-results]++
+	}
+	if got[codes.OK] != 1 || got[codes.InvalidArgument] != 2 { // sizing simulates nothing, and says so
+		t.Errorf("%v", got)
+	}
+	within(t, 5*time.Second, "the lanes are empty", func() bool { return r.metric("floatrail_lane_running") == 0 && r.metric("floatrail_queue_depth") == 0 })
+}
+
 func TestDeadlines(t *testing.T) {
 	g, handlers := newGated()
 	defer close(g.release)
@@ -167,6 +208,11 @@ func wide(t testing.TB) string {
 	return string(text)
 }
 
+// simulated asks for simulated events and their waveforms in a request without options.
+func simulated(request string) string {
+	return strings.TrimSuffix(strings.TrimSpace(request), "}") + `,"options":{"simulate":true,"waveforms":true}}`
+}
+
 // timed tells when ReviewStage begins and ends.
 type timed struct {
 	pb.FloatRailServer
@@ -180,21 +226,21 @@ func (h *timed) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.
 	return h.FloatRailServer.ReviewStage(ctx, r)
 }
 
-// A client that leaves stops the computation within 100 ms, on both transports.
+// A client that leaves stops the computation within 100 ms, on both transports and in the midst of simulations as well.
 func TestCancelStopsTheComputation(t *testing.T) {
 	h := &timed{began: make(chan struct{}, 1), ended: make(chan time.Time, 1)}
 	r := start(t, settings(), func(o rpc.Options) pb.FloatRailServer {
 		h.FloatRailServer = rpc.New(o)
 		return h
 	})
-	body := wide(t)
-	request := parse(t, body, new(pb.ReviewStageRequest))
-	calls := map[string]func(context.Context) error{
-		"gRPC": func(ctx context.Context) error {
+	calls := map[string]func(context.Context) error{}
+	for kind, body := range map[string]string{"estimated": wide(t), "simulated": simulated(wide(t))} {
+		request := parse(t, body, new(pb.ReviewStageRequest))
+		calls["gRPC, "+kind] = func(ctx context.Context) error {
 			_, err := r.client.ReviewStage(ctx, request)
 			return err
-		},
-		"REST": func(ctx context.Context) error {
+		}
+		calls["REST, "+kind] = func(ctx context.Context) error {
 			q, err := http.NewRequestWithContext(ctx, http.MethodPost, r.http+"/v1/reviews", strings.NewReader(body))
 			if err != nil {
 				t.Error(err)
@@ -205,16 +251,16 @@ func TestCancelStopsTheComputation(t *testing.T) {
 				_ = a.Body.Close()
 			}
 			return err
-		},
+		}
 	}
 	for transport, call := range calls {
 		var took []time.Duration
-		for range 5 {
+		for i := range 5 {
 			ctx, cancel := context.WithCancel(context.Background())
 			done := make(chan error, 1)
 			go func() { done <- call(ctx) }()
 			<-h.began
-			time.Sleep(slowdown * 50 * time.Millisecond)
+			time.Sleep(slowdown * time.Duration(50+30*i) * time.Millisecond) // at another stage of the work each time
 			left := time.Now()
 			cancel()
 			if err := <-done; err == nil {
@@ -229,7 +275,7 @@ func TestCancelStopsTheComputation(t *testing.T) {
 		}
 	}
 	within(t, 5*time.Second, "the cancelled calls are counted", func() bool {
-		return r.metric("floatrail_requests_total", `method="ReviewStage"`, `code="Canceled"`) == 10
+		return r.metric("floatrail_requests_total", `method="ReviewStage"`, `code="Canceled"`) == 20
 	})
 }
 

@@ -143,6 +143,7 @@ type reviewCommand struct {
 	Families []string `placeholder:"FAMILY" help:"Families of rules to evaluate, instead of those of the files."`
 	All      bool     `help:"Also show rules that pass or do not apply."`
 	PerPoint bool     `help:"Show every operating point of a finding."`
+	Simulate bool     `help:"Simulate the switching events instead of estimating them."`
 }
 
 // Help documents the exit status.
@@ -151,7 +152,7 @@ func (*reviewCommand) Help() string { return render.ExitStatus }
 // Run reviews the files.
 func (c *reviewCommand) Run(env *environment) error {
 	status := render.Review(env.ctx, rpc.New(rpc.Options{Version: version, Carried: wire.ReportOf}), render.Options{
-		Files: c.Files, JSON: c.Format == "json", Policy: c.Policy, Families: c.Families, All: c.All, PerPoint: c.PerPoint,
+		Files: c.Files, JSON: c.Format == "json", Policy: c.Policy, Families: c.Families, All: c.All, PerPoint: c.PerPoint, Simulate: c.Simulate,
 		Stdin: env.stdin, Stdout: env.stdout, Stderr: env.stderr,
 	})
 	if status != 0 {

@@ -92,7 +92,10 @@ func carried(ctx context.Context) *wire.Report {
 }
 
 func (s *server) serveGRPC(handlers pb.FloatRailServer, metrics *telemetry.Metrics, limits guard.Limits) {
-	g := &guard.Guard{Limits: limits, Lane: guard.NewLane(s.config.Workers, s.config.Queue, metrics.Queue), Metrics: metrics, Log: s.log}
+	g := &guard.Guard{Limits: limits, Lanes: guard.Lanes{
+		ClosedForm: guard.NewLane(s.config.Workers, s.config.Queue, metrics.Queue(telemetry.ClosedForm)),
+		Simulation: guard.NewLane(s.config.SimulationWorkers, s.config.SimulationQueue, metrics.Queue(telemetry.Simulation)),
+	}, Metrics: metrics, Log: s.log}
 	recorder := telemetry.NewRecorder(metrics, s.log, gateway.Network)
 	s.grpc = grpc.NewServer(
 		grpc.ChainUnaryInterceptor(recorder.Unary, g.Unary),

@@ -442,9 +442,9 @@ type Options struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// Search for fixes and prove them.
 	Fixes *bool `protobuf:"varint,1,opt,name=fixes,proto3,oneof" json:"fixes,omitempty"`
-	// Simulate the switching events.
+	// Simulate the switching events instead of estimating them. Taken by ReviewStage and CheckTransientStress alone.
 	Simulate *bool `protobuf:"varint,2,opt,name=simulate,proto3,oneof" json:"simulate,omitempty"`
-	// Return waveforms of the simulated events.
+	// Return waveforms of the simulated events, each at its worst draw; needs `simulate`. Taken by ReviewStage and CheckTransientStress alone.
 	Waveforms *bool `protobuf:"varint,3,opt,name=waveforms,proto3,oneof" json:"waveforms,omitempty"`
 	// Return traces of V_BS.
 	Trace *bool `protobuf:"varint,4,opt,name=trace,proto3,oneof" json:"trace,omitempty"`

@@ -1110,9 +1110,9 @@ type TransientEvent struct {
 	OperatingPoint *string `protobuf:"bytes,2,opt,name=operating_point,json=operatingPoint,proto3,oneof" json:"operating_point,omitempty"`
 	// How the numbers were found.
 	Method TransientEvent_Method_Value `protobuf:"varint,3,opt,name=method,proto3,enum=floatrail.v1.TransientEvent_Method_Value" json:"method,omitempty"`
-	// Lowest node voltage.
+	// Lowest node voltage, 0 where it does not go below COM.
 	NodeMin *Span `protobuf:"bytes,4,opt,name=node_min,json=nodeMin,proto3" json:"node_min,omitempty"`
-	// Lowest V_S at the pin.
+	// Lowest V_S at the pin, 0 where it does not go below COM.
 	PinMin *Span `protobuf:"bytes,5,opt,name=pin_min,json=pinMin,proto3" json:"pin_min,omitempty"`
 	// Lowest V_B to COM.
 	RailToComMin *Span `protobuf:"bytes,6,opt,name=rail_to_com_min,json=railToComMin,proto3" json:"rail_to_com_min,omitempty"`
@@ -1120,7 +1120,7 @@ type TransientEvent struct {
 	Undershoots []*UndershootDuration `protobuf:"bytes,7,rep,name=undershoots,proto3" json:"undershoots,omitempty"`
 	// What the event adds to V_BS.
 	FloatingVoltageGain *Span `protobuf:"bytes,8,opt,name=floating_voltage_gain,json=floatingVoltageGain,proto3" json:"floating_voltage_gain,omitempty"`
-	// Highest node voltage.
+	// Highest node voltage, that of the bus where it does not go above.
 	NodeMax *Span `protobuf:"bytes,9,opt,name=node_max,json=nodeMax,proto3" json:"node_max,omitempty"`
 	// Highest V_B.
 	RailMax *Span `protobuf:"bytes,10,opt,name=rail_max,json=railMax,proto3" json:"rail_max,omitempty"`
@@ -1144,10 +1144,16 @@ type TransientEvent struct {
 	RingFrequency *Span `protobuf:"bytes,19,opt,name=ring_frequency,json=ringFrequency,proto3" json:"ring_frequency,omitempty"`
 	// Damping of the ringing.
 	RingDamping *Span `protobuf:"bytes,20,opt,name=ring_damping,json=ringDamping,proto3" json:"ring_damping,omitempty"`
-	// Steps of the integrator.
+	// Steps of the integrator at the worst draw of the node.
 	Steps *int32 `protobuf:"varint,21,opt,name=steps,proto3,oneof" json:"steps,omitempty"`
-	// Largest relative change under a ten times tighter tolerance.
-	Convergence   *float64 `protobuf:"fixed64,22,opt,name=convergence,proto3,oneof" json:"convergence,omitempty"`
+	// Largest relative change of an extreme there under a ten times tighter tolerance; unset where it is not known.
+	Convergence *float64 `protobuf:"fixed64,22,opt,name=convergence,proto3,oneof" json:"convergence,omitempty"`
+	// Each simulated number at its worst draw beside what closed forms estimate there.
+	Comparisons []*Comparison `protobuf:"bytes,23,rep,name=comparisons,proto3" json:"comparisons,omitempty"`
+	// Fields whose absence keeps the event from being evaluated.
+	Missing []string `protobuf:"bytes,24,rep,name=missing,proto3" json:"missing,omitempty"`
+	// Why the event was not evaluated.
+	Reason        *string `protobuf:"bytes,25,opt,name=reason,proto3,oneof" json:"reason,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -1336,6 +1342,100 @@ func (x *TransientEvent) GetConvergence() float64 {
 	return 0
 }
 
+func (x *TransientEvent) GetComparisons() []*Comparison {
+	if x != nil {
+		return x.Comparisons
+	}
+	return nil
+}
+
+func (x *TransientEvent) GetMissing() []string {
+	if x != nil {
+		return x.Missing
+	}
+	return nil
+}
+
+func (x *TransientEvent) GetReason() string {
+	if x != nil && x.Reason != nil {
+		return *x.Reason
+	}
+	return ""
+}
+
+// A number of a simulated event at its worst draw, by both methods.
+type Comparison struct {
+	state protoimpl.MessageState `protogen:"open.v1"`
+	// Name of the number in TransientEvent.
+	Name *string `protobuf:"bytes,1,opt,name=name,proto3,oneof" json:"name,omitempty"`
+	// As simulated.
+	Simulated *Measure `protobuf:"bytes,2,opt,name=simulated,proto3" json:"simulated,omitempty"`
+	// As closed forms estimate it at the same draw.
+	Estimated *Measure `protobuf:"bytes,3,opt,name=estimated,proto3" json:"estimated,omitempty"`
+	// How far the estimate lies from the simulation, as a share of the latter; unset where that is 0.
+	Difference    *float64 `protobuf:"fixed64,4,opt,name=difference,proto3,oneof" json:"difference,omitempty"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
+}
+
+func (x *Comparison) Reset() {
+	*x = Comparison{}
+	mi := &file_floatrail_v1_result_proto_msgTypes[12]
+	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+	ms.StoreMessageInfo(mi)
+}
+
+func (x *Comparison) String() string {
+	return protoimpl.X.MessageStringOf(x)
+}
+
+func (*Comparison) ProtoMessage() {}
+
+func (x *Comparison) ProtoReflect() protoreflect.Message {
+	mi := &file_floatrail_v1_result_proto_msgTypes[12]
+	if x != nil {
+		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+		if ms.LoadMessageInfo() == nil {
+			ms.StoreMessageInfo(mi)
+		}
+		return ms
+	}
+	return mi.MessageOf(x)
+}
+
+// Deprecated: Use Comparison.ProtoReflect.Descriptor instead.
+func (*Comparison) Descriptor() ([]byte, []int) {
+	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{12}
+}
+
+func (x *Comparison) GetName() string {
+	if x != nil && x.Name != nil {
+		return *x.Name
+	}
+	return ""
+}
+
+func (x *Comparison) GetSimulated() *Measure {
+	if x != nil {
+		return x.Simulated
+	}
+	return nil
+}
+
+func (x *Comparison) GetEstimated() *Measure {
+	if x != nil {
+		return x.Estimated
+	}
+	return nil
+}
+
+func (x *Comparison) GetDifference() float64 {
+	if x != nil && x.Difference != nil {
+		return *x.Difference
+	}
+	return 0
+}
+
 // Time below one level.
 type UndershootDuration struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -1349,7 +1449,7 @@ type UndershootDuration struct {
 
 func (x *UndershootDuration) Reset() {
 	*x = UndershootDuration{}
-	mi := &file_floatrail_v1_result_proto_msgTypes[12]
+	mi := &file_floatrail_v1_result_proto_msgTypes[13]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1361,7 +1461,7 @@ func (x *UndershootDuration) String() string {
 func (*UndershootDuration) ProtoMessage() {}
 
 func (x *UndershootDuration) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_result_proto_msgTypes[12]
+	mi := &file_floatrail_v1_result_proto_msgTypes[13]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1374,7 +1474,7 @@ func (x *UndershootDuration) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use UndershootDuration.ProtoReflect.Descriptor instead.
 func (*UndershootDuration) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{12}
+	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{13}
 }
 
 func (x *UndershootDuration) GetLevel() *Measure {
@@ -1391,14 +1491,14 @@ func (x *UndershootDuration) GetDuration() *Span {
 	return nil
 }
 
-// A waveform.
+// A signal of a simulated event at the worst draw of the node.
 type Waveform struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
-	// What is shown.
+	// What is shown: operating point, event and signal.
 	Name *string `protobuf:"bytes,1,opt,name=name,proto3,oneof" json:"name,omitempty"`
 	// Its unit.
 	Unit *string `protobuf:"bytes,2,opt,name=unit,proto3,oneof" json:"unit,omitempty"`
-	// Time, in seconds.
+	// Time from the command, in seconds, rising; at most 2000 points, the peaks among them.
 	Time []float64 `protobuf:"fixed64,3,rep,packed,name=time,proto3" json:"time,omitempty"`
 	// Value, in `unit`.
 	Value         []float64 `protobuf:"fixed64,4,rep,packed,name=value,proto3" json:"value,omitempty"`
@@ -1408,7 +1508,7 @@ type Waveform struct {
 
 func (x *Waveform) Reset() {
 	*x = Waveform{}
-	mi := &file_floatrail_v1_result_proto_msgTypes[13]
+	mi := &file_floatrail_v1_result_proto_msgTypes[14]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1420,7 +1520,7 @@ func (x *Waveform) String() string {
 func (*Waveform) ProtoMessage() {}
 
 func (x *Waveform) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_result_proto_msgTypes[13]
+	mi := &file_floatrail_v1_result_proto_msgTypes[14]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1433,7 +1533,7 @@ func (x *Waveform) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use Waveform.ProtoReflect.Descriptor instead.
 func (*Waveform) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{13}
+	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{14}
 }
 
 func (x *Waveform) GetName() string {
@@ -1473,7 +1573,7 @@ type TransientEvent_Event struct {
 
 func (x *TransientEvent_Event) Reset() {
 	*x = TransientEvent_Event{}
-	mi := &file_floatrail_v1_result_proto_msgTypes[14]
+	mi := &file_floatrail_v1_result_proto_msgTypes[15]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1485,7 +1585,7 @@ func (x *TransientEvent_Event) String() string {
 func (*TransientEvent_Event) ProtoMessage() {}
 
 func (x *TransientEvent_Event) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_result_proto_msgTypes[14]
+	mi := &file_floatrail_v1_result_proto_msgTypes[15]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1510,7 +1610,7 @@ type TransientEvent_Method struct {
 
 func (x *TransientEvent_Method) Reset() {
 	*x = TransientEvent_Method{}
-	mi := &file_floatrail_v1_result_proto_msgTypes[15]
+	mi := &file_floatrail_v1_result_proto_msgTypes[16]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1522,7 +1622,7 @@ func (x *TransientEvent_Method) String() string {
 func (*TransientEvent_Method) ProtoMessage() {}
 
 func (x *TransientEvent_Method) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_result_proto_msgTypes[15]
+	mi := &file_floatrail_v1_result_proto_msgTypes[16]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1635,8 +1735,7 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"\x10_operating_point\"\x83\x01\n" +
 	"\x15TransientStressResult\x124\n" +
 	"\x06events\x18\x01 \x03(\v2\x1c.floatrail.v1.TransientEventR\x06events\x124\n" +
-	"\twaveforms\x18\x02 \x03(\v2\x16.floatrail.v1.WaveformR\twaveforms\"\xf9\n" +
-	"\n" +
+	"\twaveforms\x18\x02 \x03(\v2\x16.floatrail.v1.WaveformR\twaveforms\"\xf7\v\n" +
 	"\x0eTransientEvent\x12>\n" +
 	"\x05event\x18\x01 \x01(\x0e2(.floatrail.v1.TransientEvent.Event.ValueR\x05event\x12,\n" +
 	"\x0foperating_point\x18\x02 \x01(\tH\x00R\x0eoperatingPoint\x88\x01\x01\x12A\n" +
@@ -1663,7 +1762,10 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"\x0ering_frequency\x18\x13 \x01(\v2\x12.floatrail.v1.SpanR\rringFrequency\x125\n" +
 	"\fring_damping\x18\x14 \x01(\v2\x12.floatrail.v1.SpanR\vringDamping\x12\x19\n" +
 	"\x05steps\x18\x15 \x01(\x05H\x01R\x05steps\x88\x01\x01\x12%\n" +
-	"\vconvergence\x18\x16 \x01(\x01H\x02R\vconvergence\x88\x01\x01\x1ag\n" +
+	"\vconvergence\x18\x16 \x01(\x01H\x02R\vconvergence\x88\x01\x01\x12:\n" +
+	"\vcomparisons\x18\x17 \x03(\v2\x18.floatrail.v1.ComparisonR\vcomparisons\x12\x18\n" +
+	"\amissing\x18\x18 \x03(\tR\amissing\x12\x1b\n" +
+	"\x06reason\x18\x19 \x01(\tH\x03R\x06reason\x88\x01\x01\x1ag\n" +
 	"\x05Event\"^\n" +
 	"\x05Value\x12\x0f\n" +
 	"\vUNSPECIFIED\x10\x00\x12\f\n" +
@@ -1679,7 +1781,18 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"SIMULATION\x10\x02B\x12\n" +
 	"\x10_operating_pointB\b\n" +
 	"\x06_stepsB\x0e\n" +
-	"\f_convergence\"q\n" +
+	"\f_convergenceB\t\n" +
+	"\a_reason\"\xcc\x01\n" +
+	"\n" +
+	"Comparison\x12\x17\n" +
+	"\x04name\x18\x01 \x01(\tH\x00R\x04name\x88\x01\x01\x123\n" +
+	"\tsimulated\x18\x02 \x01(\v2\x15.floatrail.v1.MeasureR\tsimulated\x123\n" +
+	"\testimated\x18\x03 \x01(\v2\x15.floatrail.v1.MeasureR\testimated\x12#\n" +
+	"\n" +
+	"difference\x18\x04 \x01(\x01H\x01R\n" +
+	"difference\x88\x01\x01B\a\n" +
+	"\x05_nameB\r\n" +
+	"\v_difference\"q\n" +
 	"\x12UndershootDuration\x12+\n" +
 	"\x05level\x18\x01 \x01(\v2\x15.floatrail.v1.MeasureR\x05level\x12.\n" +
 	"\bduration\x18\x02 \x01(\v2\x12.floatrail.v1.SpanR\bduration\"x\n" +
@@ -1704,7 +1817,7 @@ func file_floatrail_v1_result_proto_rawDescGZIP() []byte {
 }
 
 var file_floatrail_v1_result_proto_enumTypes = make([]protoimpl.EnumInfo, 2)
-var file_floatrail_v1_result_proto_msgTypes = make([]protoimpl.MessageInfo, 16)
+var file_floatrail_v1_result_proto_msgTypes = make([]protoimpl.MessageInfo, 17)
 var file_floatrail_v1_result_proto_goTypes = []any{
 	(TransientEvent_Event_Value)(0),  // 0: floatrail.v1.TransientEvent.Event.Value
 	(TransientEvent_Method_Value)(0), // 1: floatrail.v1.TransientEvent.Method.Value
@@ -1720,90 +1833,94 @@ var file_floatrail_v1_result_proto_goTypes = []any{
 	(*TracePoint)(nil),               // 11: floatrail.v1.TracePoint
 	(*TransientStressResult)(nil),    // 12: floatrail.v1.TransientStressResult
 	(*TransientEvent)(nil),           // 13: floatrail.v1.TransientEvent
-	(*UndershootDuration)(nil),       // 14: floatrail.v1.UndershootDuration
-	(*Waveform)(nil),                 // 15: floatrail.v1.Waveform
-	(*TransientEvent_Event)(nil),     // 16: floatrail.v1.TransientEvent.Event
-	(*TransientEvent_Method)(nil),    // 17: floatrail.v1.TransientEvent.Method
-	(*Span)(nil),                     // 18: floatrail.v1.Span
-	(*Measure)(nil),                  // 19: floatrail.v1.Measure
-	(*Corner)(nil),                   // 20: floatrail.v1.Corner
+	(*Comparison)(nil),               // 14: floatrail.v1.Comparison
+	(*UndershootDuration)(nil),       // 15: floatrail.v1.UndershootDuration
+	(*Waveform)(nil),                 // 16: floatrail.v1.Waveform
+	(*TransientEvent_Event)(nil),     // 17: floatrail.v1.TransientEvent.Event
+	(*TransientEvent_Method)(nil),    // 18: floatrail.v1.TransientEvent.Method
+	(*Span)(nil),                     // 19: floatrail.v1.Span
+	(*Measure)(nil),                  // 20: floatrail.v1.Measure
+	(*Corner)(nil),                   // 21: floatrail.v1.Corner
 }
 var file_floatrail_v1_result_proto_depIdxs = []int32{
 	3,  // 0: floatrail.v1.SizingResult.budget:type_name -> floatrail.v1.BudgetItem
-	18, // 1: floatrail.v1.SizingResult.total_charge:type_name -> floatrail.v1.Span
-	18, // 2: floatrail.v1.SizingResult.voltage_budget:type_name -> floatrail.v1.Span
-	18, // 3: floatrail.v1.SizingResult.minimum_capacitance:type_name -> floatrail.v1.Span
-	18, // 4: floatrail.v1.SizingResult.effective_capacitance:type_name -> floatrail.v1.Span
-	18, // 5: floatrail.v1.SizingResult.ripple:type_name -> floatrail.v1.Span
+	19, // 1: floatrail.v1.SizingResult.total_charge:type_name -> floatrail.v1.Span
+	19, // 2: floatrail.v1.SizingResult.voltage_budget:type_name -> floatrail.v1.Span
+	19, // 3: floatrail.v1.SizingResult.minimum_capacitance:type_name -> floatrail.v1.Span
+	19, // 4: floatrail.v1.SizingResult.effective_capacitance:type_name -> floatrail.v1.Span
+	19, // 5: floatrail.v1.SizingResult.ripple:type_name -> floatrail.v1.Span
 	4,  // 6: floatrail.v1.SizingResult.recommended:type_name -> floatrail.v1.RecommendedParts
-	18, // 7: floatrail.v1.BudgetItem.charge:type_name -> floatrail.v1.Span
-	19, // 8: floatrail.v1.RecommendedParts.capacitance:type_name -> floatrail.v1.Measure
-	19, // 9: floatrail.v1.RecommendedParts.capacitor_voltage:type_name -> floatrail.v1.Measure
-	19, // 10: floatrail.v1.RecommendedParts.resistance:type_name -> floatrail.v1.Measure
+	19, // 7: floatrail.v1.BudgetItem.charge:type_name -> floatrail.v1.Span
+	20, // 8: floatrail.v1.RecommendedParts.capacitance:type_name -> floatrail.v1.Measure
+	20, // 9: floatrail.v1.RecommendedParts.capacitor_voltage:type_name -> floatrail.v1.Measure
+	20, // 10: floatrail.v1.RecommendedParts.resistance:type_name -> floatrail.v1.Measure
 	5,  // 11: floatrail.v1.RecommendedParts.resistance_window:type_name -> floatrail.v1.Window
 	5,  // 12: floatrail.v1.RecommendedParts.capacitance_window:type_name -> floatrail.v1.Window
-	19, // 13: floatrail.v1.RecommendedParts.diode_reverse_voltage:type_name -> floatrail.v1.Measure
-	19, // 14: floatrail.v1.RecommendedParts.diode_average_current:type_name -> floatrail.v1.Measure
-	19, // 15: floatrail.v1.RecommendedParts.diode_peak_current:type_name -> floatrail.v1.Measure
-	19, // 16: floatrail.v1.RecommendedParts.reservoir_capacitance:type_name -> floatrail.v1.Measure
-	19, // 17: floatrail.v1.Window.low:type_name -> floatrail.v1.Measure
-	19, // 18: floatrail.v1.Window.high:type_name -> floatrail.v1.Measure
+	20, // 13: floatrail.v1.RecommendedParts.diode_reverse_voltage:type_name -> floatrail.v1.Measure
+	20, // 14: floatrail.v1.RecommendedParts.diode_average_current:type_name -> floatrail.v1.Measure
+	20, // 15: floatrail.v1.RecommendedParts.diode_peak_current:type_name -> floatrail.v1.Measure
+	20, // 16: floatrail.v1.RecommendedParts.reservoir_capacitance:type_name -> floatrail.v1.Measure
+	20, // 17: floatrail.v1.Window.low:type_name -> floatrail.v1.Measure
+	20, // 18: floatrail.v1.Window.high:type_name -> floatrail.v1.Measure
 	7,  // 19: floatrail.v1.DutyLimitsResult.points:type_name -> floatrail.v1.DutyPoint
 	10, // 20: floatrail.v1.DutyLimitsResult.precharge:type_name -> floatrail.v1.Precharge
 	11, // 21: floatrail.v1.DutyLimitsResult.trace:type_name -> floatrail.v1.TracePoint
-	18, // 22: floatrail.v1.DutyPoint.recharge_window:type_name -> floatrail.v1.Span
-	18, // 23: floatrail.v1.DutyPoint.recharge_ratio:type_name -> floatrail.v1.Span
-	18, // 24: floatrail.v1.DutyPoint.deficit:type_name -> floatrail.v1.Span
-	18, // 25: floatrail.v1.DutyPoint.floating_voltage_low:type_name -> floatrail.v1.Span
-	18, // 26: floatrail.v1.DutyPoint.floating_voltage_high:type_name -> floatrail.v1.Span
-	18, // 27: floatrail.v1.DutyPoint.gate_voltage_low:type_name -> floatrail.v1.Span
+	19, // 22: floatrail.v1.DutyPoint.recharge_window:type_name -> floatrail.v1.Span
+	19, // 23: floatrail.v1.DutyPoint.recharge_ratio:type_name -> floatrail.v1.Span
+	19, // 24: floatrail.v1.DutyPoint.deficit:type_name -> floatrail.v1.Span
+	19, // 25: floatrail.v1.DutyPoint.floating_voltage_low:type_name -> floatrail.v1.Span
+	19, // 26: floatrail.v1.DutyPoint.floating_voltage_high:type_name -> floatrail.v1.Span
+	19, // 27: floatrail.v1.DutyPoint.gate_voltage_low:type_name -> floatrail.v1.Span
 	9,  // 28: floatrail.v1.DutyPoint.collapses:type_name -> floatrail.v1.Collapse
-	19, // 29: floatrail.v1.DutyPoint.largest_duty:type_name -> floatrail.v1.Measure
-	19, // 30: floatrail.v1.DutyPoint.longest_on_time:type_name -> floatrail.v1.Measure
-	19, // 31: floatrail.v1.DutyPoint.shortest_low_side_pulse:type_name -> floatrail.v1.Measure
-	19, // 32: floatrail.v1.DutyPoint.largest_resistance:type_name -> floatrail.v1.Measure
-	19, // 33: floatrail.v1.DutyPoint.largest_dead_time:type_name -> floatrail.v1.Measure
-	19, // 34: floatrail.v1.DutyPoint.lowest_switching_frequency:type_name -> floatrail.v1.Measure
-	19, // 35: floatrail.v1.DutyPoint.highest_switching_frequency:type_name -> floatrail.v1.Measure
+	20, // 29: floatrail.v1.DutyPoint.largest_duty:type_name -> floatrail.v1.Measure
+	20, // 30: floatrail.v1.DutyPoint.longest_on_time:type_name -> floatrail.v1.Measure
+	20, // 31: floatrail.v1.DutyPoint.shortest_low_side_pulse:type_name -> floatrail.v1.Measure
+	20, // 32: floatrail.v1.DutyPoint.largest_resistance:type_name -> floatrail.v1.Measure
+	20, // 33: floatrail.v1.DutyPoint.largest_dead_time:type_name -> floatrail.v1.Measure
+	20, // 34: floatrail.v1.DutyPoint.lowest_switching_frequency:type_name -> floatrail.v1.Measure
+	20, // 35: floatrail.v1.DutyPoint.highest_switching_frequency:type_name -> floatrail.v1.Measure
 	8,  // 36: floatrail.v1.DutyPoint.limits:type_name -> floatrail.v1.DerivedLimit
-	19, // 37: floatrail.v1.DerivedLimit.measure:type_name -> floatrail.v1.Measure
-	20, // 38: floatrail.v1.DerivedLimit.corner:type_name -> floatrail.v1.Corner
-	20, // 39: floatrail.v1.Collapse.corner:type_name -> floatrail.v1.Corner
-	18, // 40: floatrail.v1.Precharge.time:type_name -> floatrail.v1.Span
-	18, // 41: floatrail.v1.Precharge.peak_current:type_name -> floatrail.v1.Span
-	18, // 42: floatrail.v1.Precharge.resistor_energy:type_name -> floatrail.v1.Span
-	18, // 43: floatrail.v1.Precharge.reservoir_low:type_name -> floatrail.v1.Span
-	18, // 44: floatrail.v1.Precharge.settled_voltage:type_name -> floatrail.v1.Span
-	19, // 45: floatrail.v1.TracePoint.time:type_name -> floatrail.v1.Measure
-	19, // 46: floatrail.v1.TracePoint.floating_voltage:type_name -> floatrail.v1.Measure
+	20, // 37: floatrail.v1.DerivedLimit.measure:type_name -> floatrail.v1.Measure
+	21, // 38: floatrail.v1.DerivedLimit.corner:type_name -> floatrail.v1.Corner
+	21, // 39: floatrail.v1.Collapse.corner:type_name -> floatrail.v1.Corner
+	19, // 40: floatrail.v1.Precharge.time:type_name -> floatrail.v1.Span
+	19, // 41: floatrail.v1.Precharge.peak_current:type_name -> floatrail.v1.Span
+	19, // 42: floatrail.v1.Precharge.resistor_energy:type_name -> floatrail.v1.Span
+	19, // 43: floatrail.v1.Precharge.reservoir_low:type_name -> floatrail.v1.Span
+	19, // 44: floatrail.v1.Precharge.settled_voltage:type_name -> floatrail.v1.Span
+	20, // 45: floatrail.v1.TracePoint.time:type_name -> floatrail.v1.Measure
+	20, // 46: floatrail.v1.TracePoint.floating_voltage:type_name -> floatrail.v1.Measure
 	13, // 47: floatrail.v1.TransientStressResult.events:type_name -> floatrail.v1.TransientEvent
-	15, // 48: floatrail.v1.TransientStressResult.waveforms:type_name -> floatrail.v1.Waveform
+	16, // 48: floatrail.v1.TransientStressResult.waveforms:type_name -> floatrail.v1.Waveform
 	0,  // 49: floatrail.v1.TransientEvent.event:type_name -> floatrail.v1.TransientEvent.Event.Value
 	1,  // 50: floatrail.v1.TransientEvent.method:type_name -> floatrail.v1.TransientEvent.Method.Value
-	18, // 51: floatrail.v1.TransientEvent.node_min:type_name -> floatrail.v1.Span
-	18, // 52: floatrail.v1.TransientEvent.pin_min:type_name -> floatrail.v1.Span
-	18, // 53: floatrail.v1.TransientEvent.rail_to_com_min:type_name -> floatrail.v1.Span
-	14, // 54: floatrail.v1.TransientEvent.undershoots:type_name -> floatrail.v1.UndershootDuration
-	18, // 55: floatrail.v1.TransientEvent.floating_voltage_gain:type_name -> floatrail.v1.Span
-	18, // 56: floatrail.v1.TransientEvent.node_max:type_name -> floatrail.v1.Span
-	18, // 57: floatrail.v1.TransientEvent.rail_max:type_name -> floatrail.v1.Span
-	18, // 58: floatrail.v1.TransientEvent.high_side_peak:type_name -> floatrail.v1.Span
-	18, // 59: floatrail.v1.TransientEvent.low_side_peak:type_name -> floatrail.v1.Span
-	18, // 60: floatrail.v1.TransientEvent.slew_peak:type_name -> floatrail.v1.Span
-	18, // 61: floatrail.v1.TransientEvent.slew_10_to_90:type_name -> floatrail.v1.Span
-	18, // 62: floatrail.v1.TransientEvent.miller_low:type_name -> floatrail.v1.Span
-	18, // 63: floatrail.v1.TransientEvent.miller_high:type_name -> floatrail.v1.Span
-	18, // 64: floatrail.v1.TransientEvent.gate_min:type_name -> floatrail.v1.Span
-	18, // 65: floatrail.v1.TransientEvent.current_slope:type_name -> floatrail.v1.Span
-	18, // 66: floatrail.v1.TransientEvent.ring_frequency:type_name -> floatrail.v1.Span
-	18, // 67: floatrail.v1.TransientEvent.ring_damping:type_name -> floatrail.v1.Span
-	19, // 68: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
-	18, // 69: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
-	70, // [70:70] is the sub-list for method output_type
-	70, // [70:70] is the sub-list for method input_type
-	70, // [70:70] is the sub-list for extension type_name
-	70, // [70:70] is the sub-list for extension extendee
-	0,  // [0:70] is the sub-list for field type_name
+	19, // 51: floatrail.v1.TransientEvent.node_min:type_name -> floatrail.v1.Span
+	19, // 52: floatrail.v1.TransientEvent.pin_min:type_name -> floatrail.v1.Span
+	19, // 53: floatrail.v1.TransientEvent.rail_to_com_min:type_name -> floatrail.v1.Span
+	15, // 54: floatrail.v1.TransientEvent.undershoots:type_name -> floatrail.v1.UndershootDuration
+	19, // 55: floatrail.v1.TransientEvent.floating_voltage_gain:type_name -> floatrail.v1.Span
+	19, // 56: floatrail.v1.TransientEvent.node_max:type_name -> floatrail.v1.Span
+	19, // 57: floatrail.v1.TransientEvent.rail_max:type_name -> floatrail.v1.Span
+	19, // 58: floatrail.v1.TransientEvent.high_side_peak:type_name -> floatrail.v1.Span
+	19, // 59: floatrail.v1.TransientEvent.low_side_peak:type_name -> floatrail.v1.Span
+	19, // 60: floatrail.v1.TransientEvent.slew_peak:type_name -> floatrail.v1.Span
+	19, // 61: floatrail.v1.TransientEvent.slew_10_to_90:type_name -> floatrail.v1.Span
+	19, // 62: floatrail.v1.TransientEvent.miller_low:type_name -> floatrail.v1.Span
+	19, // 63: floatrail.v1.TransientEvent.miller_high:type_name -> floatrail.v1.Span
+	19, // 64: floatrail.v1.TransientEvent.gate_min:type_name -> floatrail.v1.Span
+	19, // 65: floatrail.v1.TransientEvent.current_slope:type_name -> floatrail.v1.Span
+	19, // 66: floatrail.v1.TransientEvent.ring_frequency:type_name -> floatrail.v1.Span
+	19, // 67: floatrail.v1.TransientEvent.ring_damping:type_name -> floatrail.v1.Span
+	14, // 68: floatrail.v1.TransientEvent.comparisons:type_name -> floatrail.v1.Comparison
+	20, // 69: floatrail.v1.Comparison.simulated:type_name -> floatrail.v1.Measure
+	20, // 70: floatrail.v1.Comparison.estimated:type_name -> floatrail.v1.Measure
+	20, // 71: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
+	19, // 72: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
+	73, // [73:73] is the sub-list for method output_type
+	73, // [73:73] is the sub-list for method input_type
+	73, // [73:73] is the sub-list for extension type_name
+	73, // [73:73] is the sub-list for extension extendee
+	0,  // [0:73] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_result_proto_init() }
@@ -1820,14 +1937,15 @@ func file_floatrail_v1_result_proto_init() {
 	file_floatrail_v1_result_proto_msgTypes[8].OneofWrappers = []any{}
 	file_floatrail_v1_result_proto_msgTypes[9].OneofWrappers = []any{}
 	file_floatrail_v1_result_proto_msgTypes[11].OneofWrappers = []any{}
-	file_floatrail_v1_result_proto_msgTypes[13].OneofWrappers = []any{}
+	file_floatrail_v1_result_proto_msgTypes[12].OneofWrappers = []any{}
+	file_floatrail_v1_result_proto_msgTypes[14].OneofWrappers = []any{}
 	type x struct{}
 	out := protoimpl.TypeBuilder{
 		File: protoimpl.DescBuilder{
 			GoPackagePath: reflect.TypeOf(x{}).PkgPath(),
 			RawDescriptor: unsafe.Slice(unsafe.StringData(file_floatrail_v1_result_proto_rawDesc), len(file_floatrail_v1_result_proto_rawDesc)),
 			NumEnums:      2,
-			NumMessages:   16,
+			NumMessages:   17,
 			NumExtensions: 0,
 			NumServices:   0,
 		},

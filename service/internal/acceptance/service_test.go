@@ -42,7 +42,9 @@ func serve(t *testing.T) client {
 	log := slog.New(slog.DiscardHandler)
 	metrics := telemetry.New(prometheus.NewRegistry(), telemetry.Build{Version: "acceptance"}, h.Rules())
 	limits := guard.Limits{Request: 1 << 20, Board: 32 << 20, Deadline: time.Minute}
-	g := &guard.Guard{Limits: limits, Lane: guard.NewLane(2, 32, metrics.Queue), Metrics: metrics, Log: log}
+	g := &guard.Guard{Limits: limits, Lanes: guard.Lanes{
+		ClosedForm: guard.NewLane(2, 32, metrics.Queue(telemetry.ClosedForm)), Simulation: guard.NewLane(2, 32, metrics.Queue(telemetry.Simulation)),
+	}, Metrics: metrics, Log: log}
 	recorder := telemetry.NewRecorder(metrics, log, gateway.Network)
 	server := grpc.NewServer(grpc.ChainUnaryInterceptor(recorder.Unary, g.Unary), grpc.ChainStreamInterceptor(recorder.Stream, g.Stream),
 		grpc.MaxHeaderListSize(gateway.MaxHeader))

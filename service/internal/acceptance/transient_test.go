@@ -196,10 +196,15 @@ func TestEventsSpread(t *testing.T) {
 func TestOptionsOfStressAreRefused(t *testing.T) {
 	c := serve(t)
 	good := request(t, switching("100 kHz", "50 %", "100 ns"), sound())
-	refused(t, c, "/v1/transient-stress", edit(t, good, edits{"/options": `{"fixes":true,"simulate":true,"waveforms":true,"trace":true}`}),
-		at("options.fixes", "no search for fixes"), at("options.simulate", "no simulation of switching events"),
-		at("options.waveforms", "no waveforms"), at("options.trace", "no traces of V_BS"))
-	for _, option := range []string{"fixes", "simulate", "waveforms", "trace"} {
+	refused(t, c, "/v1/transient-stress", edit(t, good, edits{"/options": `{"fixes":true,"waveforms":true,"trace":true}`}),
+		at("options.waveforms", "read true without simulate", "true in options.simulate"), at("options.fixes", "no search for fixes"),
+		at("options.trace", "no traces of V_BS"))
+	for _, path := range []string{"/v1/sizing", "/v1/duty-limits"} { // which judge no events
+		refused(t, c, path, edit(t, good, edits{"/options": `{"simulate":true,"waveforms":true}`}),
+			at("options.simulate", "read true", "CheckTransientStress", "expected false or absent"),
+			at("options.waveforms", "read true", "CheckTransientStress", "expected false or absent"))
+	}
+	for _, option := range []string{"fixes", "trace"} {
 		for _, path := range []string{"/v1/transient-stress", "/v1/reviews"} {
 			refused(t, c, path, edit(t, good, edits{"/options": `{"` + option + `":true}`}), at("options."+option, "read true", "expected false or absent"))
 		}

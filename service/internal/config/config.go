@@ -15,17 +15,19 @@ import (
 
 // Flags are the settings as they were written. Each is text here, so that all of them can be checked before any is refused.
 type Flags struct {
-	HTTPAddr     string `name:"http-addr" default:"127.0.0.1:8080" placeholder:"HOST:PORT" help:"Address of the REST interface."`
-	GRPCAddr     string `name:"grpc-addr" default:"127.0.0.1:50051" placeholder:"HOST:PORT" help:"Address of the gRPC interface."`
-	OpsAddr      string `name:"ops-addr" default:"127.0.0.1:9464" placeholder:"HOST:PORT" help:"Address of /metrics, /livez, /readyz and /buildinfo."`
-	Deadline     string `default:"10s" placeholder:"TIME" help:"Longest time for an answer; a client may ask for less."`
-	MaxRequest   string `default:"1MiB" placeholder:"SIZE" help:"Largest request."`
-	MaxBoard     string `default:"32MiB" placeholder:"SIZE" help:"Largest request about a whole board."`
-	Workers      string `default:"auto" placeholder:"N" help:"Reviews computed at once; auto: one a processor."`
-	Queue        string `default:"32" placeholder:"N" help:"Reviews that may wait; further ones are rejected."`
-	DrainDelay   string `default:"1s" placeholder:"TIME" help:"Time between the end of readiness and the closing of the listeners."`
-	DrainTimeout string `default:"20s" placeholder:"TIME" help:"Time that accepted requests get to finish."`
-	LogLevel     string `default:"info" placeholder:"LEVEL" help:"Least level that is logged: debug, info, warn or error."`
+	HTTPAddr          string `name:"http-addr" default:"127.0.0.1:8080" placeholder:"HOST:PORT" help:"Address of the REST interface."`
+	GRPCAddr          string `name:"grpc-addr" default:"127.0.0.1:50051" placeholder:"HOST:PORT" help:"Address of the gRPC interface."`
+	OpsAddr           string `name:"ops-addr" default:"127.0.0.1:9464" placeholder:"HOST:PORT" help:"Address of /metrics, /livez, /readyz and /buildinfo."`
+	Deadline          string `default:"10s" placeholder:"TIME" help:"Longest time for an answer; a client may ask for less."`
+	MaxRequest        string `default:"1MiB" placeholder:"SIZE" help:"Largest request."`
+	MaxBoard          string `default:"32MiB" placeholder:"SIZE" help:"Largest request about a whole board."`
+	Workers           string `default:"auto" placeholder:"N" help:"Reviews computed at once; auto: one a processor."`
+	Queue             string `default:"32" placeholder:"N" help:"Reviews that may wait; further ones are rejected."`
+	SimulationWorkers string `default:"auto" placeholder:"N" help:"Reviews with simulated switching events computed at once, beside the others; auto: one a processor."`
+	SimulationQueue   string `default:"8" placeholder:"N" help:"Reviews with simulated switching events that may wait; further ones are rejected."`
+	DrainDelay        string `default:"1s" placeholder:"TIME" help:"Time between the end of readiness and the closing of the listeners."`
+	DrainTimeout      string `default:"20s" placeholder:"TIME" help:"Time that accepted requests get to finish."`
+	LogLevel          string `default:"info" placeholder:"LEVEL" help:"Least level that is logged: debug, info, warn or error."`
 }
 
 // Config is a valid configuration.
@@ -34,6 +36,8 @@ type Config struct {
 	Deadline                    time.Duration
 	MaxRequest, MaxBoard        int // [byte]
 	Workers, Queue              int
+	SimulationWorkers           int
+	SimulationQueue             int
 	DrainDelay, DrainTimeout    time.Duration
 	LogLevel                    slog.Level
 }
@@ -42,20 +46,20 @@ type Config struct {
 func Parse(f Flags) (Config, error) {
 	var p parser
 	c := Config{
-		HTTPAddr:     p.address("http-addr", f.HTTPAddr),
-		GRPCAddr:     p.address("grpc-addr", f.GRPCAddr),
-		OpsAddr:      p.address("ops-addr", f.OpsAddr),
-		Deadline:     p.duration("deadline", f.Deadline, 10*time.Millisecond, 10*time.Minute),
-		MaxRequest:   p.size("max-request", f.MaxRequest, 1<<10, 64<<20),
-		MaxBoard:     p.size("max-board", f.MaxBoard, 1<<10, 256<<20),
-		Queue:        p.number("queue", f.Queue, 0, 10_000),
-		DrainDelay:   p.duration("drain-delay", f.DrainDelay, 0, 5*time.Minute),
-		DrainTimeout: p.duration("drain-timeout", f.DrainTimeout, 10*time.Millisecond, 10*time.Minute),
-		LogLevel:     p.level("log-level", f.LogLevel),
+		HTTPAddr:        p.address("http-addr", f.HTTPAddr),
+		GRPCAddr:        p.address("grpc-addr", f.GRPCAddr),
+		OpsAddr:         p.address("ops-addr", f.OpsAddr),
+		Deadline:        p.duration("deadline", f.Deadline, 10*time.Millisecond, 10*time.Minute),
+		MaxRequest:      p.size("max-request", f.MaxRequest, 1<<10, 64<<20),
+		MaxBoard:        p.size("max-board", f.MaxBoard, 1<<10, 256<<20),
+		Queue:           p.number("queue", f.Queue, 0, 10_000),
+		SimulationQueue: p.number("simulation-queue", f.SimulationQueue, 0, 10_000),
+		DrainDelay:      p.duration("drain-delay", f.DrainDelay, 0, 5*time.Minute),
+		DrainTimeout:    p.duration("drain-timeout", f.DrainTimeout, 10*time.Millisecond, 10*time.Minute),
+		LogLevel:        p.level("log-level", f.LogLevel),
 	}
-	if c.Workers = runtime.GOMAXPROCS(0); f.Workers != "auto" {
-		c.Workers = p.number("workers", f.Workers, 1, 1024)
-	}
+	c.Workers = p.places("workers", f.Workers)
+	c.SimulationWorkers = p.places("simulation-workers", f.SimulationWorkers)
 	if c.MaxBoard > 0 && c.MaxBoard < c.MaxRequest {
 		p.fault("max-board", f.MaxBoard, "at least --max-request, which is "+f.MaxRequest)
 	}
@@ -116,6 +120,14 @@ func (p *parser) number(flag, text string, low, high int) int {
 		return 0
 	}
 	return n
+}
+
+// places is how many calls run at once.
+func (p *parser) places(flag, text string) int {
+	if text == "auto" {
+		return runtime.GOMAXPROCS(0)
+	}
+	return p.number(flag, text, 1, 1024)
 }
 
 func (p *parser) size(flag, text string, low, high int) int {

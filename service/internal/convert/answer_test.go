@@ -104,7 +104,10 @@ func sample() *finding.Report {
 			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span}},
 			FloatingVoltageGain: span, NodeMax: span, RailMax: span, HighSidePeak: span, LowSidePeak: span, SlewPeak: span, Slew10To90: span,
 			MillerLow: span, MillerHigh: span, GateMin: span, CurrentSlope: span, RingFrequency: span, RingDamping: span,
-		}}},
+			Method: finding.Simulation, Steps: 321, Convergence: 2e-4,
+			Comparisons: []finding.Comparison{{Name: "nodeMin", Simulated: volts(-8), Estimated: volts(-12), Difference: 0.5}},
+			Missing:     []string{"stage.layout.lowSideInductance"}, Reason: "r",
+		}}, Waveforms: []finding.Waveform{{Name: "p, TURN_OFF, node", Unit: "V", Time: []float64{0, 1e-9}, Value: []float64{400, -8}}}},
 	}
 }
 
@@ -128,8 +131,8 @@ func unset(m protoreflect.Message, path string) []string {
 
 func TestReviewStageResponseCarriesEverything(t *testing.T) {
 	got := ReviewStageResponse(Engine{"1.2.3", "7"}, sample(), []Reading{{"f", "4k7", "4.7 kΩ"}})
-	// What no report holds: fixes, traces, waveforms and what only a simulation knows.
-	want := []string{".findings.fixes", ".dutyLimits.trace", ".transientStress.events.steps", ".transientStress.events.convergence", ".transientStress.waveforms"}
+	// What no report holds: fixes and traces.
+	want := []string{".findings.fixes", ".dutyLimits.trace"}
 	if missing := unset(got.ProtoReflect(), ""); strings.Join(missing, " ") != strings.Join(want, " ") {
 		t.Errorf("unset: %v, want %v", missing, want)
 	}
@@ -194,6 +197,55 @@ func TestUnknownNumbersStayUnset(t *testing.T) {
 	}
 }
 
+func TestOptionsOfSimulation(t *testing.T) {
+	for _, c := range []struct {
+		in                  *pb.Options
+		simulate, waveforms bool
+	}{
+		{nil, false, false}, {&pb.Options{}, false, false}, {&pb.Options{Simulate: proto.Bool(true)}, true, false},
+		{&pb.Options{Simulate: proto.Bool(true), Waveforms: proto.Bool(true)}, true, true},
+		{&pb.Options{Simulate: proto.Bool(false), Waveforms: proto.Bool(false)}, false, false},
+	} {
+		got, faults := New().Options(c.in)
+		if len(faults) > 0 || got.Simulate != c.simulate || got.Waveforms != c.waveforms {
+			t.Errorf("%v: %+v, %v", c.in, got, faults)
+		}
+	}
+}
+
+// The numbers of a simulation arrive as they are; what one does not know stays unset.
+func TestSimulatedEvent(t *testing.T) {
+	nan := math.NaN()
+	e := sample().Transient.Events[0]
+	got := wireEvent(&e)
+	want := &pb.Comparison{Name: proto.String("nodeMin"), Simulated: measureOf(-8, quantity.Voltage), Estimated: measureOf(-12, quantity.Voltage), Difference: proto.Float64(0.5)}
+	if got.GetMethod() != pb.TransientEvent_Method_SIMULATION || got.GetSteps() != 321 || got.GetConvergence() != 2e-4 || len(got.GetComparisons()) != 1 ||
+		!proto.Equal(got.GetComparisons()[0], want) || strings.Join(got.GetMissing(), " ") != "stage.layout.lowSideInductance" || got.GetReason() != "r" {
+		t.Errorf("%v", got)
+	}
+	e.Method, e.Steps, e.Convergence, e.Missing, e.Reason = finding.Estimate, 0, nan, nil, ""
+	e.Comparisons[0].Difference = nan
+	got = wireEvent(&e)
+	if got.GetMethod() != pb.TransientEvent_Method_ESTIMATE || got.Steps != nil || got.Convergence != nil || got.GetComparisons()[0].Difference != nil ||
+		got.Missing != nil || got.Reason != nil {
+		t.Errorf("%v", got)
+	}
+}
+
+// A waveform is rounded as every number is; its time still rises, and its extremes stay.
+func TestWaveform(t *testing.T) {
+	w := finding.Waveform{Name: "p, TURN_OFF, node", Unit: "V",
+		Time:  []float64{0, 1.0000001e-6, 1.0000002e-6, 1.0000003e-6, 2e-6, 2.0000001e-6, 3e-6},
+		Value: []float64{1, 5, -7.12345678, 4, 5, 9, 3}}
+	want := &pb.Waveform{Name: proto.String(w.Name), Unit: proto.String("V"), Time: []float64{0, 1e-6, 2e-6, 3e-6}, Value: []float64{1, -7.12346, 9, 3}}
+	if got := wireWaveform(&w); !proto.Equal(got, want) {
+		t.Errorf("%v, want %v", got, want)
+	}
+	if got := wireWaveform(&finding.Waveform{Name: "none"}); len(got.GetTime()) != 0 || len(got.GetValue()) != 0 {
+		t.Errorf("%v", got)
+	}
+}
+
 func TestNamesOfEnumsAgree(t *testing.T) {
 	check := func(name string, values map[string]int32, unspecified bool) {
 		if n, ok := values[name]; !ok || (n == 0) != unspecified {
@@ -218,6 +270,8 @@ func TestNamesOfEnumsAgree(t *testing.T) {
 			t.Errorf("severity %s has another number in the contract", s)
 		}
 	}
+	check(finding.Estimate, pb.TransientEvent_Method_Value_value, false)
+	check(finding.Simulation, pb.TransientEvent_Method_Value_value, false)
 	kinds := (*pb.Switch_Kind)(nil).ProtoReflect().Descriptor().Enums().Get(0).Values()
 	for _, name := range []string{stage.SiMOSFET, stage.SiCMOSFET, stage.IGBT, stage.GaNHEMT, stage.DiodeOnly} {
 		if kinds.ByName(protoreflect.Name(name)) == nil {

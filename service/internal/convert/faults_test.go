@@ -177,6 +177,8 @@ func TestFaultsOfPolicyWaiversOptions(t *testing.T) {
 		{"unknown severity", `{"stage": {"id": "a"}, "policy": {"failAt": 7}}`, one("policy.failAt", "the number 7", "CRITICAL")},
 		{"baseline", `{"stage": {"id": "a"}, "policy": {"baseline": ["` + id + `", "x"]}}`, one("policy.baseline[1]", `"x"`, "32 hexadecimal")},
 		{"unknown family", `{"stage": {"id": "a"}, "options": {"families": ["gate", "chrage"]}}`, one("options.families[1]", `"chrage"`, `nearest is "charge"`)},
+		{"waveforms without simulation", `{"stage": {"id": "a"}, "options": {"simulate": false, "waveforms": true}}`,
+			one("options.waveforms", "read true without simulate", "expected", "true in options.simulate")},
 	}
 	b := New().WithRules([]string{"charge/droop", "charge/oversize", "gate/negative"})
 	for _, c := range cases {

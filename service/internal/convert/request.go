@@ -162,7 +162,10 @@ func (w *walk) optionsAt(in *pb.Options, path string) calc.Options {
 	}
 	m := in.ProtoReflect()
 	w.unknown(m, path)
-	out := calc.Options{PerPoint: in.GetPerPoint()}
+	out := calc.Options{PerPoint: in.GetPerPoint(), Simulate: in.GetSimulate(), Waveforms: in.GetWaveforms()}
+	if out.Waveforms && !out.Simulate {
+		w.fault(path+".waveforms", refusal("true without simulate", "waveforms of simulated events alone: true in "+path+".simulate, or false or absent here", ""))
+	}
 	own := path + ".families"
 	d := m.Descriptor().Fields().ByName("families")
 	out.Families = w.labels(m.Get(d).List(), maxFamilies, own)

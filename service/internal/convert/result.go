@@ -1,6 +1,8 @@
 package convert
 
 import (
+	"slices"
+
 	"google.golang.org/protobuf/proto"
 
 	pb "floatrail/api/floatrail/v1"
@@ -69,14 +71,14 @@ func wireTransient(t *finding.TransientStress) *pb.TransientStressResult {
 	if t == nil {
 		return nil
 	}
-	return &pb.TransientStressResult{Events: each(t.Events, wireEvent)}
+	return &pb.TransientStressResult{Events: each(t.Events, wireEvent), Waveforms: each(t.Waveforms, wireWaveform)}
 }
 
 func wireEvent(e *finding.TransientEvent) *pb.TransientEvent {
-	return &pb.TransientEvent{
+	out := &pb.TransientEvent{
 		Event:          pb.TransientEvent_Event_Value(pb.TransientEvent_Event_Value_value[e.Event]),
 		OperatingPoint: label(e.OperatingPoint),
-		Method:         pb.TransientEvent_Method_ESTIMATE,
+		Method:         pb.TransientEvent_Method_Value(pb.TransientEvent_Method_Value_value[e.Method]),
 		NodeMin:        wireSpan(&e.NodeMin),
 		PinMin:         wireSpan(&e.PinMin),
 		RailToComMin:   wireSpan(&e.RailToCOMMin),
@@ -96,7 +98,37 @@ func wireEvent(e *finding.TransientEvent) *pb.TransientEvent {
 		CurrentSlope:        wireSpan(&e.CurrentSlope),
 		RingFrequency:       wireSpan(&e.RingFrequency),
 		RingDamping:         wireSpan(&e.RingDamping),
+		Convergence:         number(e.Convergence),
+		Comparisons: each(e.Comparisons, func(c *finding.Comparison) *pb.Comparison {
+			return &pb.Comparison{Name: label(c.Name), Simulated: wireMeasure(&c.Simulated), Estimated: wireMeasure(&c.Estimated), Difference: number(c.Difference)}
+		}),
+		Missing: e.Missing,
+		Reason:  label(e.Reason),
 	}
+	if e.Steps > 0 {
+		out.Steps = count(e.Steps)
+	}
+	return out
+}
+
+// wireWaveform rounds a waveform as every number of an answer. Of points whose times round to one the first stays, or what is an extreme of the
+// waveform, so that time rises and no peak is lost.
+func wireWaveform(w *finding.Waveform) *pb.Waveform {
+	out := &pb.Waveform{Name: label(w.Name), Unit: label(w.Unit), Time: make([]float64, 0, len(w.Time)), Value: make([]float64, 0, len(w.Time))}
+	if len(w.Time) == 0 {
+		return out
+	}
+	lowest, highest := slices.Min(w.Value), slices.Max(w.Value)
+	for i, t := range w.Time {
+		t, v := Round(t), Round(w.Value[i])
+		switch last := len(out.Time) - 1; {
+		case last < 0 || t > out.Time[last]:
+			out.Time, out.Value = append(out.Time, t), append(out.Value, v)
+		case w.Value[i] == lowest || w.Value[i] == highest:
+			out.Value[last] = v
+		}
+	}
+	return out
 }
 
 func wireDutyPoint(p *finding.DutyPoint) *pb.DutyPoint {

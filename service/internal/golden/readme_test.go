@@ -171,6 +171,7 @@ func readmeCommands(t *testing.T, blocks []block, program string) {
 		"review testdata/stages/buck48.json --all":                                                     0,
 		"review testdata/stages/buck48.json --families=duty,gate --per-point":                          0,
 		"review testdata/stages/buck48.json --format=json":                                             0,
+		"review testdata/stages/drive400.json --simulate":                                              1,
 		"rules":  0,
 		"fields": 0,
 	}
@@ -276,13 +277,13 @@ func readmeClient(t *testing.T, blocks []block, place func(string) string) {
 	}
 }
 
-// readmeJSON holds the finding that the README prints against the answer, and the waiver against the contract.
+// readmeJSON holds the finding that the README prints against the answer, waiver and options against the contract.
 func readmeJSON(t *testing.T, blocks []block) {
 	var live any
 	if err := json.Unmarshal(answer(t, "buck48"), &live); err != nil {
 		t.Fatal(err)
 	}
-	findings, waivers := 0, 0
+	findings, waivers, options := 0, 0, 0
 	for _, b := range blocks {
 		if b.language != "json" {
 			continue
@@ -299,14 +300,22 @@ func readmeJSON(t *testing.T, blocks []block) {
 			}
 			continue
 		}
+		if excerpt["options"] != nil {
+			options++
+			var request pb.ReviewStageRequest
+			if err := protojson.Unmarshal(data, &request); err != nil || !request.GetOptions().GetSimulate() || !request.GetOptions().GetWaveforms() {
+				t.Error(err, &request)
+			}
+			continue
+		}
 		findings++
 		all, _ := lookUp(live, "findings").([]any)
 		if !slices.ContainsFunc(all, func(f any) bool { return within(excerpt, f) }) {
 			t.Errorf("no finding of buck48 reads\n%s", data)
 		}
 	}
-	if findings != 1 || waivers != 1 {
-		t.Errorf("%d findings and %d waivers, want one of each", findings, waivers)
+	if findings != 1 || waivers != 1 || options != 1 {
+		t.Errorf("%d findings, %d waivers and %d options, want one of each", findings, waivers, options)
 	}
 }
 

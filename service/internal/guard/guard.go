@@ -16,6 +16,7 @@ import (
 	"google.golang.org/protobuf/proto"
 	"google.golang.org/protobuf/types/known/durationpb"
 
+	pb "floatrail/api/floatrail/v1"
 	"floatrail/service/internal/telemetry"
 )
 
@@ -43,7 +44,7 @@ func (l Limits) Size(method string) int {
 // Guard holds the interceptors.
 type Guard struct {
 	Limits  Limits
-	Lane    *Lane
+	Lanes   Lanes
 	Metrics *telemetry.Metrics
 	Log     *slog.Logger
 }
@@ -52,6 +53,21 @@ type Guard struct {
 func computes(fullMethod string) bool {
 	service, method := path.Split(fullMethod)
 	return service == "/floatrail.v1.FloatRail/" && method != "ListRules" && method != "GetRule"
+}
+
+// lane is that of a call, nil where it needs none.
+func (g *Guard) lane(fullMethod string, req any) *Lane {
+	if !computes(fullMethod) {
+		return nil
+	}
+	switch path.Base(fullMethod) {
+	case "StudyAlternates", "StudyTolerances":
+		return g.Lanes.Simulation
+	}
+	if r, ok := req.(interface{ GetOptions() *pb.Options }); ok && r.GetOptions().GetSimulate() {
+		return g.Lanes.Simulation
+	}
+	return g.Lanes.ClosedForm
 }
 
 // Unary is the interceptor of unary calls.
@@ -102,11 +118,11 @@ func (g *Guard) run(ctx context.Context, fullMethod string, req any, call func(c
 	}
 	ctx, cancel := context.WithTimeout(ctx, g.Limits.Deadline)
 	defer cancel()
-	if computes(fullMethod) {
-		if err := g.Lane.Enter(ctx); err != nil {
+	if lane := g.lane(fullMethod, req); lane != nil {
+		if err := lane.Enter(ctx); err != nil {
 			return g.turnedAway(ctx, fullMethod, err)
 		}
-		defer g.Lane.Leave()
+		defer lane.Leave()
 	}
 	err := g.recovered(ctx, fullMethod, call)
 	if _, known := status.FromError(err); known {

@@ -7,6 +7,12 @@ import (
 	"sync"
 )
 
+// Lanes keep what takes a millisecond apart from what takes a second, so that neither waits for the other.
+type Lanes struct {
+	ClosedForm *Lane
+	Simulation *Lane // simulated switching events, and studies
+}
+
 // Lane lets as many calls through at once as it is wide and lets a bounded number wait, in the order of their arrival.
 type Lane struct {
 	width, depth int

@@ -7,6 +7,10 @@ import (
 	"sync/atomic"
 	"testing"
 	"time"
+
+	"google.golang.org/protobuf/proto"
+
+	pb "floatrail/api/floatrail/v1"
 )
 
 func TestLaneServesInOrderOfArrival(t *testing.T) {
@@ -68,6 +72,31 @@ func TestLaneForgetsWhoLeavesTheQueue(t *testing.T) {
 	l.Leave()
 	if l.running != 0 {
 		t.Errorf("%d run", l.running)
+	}
+}
+
+func TestLaneOfACall(t *testing.T) {
+	g := &Guard{Lanes: Lanes{ClosedForm: NewLane(1, 0, nil), Simulation: NewLane(1, 0, nil)}}
+	on, off := &pb.Options{Simulate: proto.Bool(true)}, &pb.Options{Simulate: proto.Bool(false)}
+	for _, c := range []struct {
+		method string
+		req    any
+		want   *Lane
+	}{
+		{"ReviewStage", &pb.ReviewStageRequest{}, g.Lanes.ClosedForm},
+		{"ReviewStage", &pb.ReviewStageRequest{Options: off}, g.Lanes.ClosedForm},
+		{"ReviewStage", &pb.ReviewStageRequest{Options: on}, g.Lanes.Simulation},
+		{"CheckTransientStress", &pb.CheckTransientStressRequest{Options: on}, g.Lanes.Simulation},
+		{"SizeSupply", &pb.SizeSupplyRequest{}, g.Lanes.ClosedForm},
+		{"ListDataGaps", &pb.ListDataGapsRequest{}, g.Lanes.ClosedForm},
+		{"StudyAlternates", &pb.StudyAlternatesRequest{}, g.Lanes.Simulation},
+		{"StudyTolerances", nil, g.Lanes.Simulation},
+		{"ListRules", &pb.ListRulesRequest{}, nil},
+		{"GetRule", &pb.GetRuleRequest{}, nil},
+	} {
+		if got := g.lane("/floatrail.v1.FloatRail/"+c.method, c.req); got != c.want {
+			t.Errorf("%s %v: another lane", c.method, c.req)
+		}
 	}
 }
 

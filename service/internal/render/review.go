@@ -43,6 +43,7 @@ type Options struct {
 	Families       []string // that replace those of the files; none: they stay
 	All            bool     // also what passes and what does not apply
 	PerPoint       bool     // every operating point of a finding
+	Simulate       bool     // switching events, also where the files do not ask for it
 	Stdin          io.Reader
 	Stdout, Stderr io.Writer
 }
@@ -190,7 +191,7 @@ func (r *run) request(q *pb.ReviewStageRequest) *pb.ReviewStageRequest {
 	if r.policy != nil {
 		q.Policy = r.policy
 	}
-	if len(r.Families) > 0 || r.PerPoint {
+	if len(r.Families) > 0 || r.PerPoint || r.Simulate {
 		if q.Options == nil {
 			q.Options = new(pb.Options)
 		}
@@ -199,6 +200,9 @@ func (r *run) request(q *pb.ReviewStageRequest) *pb.ReviewStageRequest {
 		}
 		if r.PerPoint {
 			q.Options.PerPoint = &r.PerPoint
+		}
+		if r.Simulate {
+			q.Options.Simulate = &r.Simulate
 		}
 	}
 	return q

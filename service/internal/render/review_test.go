@@ -90,17 +90,17 @@ func TestExitStatus(t *testing.T) {
 func TestFlagsReplaceWhatFilesSay(t *testing.T) {
 	policy := files(t, `{"name":"house","guardRatio":"20 %"}`)[0]
 	names := files(t, `{"stage":{"id":"pass"},"policy":{"name":"own"},"options":{"families":["duty"]}}`, `{"id":"pass"}`)
-	_, _, errs, requests := review(t, Options{Files: names, Policy: policy, Families: []string{"charge", "gate"}, PerPoint: true})
+	_, _, errs, requests := review(t, Options{Files: names, Policy: policy, Families: []string{"charge", "gate"}, PerPoint: true, Simulate: true})
 	if errs != "" || len(requests) != 2 {
 		t.Fatal(errs, requests)
 	}
 	for _, q := range requests {
-		if q.GetPolicy().GetName() != "house" || strings.Join(q.GetOptions().GetFamilies(), " ") != "charge gate" || !q.GetOptions().GetPerPoint() {
+		if q.GetPolicy().GetName() != "house" || strings.Join(q.GetOptions().GetFamilies(), " ") != "charge gate" || !q.GetOptions().GetPerPoint() || !q.GetOptions().GetSimulate() {
 			t.Errorf("%v", q)
 		}
 	}
 	_, _, _, requests = review(t, Options{Files: names[:1]})
-	if q := requests[0]; q.GetPolicy().GetName() != "own" || q.GetOptions().GetFamilies()[0] != "duty" || q.GetOptions().GetPerPoint() {
+	if q := requests[0]; q.GetPolicy().GetName() != "own" || q.GetOptions().GetFamilies()[0] != "duty" || q.GetOptions().GetPerPoint() || q.GetOptions().GetSimulate() {
 		t.Errorf("%v", q)
 	}
 	exit, _, errs, _ := review(t, Options{Files: names, Policy: files(t, `{"gaurdRatio":"20 %"}`)[0]})

@@ -79,21 +79,21 @@ func summary(faults []convert.Fault) string {
 	return b.String()
 }
 
-// notOffered refuses options that this build does not carry out: an option that is silently ignored looks like one that found nothing.
-func notOffered(o *pb.Options) []convert.Fault {
+// notOffered refuses options that this build does not carry out, and with inert those that change nothing in what the method answers: an option
+// that is silently ignored looks like one that found nothing.
+func notOffered(o *pb.Options, inert bool) []convert.Fault {
 	var faults []convert.Fault
 	for _, option := range []struct {
-		name, what string
-		read       bool
+		name, why string
+		read      bool
 	}{
-		{"fixes", "search for fixes", o.GetFixes()},
-		{"simulate", "simulation of switching events", o.GetSimulate()},
-		{"waveforms", "waveforms", o.GetWaveforms()},
-		{"trace", "traces of V_BS", o.GetTrace()},
+		{"fixes", "this build offers no search for fixes", o.GetFixes()},
+		{"simulate", "this method judges no switching events, ReviewStage and CheckTransientStress do", inert && o.GetSimulate()},
+		{"waveforms", "this method judges no switching events, ReviewStage and CheckTransientStress do", inert && o.GetWaveforms()},
+		{"trace", "this build offers no traces of V_BS", o.GetTrace()},
 	} {
 		if option.read {
-			faults = append(faults, convert.Fault{Field: "options." + option.name,
-				Description: "read true; this build offers no " + option.what + ", expected false or absent"})
+			faults = append(faults, convert.Fault{Field: "options." + option.name, Description: "read true; " + option.why + ", expected false or absent"})
 		}
 	}
 	return faults

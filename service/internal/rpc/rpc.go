@@ -62,7 +62,7 @@ func New(o Options) *Handlers {
 func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb.SizeSupplyResponse, error) {
 	request, readings, faults := h.binder.SizeSupply(r)
 	own(&request, "charge", "capacitor", "diode", "resistor")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithSizing)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), true)...), calc.WithSizing)
 	if err != nil {
 		return nil, err
 	}
@@ -73,7 +73,7 @@ func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb
 func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsRequest) (*pb.CheckDutyLimitsResponse, error) {
 	request, readings, faults := h.binder.CheckDutyLimits(r)
 	own(&request, "charge", "supply", "duty")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), true)...), calc.WithDutyLimits)
 	if err != nil {
 		return nil, err
 	}
@@ -84,7 +84,7 @@ func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsReq
 func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransientStressRequest) (*pb.CheckTransientStressResponse, error) {
 	request, readings, faults := h.binder.CheckTransientStress(r)
 	own(&request, "gate", "node")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithTransient)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), false)...), calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}
@@ -94,7 +94,7 @@ func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransien
 // ReviewStage answers with every rule on one stage.
 func (h *Handlers) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.ReviewStageResponse, error) {
 	request, readings, faults := h.binder.ReviewStage(r)
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions())...), calc.WithDutyLimits|calc.WithTransient)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), false)...), calc.WithDutyLimits|calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}

@@ -13,6 +13,12 @@ import (
 // undeclared is the field label of a path that the contract does not have.
 const undeclared = "other"
 
+// Results of a switching event.
+const (
+	evaluated = "evaluated"
+	open      = "open"
+)
+
 // Observe counts what one review found.
 func (m *Metrics) Observe(r *finding.Report) {
 	m.verdicts.WithLabelValues(r.Verdict.String()).Inc()
@@ -26,6 +32,15 @@ func (m *Metrics) Observe(r *finding.Report) {
 	}
 	for _, field := range m.missingFields(r) {
 		m.missing.WithLabelValues(field).Inc()
+	}
+	if r.Transient != nil {
+		for i := range r.Transient.Events {
+			result := evaluated
+			if r.Transient.Events[i].Reason != "" || len(r.Transient.Events[i].Missing) > 0 {
+				result = open
+			}
+			m.events.WithLabelValues(r.Transient.Events[i].Method, result).Inc()
+		}
 	}
 	for range r.Internal {
 		m.Panic(InRule)

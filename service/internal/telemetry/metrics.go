@@ -10,6 +10,7 @@ import (
 	"google.golang.org/grpc/codes"
 
 	pb "floatrail/api/floatrail/v1"
+	"floatrail/calc/finding"
 )
 
 // Reasons for which work is rejected.
@@ -22,6 +23,12 @@ const (
 const (
 	InCall = "call" // a call was answered INTERNAL
 	InRule = "rule" // one rule was left open
+)
+
+// Lanes of work.
+const (
+	ClosedForm = "closed_form"
+	Simulation = "simulation"
 )
 
 // Build is what was built.
@@ -38,13 +45,14 @@ type Metrics struct {
 	duration   *prometheus.HistogramVec
 	inFlight   *prometheus.GaugeVec
 	responses  *prometheus.CounterVec
-	queue      prometheus.Gauge
-	running    prometheus.Gauge
+	queue      *prometheus.GaugeVec
+	running    *prometheus.GaugeVec
 	rejections *prometheus.CounterVec
 	findings   *prometheus.CounterVec
 	verdicts   *prometheus.CounterVec
 	missing    *prometheus.CounterVec
 	panics     *prometheus.CounterVec
+	events     *prometheus.CounterVec
 	fields     map[string]bool // of the contract, by which missing inputs are counted
 }
 
@@ -71,13 +79,14 @@ func New(registry prometheus.Registerer, build Build, rules []*pb.Rule) *Metrics
 		requests:   counter("requests_total", "Calls answered, by method, transport and status code.", "method", "transport", "code"),
 		inFlight:   gauge("requests_in_flight", "Calls being answered.", "method"),
 		responses:  counter("http_responses_total", "HTTP responses of the REST interface, by route and status.", "route", "status"),
-		queue:      gauge("queue_depth", "Calls waiting for a processor.").WithLabelValues(),
-		running:    gauge("lane_running", "Calls that occupy a processor.").WithLabelValues(),
+		queue:      gauge("queue_depth", "Calls waiting for a processor, by lane.", "lane"),
+		running:    gauge("lane_running", "Calls that occupy a processor, by lane.", "lane"),
 		rejections: counter("rejections_total", "Calls rejected before any work, by reason.", "reason"),
 		findings:   counter("findings_total", "Findings, by rule, outcome and severity (NONE: it has none).", "rule", "outcome", "severity"),
 		verdicts:   counter("verdicts_total", "Stages judged, by verdict.", "verdict"),
 		missing:    counter("missing_inputs_total", "Values that were not given and left a rule open, by field of the contract.", "field"),
 		panics:     counter("panics_total", "Panics caught, by place.", "place"),
+		events:     counter("switching_events_total", "Switching events in answers, by method and by whether they could be evaluated.", "method", "result"),
 		fields:     declaredFields(),
 	}
 	m.duration = prometheus.NewHistogramVec(prometheus.HistogramOpts{Namespace: "floatrail", Name: "request_duration_seconds",
@@ -100,6 +109,10 @@ func (m *Metrics) prepare(rules []*pb.Rule) {
 	}
 	for _, reason := range []string{QueueFull, TooLarge} {
 		m.rejections.WithLabelValues(reason)
+	}
+	for _, method := range []string{finding.Estimate, finding.Simulation} {
+		m.events.WithLabelValues(method, evaluated)
+		m.events.WithLabelValues(method, open)
 	}
 	for _, place := range []string{InCall, InRule} {
 		m.panics.WithLabelValues(place)
@@ -143,10 +156,13 @@ func (m *Metrics) Reject(reason string) { m.rejections.WithLabelValues(reason).I
 // Panic counts a panic that was caught.
 func (m *Metrics) Panic(place string) { m.panics.WithLabelValues(place).Inc() }
 
-// Queue notes how many calls wait and how many run.
-func (m *Metrics) Queue(waiting, running int) {
-	m.queue.Set(float64(waiting))
-	m.running.Set(float64(running))
+// Queue returns what notes how many calls of a lane wait and how many run.
+func (m *Metrics) Queue(lane string) func(waiting, running int) {
+	depth, places := m.queue.WithLabelValues(lane), m.running.WithLabelValues(lane)
+	return func(waiting, running int) {
+		depth.Set(float64(waiting))
+		places.Set(float64(running))
+	}
 }
 
 // Response counts an HTTP response.

@@ -38,7 +38,10 @@ func TestFieldLabelsAreBounded(t *testing.T) {
 
 func TestObserve(t *testing.T) {
 	m := New(prometheus.NewRegistry(), Build{}, nil)
-	m.Observe(&finding.Report{Verdict: finding.Failed, Internal: 2, Findings: []finding.Finding{
+	m.Observe(&finding.Report{Verdict: finding.Failed, Internal: 2, Transient: &finding.TransientStress{Events: []finding.TransientEvent{
+		{Method: finding.Simulation}, {Method: finding.Simulation, Reason: "it did not converge"}, {Method: finding.Estimate},
+		{Method: finding.Simulation, Missing: []string{"stage.layout.lowSideInductance"}}, {Method: finding.Simulation},
+	}}, Findings: []finding.Finding{
 		{Rule: "a/b", Outcome: finding.Fail, Severity: stage.Critical, Missing: []string{"stage.driver.uvloRising"}},
 		{Rule: "a/b", Outcome: finding.Pass},
 		{Rule: "c/d", Outcome: finding.Open, Severity: stage.Major, Missing: []string{"stage.driver.uvloRising", "stage.operatingPoints[1].deadTime", "stage.operatingPoints[0].deadTime"}},
@@ -54,6 +57,9 @@ func TestObserve(t *testing.T) {
 		{"open", m.findings.WithLabelValues("c/d", "OPEN", "MAJOR"), 1},
 		{"a field once a request", m.missing.WithLabelValues("driver.uvloRising"), 1},
 		{"a field of two points", m.missing.WithLabelValues("operatingPoints.deadTime"), 2},
+		{"events simulated", m.events.WithLabelValues("SIMULATION", "evaluated"), 2},
+		{"simulations that failed", m.events.WithLabelValues("SIMULATION", "open"), 2},
+		{"events estimated", m.events.WithLabelValues("ESTIMATE", "evaluated"), 1},
 		{"rules that panicked", m.panics.WithLabelValues(InRule), 2},
 	} {
 		if got := testutil.ToFloat64(c.got); got != c.want {
