@@ -143,7 +143,7 @@ func request(tree any) (*calc.Request, error) {
 
 // searched are the rules that search for a worst draw; the others judge what these found.
 func searched() []*rule.Rule {
-	return slices.DeleteFunc(catalog.All(), func(r *rule.Rule) bool { return r.Tally != nil })
+	return slices.DeleteFunc(catalog.All(), func(r *rule.Rule) bool { return r.Tally != nil || r.OnlySimulated })
 }
 
 // rolesOf are the roles in which a rule judges; one without a name where it has none.
