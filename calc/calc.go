@@ -90,6 +90,8 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 		return finding.Report{}, err
 	}
 	out.Assumptions = bench.Assumptions()
+	n := bench.Counts()
+	out.Simulations, out.SimulationSteps, out.SimulationFailures = int(n.Runs.Load()), int(n.Steps.Load()), int(n.Failures.Load())
 	finding.Conclude(&out, &policy, r.Waivers, r.AsOf)
 	return out, nil
 }

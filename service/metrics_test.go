@@ -23,6 +23,7 @@ func TestMetricsExistFromTheStart(t *testing.T) {
 		`floatrail_queue_depth{lane="closed_form"} 0`, `floatrail_queue_depth{lane="simulation"} 0`,
 		`floatrail_lane_running{lane="closed_form"} 0`, `floatrail_lane_running{lane="simulation"} 0`,
 		`floatrail_switching_events_total{method="SIMULATION",result="open"} 0`,
+		"floatrail_simulations_total 0", "floatrail_simulation_steps_total 0", "floatrail_simulation_failures_total 0",
 		`floatrail_rejections_total{reason="queue_full"} 0`, `floatrail_rejections_total{reason="too_large"} 0`,
 		`floatrail_findings_total{outcome="PASS",rule="charge/droop",severity="NONE"} 0`,
 		`floatrail_findings_total{outcome="FAIL",rule="diode/reverse-voltage",severity="CRITICAL"} 0`,

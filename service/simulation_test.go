@@ -141,6 +141,12 @@ func TestEventsAreEstimatedUnlessAsked(t *testing.T) {
 	if answer, err = r.client.CheckTransientStress(context.Background(), request); err != nil || len(answer.GetTransientStress().GetWaveforms()) > 0 {
 		t.Errorf("waveforms that were not asked for, or %v", err)
 	}
+	if n := r.metric("floatrail_simulations_total"); n < float64(len(answer.GetTransientStress().GetEvents())) {
+		t.Errorf("%v simulations are counted", n)
+	}
+	if n := r.metric("floatrail_simulation_steps_total"); n < 20*r.metric("floatrail_simulations_total") {
+		t.Errorf("%v steps of simulations are counted", n)
+	}
 	if n := r.metric("floatrail_switching_events_total", `method="SIMULATION"`); n != float64(len(answer.GetTransientStress().GetEvents())) {
 		t.Errorf("%v simulated events are counted", n)
 	}

@@ -1,7 +1,9 @@
 package circuit
 
 import (
+	"errors"
 	"math"
+	"sync/atomic"
 
 	"floatrail/calc/corner"
 	"floatrail/calc/quantity"
@@ -14,7 +16,25 @@ import (
 type Simulation struct {
 	simulator   transient.Simulator
 	Interrupted func() bool // tells that the caller no longer waits; may be nil
-	Runs, Steps int         // so far
+	Counts      *Counts     // may be nil
+}
+
+// Counts is what simulations took so far. For any number of goroutines.
+type Counts struct {
+	Runs, Steps, Failures atomic.Int64 // Failures did not converge
+}
+
+func (n *Counts) add(course *transient.Course, err error) {
+	if n == nil {
+		return
+	}
+	n.Runs.Add(1)
+	if course != nil {
+		n.Steps.Add(int64(course.Steps))
+	}
+	if errors.Is(err, transient.ErrUnsolved) {
+		n.Failures.Add(1)
+	}
 }
 
 // StateOfCharge is the V_BS with which an event begins.
@@ -148,12 +168,11 @@ func (c *Circuit) run(b *transient.Bridge, w transient.Window) *transient.Course
 	s := c.simulation()
 	w.Interrupted = s.Interrupted
 	course, err := s.simulator.Run(b, w)
-	s.Runs++
+	s.Counts.add(course, err)
 	if err != nil {
 		c.Open(phrases[Event(b.Event)] + ": " + err.Error())
 		return nil
 	}
-	s.Steps += course.Steps
 	switch e := Event(b.Event); {
 	case e.off() && !course.Settled && course.ChannelTime == 0:
 		c.Open(phrases[e] + ": the gate has not turned off within " + quantity.Format(w.Limit, quantity.Time))

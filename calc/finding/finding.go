@@ -172,6 +172,9 @@ type Report struct {
 	Transient     *TransientStress
 	// Internal counts rules that panicked and are open for that reason.
 	Internal int
+	// Simulations, SimulationSteps and SimulationFailures count the simulated events behind the report, the integrator's steps in them, and those that
+	// did not converge.
+	Simulations, SimulationSteps, SimulationFailures int
 }
 
 // BudgetItem is one charge of the budget.

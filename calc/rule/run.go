@@ -23,6 +23,7 @@ type Bench struct {
 	EveryPoint bool
 
 	simulated bool
+	counts    circuit.Counts
 	mu        sync.Mutex
 	assumed   []stage.Assumption
 }
@@ -308,8 +309,11 @@ func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
 
 // simulation is a model that simulates events.
 func (b *Bench) simulation() *circuit.Simulation {
-	return &circuit.Simulation{Interrupted: b.Interrupted}
+	return &circuit.Simulation{Interrupted: b.Interrupted, Counts: &b.counts}
 }
+
+// Counts is what the simulations took so far.
+func (b *Bench) Counts() *circuit.Counts { return &b.counts }
 
 // adopt brings what was simulated for single findings back to the spaces.
 func (b *Bench) adopt(jobs []*job) {

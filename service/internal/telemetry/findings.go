@@ -19,6 +19,13 @@ const (
 	open      = "open"
 )
 
+// What simulations take.
+const (
+	runs     = "simulations_total"
+	steps    = "simulation_steps_total"
+	failures = "simulation_failures_total"
+)
+
 // Observe counts what one review found.
 func (m *Metrics) Observe(r *finding.Report) {
 	m.verdicts.WithLabelValues(r.Verdict.String()).Inc()
@@ -42,6 +49,9 @@ func (m *Metrics) Observe(r *finding.Report) {
 			m.events.WithLabelValues(r.Transient.Events[i].Method, result).Inc()
 		}
 	}
+	m.simulated[runs].Add(float64(r.Simulations))
+	m.simulated[steps].Add(float64(r.SimulationSteps))
+	m.simulated[failures].Add(float64(r.SimulationFailures))
 	for range r.Internal {
 		m.Panic(InRule)
 	}

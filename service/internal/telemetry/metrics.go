@@ -53,6 +53,7 @@ type Metrics struct {
 	missing    *prometheus.CounterVec
 	panics     *prometheus.CounterVec
 	events     *prometheus.CounterVec
+	simulated  map[string]prometheus.Counter
 	fields     map[string]bool // of the contract, by which missing inputs are counted
 }
 
@@ -88,6 +89,13 @@ func New(registry prometheus.Registerer, build Build, rules []*pb.Rule) *Metrics
 		panics:     counter("panics_total", "Panics caught, by place.", "place"),
 		events:     counter("switching_events_total", "Switching events in answers, by method and by whether they could be evaluated.", "method", "result"),
 		fields:     declaredFields(),
+	}
+	m.simulated = map[string]prometheus.Counter{}
+	for name, help := range map[string]string{
+		runs: "Switching events simulated, those that only a search looked at included.", steps: "Steps of the integrator in simulated switching events.",
+		failures: "Simulated switching events that did not converge.",
+	} {
+		m.simulated[name] = counter(name, help).WithLabelValues()
 	}
 	m.duration = prometheus.NewHistogramVec(prometheus.HistogramOpts{Namespace: "floatrail", Name: "request_duration_seconds",
 		Help:    "Time from the arrival of a call to its answer, waiting included.",
