@@ -17,8 +17,8 @@ func (c *Circuit) least(e Event, s transient.Signal) float64 {
 }
 
 // most is the highest a signal goes in an event [V].
-func (c *Circuit) most(e Event, q StateOfCharge, s transient.Signal) float64 {
-	if k := c.Course(e, q); k != nil {
+func (c *Circuit) most(e Event, s transient.Signal) float64 {
+	if k := c.Course(e, Running); k != nil {
 		return k.Ranges[s].Max
 	}
 	return nan

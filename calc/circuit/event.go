@@ -335,7 +335,7 @@ func (c *Circuit) NodePeak(e Event) float64 {
 	case e.Falls(), c.absent(e):
 		return bus + i*0
 	case c.Simulates(e):
-		return math.Max(bus, c.most(e, Running, transient.Node))
+		return math.Max(bus, c.most(e, transient.Node))
 	case e == SinkingTurnOff:
 		return bus + c.commutated(e, c.BusInductance())
 	}
@@ -350,9 +350,9 @@ func (c *Circuit) SwitchPeak(e Event, s *stage.Switch) float64 {
 	case c.absent(e):
 		return bus + i
 	case c.Simulates(e) && s == &c.Stage.HighSide:
-		return c.most(e, Running, transient.HighDrain)
+		return c.most(e, transient.HighDrain)
 	case c.Simulates(e):
-		return c.most(e, Running, transient.LowDrain)
+		return c.most(e, transient.LowDrain)
 	case e.off() && s == c.active(e):
 		return bus + c.commutated(e, c.LoopInductance())
 	case !e.off() && s == c.passive(e):
@@ -369,7 +369,7 @@ func (c *Circuit) Induced(e Event) float64 {
 	}
 	s := c.passive(e)
 	if c.Simulates(e) {
-		return c.most(e, Running, c.gateSignal(s)) + 0*c.commonSource(s)
+		return c.most(e, c.gateSignal(s)) + 0*c.commonSource(s)
 	}
 	w, rg, swing := c.gateOf(s), c.gateResistance(s, false, false), c.Swing(e)
 	v := transient.Lift(&w, rg, *swing)

@@ -12,7 +12,7 @@ import (
 	"floatrail/calc/transient"
 )
 
-// Simulation, kept with a space, makes its circuits simulate switching events. Not for two goroutines at once.
+// Simulation makes the circuits of a space, with which it is kept, simulate switching events. Not for two goroutines at once.
 type Simulation struct {
 	simulator   transient.Simulator
 	Interrupted func() bool // tells that the caller no longer waits; may be nil

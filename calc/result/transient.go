@@ -80,43 +80,13 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) (out finding.Transient
 	if circuit.Of(p.Spaces[0].Typical()).Simulates(e) {
 		out.Method = finding.Simulation
 	}
-	turnsOn := e == circuit.TurnOn || e == circuit.SinkingTurnOn
-	switched := b.Stage.LowSide.Kind != stage.DiodeOnly
-	sourcing := e == circuit.TurnOff || e == circuit.TurnOn
-	const low, high, neither = -1, 1, 0 // the end that matters
 	var deepest corner.Worst
-	numbers := []struct {
-		name string // in the contract, of those that are compared with their estimates
-		to   *finding.Span
-		dim  quantity.Dimension
-		show bool
-		end  int
-		of   rule.Number
-	}{
-		{"nodeMin", &out.NodeMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.Dip(e) }},
-		{"pinMin", &out.PinMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.PinDip(e) }},
-		{"railToComMin", &out.RailToCOMMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 {
-			return c.RailLow(e)
-		}},
-		{"nodeMax", &out.NodeMax, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.NodePeak(e) }},
-		{"", &out.RailMax, quantity.Voltage, !e.Falls(), neither, func(c *circuit.Circuit) float64 { return c.NodePeak(e) + c.Highest() }},
-		{"highSidePeak", &out.HighSidePeak, quantity.Voltage, e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &b.Stage.HighSide) }},
-		{"lowSidePeak", &out.LowSidePeak, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &b.Stage.LowSide) }},
-		{"slewPeak", &out.SlewPeak, quantity.VoltageSlew, true, high, func(c *circuit.Circuit) float64 { return c.Slew(e) }},
-		{"", &out.Slew10To90, quantity.VoltageSlew, true, neither, func(c *circuit.Circuit) float64 { return c.MeanSlew(e) }},
-		{"millerLow", &out.MillerLow, quantity.Voltage, turnsOn && sourcing && switched, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
-		{"millerHigh", &out.MillerHigh, quantity.Voltage, turnsOn && !sourcing, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
-		{"gateMin", &out.GateMin, quantity.Voltage, !sourcing || switched, low, func(c *circuit.Circuit) float64 { return c.Pulled(e) }},
-		{"", &out.CurrentSlope, quantity.CurrentSlew, true, neither, func(c *circuit.Circuit) float64 { return c.Steepness(e) }},
-		{"", &out.RingFrequency, quantity.Frequency, true, neither, func(c *circuit.Circuit) float64 { f, _ := c.Ringing(e); return f }},
-		{"", &out.RingDamping, quantity.Ratio, true, neither, func(c *circuit.Circuit) float64 { _, z := c.Ringing(e); return z }},
-	}
 	var draws []*corner.Draw // the worst of the numbers with an end that matters; those without one reach as far there as they do anywhere
 	for _, last := range []bool{false, true} {
-		for _, n := range numbers {
+		for _, n := range numbersOf(b.Stage, e, &out) {
 			switch {
 			case last != (n.end == neither):
-			case n.to == &out.PinMin && n.show && b.Stage.Layout.NodeClamp.Presence() == stage.NotFitted: // nothing between the node and the pin
+			case n.to == &out.PinMin && n.show && out.Method == finding.Estimate && b.Stage.Layout.NodeClamp.Presence() == stage.NotFitted: // the same by the closed forms
 				out.PinMin = out.NodeMin
 			case !n.show:
 				*n.to = finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: n.dim}
@@ -174,6 +144,43 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) (out finding.Transient
 		})
 	}
 	return out, farthest
+}
+
+// Ends of a number, of which one matters or none.
+const low, high, neither = -1, 1, 0
+
+// number is one of an event's.
+type number struct {
+	name string // in the contract, of those that are compared with their estimates
+	to   *finding.Span
+	dim  quantity.Dimension
+	show bool
+	end  int
+	of   rule.Number
+}
+
+// numbersOf are the numbers of an event with their places in it.
+func numbersOf(s *stage.Stage, e circuit.Event, out *finding.TransientEvent) []number {
+	turnsOn := e == circuit.TurnOn || e == circuit.SinkingTurnOn
+	switched := s.LowSide.Kind != stage.DiodeOnly
+	sourcing := e == circuit.TurnOff || e == circuit.TurnOn
+	return []number{
+		{"nodeMin", &out.NodeMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.Dip(e) }},
+		{"pinMin", &out.PinMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.PinDip(e) }},
+		{"railToComMin", &out.RailToCOMMin, quantity.Voltage, e.Falls(), low, func(c *circuit.Circuit) float64 { return c.RailLow(e) }},
+		{"nodeMax", &out.NodeMax, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.NodePeak(e) }},
+		{"", &out.RailMax, quantity.Voltage, !e.Falls(), neither, func(c *circuit.Circuit) float64 { return c.NodePeak(e) + c.Highest() }},
+		{"highSidePeak", &out.HighSidePeak, quantity.Voltage, e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &s.HighSide) }},
+		{"lowSidePeak", &out.LowSidePeak, quantity.Voltage, !e.Falls(), high, func(c *circuit.Circuit) float64 { return c.SwitchPeak(e, &s.LowSide) }},
+		{"slewPeak", &out.SlewPeak, quantity.VoltageSlew, true, high, func(c *circuit.Circuit) float64 { return c.Slew(e) }},
+		{"", &out.Slew10To90, quantity.VoltageSlew, true, neither, func(c *circuit.Circuit) float64 { return c.MeanSlew(e) }},
+		{"millerLow", &out.MillerLow, quantity.Voltage, turnsOn && sourcing && switched, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
+		{"millerHigh", &out.MillerHigh, quantity.Voltage, turnsOn && !sourcing, high, func(c *circuit.Circuit) float64 { return c.Induced(e) }},
+		{"gateMin", &out.GateMin, quantity.Voltage, !sourcing || switched, low, func(c *circuit.Circuit) float64 { return c.Pulled(e) }},
+		{"", &out.CurrentSlope, quantity.CurrentSlew, true, neither, func(c *circuit.Circuit) float64 { return c.Steepness(e) }},
+		{"", &out.RingFrequency, quantity.Frequency, true, neither, func(c *circuit.Circuit) float64 { f, _ := c.Ringing(e); return f }},
+		{"", &out.RingDamping, quantity.Ratio, true, neither, func(c *circuit.Circuit) float64 { _, z := c.Ringing(e); return z }},
+	}
 }
 
 // compare puts a simulated number beside what closed forms estimate at the same draw.

@@ -37,55 +37,6 @@ type Point struct {
 	Simulated []*corner.Space // of the same sets; none where nothing is simulated
 }
 
-// Lanes of work on one point.
-const (
-	laneMain = iota
-	laneEvents
-	laneSimulated
-	lanes
-)
-
-// lane is that in which a rule of a role is searched.
-func (b *Bench) lane(r *Rule, role string) int {
-	switch {
-	case b.simulated && r.Simulated != nil && r.Simulated(role):
-		return laneSimulated
-	case r.Events:
-		return laneEvents
-	}
-	return laneMain
-}
-
-// spaces are those that a rule of a role is searched in.
-func (b *Bench) spaces(p *Point, r *Rule, role string) []*corner.Space {
-	return [lanes][]*corner.Space{p.Spaces, p.Events, p.Simulated}[b.lane(r, role)]
-}
-
-// Simulate makes the rules and results that know how judge simulated events. It is called before anything runs.
-func (b *Bench) Simulate() {
-	b.simulated = true
-	for i := range b.Points {
-		p := &b.Points[i]
-		for _, s := range p.Spaces {
-			n := corner.NewSpace(b.Stage, b.Policy, p.Operating, s.Set)
-			n.Frugal, n.Model = true, b.simulation()
-			p.Simulated = append(p.Simulated, n)
-		}
-	}
-}
-
-// Twins are twins of the simulated spaces of a point.
-func (b *Bench) Twins(p *Point) *Point {
-	out := Point{Operating: p.Operating}
-	for _, s := range p.Simulated {
-		out.Spaces = append(out.Spaces, s.Twin(b.simulation()))
-	}
-	return &out
-}
-
-// Simulates tells whether events are simulated.
-func (b *Bench) Simulates() bool { return b.simulated }
-
 // Name of the operating point.
 func (p *Point) Name() string {
 	if p.Operating == nil {
@@ -238,46 +189,6 @@ func (b *Bench) settle(j *job) {
 	}
 }
 
-// surveyParts is the number of parts in which the draws of one event are surveyed.
-const surveyParts = 3
-
-// survey simulates the events of all operating points where their searches will look first. As any of these draws may be taken by any processor, none
-// of them waits for a point that takes long.
-func (b *Bench) survey() {
-	if !b.simulated {
-		return
-	}
-	type task struct {
-		home, twin *corner.Space
-		event      circuit.Event
-		part       int
-	}
-	var tasks []task
-	for i := range b.Points {
-		home := corner.Home(b.Points[i].Simulated)
-		for _, e := range circuit.Events() {
-			if !circuit.Occurs(b.Stage, b.Points[i].Operating, e) {
-				continue
-			}
-			for part := range surveyParts {
-				tasks = append(tasks, task{home, home.Twin(b.simulation()), e, part})
-			}
-		}
-	}
-	SideBySide(len(tasks), func(i int) {
-		t := &tasks[i]
-		if b.Stopped() {
-			return
-		}
-		b.guarded(&job{}, func() {
-			t.twin.Survey(func(d *corner.Draw) float64 { return circuit.Of(d).Survey(t.event) }, t.part, surveyParts)
-		})
-	})
-	for i := range tasks {
-		tasks[i].home.Adopt(tasks[i].twin)
-	}
-}
-
 // eachPoint calls f for every job and point of its group, side by side for different points, and for rules about events and others.
 func (b *Bench) eachPoint(jobs []*job, f func(j *job, k int)) {
 	SideBySide(lanes*len(b.Points), func(i int) { // what simulates takes most and comes first
@@ -305,23 +216,6 @@ func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
 		w.add(res.worst.Space, j, func() { f(j) })
 	}
 	b.do(&w)
-}
-
-// simulation is a model that simulates events.
-func (b *Bench) simulation() *circuit.Simulation {
-	return &circuit.Simulation{Interrupted: b.Interrupted, Counts: &b.counts}
-}
-
-// Counts is what the simulations took so far.
-func (b *Bench) Counts() *circuit.Counts { return &b.counts }
-
-// adopt brings what was simulated for single findings back to the spaces.
-func (b *Bench) adopt(jobs []*job) {
-	for _, j := range jobs {
-		if j.twin != nil {
-			j.home.Adopt(j.twin)
-		}
-	}
 }
 
 // eachFound calls f for everything found, side by side where it lies in different spaces.

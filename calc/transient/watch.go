@@ -99,7 +99,7 @@ func (w *watch) update(at *span) {
 	w.slopes(at)
 	w.slews(at)
 	w.threshold(at)
-	w.lift(at)
+	w.lift()
 	w.channels(at)
 	if w.circuit.driven {
 		p := w.circuit.ig1.of(&at.state)
@@ -223,7 +223,7 @@ func (w *watch) threshold(at *span) {
 
 // lift takes how high the return of the gate current through R_VS holds the gate of a high side that turns off, once the node has gone over: the drive
 // V_off + v_pin - v_node where the gate lies above it and falls, and the gate where that rises toward it.
-func (w *watch) lift(at *span) {
+func (w *watch) lift() {
 	const places = 4 // of a span
 	if w.bridge.Event != TurnOff || !w.slew.done {
 		return
