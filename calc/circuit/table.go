@@ -98,6 +98,17 @@ func (c *Circuit) Spare(e Event, row int) float64 {
 	return -level * (allowed - longest) / allowed
 }
 
+// TotalBelow is the time that a simulated event spends below the level of a row of the driver's table in all its dips together [s], and their number.
+func (c *Circuit) TotalBelow(e Event, row int) (total float64, dips int) {
+	c.Need(&c.Stage.Driver.NodeUndershoot.Items[row].Voltage)
+	k := c.Course(e, Running)
+	if k == nil {
+		return nan, 0
+	}
+	d := &k.BelowPin[2*row]
+	return d.Total, d.Count
+}
+
 // DeepestRow is the lowest level of the driver's table [V].
 func (c *Circuit) DeepestRow() float64 {
 	v := 0.0

@@ -332,5 +332,7 @@ type TransientEvent struct {
 // Undershoot is the time below one level.
 type Undershoot struct {
 	Level    Measure
-	Duration Span
+	Duration Span // longest time without a break
+	Total    Span // of all dips of the event together; unset where it is not simulated
+	Dips     int  // most of them in one event; 0: none, or not simulated
 }

@@ -139,9 +139,19 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) (out finding.Transient
 		if deepest.Space != nil { // a level that only the deepest dips pass is a step that a search from the typical draw does not see
 			widen(&span, deepest.Draw, below)
 		}
-		out.Undershoots = append(out.Undershoots, finding.Undershoot{
-			Level: finding.Measure{Value: level, Dimension: quantity.Voltage}, Duration: span,
-		})
+		one := finding.Undershoot{Level: finding.Measure{Value: level, Dimension: quantity.Voltage}, Duration: span,
+			Total: finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: quantity.Time}}
+		if out.Method == finding.Simulation {
+			total := func(c *circuit.Circuit) float64 {
+				t, n := c.TotalBelow(e, i)
+				one.Dips = max(one.Dips, n)
+				return t
+			}
+			if one.Total = b.Range(p, total, quantity.Time).Span; deepest.Space != nil {
+				widen(&one.Total, deepest.Draw, total)
+			}
+		}
+		out.Undershoots = append(out.Undershoots, one)
 	}
 	return out, farthest
 }

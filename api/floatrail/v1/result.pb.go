@@ -1441,8 +1441,12 @@ type UndershootDuration struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// Level.
 	Level *Measure `protobuf:"bytes,1,opt,name=level,proto3" json:"level,omitempty"`
-	// Time below it.
-	Duration      *Span `protobuf:"bytes,2,opt,name=duration,proto3" json:"duration,omitempty"`
+	// Longest time below it without a break.
+	Duration *Span `protobuf:"bytes,2,opt,name=duration,proto3" json:"duration,omitempty"`
+	// Time below it in all dips of the event together; of simulated events.
+	Total *Span `protobuf:"bytes,3,opt,name=total,proto3" json:"total,omitempty"`
+	// Most dips below it in one event; of simulated events.
+	Dips          *int32 `protobuf:"varint,4,opt,name=dips,proto3,oneof" json:"dips,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -1489,6 +1493,20 @@ func (x *UndershootDuration) GetDuration() *Span {
 		return x.Duration
 	}
 	return nil
+}
+
+func (x *UndershootDuration) GetTotal() *Span {
+	if x != nil {
+		return x.Total
+	}
+	return nil
+}
+
+func (x *UndershootDuration) GetDips() int32 {
+	if x != nil && x.Dips != nil {
+		return *x.Dips
+	}
+	return 0
 }
 
 // A signal of a simulated event at the worst draw of the node.
@@ -1792,10 +1810,13 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"difference\x18\x04 \x01(\x01H\x01R\n" +
 	"difference\x88\x01\x01B\a\n" +
 	"\x05_nameB\r\n" +
-	"\v_difference\"q\n" +
+	"\v_difference\"\xbd\x01\n" +
 	"\x12UndershootDuration\x12+\n" +
 	"\x05level\x18\x01 \x01(\v2\x15.floatrail.v1.MeasureR\x05level\x12.\n" +
-	"\bduration\x18\x02 \x01(\v2\x12.floatrail.v1.SpanR\bduration\"x\n" +
+	"\bduration\x18\x02 \x01(\v2\x12.floatrail.v1.SpanR\bduration\x12(\n" +
+	"\x05total\x18\x03 \x01(\v2\x12.floatrail.v1.SpanR\x05total\x12\x17\n" +
+	"\x04dips\x18\x04 \x01(\x05H\x00R\x04dips\x88\x01\x01B\a\n" +
+	"\x05_dips\"x\n" +
 	"\bWaveform\x12\x17\n" +
 	"\x04name\x18\x01 \x01(\tH\x00R\x04name\x88\x01\x01\x12\x17\n" +
 	"\x04unit\x18\x02 \x01(\tH\x01R\x04unit\x88\x01\x01\x12\x12\n" +
@@ -1916,11 +1937,12 @@ var file_floatrail_v1_result_proto_depIdxs = []int32{
 	20, // 70: floatrail.v1.Comparison.estimated:type_name -> floatrail.v1.Measure
 	20, // 71: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
 	19, // 72: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
-	73, // [73:73] is the sub-list for method output_type
-	73, // [73:73] is the sub-list for method input_type
-	73, // [73:73] is the sub-list for extension type_name
-	73, // [73:73] is the sub-list for extension extendee
-	0,  // [0:73] is the sub-list for field type_name
+	19, // 73: floatrail.v1.UndershootDuration.total:type_name -> floatrail.v1.Span
+	74, // [74:74] is the sub-list for method output_type
+	74, // [74:74] is the sub-list for method input_type
+	74, // [74:74] is the sub-list for extension type_name
+	74, // [74:74] is the sub-list for extension extendee
+	0,  // [0:74] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_result_proto_init() }
@@ -1938,6 +1960,7 @@ func file_floatrail_v1_result_proto_init() {
 	file_floatrail_v1_result_proto_msgTypes[9].OneofWrappers = []any{}
 	file_floatrail_v1_result_proto_msgTypes[11].OneofWrappers = []any{}
 	file_floatrail_v1_result_proto_msgTypes[12].OneofWrappers = []any{}
+	file_floatrail_v1_result_proto_msgTypes[13].OneofWrappers = []any{}
 	file_floatrail_v1_result_proto_msgTypes[14].OneofWrappers = []any{}
 	type x struct{}
 	out := protoimpl.TypeBuilder{

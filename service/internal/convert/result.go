@@ -83,7 +83,11 @@ func wireEvent(e *finding.TransientEvent) *pb.TransientEvent {
 		PinMin:         wireSpan(&e.PinMin),
 		RailToComMin:   wireSpan(&e.RailToCOMMin),
 		Undershoots: each(e.Undershoots, func(u *finding.Undershoot) *pb.UndershootDuration {
-			return &pb.UndershootDuration{Level: wireMeasure(&u.Level), Duration: wireSpan(&u.Duration)}
+			one := &pb.UndershootDuration{Level: wireMeasure(&u.Level), Duration: wireSpan(&u.Duration), Total: wireSpan(&u.Total)}
+			if u.Dips > 0 {
+				one.Dips = count(u.Dips)
+			}
+			return one
 		}),
 		FloatingVoltageGain: wireSpan(&e.FloatingVoltageGain),
 		NodeMax:             wireSpan(&e.NodeMax),

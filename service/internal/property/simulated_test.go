@@ -1,13 +1,22 @@
 package property
 
 import (
+	"context"
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"runtime"
+	"slices"
+	"strings"
 	"testing"
 
+	"github.com/google/go-cmp/cmp"
+	"github.com/google/go-cmp/cmp/cmpopts"
+
+	"floatrail/calc"
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
+	"floatrail/calc/finding"
 	"floatrail/calc/quantity"
 )
 
@@ -77,5 +86,89 @@ func TestSimulatedWorstIsFound(t *testing.T) {
 				}
 			})
 		}
+	}
+}
+
+// simulated is a review of a tree with its switching events simulated.
+func simulated(t testing.TB, tree any) finding.Report {
+	t.Helper()
+	r := bind(t, tree)
+	r.Options.Simulate = true
+	report, err := calc.Review(context.Background(), *r, calc.WithTransient)
+	if err != nil {
+		t.Fatal(err)
+	}
+	report.Simulations, report.SimulationSteps = 0, 0 // depend on what was shared, not the answer
+	return report
+}
+
+// TestSimulatedAnswersNeverVary reviews a stage with one processor and with all, and again.
+func TestSimulatedAnswersNeverVary(t *testing.T) {
+	tree := with(document(t, "buck48"), slow...)
+	first := simulated(t, tree)
+	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(1))
+	for _, n := range []int{1, 4} {
+		runtime.GOMAXPROCS(n)
+		if d := cmp.Diff(first, simulated(t, tree), cmpopts.EquateNaNs()); d != "" {
+			t.Errorf("with %d processors the answer is another: %s", n, d)
+		}
+	}
+}
+
+// TestMeasuredSlopesAloneDecide takes what a simulation needs from a stage: slopes measured on the board then decide in closed form, and without
+// them the events are open and name what to supply.
+func TestMeasuredSlopesAloneDecide(t *testing.T) {
+	const lacking = "stage.highSide.transconductance"
+	tree := without(document(t, "buck48"), at("stage.highSide.transconductance"))
+	report := simulated(t, tree)
+	estimated := review(t, tree, calc.WithTransient)
+	for _, e := range report.Transient.Events {
+		if e.Method != finding.Estimate && (e.Event == "TURN_OFF" || e.Event == "TURN_ON") {
+			t.Errorf("%s at %s is a %s", e.Event, e.OperatingPoint, e.Method)
+		}
+	}
+	for _, id := range []string{"node/undershoot-pulse", "node/rail-below-com", "node/rail-overshoot"} {
+		f, g := pick(t, &report, id, "driver"), pick(t, &estimated, id, "driver")
+		if f.Outcome != g.Outcome || math.Abs(f.Value.Value-g.Value.Value) > 1e-3*math.Abs(g.Value.Value) {
+			t.Errorf("%s: %s at %g with the simulation asked for, %s at %g without", id, f.Outcome, f.Value.Value, g.Outcome, g.Value.Value)
+		}
+	}
+	for _, role := range []string{"current slope", "voltage slope"} {
+		if f := pick(t, &report, "node/measured-slope", role); f.Outcome != finding.Open || !slices.Contains(f.Missing, lacking) {
+			t.Errorf("%s: %s, missing %v", role, f.Outcome, f.Missing)
+		}
+	}
+	report = simulated(t, without(tree, at("stage.layout.measured")))
+	for _, id := range []string{"node/undershoot-pulse", "node/slew", "node/rail-overshoot"} {
+		if f := pick(t, &report, id, "driver"); f.Outcome != finding.Open || !slices.Contains(f.Missing, lacking) || !strings.Contains(f.Message, "highSide.transconductance") {
+			t.Errorf("%s: %s, missing %v: %s", id, f.Outcome, f.Missing, f.Message)
+		}
+	}
+	for _, e := range report.Transient.Events {
+		if e.Event == "TURN_OFF" && !slices.Contains(e.Missing, lacking) {
+			t.Errorf("%s at %s: missing %v", e.Event, e.OperatingPoint, e.Missing)
+		}
+	}
+}
+
+// TestDipsAreCounted holds the times below the levels of the driver's table together: each dip is no longer than all of them, and the deeper level is
+// the one passed for less time.
+func TestDipsAreCounted(t *testing.T) {
+	report := simulated(t, with(document(t, "buck48"), to("stage.driver.nodeUndershoot.0.voltage", `"-2 V"`)))
+	dips := 0
+	for _, e := range report.Transient.Events {
+		for i, u := range e.Undershoots {
+			if u.Duration.Max > u.Total.Max*(1+1e-9) || u.Dips == 0 && u.Total.Max > 0 || u.Dips == 1 && u.Duration.Max < u.Total.Max*(1-1e-9) {
+				t.Errorf("%s at %s below %g V: %g s at most, %g s in %d dips", e.Event, e.OperatingPoint, u.Level.Value, u.Duration.Max, u.Total.Max, u.Dips)
+			}
+			if i > 0 && (u.Total.Max > e.Undershoots[i-1].Total.Max || u.Level.Value > e.Undershoots[i-1].Level.Value) {
+				t.Errorf("%s at %s: %g s below %g V, %g s below %g V", e.Event, e.OperatingPoint, u.Total.Max, u.Level.Value,
+					e.Undershoots[i-1].Total.Max, e.Undershoots[i-1].Level.Value)
+			}
+			dips = max(dips, u.Dips)
+		}
+	}
+	if dips < 2 {
+		t.Errorf("%d dips at most: nothing rings", dips)
 	}
 }
