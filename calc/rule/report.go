@@ -140,7 +140,7 @@ func (b *Bench) notes(r *Rule, role string, res *result) []string {
 			c := circuit.Of(d)
 			estimate := c.Estimated(func(c *circuit.Circuit) float64 { return r.Check(c, role).Value })
 			if v := res.check.Value; estimate == estimate && !math.IsInf(estimate, 0) && significant(estimate) != significant(v) {
-				out = append(out, fmt.Sprintf("simulated; closed forms estimate %s here, %s", quantity.Format(estimate, r.Dimension), apart(estimate, v)))
+				out = append(out, fmt.Sprintf("simulated; closed forms give %s here, %s", quantity.Format(estimate, r.Dimension), apart(estimate, v)))
 			}
 			return 0
 		})

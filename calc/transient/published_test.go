@@ -40,3 +40,33 @@ func TestPublishedSlope(t *testing.T) {
 	total = TurnOffSwing(400, 10, s, level(0), Gate{Resistance: 1, On: 15}).Peak() / 1e9
 	near(t, "turn-off, external", total-15/0.650, 8.50, 0.005)
 }
+
+// The same examples simulated, as bounds: a channel with a transconductance and a C_oss moves the node more slowly than the gate's charge alone would
+// let it, and no faster; with a steep channel and little C_oss nearly as fast.
+func TestPublishedEdgesSimulated(t *testing.T) {
+	bridge := func(event Event, gateDrain, resistance, threshold float64) *Bridge {
+		b := simple(event)
+		b.Bus, b.Load, b.Supply, b.LowDrive, b.Floating = 400, 1, 15, 15, 15
+		b.L1, b.L2, b.RingingResistance = 0.5e-9, 0.5e-9, 5
+		b.High.Transfer, b.High.Output, b.Low.Output = level(gateDrain), level(gateDrain+1e-12), level(2e-12)
+		b.High.GateResistance, b.High.Threshold, b.High.Transconductance, b.High.GateSource = resistance, threshold, 100, 1e-9
+		return b
+	}
+	for _, c := range []struct {
+		name                             string
+		event                            Event
+		gateDrain, resistance, threshold float64
+		slope                            float64 // published [V/s]
+	}{
+		{"G01, 36 nC in its share of 500 ns", TurnOn, 36e-9 / 400, 101.01, 5, 400 / (500e-9 * 36 / (36 + 13.5))},
+		{"G02, 1 V/ns through 105 ohm", TurnOn, 95e-12, 105.26, 5, 1e9},
+		{"G03, 1 V/ns at turn-off, 8.5 ohm and a driver of 650 mA", TurnOff, 95e-12, 8.50 + 15/0.650, 3, 1e9},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			got := course(t, bridge(c.event, c.gateDrain, c.resistance, c.threshold), Window{Limit: 5e-6}).Slew
+			if !(got < 1.005*c.slope && got > 0.95*c.slope) {
+				t.Errorf("%.4g V/s, want at most %.4g V/s and not much less", got, c.slope)
+			}
+		})
+	}
+}
