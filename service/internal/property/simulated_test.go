@@ -18,6 +18,7 @@ import (
 	"floatrail/calc/corner"
 	"floatrail/calc/finding"
 	"floatrail/calc/quantity"
+	"floatrail/calc/transient"
 )
 
 // tries is the number of random corners that are simulated at every temperature set.
@@ -170,5 +171,45 @@ func TestDipsAreCounted(t *testing.T) {
 	}
 	if dips < 2 {
 		t.Errorf("%d dips at most: nothing rings", dips)
+	}
+}
+
+// TestNormalOperationIsDeepest holds what the search relies on: of both states of charge the one of normal operation takes the pin deepest.
+func TestNormalOperationIsDeepest(t *testing.T) {
+	for _, s := range []struct {
+		name string
+		tree any
+	}{
+		{"buck48", document(t, "buck48")}, {"buck48, slow", with(document(t, "buck48"), slow...)}, {"gan650", document(t, "gan650")},
+		{"buck48, slow, with R_VS", with(document(t, "buck48"), append(slow, to("stage.layout.nodeResistor.resistance.typ", `"2.2 ohm ±1 %"`))...)},
+		{"drive400", document(t, "drive400")},
+	} {
+		bench := judge(t, bind(t, s.tree), nil).bench
+		bench.Simulate()
+		compared := 0
+		for i := range bench.Points {
+			p := &bench.Points[i]
+			for _, space := range p.Simulated {
+				corner.Evaluate(space.Typical(), func(d *corner.Draw) float64 {
+					c := circuit.Of(d)
+					if !circuit.Occurs(bench.Stage, p.Operating, circuit.TurnOff) || c.Current(circuit.TurnOff) == 0 {
+						return 0
+					}
+					running, lockout := c.Course(circuit.TurnOff, circuit.Running), c.Course(circuit.TurnOff, circuit.AtLockout)
+					if running == nil || lockout == nil {
+						t.Errorf("%s, %s: not simulated", s.name, p.Name())
+						return 0
+					}
+					compared++
+					if a, b := running.Ranges[transient.Pin].Min, lockout.Ranges[transient.Pin].Min; a > b+0.01 {
+						t.Errorf("%s, %s, %s: the pin goes to %g V, from V_UV- to %g V", s.name, p.Name(), space.Set.Name, a, b)
+					}
+					return 0
+				})
+			}
+		}
+		if compared == 0 {
+			t.Errorf("%s: no turn-off", s.name)
+		}
 	}
 }
