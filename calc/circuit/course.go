@@ -34,7 +34,7 @@ func (c *Circuit) gateSignal(s *stage.Switch) transient.Signal {
 
 // MeanSlew is the slew of the node between 10 and 90 % of V_BUS in an event [V/s].
 func (c *Circuit) MeanSlew(e Event) float64 {
-	if !c.Simulates(e) {
+	if !c.acts(e) {
 		return c.Swing(e).Mean()
 	}
 	if k := c.Course(e, Running); k != nil {
@@ -46,7 +46,7 @@ func (c *Circuit) MeanSlew(e Event) float64 {
 // Steepness is the slope of the commutating current in an event [A/s]: of the branch that takes over as a switch turns off, at its steepest; from 10 to
 // 90 % of the current in the channel of one that turns on.
 func (c *Circuit) Steepness(e Event) float64 {
-	if !c.Simulates(e) {
+	if !c.acts(e) {
 		return c.CurrentSlope(e)
 	}
 	k := c.Course(e, Running)
@@ -63,7 +63,7 @@ func (c *Circuit) Steepness(e Event) float64 {
 
 // Ringing is the frequency [Hz] and the damping of the loop after an event; of the loop itself where a simulation shows no ringing.
 func (c *Circuit) Ringing(e Event) (frequency, damping float64) {
-	if c.Simulates(e) {
+	if c.acts(e) {
 		switch k := c.Course(e, Running); {
 		case k == nil:
 			return nan, nan

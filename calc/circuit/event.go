@@ -316,7 +316,7 @@ func (c *Circuit) Dip(e Event) float64 {
 
 // PinDip is Dip at the driver's V_S pin [V].
 func (c *Circuit) PinDip(e Event) float64 {
-	if c.Simulates(e) {
+	if e.Falls() && c.acts(e) {
 		return c.least(e, transient.Pin)
 	}
 	dip := c.Dip(e)

@@ -73,6 +73,9 @@ func (c *Circuit) Simulates(e Event) bool {
 	return !c.measured(e) || len(lacking(c.Stage)) == 0
 }
 
+// acts tells whether an event happens at this draw and is simulated.
+func (c *Circuit) acts(e Event) bool { return !c.absent(e) && c.Simulates(e) }
+
 // measured tells whether the slopes of an event are measured ones.
 func (c *Circuit) measured(e Event) bool {
 	m := &c.Stage.Layout.Measured
@@ -148,13 +151,17 @@ func (c *Circuit) Course(e Event, q StateOfCharge) *transient.Course {
 
 // Survey simulates an event from normal operation, where the space does that; it gives no number worth having.
 func (c *Circuit) Survey(e Event) float64 {
-	if !c.absent(e) && c.Simulates(e) {
+	if c.acts(e) {
 		c.Course(e, Running)
 	}
 	return 0
 }
 
 func (c *Circuit) simulate(e Event, q StateOfCharge) *transient.Course {
+	if c.Point == nil {
+		c.NoPoint()
+		return nil
+	}
 	b, ok := c.bridge(e, q)
 	limit := c.window(e)
 	if !ok || limit != limit {

@@ -10,16 +10,19 @@ import (
 
 // Undershoot is a simulated event against the driver's table of negative node voltages, by depth: the time below the level of a row must not exceed the
 // duration of the next deeper one, and be nothing below the last. The limit [V] is the level of the first row that is broken, else that of the first
-// one that would be if the undershoot reached it, at the time that it spends below the level before. Near tells that it is broken where the level of every row stands its guard higher, or the dips of an event count together.
+// one that would be if the undershoot reached it, at the time that it spends below the level before. Near tells that a row is broken where its level
+// stands its guard higher, or where the dips of an event count together.
 func (c *Circuit) Undershoot(e Event) (value, limit float64, near bool) {
 	rows := c.Stage.Driver.NodeUndershoot.Items
 	if len(rows) == 0 {
 		c.Want(c.Stage.Driver.NodeUndershoot.Field)
 		return nan, nan, false
 	}
-	value = c.PinDip(e)
-	if value != value {
+	switch value = c.PinDip(e); {
+	case value != value:
 		return nan, nan, false
+	case c.absent(e):
+		return value, c.DeepestRow(), false
 	}
 	order := make([]int, len(rows))
 	for i := range order {
@@ -66,6 +69,9 @@ func longestDip(d *transient.Dips) float64 { return d.Longest }
 
 // below is a time below a level, by its number [s]. A dip that lasts beyond the end of the watch lasts for the dead time.
 func (c *Circuit) below(e Event, level int, of func(*transient.Dips) float64) float64 {
+	if c.absent(e) {
+		return c.Current(e)
+	}
 	k := c.Course(e, Running)
 	if k == nil {
 		return nan
@@ -101,6 +107,9 @@ func (c *Circuit) Spare(e Event, row int) float64 {
 // TotalBelow is the time that a simulated event spends below the level of a row of the driver's table in all its dips together [s], and their number.
 func (c *Circuit) TotalBelow(e Event, row int) (total float64, dips int) {
 	c.Need(&c.Stage.Driver.NodeUndershoot.Items[row].Voltage)
+	if c.absent(e) {
+		return c.Current(e), 0
+	}
 	k := c.Course(e, Running)
 	if k == nil {
 		return nan, 0
