@@ -46,7 +46,7 @@ func TestSimulatedWorstIsFound(t *testing.T) {
 	for _, s := range []struct {
 		name string
 		tree any
-	}{{"buck48, slow", with(document(t, "buck48"), slow...)}, {"drive400", document(t, "drive400")}} {
+	}{{"buck48, slow", with(document(t, "buck48"), slow...)}, {"drive400", document(t, "drive400")}, {"gan650", document(t, "gan650")}, {"buck48", document(t, "buck48")}} {
 		bench := judge(t, bind(t, s.tree), nil).bench
 		bench.Simulate()
 		for _, n := range numbers {
