@@ -136,9 +136,6 @@ func given(node any, p path) bool {
 	return true
 }
 
-// everySimulated is the stride through the fields of examples whose events are simulated, each of which takes some hundred simulations.
-const everySimulated = 3
-
 // cut is a deletion from the stage of an example.
 type cut struct {
 	field  string // as findings name it

@@ -4,3 +4,9 @@ package property
 
 // every is the step in which variants of a stage are taken: all of them.
 const every = 1
+
+// everySimulated is the stride through the fields of examples whose events are simulated, each of which takes some hundred simulations.
+const everySimulated = 3
+
+// tries is the number of random corners that are simulated at every temperature set.
+const tries = 24

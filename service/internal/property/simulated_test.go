@@ -21,9 +21,6 @@ import (
 	"floatrail/calc/transient"
 )
 
-// tries is the number of random corners that are simulated at every temperature set.
-const tries = 24
-
 // short is by how much of its size the worst number that is found may fall short of what a random corner shows [1].
 const short = 0.02
 
