@@ -35,12 +35,12 @@ func FitForwardRecovery(testCurrent, testSlope, peak, static, time float64) (For
 	case excess <= least:
 		return ForwardRecovery{Inductance: excess / testSlope, Resistance: math.Inf(1)}, nil
 	case !(static > 0):
-		return ForwardRecovery{}, fmt.Errorf("the static drop at forwardRecoveryTestCurrent is %g V: forwardRecoveryTime has no level to end at", static)
+		return ForwardRecovery{}, fmt.Errorf("the static drop at forwardRecoveryTestCurrent is %.6g V: forwardRecoveryTime has no level to end at", static)
 	}
 	rise := testCurrent / testSlope
 	if !(time > rise) {
-		return ForwardRecovery{}, fmt.Errorf("forwardRecoveryTime %g s must be longer than the rise of the current in the test, "+
-			"forwardRecoveryTestCurrent/forwardRecoveryTestSlope = %g s, as peakForwardRecovery exceeds 110 %% of the static drop", time, rise)
+		return ForwardRecovery{}, fmt.Errorf("forwardRecoveryTime %.6g s must be longer than the rise of the current in the test, "+
+			"forwardRecoveryTestCurrent/forwardRecoveryTestSlope = %.6g s, as peakForwardRecovery exceeds 110 %% of the static drop", time, rise)
 	}
 	tau := (time - rise) / math.Log(excess/least)
 	l := excess / (testSlope * -math.Expm1(-rise/tau))

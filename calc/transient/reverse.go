@@ -27,13 +27,13 @@ func FitRecovery(testCurrent, testSlope, charge, time float64) (Recovery, error)
 	case charge == 0:
 		return Recovery{}, nil
 	case !(charge > 0):
-		return Recovery{}, fmt.Errorf("recoveryCharge %g C must not be negative", charge)
+		return Recovery{}, fmt.Errorf("recoveryCharge %.6g C must not be negative", charge)
 	case !(testCurrent > 0) || !(testSlope > 0) || !(time > 0):
 		return Recovery{}, errors.New("recoveryTestCurrent, recoveryTestSlope and recoveryTime must be positive")
 	}
 	most := testSlope * time * time / 2
 	if charge > most*(1+1e-12) { // rounding
-		return Recovery{}, fmt.Errorf("recoveryCharge %g C is more than recoveryTestSlope·recoveryTime²/2 = %g C, which a reverse current that "+
+		return Recovery{}, fmt.Errorf("recoveryCharge %.6g C is more than recoveryTestSlope·recoveryTime²/2 = %.6g C, which a reverse current that "+
 			"rises at that slope for all of that time carries", charge, most)
 	}
 	// (16) in y = I_RM/(a·t_rr): (1/k - 1/2)·y² - y/k + Q_rr/(a·t_rr²) = 0, the smaller root
