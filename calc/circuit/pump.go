@@ -75,18 +75,19 @@ func (c *Circuit) parts(e Event, mean float64, out []Plateau) []Plateau {
 	return append(out, Plateau{mean * c.PinDip(e), steep}, Plateau{c.clampedPin(-c.commutated(e, 0)), w - steep})
 }
 
-// strata is how long a simulated event holds the pin between neighbouring levels, all its dips together, ringing included.
+// strata is how long a simulated event holds the node between neighbouring levels, all its dips together, ringing included. The element's current
+// returns to the node through R_VS, which is part of the element; a clamp at the pin would take some of it.
 func (c *Circuit) strata(e Event, out []Plateau) []Plateau {
 	k := c.Course(e, Running)
 	if k == nil {
 		return append(out, Plateau{nan, nan})
 	}
-	dips := k.BelowPin[len(k.BelowPin)-len(dipLevels):]
+	dips := k.BelowNode[len(k.BelowNode)-len(dipLevels):]
 	for i := range dips {
 		if !(dips[i].Total > 0) {
 			break
 		}
-		bottom, deeper := k.Ranges[transient.Pin].Min, 0.0
+		bottom, deeper := k.Ranges[transient.Node].Min, 0.0
 		if i+1 < len(dips) && dips[i+1].Total > 0 {
 			bottom, deeper = dips[i+1].Level, dips[i+1].Total
 		}
