@@ -10,3 +10,6 @@ const everySimulated = 3
 
 // tries is the number of random corners that are simulated at every temperature set.
 const tries = 24
+
+// randomStages is the number of random stages about each demo stage.
+const randomStages = 120

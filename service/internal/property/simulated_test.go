@@ -273,3 +273,59 @@ func TestUndershootChargesTheSupply(t *testing.T) {
 		t.Errorf("%d compared", compared)
 	}
 }
+
+// TestRandomStagesSimulate draws stages at random about three demo stages, every number of them by up to a factor of 2.7: an event is simulated with numbers
+// throughout, or the circuit says why it is not.
+func TestRandomStagesSimulate(t *testing.T) {
+	simulated, unsolved := 0, 0
+	for k, name := range []string{"buck48", "gan650", "drive400"} {
+		bench := judge(t, bind(t, document(t, name)), nil).bench
+		bench.Simulate()
+		random := rand.New(rand.NewPCG(2026, uint64(k)))
+		for n := range randomStages {
+			space := bench.Points[n%len(bench.Points)].Simulated[n%3%len(bench.Points[n%len(bench.Points)].Simulated)]
+			var changes []corner.Change
+			for id, q := range bench.Stage.Inputs() {
+				if id > 0 && q.Known() && q.Typ != 0 {
+					changes = append(changes, corner.Change{ID: id, Value: min(max(q.Typ*math.Exp(2*random.Float64()-1), q.Declare.Low), q.Declare.High)})
+				}
+			}
+			space.Try(space.Typical(), func(d *corner.Draw) {
+				for _, e := range circuit.Events() {
+					var course *transient.Course
+					_, trace := corner.Evaluate(d, func(d *corner.Draw) float64 {
+						if c := circuit.Of(d); c.Current(e) > 0 && c.Simulates(e) {
+							course = c.Course(e, circuit.StateOfCharge(n%2))
+						} else {
+							course = &transient.Course{}
+						}
+						return 0
+					})
+					if course == nil {
+						if trace.Complete() {
+							t.Errorf("%s, stage %d, %s: not simulated without a reason", name, n, e)
+						}
+						for _, r := range trace.Reasons() {
+							if strings.Contains(r, transient.ErrUnsolved.Error()) {
+								unsolved++
+							}
+						}
+						continue
+					}
+					simulated++
+					sum := course.Gain + course.NodeSlew + course.Slew + course.RingFrequency + course.End
+					for _, r := range course.Ranges {
+						sum += r.Min + r.Max
+					}
+					if sum != sum || math.IsInf(sum, 0) {
+						t.Errorf("%s, stage %d, %s: %+v", name, n, e, course)
+					}
+				}
+			}, changes...)
+		}
+	}
+	t.Logf("%d events simulated, %d did not converge", simulated, unsolved)
+	if unsolved*1000 > simulated {
+		t.Errorf("%d of %d did not converge", unsolved, simulated)
+	}
+}
