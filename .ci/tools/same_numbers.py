@@ -5,7 +5,9 @@
 
 Numbers agree when they differ by at most 1e-6 of the larger magnitude. Inside
 an array of numbers the largest magnitude of the array counts, so that a point
-where a curve crosses zero is held to the curve's scale. What tells how a
+where a curve crosses zero is held to the curve's scale. An object may say by
+"agreement", {beginning of a name: difference}, by how much numbers of such names
+in it may differ all the same; the longest beginning counts. What tells how a
 document was made is not compared: the versions under "python", "scipy" and
 "numpy", and residuals, the numbers whose key has "difference" in it. Every
 difference is printed with its path; any difference makes the exit status 1.
@@ -32,9 +34,14 @@ def provenance(key, value):
     return key in VERSIONS or ("difference" in key and is_number(value))
 
 
-def differences(want, got, path="$"):
+def allowed(name, agreement):
+    fitting = [k for k in agreement if name.startswith(k)]
+    return agreement[max(fitting, key=len)] if fitting else 0.0
+
+
+def differences(want, got, path="$", agreement={}, name=""):
     if is_number(want) and is_number(got):
-        if not agree(want, got, max(abs(want), abs(got))):
+        if not agree(want, got, max(abs(want), abs(got))) and not abs(want - got) <= allowed(name, agreement):
             yield f"{path}: {want!r} committed, {got!r} computed"
     elif isinstance(want, list) and isinstance(got, list):
         if len(want) != len(got):
@@ -46,15 +53,16 @@ def differences(want, got, path="$"):
                     yield f"{path}[{i}]: {a!r} committed, {b!r} computed"
         else:
             for i, (a, b) in enumerate(zip(want, got)):
-                yield from differences(a, b, f"{path}[{i}]")
+                yield from differences(a, b, f"{path}[{i}]", agreement, name)
     elif isinstance(want, dict) and isinstance(got, dict):
+        agreement = want.get("agreement", agreement)
         for key in sorted(want.keys() | got.keys()):
             if key not in got:
                 yield f"{path}.{key}: committed only"
             elif key not in want:
                 yield f"{path}.{key}: computed only"
             elif not (provenance(key, want[key]) and provenance(key, got[key])):
-                yield from differences(want[key], got[key], f"{path}.{key}")
+                yield from differences(want[key], got[key], f"{path}.{key}", agreement, key)
     elif type(want) is not type(got) or want != got:
         yield f"{path}: {want!r} committed, {got!r} computed"
 

@@ -36,7 +36,7 @@ var gateNodeResistor = &rule.Rule{
 		} else {
 			v = c.Need(&c.Stage.HighSide.OffBias) + c.PumpedPeak()*r
 			if circuit.Occurs(c.Stage, c.Point, circuit.TurnOff) && c.Simulates(circuit.TurnOff) {
-				v = c.Lifted()
+				v = max(v, c.Lifted())
 			}
 		}
 		return rule.Check{Value: v, Limit: limit, Guard: heldOff * limit}

@@ -6,7 +6,6 @@ import (
 	"floatrail/calc/rule"
 	"floatrail/calc/stage"
 	"fmt"
-	"math"
 )
 
 // slopesApart is the ratio of a measured slope and a simulated one from which on one of both is taken to be wrong [common-practice].
@@ -37,10 +36,7 @@ var nodeMeasuredSlope = &rule.Rule{
 		return "no slope of an event that occurs is measured"
 	},
 	Check: func(c *circuit.Circuit, role string) rule.Check {
-		v := 1.0
-		for _, e := range everyEvent {
-			v = math.Max(v, c.Usual(func(c *circuit.Circuit) float64 { return slopeRatio(c, role, e) }))
-		}
+		v := c.Usual(func(c *circuit.Circuit) float64 { return slopeRatio(c, role) })
 		return rule.Check{Value: v, Limit: slopesApart, Guard: slopesNear}
 	},
 	Explain: func(c *circuit.Circuit, role string, _ rule.Check) []string {
@@ -64,22 +60,27 @@ const (
 	roleVoltage = "voltage slope"
 )
 
-// slopeRatio is the larger over the smaller of a measured and a simulated slope [1]; 1 where one of them is none.
-func slopeRatio(c *circuit.Circuit, role string, e circuit.Event) float64 {
-	measured, simulated, ok := slopes(c, role, e)
-	switch {
-	case c.Occurs(e) && circuit.MeasuredSlope(c.Stage, e, role == roleCurrent).Given() && !c.Simulates(e):
-		return c.Unsimulated()
-	case !ok:
-		return 1
+// slopeRatio is the larger over the smaller of a measured and a simulated slope, the largest of all events [1].
+func slopeRatio(c *circuit.Circuit, role string) float64 {
+	ratio := 0.0
+	for _, e := range everyEvent {
+		if c.Occurs(e) && circuit.MeasuredSlope(c.Stage, e, role == roleCurrent).Given() && !c.Simulates(e) {
+			return c.Unsimulated()
+		}
+		if measured, simulated, ok := slopes(c, role, e); ok {
+			ratio = max(ratio, simulated/measured, measured/simulated)
+		}
 	}
-	return math.Max(simulated/measured, measured/simulated)
+	if ratio == 0 {
+		return c.Open("no event with a measured slope happens at typical values")
+	}
+	return ratio
 }
 
 // slopes are those of an event as measured and as simulated; false where one of them is none.
 func slopes(c *circuit.Circuit, role string, e circuit.Event) (measured, simulated float64, ok bool) {
 	q := circuit.MeasuredSlope(c.Stage, e, role == roleCurrent)
-	if !c.Occurs(e) || !q.Given() || !c.Simulates(e) {
+	if !c.Occurs(e) || !q.Given() || !c.Acts(e) {
 		return 0, 0, false
 	}
 	measured, simulated = c.Need(q), c.MeanSlew(e)

@@ -34,7 +34,7 @@ func (c *Circuit) gateSignal(s *stage.Switch) transient.Signal {
 
 // MeanSlew is the slew of the node between 10 and 90 % of V_BUS in an event [V/s].
 func (c *Circuit) MeanSlew(e Event) float64 {
-	if !c.acts(e) {
+	if !c.Acts(e) {
 		return c.Swing(e).Mean()
 	}
 	if k := c.Course(e, Running); k != nil {
@@ -46,7 +46,7 @@ func (c *Circuit) MeanSlew(e Event) float64 {
 // Steepness is the slope of the commutating current in an event [A/s]: of the branch that takes over as a switch turns off, at its steepest; from 10 to
 // 90 % of the current in the channel of one that turns on.
 func (c *Circuit) Steepness(e Event) float64 {
-	if !c.acts(e) {
+	if !c.Acts(e) {
 		return c.CurrentSlope(e)
 	}
 	k := c.Course(e, Running)
@@ -63,7 +63,7 @@ func (c *Circuit) Steepness(e Event) float64 {
 
 // Ringing is the frequency [Hz] and the damping of the loop after an event; of the loop itself where a simulation shows no ringing.
 func (c *Circuit) Ringing(e Event) (frequency, damping float64) {
-	if c.acts(e) {
+	if c.Acts(e) {
 		switch k := c.Course(e, Running); {
 		case k == nil:
 			return nan, nan
@@ -161,11 +161,10 @@ func zeroIfNone(v float64) float64 {
 // Again simulates an event once more from normal operation, with waveforms, and with a tolerance as a share of the usual one.
 func (c *Circuit) Again(e Event, share float64, waveforms []transient.Signal) *transient.Course {
 	b, ok := c.bridge(e, Running)
-	limit := c.window(e)
-	if !ok || limit != limit {
+	if !ok {
 		return nil
 	}
-	return c.run(&b, transient.Window{Limit: limit, Levels: c.levels(), Tolerance: share * transient.DefaultTolerance, Waveforms: waveforms})
+	return c.run(&b, transient.Window{Limit: longestWindow, Levels: c.levels(), Tolerance: share * transient.DefaultTolerance, Waveforms: waveforms})
 }
 
 // leastDepth is what an extreme counts for at least where a change of it is taken as a share [V_BUS].

@@ -316,7 +316,7 @@ func (c *Circuit) Dip(e Event) float64 {
 
 // PinDip is Dip at the driver's V_S pin [V].
 func (c *Circuit) PinDip(e Event) float64 {
-	if e.Falls() && c.acts(e) {
+	if e.Falls() && c.Acts(e) {
 		return c.least(e, transient.Pin)
 	}
 	dip := c.Dip(e)

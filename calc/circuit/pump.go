@@ -39,23 +39,38 @@ func (c *Circuit) pumped() Period {
 	k := c.kept()
 	off, names := k.pumpedOff[:0], k.pumpedNames[:0]
 	var buf [len(dipLevels)]Plateau
+	var pending []Plateau // of a dip, deepest first, that the intervals so far have not had the time for
+	name := ""
 	for i := range p.Off {
-		iv, name := p.Off[i], p.Names[i]
+		iv := p.Off[i]
 		for _, m := range pumps {
-			if !iv.Conducts || !follows(m.followed, name) || !Occurs(c.Stage, c.Point, m.event) || c.absent(m.event) {
-				continue
-			}
-			for _, part := range c.parts(m.event, m.mean, buf[:0]) {
-				dip := iv
-				dip.Duration, dip.Drive = math.Min(part.Duration, iv.Duration), c.Supply()-part.Node
-				if !(dip.Duration > 0) || dip.Drive <= iv.Drive { // not deeper than the interval itself
-					continue
-				}
-				iv.Duration -= dip.Duration
-				off, names = append(off, dip), append(names, m.name)
+			if iv.Conducts && follows(m.followed, p.Names[i]) && c.Occurs(m.event) && !c.absent(m.event) {
+				pending, name = c.parts(m.event, m.mean, buf[:0]), m.name
 			}
 		}
-		off, names = append(off, iv), append(names, name)
+		for iv.Conducts && len(pending) > 0 {
+			part := &pending[0]
+			dip := iv
+			dip.Drive = c.Supply() - part.Node
+			if !(part.Duration > 0) || dip.Drive <= iv.Drive { // not deeper than the interval itself
+				if part.Duration != part.Duration || dip.Drive != dip.Drive {
+					dip.Duration = nan
+					off, names = append(off, dip), append(names, name)
+				}
+				pending = pending[1:]
+				continue
+			}
+			if dip.Duration = math.Min(part.Duration, iv.Duration); !(dip.Duration > 0) {
+				break
+			}
+			iv.Duration -= dip.Duration
+			part.Duration -= dip.Duration
+			off, names = append(off, dip), append(names, name)
+			if iv.Duration <= 0 {
+				break // the rest of the dip lies in what follows
+			}
+		}
+		off, names = append(off, iv), append(names, p.Names[i])
 	}
 	p.Off, p.Names = off, names
 	return p
@@ -76,16 +91,16 @@ func (c *Circuit) parts(e Event, mean float64, out []Plateau) []Plateau {
 }
 
 // strata is how long a simulated event holds the node between neighbouring levels, all its dips together, ringing included. The element's current
-// returns to the node through R_VS, which is part of the element; a clamp at the pin would take some of it.
+// returns to the node through R_VS, which is part of the element; a clamp at the pin would take some of it. Deepest first.
 func (c *Circuit) strata(e Event, out []Plateau) []Plateau {
 	k := c.Course(e, Running)
 	if k == nil {
 		return append(out, Plateau{nan, nan})
 	}
 	dips := k.BelowNode[len(k.BelowNode)-len(dipLevels):]
-	for i := range dips {
+	for i := len(dips) - 1; i >= 0; i-- { // deepest first; that of the diode's plateau counts at its mean level until the watch ends, a little too much
 		if !(dips[i].Total > 0) {
-			break
+			continue
 		}
 		bottom, deeper := k.Ranges[transient.Node].Min, 0.0
 		if i+1 < len(dips) && dips[i+1].Total > 0 {

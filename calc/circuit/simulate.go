@@ -73,8 +73,8 @@ func (c *Circuit) Simulates(e Event) bool {
 	return !c.measured(e) || len(lacking(c.Stage)) == 0
 }
 
-// acts tells whether an event happens at this draw and is simulated.
-func (c *Circuit) acts(e Event) bool { return !c.absent(e) && c.Simulates(e) }
+// Acts tells whether an event happens at this draw and is simulated.
+func (c *Circuit) Acts(e Event) bool { return !c.absent(e) && c.Simulates(e) }
 
 // measured tells whether the slopes of an event are measured ones.
 func (c *Circuit) measured(e Event) bool {
@@ -151,7 +151,7 @@ func (c *Circuit) Course(e Event, q StateOfCharge) *transient.Course {
 
 // Survey simulates an event from normal operation, where the space does that; it gives no number worth having.
 func (c *Circuit) Survey(e Event) float64 {
-	if c.acts(e) {
+	if c.Acts(e) {
 		c.Course(e, Running)
 	}
 	return 0
@@ -163,11 +163,10 @@ func (c *Circuit) simulate(e Event, q StateOfCharge) *transient.Course {
 		return nil
 	}
 	b, ok := c.bridge(e, q)
-	limit := c.window(e)
-	if !ok || limit != limit {
+	if !ok {
 		return nil
 	}
-	return c.run(&b, transient.Window{Limit: limit, Levels: c.levels()})
+	return c.run(&b, transient.Window{Limit: longestWindow, Levels: c.levels()})
 }
 
 // run simulates a bridge.
@@ -207,22 +206,9 @@ func (c *Circuit) levels() []float64 {
 	return append(out, dipLevels[:]...)
 }
 
-// window is the time for which an event is watched, unless it settles before [s]: the on-time of a switch that turns on. A turn-off is watched until the
-// current has left it, also beyond the dead time: what happens in one that is too short is no smaller for that, and duty/dead-time judges it.
-func (c *Circuit) window(e Event) float64 {
-	if e.off() || c.Point.FixedDuty == nil {
-		return longestWindow
-	}
-	p := c.Period()
-	t := p.OnTime
-	if e == SinkingTurnOn {
-		t = p.LowOnTime
-	}
-	return math.Min(t+0*p.T, longestWindow)
-}
-
-// longestWindow is where the watch of an event ends [s]: by then any gate has switched, and a current that has not brought the node over does it no
-// harm.
+// longestWindow is where the watch of an event ends at the latest [s]: by then any gate has switched, and a current that has not brought the node over
+// does it no harm. An event is watched until it has settled, also beyond the dead time and the pulse: what happens in one that is too short is no
+// smaller for that, and duty/dead-time and duty/shortest-pulse judge those.
 const longestWindow = 20e-6
 
 // bridge puts together what the simulation takes. False: something is missing or cannot be, of which the circuit keeps the reason.
@@ -301,16 +287,18 @@ func (c *Circuit) parted(e Event) (l1, l2 float64) {
 		return c.Need(&l.BusLoopInductance), c.Need(&l.LowSideInductance)
 	case lowGiven:
 		l2 = c.Need(&l.LowSideInductance)
-		return math.Max(c.Need(&l.LoopInductance)-l2, leastPart*l2), l2
+		return max(c.Need(&l.LoopInductance)-l2, leastPart*l2, c.sharedSource(&c.Stage.HighSide)), l2
 	case busGiven:
 		l1 = c.Need(&l.BusLoopInductance)
-		return l1, math.Max(c.Need(&l.LoopInductance)-l1, leastPart*l1)
+		return l1, max(c.Need(&l.LoopInductance)-l1, leastPart*l1, c.sharedSource(&c.Stage.LowSide))
 	}
 	whole := c.LowInductance() // which notes the assumption
 	if e.Falls() {
-		return leastPart * whole, (1 - leastPart) * whole
+		l1 = math.Max(leastPart*whole, c.sharedSource(&c.Stage.HighSide))
+		return l1, math.Max(whole-l1, leastPart*whole)
 	}
-	return (1 - leastPart) * whole, leastPart * whole
+	l2 = math.Max(leastPart*whole, c.sharedSource(&c.Stage.LowSide))
+	return math.Max(whole-l2, leastPart*whole), l2
 }
 
 // floatingAt is V_BS as an event begins [V].
@@ -378,6 +366,9 @@ func (c *Circuit) cell(s *stage.Switch, e Event) transient.Cell {
 		taken, ok := c.Has(&s.Reverse.GateVoltage)
 		if !ok {
 			taken = 0
+			if w.OffBias != 0 {
+				c.Want(s.Reverse.GateVoltage.Field)
+			}
 		}
 		w.Offset = taken - w.OffBias
 	}
@@ -402,8 +393,16 @@ func (c *Circuit) reverse(s *stage.Switch) recharge.Junction {
 		v := c.Need(&p.Voltage)
 		if s.Kind == stage.GaNHEMT && len(p.Voltage.At) == 0 { // no junction: its drop does not follow the diode's law over temperature
 			v += 2e-3 * (c.Set.Junction - stage.ReferenceTemperature)
+			if c.Set.Junction != stage.ReferenceTemperature {
+				c.Assume(stage.Assumption{Field: s.Reverse.ForwardPoints.Field, Assumed: "the drop at 25 °C", Direction: stage.Optimistic,
+					Reason: "the reverse drop of a HEMT moves with temperature and is given at one only"})
+			}
 		}
 		fit = append(fit, recharge.DiodePoint{Current: n * c.Need(&p.Current), Voltage: v})
+	}
+	if len(points) == 1 {
+		c.Assume(stage.Assumption{Field: s.Reverse.ForwardPoints.Field, Assumed: "emission coefficient 1.5, no series resistance", Direction: stage.Optimistic,
+			Reason: "one forward point alone does not tell how the drop grows with current"})
 	}
 	for _, p := range fit {
 		if p.Voltage != p.Voltage || p.Current != p.Current {

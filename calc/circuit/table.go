@@ -5,6 +5,7 @@ import (
 	"math"
 	"slices"
 
+	"floatrail/calc/stage"
 	"floatrail/calc/transient"
 )
 
@@ -67,7 +68,8 @@ func (c *Circuit) timesBelow(e Event, row int) (longest, together, guarded float
 // longestDip is the longest time without a break.
 func longestDip(d *transient.Dips) float64 { return d.Longest }
 
-// below is a time below a level, by its number [s]. A dip that lasts beyond the end of the watch lasts for the dead time.
+// below is a time below a level, by its number [s]. A dip that lasts beyond the end of the watch lasts for the dead time,
+// or for the off-time where no low side takes over.
 func (c *Circuit) below(e Event, level int, of func(*transient.Dips) float64) float64 {
 	if c.absent(e) {
 		return c.Current(e)
@@ -77,10 +79,13 @@ func (c *Circuit) below(e Event, level int, of func(*transient.Dips) float64) fl
 		return nan
 	}
 	d := &k.BelowPin[level]
-	if d.Lasting { // to the end of the dead time
-		return math.Max(of(d), c.Need(&c.Point.DeadTime))
+	switch {
+	case !d.Lasting:
+		return of(d)
+	case c.Stage.LowSide.Kind == stage.DiodeOnly || c.lowVanishes(): // the diode carries the current all that time
+		return math.Max(of(d), c.offTime())
 	}
-	return of(d)
+	return math.Max(of(d), c.Need(&c.Point.DeadTime))
 }
 
 // Spare is the time that a row of the driver's table leaves to a simulated event below its level, as a share of what it permits there, of that level

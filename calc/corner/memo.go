@@ -108,9 +108,7 @@ func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 			c.trace.copy(e.trace)
 		} else {
 			c.trace.reset()
-			d.stack = append(d.stack, &c.trace)
-			*at = f()
-			d.stack = d.stack[:len(d.stack)-1]
+			*at = under(d, &c.trace, f)
 			if shared {
 				d.Space.memory.keep(slot, d, &entry{value: *at, trace: c.trace.clone()})
 			}
@@ -119,4 +117,11 @@ func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 	}
 	d.current().Add(&c.trace)
 	return at
+}
+
+// under runs f with what it reads at a draw noted in a trace, whatever becomes of f.
+func under[T any](d *Draw, t *Trace, f func() T) T {
+	d.stack = append(d.stack, t)
+	defer func() { d.stack = d.stack[:len(d.stack)-1] }()
+	return f()
 }

@@ -129,7 +129,13 @@ func (b *Bench) at(r *Rule, role string, p *Point) []result {
 
 // closer looks closer at a result near its guard: it polishes it, and searches its set with directions of its own as well.
 func (b *Bench) closer(r *Rule, role string, res *result) {
-	if res.search == nil || res.worst.Space.Frugal || !b.near(r, res) {
+	if res.search == nil || !b.near(r, res) {
+		return
+	}
+	if res.worst.Space.Frugal {
+		if b.within(r, res) {
+			b.refine(r, role, res)
+		}
 		return
 	}
 	w, f := res.worst, res.search
@@ -171,6 +177,16 @@ func (b *Bench) near(r *Rule, res *result) bool {
 		slack = res.worst.Value
 	}
 	return res.thin || !(slack > nearShare*(res.worst.Typical-res.worst.Value))
+}
+
+// frugalShare is nearShare where evaluations are dear.
+const frugalShare = 0.15
+
+// within tells whether a result lies just within its limit or its guard.
+func (b *Bench) within(r *Rule, res *result) bool {
+	room := frugalShare * (res.worst.Typical - res.worst.Value)
+	slack := r.guardSlack(res.check)
+	return res.margin >= 0 && res.margin < room || slack >= 0 && slack < room
 }
 
 // decide turns the worst draw into an outcome.
@@ -232,7 +248,7 @@ func (b *Bench) stretch(r *Rule, role string, res *result) {
 				c = r.Check(circuit.Of(d), role)
 				return 0
 			})
-			yes = !(r.margin(c) >= 0 && r.guardSlack(c) >= 0)
+			yes = !(r.margin(c) >= 0 && r.guardSlack(c) >= 0) || w.Space.Frugal && c.Floor >= finding.Marginal && c.Floor != finding.Open
 		}, changes...)
 		return yes
 	}

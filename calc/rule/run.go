@@ -209,7 +209,8 @@ func (b *Bench) eachSpace(jobs []*job, f func(*job)) {
 	var w work
 	for _, j := range jobs {
 		res := j.worst()
-		if s := res.worst.Space; s != nil && s.Frugal && j.twin == nil && res.worst.Draw != nil { // its simulations take long enough to be shared out
+		if s := res.worst.Space; s != nil && s.Frugal && s != j.twin && res.worst.Draw != nil { // its simulations take long enough to be shared out
+			b.adopt([]*job{j})
 			j.twin, j.home = s.Twin(b.simulation()), s
 			res.worst = res.worst.On(j.twin)
 		}

@@ -67,6 +67,7 @@ func (b *Bench) adopt(jobs []*job) {
 	for _, j := range jobs {
 		if j.twin != nil {
 			j.home.Adopt(j.twin)
+			j.twin = nil
 		}
 	}
 }

@@ -68,8 +68,13 @@ func (b *Bench) Adverse(p *Point, f Number, d quantity.Dimension, high bool) Ran
 		if high {
 			end, adverse = &out.High, fn.Negative()
 		}
-		for _, w := range corner.SearchSets(p.Spaces, adverse) {
-			if w.Decided() && w.Value < end.Value {
+		for i, w := range corner.SearchSets(p.Spaces, adverse) {
+			b.note(p.Spaces[i], w.Trace)
+			if !w.Decided() {
+				return Range{Span: finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d},
+					Missing: p.Spaces[i].Missing(w.Trace), Reasons: slices.Clone(w.Trace.Reasons())}
+			}
+			if w.Value < end.Value {
 				*end = w
 			}
 		}
