@@ -109,18 +109,19 @@ func (c *Circuit) Spare(e Event, row int) float64 {
 	return -level * (allowed - longest) / allowed
 }
 
-// TotalBelow is the time that a simulated event spends below the level of a row of the driver's table in all its dips together [s], and their number.
-func (c *Circuit) TotalBelow(e Event, row int) (total float64, dips int) {
+// TotalBelow is the time that a simulated event spends below the level of a row of the driver's table in all its dips together [s], and their lengths [s],
+// of which the first are kept, and number.
+func (c *Circuit) TotalBelow(e Event, row int) (total float64, each []float64, dips int) {
 	c.Need(&c.Stage.Driver.NodeUndershoot.Items[row].Voltage)
 	if c.absent(e) {
-		return c.Current(e), 0
+		return c.Current(e), nil, 0
 	}
 	k := c.Course(e, Running)
 	if k == nil {
-		return nan, 0
+		return nan, nil, 0
 	}
 	d := &k.BelowPin[2*row]
-	return d.Total, d.Count
+	return d.Total, d.Each, d.Count
 }
 
 // DeepestRow is the lowest level of the driver's table [V].

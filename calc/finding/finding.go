@@ -332,7 +332,8 @@ type TransientEvent struct {
 // Undershoot is the time below one level.
 type Undershoot struct {
 	Level    Measure
-	Duration Span // longest time without a break
-	Total    Span // of all dips of the event together; unset where it is not simulated
-	Dips     int  // most of them in one event; 0: none, or not simulated
+	Duration Span      // longest time without a break
+	Total    Span      // of all dips of the event together; unset where it is not simulated
+	Dips     int       // most of them in one event; 0: none, or not simulated
+	Each     []Measure // length of each dip at the draw of the deepest one, of which the first are given
 }

@@ -143,12 +143,13 @@ func event(b *rule.Bench, p *rule.Point, e circuit.Event) (out finding.Transient
 			Total: finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: quantity.Time}}
 		if out.Method == finding.Simulation {
 			total := func(c *circuit.Circuit) float64 {
-				t, n := c.TotalBelow(e, i)
+				t, _, n := c.TotalBelow(e, i)
 				one.Dips = max(one.Dips, n)
 				return t
 			}
 			if one.Total = b.Range(p, total, quantity.Time).Span; deepest.Space != nil {
 				widen(&one.Total, deepest.Draw, total)
+				one.Each = dipsAt(deepest.Draw, e, i)
 			}
 		}
 		out.Undershoots = append(out.Undershoots, one)
@@ -191,6 +192,18 @@ func numbersOf(s *stage.Stage, e circuit.Event, out *finding.TransientEvent) []n
 		{"", &out.RingFrequency, quantity.Frequency, true, neither, func(c *circuit.Circuit) float64 { f, _ := c.Ringing(e); return f }},
 		{"", &out.RingDamping, quantity.Ratio, true, neither, func(c *circuit.Circuit) float64 { _, z := c.Ringing(e); return z }},
 	}
+}
+
+// dipsAt are the lengths of the dips of an event below a row of the driver's table at a draw.
+func dipsAt(d *corner.Draw, e circuit.Event, row int) (out []finding.Measure) {
+	corner.Evaluate(d, func(d *corner.Draw) float64 {
+		_, each, _ := circuit.Of(d).TotalBelow(e, row)
+		for _, t := range each {
+			out = append(out, finding.Measure{Value: rule.Significant(t), Dimension: quantity.Time})
+		}
+		return 0
+	})
+	return out
 }
 
 // compare puts a simulated number beside what closed forms estimate at the same draw.

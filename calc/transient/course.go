@@ -8,12 +8,13 @@ type Range struct {
 
 // Dips is how long a voltage is at or below a level.
 type Dips struct {
-	Level   float64 // [V]
-	Total   float64 // in all [s]
-	Longest float64 // the longest time without a break [s]
-	Start   float64 // when that one began [s]
-	Count   int     // number of times
-	Lasting bool    // the last of them still went on at the end of the window
+	Level   float64   // [V]
+	Total   float64   // in all [s]
+	Longest float64   // the longest time without a break [s]
+	Start   float64   // when that one began [s]
+	Count   int       // number of times
+	Each    []float64 // how long each of them lasted, in their order, the first mostDips; of the pin [s]
+	Lasting bool      // the last of them still went on at the end of the window
 }
 
 // Signal names a waveform.

@@ -133,9 +133,13 @@ func (r *Range) update(at *span, s *piece) {
 	}
 }
 
+// mostDips is the number of dips whose lengths are kept.
+const mostDips = 16
+
 // below is a level under watch.
 type below struct {
 	Dips
+	list   bool // keep the length of each dip
 	inside bool
 	since  float64
 }
@@ -147,6 +151,9 @@ func (b *below) begin(level, value float64) {
 func (b *below) close(t float64) {
 	b.Count++
 	b.Total += t - b.since
+	if b.list && len(b.Each) < mostDips {
+		b.Each = append(b.Each, t-b.since)
+	}
 	if t-b.since > b.Longest {
 		b.Longest, b.Start = t-b.since, b.since
 	}

@@ -58,6 +58,7 @@ func (w *watch) begin(b *Bridge, c *circuit, course *Course, y []float64, levels
 		var node, pin, rail below
 		node.begin(level, start[Node])
 		pin.begin(level, start[Pin])
+		pin.list = true
 		rail.begin(level, start[Rail])
 		w.node, w.pin, w.rail = append(w.node, node), append(w.pin, pin), append(w.rail, rail)
 	}

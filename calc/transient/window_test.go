@@ -383,3 +383,26 @@ func TestDips(t *testing.T) {
 		t.Errorf("only %d dips", dips)
 	}
 }
+
+// The lengths of the dips that are listed are those that the sum, the longest and the number count.
+func TestEachDip(t *testing.T) {
+	var s Simulator
+	several := 0
+	for _, c := range referenceCases(t) {
+		for _, d := range c.run(t, &s, 0, 0).BelowPin {
+			sum, longest := 0.0, 0.0
+			for _, one := range d.Each {
+				sum, longest = sum+one, math.Max(longest, one)
+			}
+			if len(d.Each) != min(d.Count, mostDips) || d.Count <= mostDips && (math.Abs(sum-d.Total) > 1e-12*d.Total || longest != d.Longest) {
+				t.Errorf("%s: %+v", c.Name, d)
+			}
+			if len(d.Each) > 1 {
+				several++
+			}
+		}
+	}
+	if several < 20 {
+		t.Errorf("%d levels with several dips", several)
+	}
+}

@@ -1446,7 +1446,9 @@ type UndershootDuration struct {
 	// Time below it in all dips of the event together; of simulated events.
 	Total *Span `protobuf:"bytes,3,opt,name=total,proto3" json:"total,omitempty"`
 	// Most dips below it in one event; of simulated events.
-	Dips          *int32 `protobuf:"varint,4,opt,name=dips,proto3,oneof" json:"dips,omitempty"`
+	Dips *int32 `protobuf:"varint,4,opt,name=dips,proto3,oneof" json:"dips,omitempty"`
+	// How long each dip below it lasts, in their order, where the event goes deepest; the first sixteen, of simulated events.
+	Each          []*Measure `protobuf:"bytes,5,rep,name=each,proto3" json:"each,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -1507,6 +1509,13 @@ func (x *UndershootDuration) GetDips() int32 {
 		return *x.Dips
 	}
 	return 0
+}
+
+func (x *UndershootDuration) GetEach() []*Measure {
+	if x != nil {
+		return x.Each
+	}
+	return nil
 }
 
 // A signal of a simulated event at the worst draw of the node.
@@ -1810,12 +1819,13 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"difference\x18\x04 \x01(\x01H\x01R\n" +
 	"difference\x88\x01\x01B\a\n" +
 	"\x05_nameB\r\n" +
-	"\v_difference\"\xbd\x01\n" +
+	"\v_difference\"\xe8\x01\n" +
 	"\x12UndershootDuration\x12+\n" +
 	"\x05level\x18\x01 \x01(\v2\x15.floatrail.v1.MeasureR\x05level\x12.\n" +
 	"\bduration\x18\x02 \x01(\v2\x12.floatrail.v1.SpanR\bduration\x12(\n" +
 	"\x05total\x18\x03 \x01(\v2\x12.floatrail.v1.SpanR\x05total\x12\x17\n" +
-	"\x04dips\x18\x04 \x01(\x05H\x00R\x04dips\x88\x01\x01B\a\n" +
+	"\x04dips\x18\x04 \x01(\x05H\x00R\x04dips\x88\x01\x01\x12)\n" +
+	"\x04each\x18\x05 \x03(\v2\x15.floatrail.v1.MeasureR\x04eachB\a\n" +
 	"\x05_dips\"x\n" +
 	"\bWaveform\x12\x17\n" +
 	"\x04name\x18\x01 \x01(\tH\x00R\x04name\x88\x01\x01\x12\x17\n" +
@@ -1938,11 +1948,12 @@ var file_floatrail_v1_result_proto_depIdxs = []int32{
 	20, // 71: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
 	19, // 72: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
 	19, // 73: floatrail.v1.UndershootDuration.total:type_name -> floatrail.v1.Span
-	74, // [74:74] is the sub-list for method output_type
-	74, // [74:74] is the sub-list for method input_type
-	74, // [74:74] is the sub-list for extension type_name
-	74, // [74:74] is the sub-list for extension extendee
-	0,  // [0:74] is the sub-list for field type_name
+	20, // 74: floatrail.v1.UndershootDuration.each:type_name -> floatrail.v1.Measure
+	75, // [75:75] is the sub-list for method output_type
+	75, // [75:75] is the sub-list for method input_type
+	75, // [75:75] is the sub-list for extension type_name
+	75, // [75:75] is the sub-list for extension extendee
+	0,  // [0:75] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_result_proto_init() }

@@ -101,7 +101,7 @@ func sample() *finding.Report {
 		}}, Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span}},
 		Transient: &finding.TransientStress{Events: []finding.TransientEvent{{
 			Event: "TURN_OFF", OperatingPoint: "p", NodeMin: span, PinMin: span, RailToCOMMin: span,
-			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span, Total: span, Dips: 3}},
+			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span, Total: span, Dips: 3, Each: []finding.Measure{volts(-1)}}},
 			FloatingVoltageGain: span, NodeMax: span, RailMax: span, HighSidePeak: span, LowSidePeak: span, SlewPeak: span, Slew10To90: span,
 			MillerLow: span, MillerHigh: span, GateMin: span, CurrentSlope: span, RingFrequency: span, RingDamping: span,
 			Method: finding.Simulation, Steps: 321, Convergence: 2e-4,

@@ -84,6 +84,7 @@ func wireEvent(e *finding.TransientEvent) *pb.TransientEvent {
 		RailToComMin:   wireSpan(&e.RailToCOMMin),
 		Undershoots: each(e.Undershoots, func(u *finding.Undershoot) *pb.UndershootDuration {
 			one := &pb.UndershootDuration{Level: wireMeasure(&u.Level), Duration: wireSpan(&u.Duration), Total: wireSpan(&u.Total)}
+			one.Each = each(u.Each, wireMeasure)
 			if u.Dips > 0 {
 				one.Dips = count(u.Dips)
 			}

@@ -154,7 +154,7 @@ func TestMeasuredSlopesAloneDecide(t *testing.T) {
 // the one passed for less time.
 func TestDipsAreCounted(t *testing.T) {
 	report := simulated(t, with(document(t, "buck48"), to("stage.driver.nodeUndershoot.0.voltage", `"-2 V"`)))
-	dips := 0
+	dips, listed := 0, 0
 	for _, e := range report.Transient.Events {
 		for i, u := range e.Undershoots {
 			if u.Duration.Max > u.Total.Max*(1+1e-9) || u.Dips == 0 && u.Total.Max > 0 || u.Dips == 1 && u.Duration.Max < u.Total.Max*(1-1e-9) {
@@ -165,10 +165,19 @@ func TestDipsAreCounted(t *testing.T) {
 					e.Undershoots[i-1].Total.Max, e.Undershoots[i-1].Level.Value)
 			}
 			dips = max(dips, u.Dips)
+			sum, longest := 0.0, 0.0
+			for _, one := range u.Each {
+				sum, longest = sum+one.Value, max(longest, one.Value)
+			}
+			if longest > u.Duration.Max*(1+1e-5) || sum > u.Total.Max*(1+1e-5) || len(u.Each) > u.Dips {
+				t.Errorf("%s at %s below %g V: %d dips of %g s, %g s together, want at most %d, %g s, %g s", e.Event, e.OperatingPoint, u.Level.Value,
+					len(u.Each), longest, sum, u.Dips, u.Duration.Max, u.Total.Max)
+			}
+			listed = max(listed, len(u.Each))
 		}
 	}
-	if dips < 2 {
-		t.Errorf("%d dips at most: nothing rings", dips)
+	if dips < 2 || listed < 1 {
+		t.Errorf("%d dips at most, %d listed: nothing rings", dips, listed)
 	}
 }
 
