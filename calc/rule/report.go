@@ -254,7 +254,7 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 
 // What is sought where every value tried is a simulation.
 const (
-	frugalBreakEvens = 2
+	frugalBreakEvens = 3
 	frugalReach      = 8.0 // times the value at the worst draw, and as small
 )
 

@@ -338,3 +338,22 @@ func TestRandomStagesSimulate(t *testing.T) {
 		t.Errorf("%d of %d did not converge", unsolved, simulated)
 	}
 }
+
+// TestSimulatedBreakEvens puts the break-even values of a rule that fails into the stage, one at a time: what is left of the margin is small, and what a
+// board can change is among them.
+func TestSimulatedBreakEvens(t *testing.T) {
+	tree := with(document(t, "buck48"), append(slow, to("stage.driver.railMin", `"-300 mV"`))...)
+	report := simulated(t, tree)
+	before := pick(t, &report, "node/rail-below-com", "driver")
+	if before.Outcome != finding.Fail || len(before.BreakEven) < 2 {
+		t.Fatalf("%s with break-evens %v", before.Outcome, before.BreakEven)
+	}
+	for _, b := range before.BreakEven {
+		value := fmt.Sprintf(`{"min": %q, "typ": %[1]q, "max": %[1]q}`, quantity.Format(b.Measure.Value, b.Measure.Dimension))
+		after := simulated(t, with(tree, to(strings.NewReplacer("[", ".", "]", "").Replace(b.Field), value)))
+		f := pick(t, &after, "node/rail-below-com", "driver")
+		if m, was := f.Margin.Absolute.Value, before.Margin.Absolute.Value; !(m > 0.2*was) || !(m < -0.2*was) {
+			t.Errorf("%s at %s: margin %g V, was %g V", b.Field, value, m, was)
+		}
+	}
+}
