@@ -34,25 +34,25 @@ func (c *Circuit) Pumped() *Period {
 
 func (c *Circuit) pumped() Period {
 	defer func(was bool) { c.estimating = was }(c.estimating)
-	c.estimating = false // what is kept with the draw is what the space asks for
+	c.estimating = false // what is kept with the draw is what the space asks for, whatever one rule looks at
 	p := *c.Period()
 	k := c.kept()
 	off, names := k.pumpedOff[:0], k.pumpedNames[:0]
 	var buf [len(dipLevels)]Plateau
-	var pending []Plateau // of a dip, deepest first, that the intervals so far have not had the time for
-	name := ""
+	var pending []Plateau                   // of a dip, deepest first, that the intervals so far have not had the time for
+	name, plateau, goesOn := "", 0.0, false // the width of an estimate is no more than that of the dead time
 	for i := range p.Off {
 		iv := p.Off[i]
 		for _, m := range pumps {
-			if iv.Conducts && follows(m.followed, p.Names[i]) && c.Occurs(m.event) && !c.absent(m.event) {
-				pending, name = c.parts(m.event, m.mean, buf[:0]), m.name
+			if iv.Conducts && follows(m.followed, p.Names[i]) && Occurs(c.Stage, c.Point, m.event) && !c.absent(m.event) {
+				pending, name, plateau, goesOn = c.parts(m.event, m.mean, buf[:0]), m.name, iv.Drive, c.Simulates(m.event)
 			}
 		}
 		for iv.Conducts && len(pending) > 0 {
 			part := &pending[0]
 			dip := iv
 			dip.Drive = c.Supply() - part.Node
-			if !(part.Duration > 0) || dip.Drive <= iv.Drive { // not deeper than the interval itself
+			if !(part.Duration > 0) || dip.Drive <= math.Max(iv.Drive, plateau) { // not deeper than the interval itself, or the one that it began in
 				if part.Duration != part.Duration || dip.Drive != dip.Drive {
 					dip.Duration = nan
 					off, names = append(off, dip), append(names, name)
@@ -69,6 +69,9 @@ func (c *Circuit) pumped() Period {
 			if iv.Duration <= 0 {
 				break // the rest of the dip lies in what follows
 			}
+		}
+		if !goesOn {
+			pending = nil
 		}
 		off, names = append(off, iv), append(names, p.Names[i])
 	}
