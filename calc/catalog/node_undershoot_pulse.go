@@ -18,7 +18,7 @@ var nodeUndershootPulse = &rule.Rule{
 	Applies: "operating points in which the high side turns off a sourcing current or the low side turns on a sinking one",
 	Needs: []string{"driver.nodeUndershoot", "layout.lowSideInductance", "layout.measured.turnOffCurrentSlope", "highSide.gateOff",
 		"highSide.inputCapacitance", "highSide.transconductance", "highSide.thresholdVoltage", "lowSide.reverse", "operatingPoints.loadCurrent"},
-	Events: true, Simulated: everyRole,
+	Events: true, Simulated: everyRole, Bounds: true,
 	Sources: []string{"an6076", "slup169", "lauritzen-ma-1991", "textbook"},
 	Fail:    stage.Critical, Marginal: stage.Major, Open: stage.Major,
 	Quantity: "Undershoot of the node", Against: "permitted for its width", Dimension: quantity.Voltage, Sense: rule.AtLeast,

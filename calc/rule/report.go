@@ -225,7 +225,7 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 	swings := w.Swings
 	if w.Space.Frugal {
 		swings, most = b.frugalSwings(w), frugalBreakEvens
-		if f.Outcome == finding.Pass {
+		if f.Outcome == finding.Pass && !r.Bounds {
 			return
 		}
 	}

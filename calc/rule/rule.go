@@ -55,6 +55,8 @@ type Rule struct {
 	Events    bool     // asks about switching events
 	// Simulated tells for which roles the rule judges simulated events where a review asks for them; nil: for none.
 	Simulated func(role string) bool
+	// Bounds asks for break-evens of simulated events where the rule passes, too: how far the board may still be changed.
+	Bounds bool
 	// OnlySimulated rules judge nothing where no event is simulated.
 	OnlySimulated bool
 	Stagewide     bool // does not depend on the kind of mode: one finding for all operating points

@@ -344,6 +344,10 @@ func TestRandomStagesSimulate(t *testing.T) {
 func TestSimulatedBreakEvens(t *testing.T) {
 	tree := with(document(t, "buck48"), append(slow, to("stage.driver.railMin", `"-300 mV"`))...)
 	report := simulated(t, tree)
+	passing := pick(t, &report, "node/undershoot-pulse", "driver")
+	if passing.Outcome != finding.Pass || len(passing.BreakEven) == 0 {
+		t.Errorf("%s with break-evens %v: %s", passing.Outcome, passing.BreakEven, passing.Message)
+	}
 	before := pick(t, &report, "node/rail-below-com", "driver")
 	if before.Outcome != finding.Fail || len(before.BreakEven) < 2 {
 		t.Fatalf("%s with break-evens %v", before.Outcome, before.BreakEven)
