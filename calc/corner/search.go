@@ -82,11 +82,9 @@ type seen struct {
 
 // search is Search; what it sees is appended to log, if any.
 func (s *Space) search(f Function, log *[]seen) Worst {
-	d := s.Typical()
-	v, t := Evaluate(d, f)
-	w := Worst{Space: s, Value: v, Draw: d, Typical: v, Trace: t.clone(), turning: newBits(len(s.inputs))}
-	if !usable(v, t) {
-		w.Value = math.NaN()
+	w := s.typicalAlone(f)
+	v := w.Typical
+	if w.Value != w.Value {
 		return w
 	}
 	done := newBits(len(s.inputs))

@@ -81,27 +81,8 @@ func (p *path) current(v, charge, inner float64) (i, share float64) {
 	if y < -700 {
 		return -base, 0
 	}
-	w := lambert(y)
+	w := numeric.LambertNear(y)
 	return w*p.slopePerSeries - base, w / (1 + w)
-}
-
-// lambert returns numeric.LogLambertPair's w to 1e-9 instead of the last digit: the same start, and one step of the same iteration.
-func lambert(y float64) float64 {
-	var l float64
-	switch {
-	case y < -37:
-		return math.Exp(y)
-	case y > 1:
-		g := math.Log(y)
-		l = g - 2*g*(y+1)/(2*(y+1)*(y+1)-g*y)
-	default:
-		g := math.Exp(y)
-		l = y - 2*g*(1+g)/(2*(1+g)*(1+g)-g*g)
-	}
-	w := math.Exp(l)
-	z := y - l - w
-	q := 2 * (1 + w) * (1 + w + 2*z/3)
-	return w + w*z/(1+w)*(q-z)/(q-2*z)
 }
 
 // rest returns i [A] at the voltage v after everything in the path has come to rest: q_M = τ·i, i_Lfr = i.

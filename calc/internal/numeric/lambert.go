@@ -19,21 +19,39 @@ func LogLambertPair(y float64) (l, w float64) {
 	switch {
 	case y != y || math.IsInf(y, 1):
 		return y, y
-	case y < -37: // e^l is below the last digit of l
+	case y < lambertFloor:
 		return y, math.Exp(y)
-	case y > 1:
-		g := math.Log(y)
-		l = g - 2*g*(y+1)/(2*(y+1)*(y+1)-g*y)
-	default:
-		g := math.Exp(y)
-		l = y - 2*g*(1+g)/(2*(1+g)*(1+g)-g*g)
 	}
+	l = lambertStart(y)
 	w = math.Exp(l)
 	e := lambertCorrection(y-l-w, w)
 	l += e * (1 - e*(1./2-e*(1./3-e*(1./4-e*(1./5-e*(1./6-e*(1./7-e/8))))))) // ln(1 + e), |e| < 0.02
 	w += w * e
 	e = lambertCorrection(y-l-w, w)
 	return l + e, w + w*e
+}
+
+// LambertNear returns LogLambertPair's w to 3e-9, by the first of its two steps alone, for a number y.
+func LambertNear(y float64) float64 {
+	if y < lambertFloor {
+		return math.Exp(y)
+	}
+	l := lambertStart(y)
+	w := math.Exp(l)
+	return w + w*lambertCorrection(y-l-w, w)
+}
+
+// lambertFloor is the y below which e^l is below the last digit of l.
+const lambertFloor = -37
+
+// lambertStart is LogLambertPair's start.
+func lambertStart(y float64) float64 {
+	if y > 1 {
+		g := math.Log(y)
+		return g - 2*g*(y+1)/(2*(y+1)*(y+1)-g*y)
+	}
+	g := math.Exp(y)
+	return y - 2*g*(1+g)/(2*(1+g)*(1+g)-g*g)
 }
 
 func lambertCorrection(z, w float64) float64 {
