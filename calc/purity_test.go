@@ -47,7 +47,7 @@ func TestDependenciesPointOneWay(t *testing.T) {
 	layers := [][]string{ // each may import the ones above it in this list, and none of its own line
 		{"quantity", "source", "internal/numeric"},
 		{"capacitor", "recharge", "preferred"},
-		{"charge", "startup", "transient", "loss"},
+		{"charge", "startup", "transient", "loss", "modulation"},
 		{"stage"},
 		{"finding"},
 		{"corner"},

@@ -4,7 +4,7 @@ package catalog
 import "floatrail/calc/rule"
 
 // RuleSet is the version of the catalogue. It changes whenever a rule's verdict on some stage may change.
-const RuleSet = "2026.12.3"
+const RuleSet = "2026.12.4"
 
 // All lists the rules in their order.
 func All() []*rule.Rule {

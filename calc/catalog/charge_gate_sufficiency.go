@@ -25,20 +25,20 @@ var chargeGateSufficiency = &rule.Rule{
 	},
 	Quantity: "Lowest gate drive of the high side", Against: "drive at which the on-state is specified", Dimension: quantity.Voltage, Sense: rule.AtLeast,
 	Inapplicable: func(_ *stage.Stage, op *stage.OperatingPoint, _ string) string {
-		if op != nil && op.LoadCurrent.Known() && op.RippleCurrent.Known() && op.LoadCurrent.Max+op.RippleCurrent.Max/2 <= 0 {
+		if op != nil && op.Sinusoidal == nil && op.LoadCurrent.Known() && op.RippleCurrent.Known() && op.LoadCurrent.Max+op.RippleCurrent.Max/2 <= 0 {
 			return "the high-side channel carries no forward current"
 		}
 		return ""
 	},
 	Proxy: func(c *circuit.Circuit, _ string) float64 {
-		return c.Gate(c.Low()) - c.Need(&c.Stage.HighSide.DriveVoltageMin)
+		return c.Gate(c.LowForward()) - c.Need(&c.Stage.HighSide.DriveVoltageMin)
 	},
 	ProxyDimension: quantity.Voltage,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.HighSide.DriveVoltageMin)
-		return rule.Check{Value: circuit.Empty(c.Gate(c.Low())), Limit: limit, Guard: limit + c.Margin(limit)}
+		return rule.Check{Value: circuit.Empty(c.Gate(c.LowForward())), Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
-		return slices.Concat(collapseNote(c), cancelNote(c))
+		return slices.Concat(collapseNote(c), cancelNote(c), forwardNote(c))
 	},
 }

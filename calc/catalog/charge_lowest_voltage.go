@@ -26,6 +26,6 @@ var chargeLowestVoltage = &rule.Rule{
 		return rule.Check{Value: circuit.Empty(c.Low()), Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
-		return slices.Concat(collapseNote(c), cancelNote(c))
+		return slices.Concat(collapseNote(c), cancelNote(c), heldNote(c), vanishNotes(c))
 	},
 }

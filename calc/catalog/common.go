@@ -131,7 +131,7 @@ func worst(s rule.Sense, checks ...rule.Check) rule.Check {
 
 // cancelNote tells, where it holds, that a larger capacitor does not help: the window is short against R·C.
 func cancelNote(c *circuit.Circuit) []string {
-	if !CapacitanceCancels(c) {
+	if !c.CapacitanceCancels() {
 		return nil
 	}
 	p := c.Period()
@@ -139,45 +139,49 @@ func cancelNote(c *circuit.Circuit) []string {
 		quantity.Format(p.Window, quantity.Time), quantity.Format(p.Element.Resistance*p.Capacitance, quantity.Time))}
 }
 
-// CapacitanceCancels tells whether the deficit does not depend on C_B.
-func CapacitanceCancels(c *circuit.Circuit) bool {
-	if c.Point == nil || c.Point.FixedDuty == nil {
-		return false
-	}
-	p := c.Period()
-	return p.Window > 0 && p.Window < 0.2*p.Element.Resistance*p.Capacitance
-}
-
 // PeakDetector tells whether V_BS is pumped above what recharge with the low side on would give.
 func PeakDetector(c *circuit.Circuit) bool {
-	if c.Point == nil || c.Point.FixedDuty == nil {
-		return false
+	_, n := pumping(c)
+	return n != ""
+}
+
+// pumping is the period in which V_BS is highest and the name of the interval that pumps it there; empty where that is the low side's on-time.
+func pumping(c *circuit.Circuit) (node float64, name string) {
+	if c.Point == nil || c.Point.HeldOn != nil {
+		return nan, ""
 	}
-	p, st := c.Period(), c.Steady()
-	if st.High != st.High || st.HighInterval < 0 || st.HighInterval >= len(p.Names) {
-		return false
+	p, k := c.HighPeriod()
+	if v := c.Steady().High; v != v || k < 0 || k >= len(p.Names) {
+		return nan, ""
 	}
-	n := p.Names[st.HighInterval]
-	return n == circuit.IntervalFirstDead || n == circuit.IntervalSecondDead || n == circuit.IntervalFreewheel
+	switch n := p.Names[k]; n {
+	case circuit.IntervalFirstDead, circuit.IntervalSecondDead, circuit.IntervalFreewheel:
+		return p.Off[k].Drive - c.Supply(), n
+	}
+	return nan, ""
 }
 
 // pumpNote names the interval that makes the highest V_BS, where it is not the low side's on-time.
 func pumpNote(c *circuit.Circuit) []string {
-	if !PeakDetector(c) {
+	node, name := pumping(c)
+	if name == "" {
 		return nil
 	}
-	p, st := c.Period(), c.Steady()
-	return []string{fmt.Sprintf("the network is a peak detector: the %s, with the node %s below COM, pumps V_BS above what the low side's on-time gives",
-		p.Names[st.HighInterval], quantity.Format(p.Off[st.HighInterval].Drive-c.Supply(), quantity.Voltage))}
+	where := ""
+	if a := c.HighAngle(); a == a {
+		where = " at " + quantity.Format(a, quantity.Angle) + " of the fundamental"
+	}
+	return []string{fmt.Sprintf("the network is a peak detector: the %s%s, with the node %s below COM, pumps V_BS above what the low side's on-time gives",
+		name, where, quantity.Format(node, quantity.Voltage))}
 }
 
 // collapseNote tells that the supply collapses, and how fast.
 func collapseNote(c *circuit.Circuit) []string {
-	if c.Point == nil || c.Point.FixedDuty == nil || !c.Steady().Collapses {
+	if c.Point == nil || c.Point.HeldOn != nil || !c.Steady().Collapses {
 		return nil
 	}
 	text := "no positive steady state: the supply collapses"
-	if n := Periods(c); n > 0 {
+	if n := c.PeriodsToLockout(); n > 0 {
 		text += fmt.Sprintf(" and reaches lockout after %d periods", n)
 	}
 	if c.Period().Window == 0 {
@@ -186,16 +190,53 @@ func collapseNote(c *circuit.Circuit) []string {
 	return []string{text}
 }
 
-// Periods counts the periods from the settled supply until lockout; 0 where that cannot be told.
-func Periods(c *circuit.Circuit) int {
-	p := c.Period()
-	start := c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
-	n := p.PeriodsUntil(start, c.Need(&c.Stage.Driver.UVLOFalling), 100_000)
-	return max(0, n)
+// heldNote tells for how long a modulated leg is without recharge, where that is longer than a period, and where V_BS is lowest.
+func heldNote(c *circuit.Circuit) []string {
+	if c.Point == nil || c.Point.Sinusoidal == nil && c.Point.SixStep == nil && c.Point.Burst == nil {
+		return nil
+	}
+	var out []string
+	if t := c.Unrefreshed(); t > 1/c.Need(&c.Point.SwitchingFrequency) && !math.IsInf(t, 1) {
+		out = append(out, "without recharge for "+quantity.Format(t, quantity.Time))
+	}
+	if a := c.LowAngle(); a == a {
+		out = append(out, "lowest at "+quantity.Format(a, quantity.Angle)+" of the fundamental")
+	}
+	return out
+}
+
+// forwardNote tells where in the fundamental V_BS is lowest while the high-side channel carries forward current.
+func forwardNote(c *circuit.Circuit) []string {
+	if a := c.OnLowAngle(); a == a {
+		return []string{"lowest with forward current in the channel at " + quantity.Format(a, quantity.Angle) + " of the fundamental"}
+	}
+	return nil
+}
+
+// pauseNote tells what a pause between bursts leaves.
+func pauseNote(c *circuit.Circuit) string {
+	m := c.Point.Burst
+	text := "after a pause of " + quantity.Format(c.Need(&m.IdleTime), quantity.Time)
+	switch node := c.Need(&m.IdleNodeVoltage); {
+	case c.Stage.Bootstrap.Element == stage.IntegratedSwitch:
+		text += ", in which the integrated switch does not conduct"
+	case c.Element().Settled(c.Supply()-node, c.Loads().Total()) > 0:
+		text += fmt.Sprintf(", in which the node at %s lets V_BS settle at %s at best", quantity.Format(node, quantity.Voltage),
+			quantity.Format(c.Element().Settled(c.Supply()-node, c.Loads().Total()), quantity.Voltage))
+	default:
+		text += fmt.Sprintf(", in which the node at %s blocks the recharge", quantity.Format(node, quantity.Voltage))
+	}
+	return text
 }
 
 // vanishNotes tells which pulses do not reach the switches.
 func vanishNotes(c *circuit.Circuit) []string {
+	if c.Point != nil && c.Point.Sinusoidal != nil {
+		return vanishOverAngles(c)
+	}
+	if c.Point == nil || c.Point.HeldOn != nil {
+		return nil
+	}
 	p := c.Period()
 	var out []string
 	if p.LowVanishes {
@@ -203,6 +244,22 @@ func vanishNotes(c *circuit.Circuit) []string {
 	}
 	if p.HighVanishes {
 		out = append(out, "the high-side pulse is shorter than the driver passes and vanishes; the low side stays on")
+	}
+	return out
+}
+
+// vanishOverAngles is vanishNotes of a sinusoidal modulation.
+func vanishOverAngles(c *circuit.Circuit) (out []string) {
+	y := c.Cycle()
+	if y.Plan == nil {
+		return nil
+	}
+	t := y.Plan.Timing()
+	if t.LowVanishes {
+		out = append(out, "at some angles the low-side pulse is shorter than the driver passes and vanishes")
+	}
+	if t.HighVanishes {
+		out = append(out, "at some angles the high-side pulse is shorter than the driver passes and vanishes; the low side stays on")
 	}
 	return out
 }

@@ -1,7 +1,6 @@
 package catalog
 
 import (
-	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -19,6 +18,6 @@ var diodeAverageCurrent = &rule.Rule{
 	Inapplicable: withDiode,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.Bootstrap.Diode.AverageCurrentMax)
-		return rule.Check{Value: charge.Consumed(c.Budget()) / c.Period().T, Limit: limit, Guard: below(c, limit)}
+		return rule.Check{Value: c.AverageCurrent(), Limit: limit, Guard: below(c, limit)}
 	},
 }

@@ -26,6 +26,8 @@ var dutyDeadTime = &rule.Rule{
 			return "the low side is a diode; nothing can shoot through"
 		case op != nil && op.HeldOn != nil:
 			return "the high side is held on; there is no switching period"
+		case op != nil && op.SixStep != nil:
+			return "in six-step operation an open sixth of a revolution separates both switches"
 		}
 		return ""
 	},

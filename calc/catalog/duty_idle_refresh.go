@@ -1,6 +1,8 @@
 package catalog
 
 import (
+	"math"
+
 	"floatrail/calc/circuit"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -26,15 +28,20 @@ var dutyIdleRefresh = &rule.Rule{
 		return ""
 	},
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
-		if c.Point != nil && c.Point.Burst != nil {
-			c.Period() // notes why there is no model
-			return rule.Check{Value: nan}
-		}
 		limit := c.Need(&c.Stage.Driver.UVLORising)
-		return rule.Check{Value: c.PrebiasedVoltage(), Limit: limit, Guard: limit + c.Margin(limit)}
+		v := math.Inf(1)
+		if c.Point != nil && c.Point.Burst != nil {
+			v = circuit.Empty(c.Restart())
+		}
+		if p := &c.Stage.Startup.Prebias; !(p.Known() && p.Max == 0) {
+			v = math.Min(v, c.PrebiasedVoltage())
+		}
+		return rule.Check{Value: v, Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
 		switch {
+		case c.Point != nil && c.Point.Burst != nil && k.Value == circuit.Empty(c.Restart()):
+			return []string{pauseNote(c)}
 		case k.Value >= k.Limit:
 		case c.Stage.LowSide.Kind == stage.DiodeOnly:
 			return []string{"the diode of the low side does not pull the node down: C_B is charged against the raised node only, in startup.timeAvailable"}

@@ -13,7 +13,7 @@ import (
 
 var dutyRechargeWindow = &rule.Rule{
 	ID: "duty/recharge-window", Title: "Time that the modulation leaves for recharge", Since: first,
-	Equation: "t_c = low side on, and dead time with the node low; break-even Q_B/i(E - V_required - Q_B/C)",
+	Equation: "t_c = low side on, and dead time with the node low, of a modulation the mean of all periods; break-even Q_B/i(E - V_required - Q_B/C)",
 	Limit:    "the longer of the driver's minimum pulse and the break-even window", Guard: "10 % above the limit",
 	Applies: "operating points with switching periods",
 	Needs: []string{"driver.minimumPulse", "driver.edgeTime", "operatingPoints.fixedDuty.duty", "operatingPoints.switchingFrequency",
@@ -24,7 +24,7 @@ var dutyRechargeWindow = &rule.Rule{
 	Inapplicable: switching,
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		p := c.Period()
-		shortest, even := c.Need(&c.Stage.Driver.MinimumPulse), c.BreakEvenWindow()
+		shortest, even := leastPulse(c), c.BreakEvenWindow()
 		limit := math.Max(shortest, even)
 		if shortest != shortest || even != even {
 			limit = nan
@@ -36,12 +36,15 @@ var dutyRechargeWindow = &rule.Rule{
 	},
 	Alternatives: []func(*circuit.Circuit, string) float64{
 		func(c *circuit.Circuit, _ string) float64 {
-			return c.Period().Window - c.Need(&c.Stage.Driver.MinimumPulse)
+			if modulated(c.Point) {
+				return math.Inf(1)
+			}
+			return c.Period().Window - leastPulse(c)
 		},
 		func(c *circuit.Circuit, _ string) float64 { return c.Period().Window - c.BreakEvenWindow() },
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
-		shortest, even := c.Need(&c.Stage.Driver.MinimumPulse), c.BreakEvenWindow()
+		shortest, even := leastPulse(c), c.BreakEvenWindow()
 		notes := slices.Concat(vanishNotes(c), collapseNote(c), cancelNote(c))
 		switch {
 		case math.IsInf(even, 1):
@@ -51,4 +54,17 @@ var dutyRechargeWindow = &rule.Rule{
 		}
 		return notes
 	},
+}
+
+// modulated tells whether the periods of an operating point differ from one another.
+func modulated(op *stage.OperatingPoint) bool {
+	return op != nil && (op.Sinusoidal != nil || op.SixStep != nil || op.Burst != nil)
+}
+
+// leastPulse is the driver's minimum pulse where each period must pass one [s]; of a modulation some may vanish.
+func leastPulse(c *circuit.Circuit) float64 {
+	if modulated(c.Point) {
+		return 0
+	}
+	return c.Need(&c.Stage.Driver.MinimumPulse)
 }

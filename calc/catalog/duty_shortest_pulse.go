@@ -12,7 +12,7 @@ const shortPulse = 1.5
 
 var dutyShortestPulse = &rule.Rule{
 	ID: "duty/shortest-pulse", Title: "Shortest pulse of the high side", Since: second,
-	Equation: "d·T - t_dt; with a low side that is a diode d·T",
+	Equation: "d·T - t_dt; with a low side that is a diode d·T; of a modulation the shortest one that reaches the switch",
 	Limit:    "shortest pulse that the driver passes", Guard: "1.5 times the limit", Applies: "operating points in which the high side is pulsed",
 	Needs: []string{"driver.minimumPulse", "operatingPoints.fixedDuty.duty", "operatingPoints.switchingFrequency", "operatingPoints.deadTime",
 		"lowSide.kind"},
@@ -29,10 +29,23 @@ var dutyShortestPulse = &rule.Rule{
 				return "the high side is never turned off"
 			}
 		}
+		if op != nil && op.SixStep != nil && op.SixStep.Chopping == "LOW_SIDE" {
+			return "the high side is not pulsed"
+		}
 		return switching(s, op, role)
 	},
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		limit := c.Need(&c.Stage.Driver.MinimumPulse)
-		return rule.Check{Value: c.HighPulse(), Limit: limit, Guard: shortPulse * limit}
+		k := rule.Check{Value: c.HighPulse(), Limit: limit, Guard: shortPulse * limit}
+		if c.Point != nil && c.Point.Sinusoidal != nil && k.Value < limit { // those that reach the switch are no shorter
+			k.Value = limit
+		}
+		return k
+	},
+	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
+		if c.Point == nil || c.Point.Sinusoidal == nil || !(c.HighPulse() < c.Need(&c.Stage.Driver.MinimumPulse)) {
+			return nil
+		}
+		return []string{"at some angles the commanded pulse is shorter than the driver passes and is lost: drop such pulses in the modulator, so that none is cut short"}
 	},
 }

@@ -50,6 +50,11 @@ func (e Edge) Consumed() float64 {
 	return e.Gate + e.OffBias + e.LevelShift + e.Recovery
 }
 
+// Share returns a share of each charge, as where the edge does not occur in every period.
+func (e Edge) Share(share float64) Edge {
+	return Edge{Gate: e.Gate * share, OffBias: e.OffBias * share, LevelShift: e.LevelShift * share, Recovery: e.Recovery * share, Junction: e.Junction * share}
+}
+
 // Interval is the time over which the loads are counted.
 type Interval struct {
 	Period  float64 // time for which the constant currents flow, one period [s]

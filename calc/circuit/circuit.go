@@ -31,7 +31,7 @@ type Circuit struct {
 	capacitanceAt float64
 	edgeAt        edge
 	budgetAt      []charge.Item
-	offAt         [8]recharge.Interval
+	cycleAt       Cycle
 	namesAt       [8]string
 	curveAt       [curves][]transient.CurvePoint
 	events        *events // nil: none asked for yet
@@ -45,6 +45,7 @@ type events struct {
 	slope       [eventCount]float64
 	recovery    [2]transient.Recovery // of the high side, the low side
 	pumped      Period
+	crest       Period // of a modulated operating point
 	steady      recharge.Steady
 	pumpedOff   [10]recharge.Interval
 	pumpedNames [10]string
@@ -84,6 +85,7 @@ const (
 	slotSlope    = slotSwing + int(eventCount)
 	slotRecovery = slotSlope + int(eventCount)
 	slotCourse   = slotRecovery + 2 // one for each event and state of charge
+	slotCycle    = slotCourse + int(charges)*int(eventCount)
 )
 
 var nan = math.NaN()
@@ -184,7 +186,7 @@ func Kind(s *stage.Capacitor) capacitor.Kind {
 // Ceiling is a voltage that V_BS does not exceed: V_DD and the drop of the low side in reverse conduction [V]. Bias curves are read there.
 func (c *Circuit) Ceiling() float64 {
 	v := c.Supply()
-	if c.Point == nil || c.Point.FixedDuty == nil || c.Stage.Bootstrap.Element == stage.IntegratedSwitch {
+	if c.Point == nil || c.Point.HeldOn != nil || c.Stage.Bootstrap.Element == stage.IntegratedSwitch {
 		return v
 	}
 	if i := c.peakCurrent(); i > 0 {

@@ -56,6 +56,15 @@ func (c *Circuit) Current(e Event) float64 {
 		return c.NoPoint()
 	}
 	sourcing, l := e == TurnOff || e == TurnOn, &c.Point.LoadCurrent
+	if alternates(c.Point) { // both signs occur, at the crest of either
+		switch {
+		case l.OpenAbove:
+			return c.Want(l.Field + ".max")
+		case e.off():
+			return max(c.peakCurrent(), 0)
+		}
+		return max(c.valleyCurrent(), 0)
+	}
 	switch { // how large it becomes is not known
 	case sourcing && l.OpenAbove:
 		return c.Want(l.Field + ".max")

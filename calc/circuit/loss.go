@@ -3,7 +3,6 @@ package circuit
 import (
 	"math"
 
-	"floatrail/calc/charge"
 	"floatrail/calc/loss"
 	"floatrail/calc/stage"
 )
@@ -15,8 +14,6 @@ func (c *Circuit) frequency() float64 {
 		return c.NoPoint()
 	case c.Point.HeldOn != nil:
 		return 0
-	case c.Point.FixedDuty == nil:
-		return c.Open(noModel)
 	}
 	return c.Need(&c.Point.SwitchingFrequency)
 }
@@ -59,10 +56,10 @@ func (c *Circuit) DriverPower() float64 {
 	if f == 0 {
 		return p
 	}
-	average := charge.Consumed(c.Budget()) * f
+	average := c.AverageCurrent()
 	switch c.Stage.Bootstrap.Element {
 	case stage.IntegratedDiode:
-		p += loss.Forward(c.Period().Element.Junction.Voltage(average), average) + loss.Recovery(1, c.recoveredCharge(), bus, f)
+		p += loss.Forward(c.Element().Junction.Voltage(average), average) + loss.Recovery(1, c.recoveredCharge(), bus, f)
 	case stage.IntegratedSwitch:
 		p += c.elementPower(c.Need(&c.Stage.Bootstrap.SwitchResistance))
 	}
@@ -95,7 +92,7 @@ func (c *Circuit) DiodeRise() (rise float64, stable bool) {
 		return loss.Rise(c.Need(&d.ThermalResistance), 0, loss.Leakage(bus, leakage))
 	}
 	p := c.Period()
-	average := charge.Consumed(c.Budget()) / p.T
+	average := c.AverageCurrent()
 	constant := loss.Forward(p.Element.Junction.Voltage(average), average) + loss.Recovery(1, c.recoveredCharge(), bus, f)
 	return loss.Rise(c.Need(&d.ThermalResistance), constant, loss.Leakage(bus, leakage)*p.OnTime/p.T)
 }
@@ -118,7 +115,7 @@ func (c *Circuit) SupplyCurrent() float64 {
 		i += q * f
 	}
 	if f > 0 {
-		i += charge.Consumed(c.Budget()) * f
+		i += c.AverageCurrent()
 	} else {
 		i += c.Loads().Total()
 	}

@@ -15,6 +15,7 @@ const (
 	IntervalLowSide    = "low side on"
 	IntervalFreewheel  = "freewheeling of the low-side diode"
 	IntervalSecondDead = "dead time before the high side turns on"
+	IntervalIdle       = "pause between bursts"
 	IntervalNone       = ""
 )
 
@@ -31,17 +32,19 @@ type Period struct {
 	LowVanishes  bool     // the low-side pulse is shorter than the driver passes
 }
 
-// peakCurrent and valleyCurrent are the ends of the ripple of the current out of the node [A].
+// peakCurrent and valleyCurrent are the ends of the ripple of the current out of the node [A]; of one that runs through both signs those at the
+// crest at which it leaves the node.
 func (c *Circuit) peakCurrent() float64 { return c.current(1) }
 
 func (c *Circuit) valleyCurrent() float64 { return c.current(-1) }
 
-// current is the load current with half the ripple to one side [A]. That of a modulated leg runs through both signs.
+// current is the load current with half the ripple to one side [A].
 func (c *Circuit) current(side float64) float64 {
+	i := c.Need(&c.Point.LoadCurrent)
 	if alternates(c.Point) {
-		return c.Open(noModel)
+		i = math.Abs(i)
 	}
-	return c.Need(&c.Point.LoadCurrent) + side*c.Need(&c.Point.RippleCurrent)/2
+	return i + side*c.Need(&c.Point.RippleCurrent)/2
 }
 
 // alternates tells whether the current of an operating point runs through both signs.
@@ -164,122 +167,27 @@ func (c *Circuit) outputCharge(s *stage.Switch, v float64) float64 {
 	return c.output(s).Charge(v)
 }
 
-// Modes that this rule set has no model for.
-const noModel = "no model of this mode of operation in this rule set"
-
-// Period lays out one switching period [design 4.3]. Only a fixed duty has one.
+// Period lays out one switching period [design 4.3]; of a modulated operating point the one in which V_BS is lowest.
 func (c *Circuit) Period() *Period {
 	return corner.Memo(c.Draw, slotPeriod, false, &c.periodAt, c.period)
 }
 
 func (c *Circuit) period() Period {
-	if c.Point == nil {
+	switch {
+	case c.Point == nil:
 		c.NoPoint()
 		return Period{}
-	}
-	if c.Point.FixedDuty == nil {
-		c.Open(noModel)
+	case c.Point.HeldOn != nil:
+		c.Open("the high side is held on; there is no switching period")
 		return Period{}
+	case c.modulated():
+		return c.representative()
 	}
-	op, s := c.Point, c.Stage
-	d, f := c.Need(&op.FixedDuty.Duty), c.Need(&op.SwitchingFrequency)
-	dead := c.Need(&op.DeadTime)
-	bus, vdd := c.Need(&op.BusVoltage), c.Supply()
-	load, peak, valley := c.Need(&op.LoadCurrent), c.peakCurrent(), c.valleyCurrent()
-	shortest := c.shortestPulse()
-	el, loads, e := c.Element(), c.Loads(), c.edge()
-	if s.LowSide.Kind == "" {
-		c.Want(s.LowSide.Field + ".kind")
+	l, d := c.leg(), c.Need(&c.Point.FixedDuty.Duty)
+	if t, ok := c.Has(&c.Point.FixedDuty.LowSideOnTime); ok {
+		l.LowTime = t
 	}
-	p := Period{T: 1 / f}
-	p.Element, p.Capacitance = el, c.Capacitance()
-	i0 := loads.Total()
-	p.OnTime = d * p.T
-	low := (1 - d) * p.T
-	diode := s.LowSide.Kind == stage.DiodeOnly
-	if d < 1 && d > 0 && !diode {
-		p.OnTime = math.Max(0, p.OnTime-dead)
-		low = math.Max(0, low-dead)
-	}
-	rest := 0.0 // neither switch conducts and the node floats
-	if t, ok := c.Has(&op.FixedDuty.LowSideOnTime); ok && t < low {
-		rest, low = low-t, t
-	}
-	p.HighVanishes = p.OnTime < shortest
-	p.LowVanishes = d > 0 && !diode && low < shortest
-
-	add := func(name string, t, node float64, conducts bool) {
-		if t <= 0 {
-			return
-		}
-		p.Off = append(p.Off, recharge.Interval{Duration: t, Drive: vdd - node, Conducts: conducts, Load: i0})
-		p.Names = append(p.Names, name)
-		if conducts {
-			p.Window += t
-		}
-	}
-	p.Off, p.Names = c.offAt[:0], c.namesAt[:0]
-	if p.HighVanishes { // the low side stays on, or its diode carries the current
-		p.OnTime, p.LowOnTime = 0, p.T
-		if diode {
-			add(IntervalFreewheel, p.T, c.freewheelNode(load), load > 0)
-		} else {
-			add(IntervalLowSide, p.T, c.LowSideNode(load), true)
-		}
-		p.On = recharge.Interval{Drive: vdd - bus, Load: i0}
-		return p
-	}
-	fall := 0.0
-	if peak > 0 {
-		fall = (c.outputCharge(&s.HighSide, bus) + c.outputCharge(&s.LowSide, bus)) / peak
-	}
-	// A period begins as the node rises. Where it rises before the high side turns on, the loads of the time between are drawn with the edge:
-	// the element is blocked, and V_BS is lowest after both.
-	blocked := 0.0
-	free := !el.Switch // a diode conducts whenever the node is low
-	switch {
-	case d >= 1:
-		p.OnTime = p.T
-	case diode || p.LowVanishes:
-		// The node is low only while the load current freewheels through the low side.
-		t := low
-		if p.LowVanishes {
-			t = low + 2*dead // both dead times and the pulse that vanished
-			t = math.Min(t, p.T-p.OnTime)
-		}
-		fall = math.Min(fall, t)
-		blocked = rest
-		add(IntervalNone, fall, bus, false)
-		add(IntervalFreewheel, t-fall, c.freewheelNode(load), load > 0 && free)
-	default:
-		p.LowOnTime = low
-		held := valley > 0 && rest == 0
-		if !held {
-			blocked = rest + dead
-		}
-		if peak > 0 {
-			t := math.Min(fall, dead)
-			add(IntervalNone, t, bus, false)
-			add(IntervalFirstDead, dead-t, c.freewheelNode(peak), free)
-		} else {
-			add(IntervalNone, dead, bus, false)
-		}
-		add(IntervalLowSide, low, c.LowSideNode(load), true)
-		if held {
-			add(IntervalSecondDead, dead, c.freewheelNode(valley), free)
-		}
-	}
-	p.On = recharge.Interval{Duration: p.OnTime, Drive: vdd - bus, Conducts: free && bus < vdd, Load: i0, Conductance: loads.PullDown}
-	if d >= 1 { // nothing rises or falls
-		return p
-	}
-	p.Edges = true
-	p.Charge = e.gate + e.offBias + e.levelShift + e.junction + i0*blocked
-	p.ChargePerVolt = e.gatePerVolt
-	p.ChargeLeast = e.offBias + e.levelShift + e.junction + i0*blocked
-	p.Return = e.junction
-	p.RecoverySpec, p.RecoveryTau = e.recovery, e.tau
-	return p
+	return c.described(l.Fixed(d, c.Need(&c.Point.LoadCurrent)), c.namesAt[:0])
 }
 
 // freewheelNode is the node voltage while a current out of the node flows through the low side in reverse, and the shunt [V]; 0 where it
@@ -304,6 +212,9 @@ func (p *Period) complete() bool {
 // Steady is the periodic steady state; its numbers are NaN where the period is incomplete.
 func (c *Circuit) Steady() *recharge.Steady {
 	return corner.Memo(c.Draw, slotSteady, true, &c.steadyAt, func() recharge.Steady {
+		if c.modulated() {
+			return c.overall()
+		}
 		offset := nan
 		if typ := c.typical(); typ != c {
 			offset = typ.Steady().Offset
@@ -330,6 +241,9 @@ func (c *Circuit) solve(p *Period, offset float64) recharge.Steady {
 // Settled is the voltage toward which recharge tends [V]: at the drop of the junction alone at the mean recharge current, from which the
 // deficit of the steady state counts. Where there is none, at the drop of the whole element at the standing load.
 func (c *Circuit) Settled() float64 {
+	if c.modulated() {
+		return c.settledCycle()
+	}
 	if st := c.Steady(); st.Deficit == st.Deficit {
 		return st.Low + st.Deficit
 	}
@@ -348,6 +262,26 @@ func (c *Circuit) Settled() float64 {
 		return el.Settled(c.Supply(), c.Loads().Total())
 	}
 	return best
+}
+
+// settledCycle is Settled of a modulated operating point: in the period in which V_BS is lowest, where that is one with recharge, else V_BS before the
+// time without recharge in which it falls.
+func (c *Circuit) settledCycle() float64 {
+	y := c.Cycle()
+	if y.Plan == nil || y.Collapses {
+		return c.Element().Settled(c.Supply(), c.Loads().Total())
+	}
+	p := c.Period()
+	best := math.Inf(-1)
+	for i := range p.Off {
+		if iv := &p.Off[i]; iv.Conducts {
+			best = math.Max(best, iv.Drive)
+		}
+	}
+	if math.IsInf(best, -1) {
+		return y.Held
+	}
+	return best - recharge.Element{Junction: p.Element.Junction, Switch: p.Element.Switch}.Drop(math.Max(c.AverageCurrent()*p.T/p.Window, p.On.Load))
 }
 
 // recharged is the voltage that the longest conducting interval reaches when it carries the mean recharge current of a charge per period [V].
@@ -377,6 +311,10 @@ func (c *Circuit) Hold() (h charge.Hold, duration float64) {
 // lowVanishes tells whether the low-side pulse of a fixed duty is shorter than the driver passes.
 func (c *Circuit) lowVanishes() bool {
 	op := c.Point
+	if c.modulated() {
+		y := c.Cycle()
+		return y.Plan != nil && y.Plan.Timing().LowVanishes
+	}
 	if op.FixedDuty == nil {
 		return false
 	}
@@ -393,15 +331,18 @@ func (c *Circuit) shortestPulse() float64 {
 	return c.Need(&c.Stage.Driver.MinimumPulse) + c.Need(&c.Stage.Driver.EdgeTime)
 }
 
-// HighPulse is the pulse that the high side is commanded for in a period, whether the driver passes it or not [s].
+// HighPulse is the shortest pulse that the high side is commanded for, whether the driver passes it or not [s]; +Inf where it is commanded for none.
 func (c *Circuit) HighPulse() float64 {
 	switch {
 	case c.Point == nil:
 		return c.NoPoint()
-	case c.Point.FixedDuty == nil:
-		return c.Open(noModel)
 	case c.Stage.LowSide.Kind == "":
 		return c.Want(c.Stage.LowSide.Field + ".kind")
+	case c.modulated():
+		if y := c.Cycle(); y.Plan != nil {
+			return y.Plan.Timing().ShortestHigh
+		}
+		return nan
 	}
 	pulse := c.Need(&c.Point.FixedDuty.Duty) / c.Need(&c.Point.SwitchingFrequency)
 	if c.Stage.LowSide.Kind != stage.DiodeOnly {

@@ -35,7 +35,7 @@ func (c *Circuit) Pumped() *Period {
 func (c *Circuit) pumped() Period {
 	defer func(was bool) { c.estimating = was }(c.estimating)
 	c.estimating = false // what is kept with the draw is what the space asks for, whatever one rule looks at
-	p := *c.Period()
+	p := *c.base()
 	k := c.kept()
 	off, names := k.pumpedOff[:0], k.pumpedNames[:0]
 	var buf [len(dipLevels)]Plateau
@@ -77,6 +77,38 @@ func (c *Circuit) pumped() Period {
 	}
 	p.Off, p.Names = off, names
 	return p
+}
+
+// base is the period on which undershoots act: of a modulated operating point that in which the largest current leaves the node, as if it
+// repeated. V_BS over a whole fundamental does not rise above what the strongest of its periods would bring it to.
+func (c *Circuit) base() *Period {
+	if !c.modulated() {
+		return c.Period()
+	}
+	k := c.kept()
+	k.crest = c.crest()
+	return &k.crest
+}
+
+func (c *Circuit) crest() Period {
+	op, y := c.Point, c.Cycle()
+	if y.Plan == nil {
+		return Period{}
+	}
+	share := 0.0 // of the fundamental
+	switch {
+	case op.Sinusoidal != nil:
+		share = math.Mod(c.Need(&op.Sinusoidal.DisplacementAngle)/(2*math.Pi)+1.25, 1)
+		if c.Need(&op.LoadCurrent) < 0 {
+			share = math.Mod(share+0.5, 1)
+		}
+	case op.SixStep != nil:
+		share = 0.25
+		if c.Need(&op.LoadCurrent) < 0 {
+			share = 0.75
+		}
+	}
+	return c.described(y.Plan.Alone(math.Floor(share*float64(y.Plan.Periods()))), nil)
 }
 
 // parts divides the dip of an event. A current that falls drives the flux L2·I into the loop of COM, so that the inductance shares in the depth
@@ -126,7 +158,7 @@ func follows(names []string, name string) bool {
 // pumpedSteadyState is the periodic steady state with the undershoots.
 func (c *Circuit) pumpedSteadyState() *recharge.Steady {
 	return corner.Memo(c.Draw, slotPumpedSteady, true, &c.kept().steady, func() recharge.Steady {
-		if len(c.Pumped().Off) == len(c.Period().Off) { // nothing dips
+		if len(c.Pumped().Off) == len(c.base().Off) { // nothing dips
 			return *c.Steady()
 		}
 		offset := nan
@@ -143,8 +175,11 @@ func (c *Circuit) Highest() float64 {
 		return c.High()
 	}
 	st := c.pumpedSteadyState()
-	if st.Collapses {
+	switch {
+	case st.Collapses:
 		return c.High()
+	case c.modulated():
+		return math.Max(c.High(), c.clamped(st.High))
 	}
 	return c.clamped(st.High)
 }
@@ -155,8 +190,11 @@ func (c *Circuit) Unclamped() float64 {
 		return c.Need(&c.Point.HeldOn.InitialVoltage)
 	}
 	st := c.pumpedSteadyState()
-	if st.Collapses {
+	switch {
+	case st.Collapses:
 		return c.Settled()
+	case c.modulated():
+		return math.Max(c.Steady().High, st.High)
 	}
 	return st.High
 }
@@ -198,7 +236,7 @@ func (c *Circuit) Normal() float64 {
 	if c.Point == nil || c.Point.HeldOn != nil {
 		return c.Element().Settled(c.Supply(), c.Loads().Total())
 	}
-	p, best := c.Period(), nan
+	p, best := c.base(), nan
 	for i := range p.Off {
 		iv, name := &p.Off[i], p.Names[i]
 		if !iv.Conducts || name == IntervalFirstDead || name == IntervalSecondDead {
@@ -216,5 +254,9 @@ func (c *Circuit) PumpedPeak() float64 {
 	if c.Point == nil {
 		return c.NoPoint()
 	}
-	return c.peak(c.Pumped(), c.pumpedSteadyState())
+	peak := c.peak(c.Pumped(), c.pumpedSteadyState())
+	if c.modulated() { // after a pause or a hold more flows than at the crest
+		peak = math.Max(peak, c.RepetitivePeak())
+	}
+	return peak
 }

@@ -6,6 +6,7 @@ import (
 	"floatrail/calc/charge"
 	"floatrail/calc/corner"
 	"floatrail/calc/loss"
+	"floatrail/calc/modulation"
 	"floatrail/calc/recharge"
 )
 
@@ -15,11 +16,55 @@ func (c *Circuit) Low() float64 {
 		h, t := c.Hold()
 		return h.Voltage(t)
 	}
+	if c.modulated() {
+		y := c.Cycle()
+		if y.Collapses {
+			return math.Inf(-1)
+		}
+		return y.Low.Value
+	}
 	st := c.Steady()
 	if st.Collapses {
 		return math.Inf(-1)
 	}
 	return st.Low
+}
+
+// LowForward is the lowest V_BS while the high-side channel carries forward current [V]; +Inf where it never does.
+func (c *Circuit) LowForward() float64 {
+	if c.modulated() {
+		y := c.Cycle()
+		switch {
+		case y.Collapses:
+			return math.Inf(-1)
+		case y.Plan != nil && y.OnLow.Period < 0:
+			return math.Inf(1)
+		}
+		return y.OnLow.Value
+	}
+	if v := c.Low(); c.Forward() || v != v {
+		return v
+	}
+	return math.Inf(1)
+}
+
+// Reserve is the smaller distance of the lowest V_BS to the falling lockout, and of the lowest while the high-side channel carries forward current to
+// the specified drive [V].
+func (c *Circuit) Reserve() float64 {
+	spare := c.Low() - c.Need(&c.Stage.Driver.UVLOFalling)
+	if c.Forward() {
+		spare = math.Min(spare, c.LowForward()-c.driveNeeded())
+	}
+	return spare
+}
+
+// driveNeeded is the V_BS at which the gate has the drive of the specified on-state [V].
+func (c *Circuit) driveNeeded() float64 {
+	drive := c.Need(&c.Stage.HighSide.DriveVoltageMin)
+	if b := c.OffBias(&c.Stage.HighSide); b.Split {
+		drive -= b.Voltage
+	}
+	return drive
 }
 
 // Empty cuts a voltage at 0: the hold law continues below, where C_B is empty. A collapse stays what it is [V].
@@ -53,18 +98,218 @@ func (c *Circuit) Gate(vbs float64) float64 { return c.OffBias(&c.Stage.HighSide
 // channel carries forward current [V].
 func (c *Circuit) Required() float64 {
 	v := c.Need(&c.Stage.Driver.UVLOFalling)
-	if c.Forward() {
-		drive := c.Need(&c.Stage.HighSide.DriveVoltageMin)
-		if b := c.OffBias(&c.Stage.HighSide); b.Split {
-			drive -= b.Voltage
+	if c.modulated() {
+		if c.driveBinds() {
+			return c.driveNeeded()
 		}
-		v = math.Max(v, drive)
+		return v
+	}
+	if c.Forward() {
+		v = math.Max(v, c.driveNeeded())
 	}
 	return v
 }
 
-// Forward tells whether the high-side channel carries forward current in its on-time.
-func (c *Circuit) Forward() bool { return c.Point != nil && c.peakCurrent() > 0 }
+// driveBinds tells whether at a modulated operating point the drive while the channel carries forward current is nearer to its limit than the lowest
+// V_BS to its lockout.
+func (c *Circuit) driveBinds() bool {
+	y := c.Cycle()
+	return c.Forward() && y.OnLow.Value-c.driveNeeded() < y.Low.Value-c.Need(&c.Stage.Driver.UVLOFalling)
+}
+
+// fallen is V_BS before a modulated operating point's binding fall, and at its end [V].
+func (c *Circuit) fallen() (from, to float64) {
+	y := c.Cycle()
+	if c.driveBinds() {
+		return y.OnHeld, y.OnLow.Value
+	}
+	return y.Held, y.Low.Value
+}
+
+// Droop is the fall of V_BS from before a rising edge to the next recharge, the largest of all periods [V]; +Inf where nothing is known of it.
+func (c *Circuit) Droop() float64 {
+	if c.modulated() {
+		y := c.Cycle()
+		if y.Collapses && y.Droop != y.Droop {
+			return math.Inf(1)
+		}
+		return y.Droop
+	}
+	st := c.Steady()
+	if st.Collapses {
+		p := c.Period()
+		return (p.Charge + p.ChargePerVolt*c.Required() + p.On.Load*p.OnTime) / p.Capacitance
+	}
+	return st.BeforeEdge - st.Low
+}
+
+// Restart is V_BS at the first pulse after the pause of a burst [V].
+func (c *Circuit) Restart() float64 {
+	y := c.Cycle()
+	if y.Collapses && y.Start != y.Start {
+		return 0
+	}
+	return y.Start
+}
+
+// Unrefreshed is the longest time from the end of a recharge to the end of an on-time before the next one [s]; +Inf where nothing recharges C_B.
+func (c *Circuit) Unrefreshed() float64 {
+	if y := c.Cycle(); y.Plan != nil {
+		return y.Plan.Timing().WithoutRefresh
+	}
+	return nan
+}
+
+// LongestOn is the longest uninterrupted on-time of the high side at a modulated operating point [s].
+func (c *Circuit) LongestOn() float64 {
+	if y := c.Cycle(); y.Plan != nil {
+		return y.Plan.Timing().LongestOn
+	}
+	return nan
+}
+
+// ShortestLow is the shortest pulse of the low side at a modulated operating point [s]; +Inf without any.
+func (c *Circuit) ShortestLow() float64 {
+	if y := c.Cycle(); y.Plan != nil {
+		return y.Plan.Timing().ShortestLow
+	}
+	return nan
+}
+
+// Endures is how long a modulated operating point's longest time without recharge could last until V_BS falls to what it must keep [s].
+func (c *Circuit) Endures() float64 {
+	t := c.Unrefreshed()
+	y := c.Cycle()
+	if y.Plan == nil || math.IsInf(t, 1) || y.Collapses && y.Held != y.Held {
+		return t * 0
+	}
+	keep := c.Required()
+	from, to := c.fallen()
+	h := charge.Hold{Start: to, Capacitance: c.Capacitance(), Loads: c.Loads()}
+	if to >= keep {
+		return t + h.Time(keep)
+	}
+	e := c.edge()
+	h.Start = (h.Capacitance*from - e.gate - e.offBias - e.levelShift - e.junction) / (h.Capacitance + e.gatePerVolt)
+	return math.Min(h.Time(keep), t*(1-1e-3))
+}
+
+// Stall is how long the high side can stay on where the fundamental stops as it turns on for long, from V_BS in running operation to what V_BS must
+// keep [s]; +Inf where the modulation never holds it on, and a stalled leg goes on switching.
+func (c *Circuit) Stall() float64 {
+	y := c.Cycle()
+	switch {
+	case y.Plan == nil:
+		return nan
+	case y.Collapses:
+		return 0
+	case !(c.LongestOn() > y.Plan.Carrier()):
+		return math.Inf(1)
+	}
+	e := c.edge()
+	h := charge.Hold{Capacitance: c.Capacitance(), Loads: c.Loads()}
+	h.Start = (h.Capacitance*y.Held - e.gate - e.offBias - e.levelShift - e.junction) / (h.Capacitance + e.gatePerVolt)
+	keep := c.Need(&c.Stage.Driver.UVLOFalling)
+	if c.Forward() {
+		keep = math.Max(keep, c.driveNeeded())
+	}
+	return h.Time(keep)
+}
+
+// HighPeriod is the period in which V_BS is highest, and the number of the interval that ends there; negative: the edge or the on-time.
+func (c *Circuit) HighPeriod() (*Period, int) {
+	if !c.modulated() {
+		return c.Period(), c.Steady().HighInterval
+	}
+	y := c.Cycle()
+	if y.Plan == nil || y.High.Period < 0 {
+		return c.Period(), -1
+	}
+	at := y.Plan.At(y.High.Period)
+	flow := at.Element.Flow()
+	pass := flow.Pass(&at.Period, y.High.Before)
+	p := c.described(at, nil)
+	return &p, pass.HighInterval
+}
+
+// LowAngle and HighAngle are where in the fundamental V_BS is lowest and highest [rad]; NaN where the operating point has none.
+func (c *Circuit) LowAngle() float64 { return c.angle(func(y *Cycle) float64 { return y.Low.Period }) }
+
+// HighAngle is documented with LowAngle.
+func (c *Circuit) HighAngle() float64 {
+	return c.angle(func(y *Cycle) float64 { return y.High.Period })
+}
+
+// OnLowAngle is where in the fundamental V_BS is lowest while the high-side channel carries forward current [rad].
+func (c *Circuit) OnLowAngle() float64 {
+	return c.angle(func(y *Cycle) float64 { return y.OnLow.Period })
+}
+
+func (c *Circuit) angle(of func(*Cycle) float64) float64 {
+	if c.Point == nil || !alternates(c.Point) {
+		return nan
+	}
+	y := c.Cycle()
+	if y.Plan == nil || !(of(y) >= 0) {
+		return nan
+	}
+	return y.Plan.Angle(of(y))
+}
+
+// CapacitanceCancels tells whether the deficit does not depend on C_B: the recharge window is short against R·C. Over a fundamental it is so where
+// twice the capacitance takes less than a tenth off the fall of V_BS below where recharge tends to.
+func (c *Circuit) CapacitanceCancels() bool {
+	switch {
+	case c.Point == nil || c.Point.HeldOn != nil:
+		return false
+	case !c.modulated():
+		p := c.Period()
+		return p.Window > 0 && p.Window < 0.2*p.Element.Resistance*p.Capacitance
+	}
+	y := c.Cycle()
+	if y.Plan == nil || !y.Converged {
+		return false
+	}
+	if w, p := y.perPeriod(y.Window), c.Period(); !(w > 0) || w > 0.2*p.Element.Resistance*p.Capacitance {
+		return false
+	}
+	twice := y.Plan.WithCapacitance(2 * c.Capacitance()).Steady(y.Start)
+	if y.Collapses || twice.Collapses {
+		return y.Collapses && twice.Collapses
+	}
+	return c.Settled()-twice.Low.Value > 0.9*(c.Settled()-y.Low.Value)
+}
+
+// PeriodsToLockout counts the periods from the settled supply until V_BS falls below its lockout; 0 where that cannot be told.
+func (c *Circuit) PeriodsToLockout() int {
+	lockout := c.Need(&c.Stage.Driver.UVLOFalling)
+	if c.modulated() {
+		y := c.Cycle()
+		if y.Plan == nil {
+			return 0
+		}
+		return max(0, y.Plan.PeriodsUntil(c.Supply()-c.Element().Drop(1e-3), lockout, mostModulated))
+	}
+	start := c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
+	return max(0, c.Period().PeriodsUntil(start, lockout, mostCounted))
+}
+
+// How many periods are counted until lockout; where each has a law of its own fewer.
+const (
+	mostCounted   = 100_000
+	mostModulated = 20_000
+)
+
+// Forward tells whether the high-side channel carries forward current in some on-time.
+func (c *Circuit) Forward() bool {
+	switch {
+	case c.Point == nil:
+		return false
+	case c.Point.SixStep != nil: // in the sector of the high side the current has the sign that is written
+		return c.Need(&c.Point.LoadCurrent)+c.Need(&c.Point.RippleCurrent)/2 > 0
+	}
+	return c.peakCurrent() > 0
+}
 
 // Margin is the policy's margin on a threshold [V].
 func (c *Circuit) Margin(limit float64) float64 {
@@ -84,7 +329,11 @@ func (c *Circuit) budget() []charge.Item {
 		v, rec = c.Required(), p.RecoverySpec
 	}
 	edge := charge.Edge{}
-	if p.Edges {
+	switch {
+	case c.modulated():
+		y := c.Cycle()
+		edge = c.EdgeCharges(v, rec).Share(y.perPeriod(y.Gates))
+	case p.Edges:
 		edge = c.EdgeCharges(v, rec)
 	}
 	return charge.AppendItems(c.budgetAt[:0], c.Loads(), edge, charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
@@ -100,7 +349,13 @@ func (c *Circuit) Drop(keep float64) float64 {
 }
 
 // Left is what recharge leaves above a voltage that V_BS must keep [V].
-func (c *Circuit) Left(keep float64) float64 { return c.recharged(charge.Consumed(c.Budget())) - keep }
+func (c *Circuit) Left(keep float64) float64 {
+	if c.modulated() {
+		from, _ := c.fallen()
+		return from - keep
+	}
+	return c.recharged(charge.Consumed(c.Budget())) - keep
+}
 
 // PermittedRipple is the policy's share of V_BS before the rising edge, or of the required voltage where there is no steady state [V].
 func (c *Circuit) PermittedRipple() float64 {
@@ -122,6 +377,10 @@ func (c *Circuit) CycleCharge() float64 {
 	if c.Point.HeldOn != nil {
 		h, t := c.Hold()
 		return h.Capacitance * (h.Start - h.Voltage(t))
+	}
+	if c.modulated() {
+		from, to := c.fallen()
+		return c.Capacitance() * (from - to)
 	}
 	return charge.Total(c.Budget())
 }
@@ -145,26 +404,74 @@ func (c *Circuit) MinimumCapacitance(keep float64) float64 {
 // required voltage [s]. The element then delivers the mean of the currents that it carries in the parts of the window at the required voltage
 // and the ripple above it; +Inf where they carry none.
 func (c *Circuit) BreakEvenWindow() float64 {
+	if c.modulated() {
+		return c.breakEvenOfCycle()
+	}
 	p := c.Period()
 	q := charge.Consumed(c.Budget())
 	v := c.Required() + q/p.Capacitance
 	if v != v || !(p.Capacitance > 0) {
 		return nan
 	}
-	sum := 0.0 // charge that the window would bring
-	for i := range p.Off {
-		if iv := &p.Off[i]; iv.Conducts {
-			sum += iv.Duration * math.Max(0, p.Element.Current(iv.Drive-v))
-		}
+	return breakEven(q, brought(&p.Period, v), p.Window, p.On.Load)
+}
+
+// breakEvenOfCycle is BreakEvenWindow of a modulated operating point, whose windows are taken to grow all alike.
+func (c *Circuit) breakEvenOfCycle() float64 {
+	y := c.Cycle()
+	if y.Plan == nil {
+		return nan
 	}
-	if mean := sum / p.Window; mean > p.On.Load {
+	from, to := c.fallen()
+	v := c.Required() + from - to
+	if v != v {
+		if y.Collapses {
+			return math.Inf(1)
+		}
+		return nan
+	}
+	sum := 0.0
+	y.Each(func(at modulation.Layout, _, weight float64) { sum += weight * brought(&at.Period, v) })
+	return breakEven(y.perPeriod(y.Charge), y.perPeriod(sum), y.perPeriod(y.Window), c.Loads().Total())
+}
+
+// breakEven is the window that brings a charge where another one brings so much [s], [C], if it carries more than the load [A].
+func breakEven(q, brings, window, load float64) float64 {
+	if mean := brings / window; mean > load {
 		return q / mean
 	}
 	return math.Inf(1)
 }
 
+// brought is the charge that the recharge window of a period would bring at a floating voltage [C], [V].
+func brought(p *recharge.Period, v float64) float64 {
+	sum := 0.0
+	for i := range p.Off {
+		if iv := &p.Off[i]; iv.Conducts {
+			sum += iv.Duration * math.Max(0, p.Element.Current(iv.Drive-v))
+		}
+	}
+	return sum
+}
+
 // RepetitivePeak is the largest current of the element in the steady state [A].
-func (c *Circuit) RepetitivePeak() float64 { return c.peak(c.Period(), c.Steady()) }
+func (c *Circuit) RepetitivePeak() float64 {
+	if !c.modulated() {
+		return c.peak(c.Period(), c.Steady())
+	}
+	y := c.Cycle()
+	switch {
+	case y.Plan == nil || !y.Converged:
+		return nan
+	case y.Collapses:
+		return peakFrom(&c.base().Period, 0)
+	}
+	peak := 0.0
+	y.eachPass(func(at modulation.Layout, p recharge.Passage, _ float64) {
+		peak = math.Max(peak, peakFrom(&at.Period, p.OnEnd+at.Return/at.Capacitance))
+	})
+	return peak
+}
 
 // peak is the largest current of the element over a period in its steady state [A].
 func (c *Circuit) peak(p *Period, st *recharge.Steady) float64 {
@@ -172,6 +479,11 @@ func (c *Circuit) peak(p *Period, st *recharge.Steady) float64 {
 	if st.Collapses {
 		v = 0
 	}
+	return peakFrom(&p.Period, v)
+}
+
+// peakFrom is the largest current of the element from V_BS = v [V] at the end of the on-time on [A].
+func peakFrom(p *recharge.Period, v float64) float64 {
 	peak := 0.0
 	if v != v {
 		return nan
@@ -193,15 +505,44 @@ func (c *Circuit) ResistorPower() float64 {
 
 // elementPower is the mean power of a resistance r [ohm] of the element in the steady state [W].
 func (c *Circuit) elementPower(r float64) float64 {
+	if c.modulated() {
+		y := c.Cycle()
+		if y.Plan == nil || y.Collapses || !y.Converged {
+			return nan
+		}
+		energy := 0.0
+		y.eachPass(func(at modulation.Layout, p recharge.Passage, weight float64) {
+			energy += weight * resistorEnergy(&at.Period, p.OnEnd+at.Return/at.Capacitance, r)
+		})
+		return energy / y.Plan.Time()
+	}
 	p, st := c.Period(), c.Steady()
 	if st.Collapses || st.Low != st.Low {
 		return nan
 	}
-	v := st.Low + p.Return/p.Capacitance
+	return resistorEnergy(&p.Period, st.Low+p.Return/p.Capacitance, r) / p.T
+}
+
+// resistorEnergy is what a resistance r [ohm] of the element takes in a period from V_BS = v [V] at the end of the on-time on [J].
+func resistorEnergy(p *recharge.Period, v, r float64) float64 {
 	energy := 0.0
 	for i := range p.Off {
 		energy += loss.ResistorEnergy(p.Element, p.Off[i], p.Capacitance, v, r)
 		v, _ = p.Element.Advance(v, p.Off[i], p.Capacitance)
 	}
-	return energy / p.T
+	return energy
+}
+
+// AverageCurrent is the mean current of the element in the steady state [A].
+func (c *Circuit) AverageCurrent() float64 {
+	if c.modulated() {
+		y := c.Cycle()
+		switch {
+		case y.Plan == nil || !y.Converged:
+			return nan
+		case !y.Collapses:
+			return y.Charge / y.Plan.Time()
+		}
+	}
+	return charge.Consumed(c.Budget()) / c.Period().T
 }

@@ -51,18 +51,49 @@ func (s *Space) visit(w *Worst, d *Draw, f Function) float64 {
 // frugalMoves is the number of inputs that are moved where evaluations are dear.
 const frugalMoves = 4
 
+const (
+	dearPasses = 2
+	minorShare = 0.02 // of all effects together that those of minor inputs make [1]
+)
+
+// minor are the inputs whose effects together are a small share of all.
+func (w *Worst) minor() []Swing {
+	all := 0.0
+	for _, e := range w.effects {
+		all += e.Range
+	}
+	n, sum := len(w.effects), 0.0
+	for n > 0 && sum+w.effects[n-1].Range <= minorShare*all {
+		n--
+		sum += w.effects[n].Range
+	}
+	return w.effects[n:]
+}
+
 // Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there. A frugal space moves those alone that
 // had most effect at the typical draw, once.
 func (s *Space) Polish(w *Worst, f Function) {
 	passes := 4
 	var ids []int
-	if s.Frugal {
+	minor := newBits(len(s.inputs)) // inputs of little effect, which stay where they are
+	switch {
+	case s.Frugal:
 		passes = 1
 		for _, e := range w.effects[:min(frugalMoves, len(w.effects))] {
 			ids = append(ids, e.Input.ID)
 		}
-	} else {
-		w.Trace.used.each(func(id int) { ids = append(ids, id) })
+	case s.Dear:
+		passes = dearPasses
+		for _, e := range w.minor() {
+			minor.set(e.Input.ID)
+		}
+		fallthrough
+	default:
+		w.Trace.used.each(func(id int) {
+			if !minor.has(id) {
+				ids = append(ids, id)
+			}
+		})
 	}
 	swings := make([]float64, len(ids))
 	calm := 0 // inputs moved in a row without getting worse; all of them: done
@@ -72,7 +103,7 @@ func (s *Space) Polish(w *Worst, f Function) {
 		if calm++; below(w.Value, start) {
 			calm = 1 // this input's swing was measured from the new worst draw's own end
 			w.Trace.used.each(func(id int) {
-				if !s.Frugal && !slices.Contains(ids, id) { // read for the first time
+				if !s.Frugal && !minor.has(id) && !slices.Contains(ids, id) { // read for the first time
 					ids, swings = append(ids, id), append(swings, 0)
 				}
 			})

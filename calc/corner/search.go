@@ -27,7 +27,7 @@ type Worst struct {
 	// Carried tells that the directions were found at another set.
 	Carried bool
 
-	effects []Swing // of a frugal search, largest first: of each input from its typical value to one end
+	effects []Swing // where evaluations are dear, largest first: of each input from its typical value to one end
 	hidden  bool    // an input with a range was not read at the typical draw: its direction is not seen from there
 	ends    []end   // where each input stands that was moved from its typical value
 	turning Bits    // inputs in which the function turns between their ends
@@ -142,6 +142,11 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 				return
 			}
 			lo, hi := try(1), try(2)
+			if s.Dear {
+				if d := max(math.Abs(above(lo, v)), math.Abs(above(hi, v))); d > 0 && !math.IsInf(d, 0) {
+					w.effects = append(w.effects, Swing{s.inputs[id], d})
+				}
+			}
 			turns := above(lo, v)*above(hi, v) > 0
 			if s.interior.has(id) && !turns { // look between the ends for a turn
 				a, b := try(lookLow), try(lookHigh)

@@ -52,6 +52,8 @@ type Space struct {
 	// Frugal tells that evaluations are dear: of each input one end is tried, and the other one taken to act the other way; the worst draw is
 	// moved only in the inputs that matter most.
 	Frugal bool
+	// Dear tells that evaluations take some time: the worst draw is moved only in the inputs that together make nearly all of the effect.
+	Dear bool
 
 	low, typ, high []float64
 	interior       Bits // inputs in which a turn is looked for between their ends
@@ -97,9 +99,8 @@ func NewSpace(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint, set Set
 		for _, q := range []*stage.Quantity{&op.BusVoltage, &op.LoadCurrent, &op.RippleCurrent, &op.SwitchingFrequency, &op.DeadTime} {
 			sp.interior.set(q.ID)
 		}
-		if op.FixedDuty != nil {
-			sp.interior.set(op.FixedDuty.Duty.ID)
-			sp.interior.set(op.FixedDuty.LowSideOnTime.ID)
+		for _, q := range op.ModeInputs() {
+			sp.interior.set(q.ID)
 		}
 	}
 	return sp

@@ -15,7 +15,7 @@ import (
 
 // Hold is the distance of the lowest V_BS to what it must keep: falling lockout, and specified drive while the channel carries forward
 // current [V].
-func Hold(c *circuit.Circuit) float64 { return c.Low() - c.Required() }
+func Hold(c *circuit.Circuit) float64 { return c.Reserve() }
 
 // Stand is the smaller distance of the highest V_BS to the driver's rating and of the highest gate voltage to the gate's [V].
 func Stand(c *circuit.Circuit) float64 {
@@ -23,14 +23,23 @@ func Stand(c *circuit.Circuit) float64 {
 	return math.Min(c.Need(&c.Stage.Driver.FloatingVoltageMax)-v, c.Need(&c.Stage.HighSide.GateVoltageMax)-c.Gate(v))
 }
 
-// works is a condition that also fails where the high-side pulse no longer reaches the switch.
+// works is a condition that also fails where no high-side pulse reaches the switch.
 func works(f func(*circuit.Circuit) float64) func(*circuit.Circuit) float64 {
 	return func(c *circuit.Circuit) float64 {
-		if p := c.Period(); p.HighVanishes {
+		if c.Point.FixedDuty != nil {
+			if c.Period().HighVanishes {
+				return math.Inf(-1)
+			}
+		} else if c.LongestOn() <= 0 {
 			return math.Inf(-1)
 		}
 		return f(c)
 	}
+}
+
+// Restarts is the distance of V_BS at the first pulse after a pause to the rising lockout, or of the lowest to what it must keep [V].
+func Restarts(c *circuit.Circuit) float64 {
+	return math.Min(Hold(c), c.Restart()-c.Need(&c.Stage.Driver.UVLORising))
 }
 
 // both limits at once.
@@ -44,10 +53,22 @@ type Result struct {
 	Whole bool    // the whole range holds
 }
 
-// Names lists the limits of a fixed duty, in the order of answers.
-func Names() []string {
-	return []string{finding.LargestDuty, finding.LongestOnTime, finding.ShortestLowSidePulse, finding.LargestResistance,
-		finding.LargestDeadTime, finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq}
+// Names lists the limits of a kind of mode that are found by moving an input, in the order of answers.
+func Names(mode string) []string {
+	first := []string{finding.LargestDuty, finding.LongestOnTime, finding.ShortestLowSidePulse}
+	last := []string{finding.LargestResistance, finding.LargestDeadTime, finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq}
+	switch mode {
+	case stage.ModeFixedDuty:
+		return append(first, last...)
+	case stage.ModeSinusoidal:
+		return append([]string{finding.LargestIndex, finding.LongestOnTime, finding.ShortestLowSidePulse}, append(last, finding.LowestFundamental)...)
+	case stage.ModeSixStep:
+		return []string{finding.LargestDuty, finding.LongestOnTime, finding.LargestResistance, finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq,
+			finding.LowestFundamental}
+	case stage.ModeBurst:
+		return append(append(first, last...), finding.LongestIdle)
+	}
+	return nil
 }
 
 // search is how one limit is found: which input moves, from the drawn value, toward where, and what must hold.
@@ -72,37 +93,98 @@ func (s *search) at(c *circuit.Circuit, v float64) (out float64) {
 	return out
 }
 
+// DutyOf is the duty of an operating point with switching periods, or what stands for it: the modulation index.
+func DutyOf(op *stage.OperatingPoint) *stage.Quantity {
+	switch {
+	case op.Sinusoidal != nil:
+		return &op.Sinusoidal.ModulationIndex
+	case op.SixStep != nil:
+		return &op.SixStep.Duty
+	case op.Burst != nil:
+		return &op.Burst.Duty
+	}
+	return &op.FixedDuty.Duty
+}
+
+// fundamental is the frequency of the fundamental.
+func fundamental(op *stage.OperatingPoint) *stage.Quantity {
+	if op.SixStep != nil {
+		return &op.SixStep.ElectricalFrequency
+	}
+	return &op.Sinusoidal.FundamentalFrequency
+}
+
+// moved is a number of the circuit with an input moved.
+func moved(c *circuit.Circuit, q *stage.Quantity, v float64, f func(*circuit.Circuit) float64) (out float64) {
+	c.Space.Try(c.Draw, func(d *corner.Draw) { out = f(circuit.Of(d)) }, corner.Change{ID: q.ID, Value: v})
+	return out
+}
+
 func plan(c *circuit.Circuit, name string) search {
 	op := c.Point
 	f := c.Value(&op.SwitchingFrequency)
 	period := 1 / f
-	const leastDuty, mostResistance, decades = 1e-3, 1e6, 1e4
-	duty := search{input: &op.FixedDuty.Duty, toward: 1, back: leastDuty, holds: works(Hold)}
+	const leastDuty, mostIndex, mostResistance, decades, mostIdle = 1e-3, 4, 1e6, 1e4, 1e5
+	s := search{input: DutyOf(op), toward: 1, back: leastDuty, holds: works(Hold)}
+	if op.Sinusoidal != nil {
+		s.toward = mostIndex
+	}
+	if op.Burst != nil {
+		s.holds = works(Restarts)
+	}
+	frequency := search{input: &op.SwitchingFrequency, holds: s.holds}
 	switch name {
-	case finding.LargestDuty:
-		return duty
+	case finding.LargestDuty, finding.LargestIndex:
+		return s
 	case finding.LongestOnTime:
-		duty.finish = func(c *circuit.Circuit, d float64) float64 {
-			if d >= 1 {
-				return math.Inf(1)
-			}
-			return math.Max(0, d*period-c.Value(&op.DeadTime))
+		if op.SixStep != nil || op.Sinusoidal != nil && c.LongestOn() > period { // the high side is held on for a share of the fundamental
+			s = plan(c, finding.LowestFundamental)
 		}
-		return duty
+		q := s.input
+		s.finish = func(c *circuit.Circuit, v float64) float64 {
+			if op.FixedDuty != nil {
+				if v >= 1 {
+					return math.Inf(1)
+				}
+				return math.Max(0, v*period-c.Value(&op.DeadTime))
+			}
+			return moved(c, q, v, (*circuit.Circuit).LongestOn)
+		}
+		return s
 	case finding.ShortestLowSidePulse:
-		duty.finish = func(c *circuit.Circuit, d float64) float64 { return math.Max(0, (1-d)*period-c.Value(&op.DeadTime)) }
-		return duty
+		q := s.input
+		s.finish = func(c *circuit.Circuit, v float64) float64 {
+			if op.Sinusoidal != nil {
+				return moved(c, q, v, (*circuit.Circuit).ShortestLow)
+			}
+			return math.Max(0, (1-v)*period-c.Value(&op.DeadTime))
+		}
+		return s
 	case finding.LargestResistance:
-		return search{input: &c.Stage.Bootstrap.Resistor.Resistance, toward: mostResistance, back: 0, holds: works(Hold)}
+		return search{input: &c.Stage.Bootstrap.Resistor.Resistance, toward: mostResistance, back: 0, holds: s.holds}
 	case finding.LargestDeadTime:
 		return search{input: &op.DeadTime, toward: period / 2, back: 0, holds: works(both)}
 	case finding.LowestSwitchingFrequency:
-		return search{input: &op.SwitchingFrequency, toward: f / decades, back: f * 30, holds: works(Hold)}
+		frequency.toward, frequency.back = f/decades, f*30
+		if op.Sinusoidal != nil || op.SixStep != nil { // a fundamental has some periods of it
+			frequency.toward = math.Max(frequency.toward, fewestPeriods*c.Value(fundamental(op)))
+		}
+		return frequency
+	case finding.LowestFundamental:
+		q := fundamental(op)
+		here := c.Value(q)
+		return search{input: q, toward: here / decades, back: math.Min(here*decades, f/fewestPeriods), holds: works(Hold)}
+	case finding.LongestIdle:
+		return search{input: &op.Burst.IdleTime, toward: mostIdle, back: 0, holds: works(Restarts)}
 	}
-	return search{input: &op.SwitchingFrequency, toward: f * decades, back: f / 30, holds: works(Hold)}
+	frequency.toward, frequency.back = f*decades, f/30
+	return frequency
 }
 
-// Limit finds a derived limit of a fixed duty at the draw of a circuit.
+// fewestPeriods of the carrier in a fundamental that are looked at.
+const fewestPeriods = 6 * (1 + 1e-9)
+
+// Limit finds a derived limit at the draw of a circuit.
 func Limit(c *circuit.Circuit, name string) Result {
 	s := plan(c, name)
 	here := c.Value(s.input)
@@ -128,14 +210,30 @@ func Limit(c *circuit.Circuit, name string) Result {
 }
 
 // OfDuty tells whether a limit follows from the largest duty; From then spares solving again.
-func OfDuty(name string) bool {
-	return name == finding.LargestDuty || name == finding.LongestOnTime || name == finding.ShortestLowSidePulse
+func OfDuty(op *stage.OperatingPoint, name string) bool {
+	switch name {
+	case finding.LargestDuty, finding.LargestIndex, finding.ShortestLowSidePulse:
+		return true
+	case finding.LongestOnTime:
+		return op.FixedDuty != nil || op.Burst != nil
+	}
+	return false
+}
+
+// Duty is the name of the limit on the duty of a kind of mode, or on what stands for it.
+func Duty(op *stage.OperatingPoint) string {
+	if op.Sinusoidal != nil {
+		return finding.LargestIndex
+	}
+	return finding.LargestDuty
 }
 
 // From is the limit that follows from the largest duty found at the same draw.
 func From(c *circuit.Circuit, name string, duty Result) Result {
 	s := plan(c, name)
-	duty.Value = s.limit(c, duty.Input)
+	if duty.Input == duty.Input {
+		duty.Value = s.limit(c, duty.Input)
+	}
 	return duty
 }
 
@@ -189,7 +287,7 @@ func Tightest(name string, a, b Result) bool {
 	if a.Value != a.Value || b.Value != b.Value {
 		return a.Value != a.Value && b.Value == b.Value // none anywhere is the tightest
 	}
-	if name == finding.ShortestLowSidePulse || name == finding.LowestSwitchingFrequency {
+	if name == finding.ShortestLowSidePulse || name == finding.LowestSwitchingFrequency || name == finding.LowestFundamental {
 		return a.Value > b.Value
 	}
 	return a.Value < b.Value

@@ -200,7 +200,7 @@ func TestLimitsTurn(t *testing.T) {
 		s := half()
 		k.change(s)
 		c := typical(s)
-		for _, name := range derive.Names() {
+		for _, name := range derive.Names(stage.ModeFixedDuty) {
 			r := derive.Limit(c, name)
 			q, above := of(c, name)
 			if solved[k.name] == name && (keeps(c, name) || !r.Found) {
@@ -233,7 +233,7 @@ func TestLimitsTurn(t *testing.T) {
 			}
 		}
 	}
-	for _, name := range derive.Names() {
+	for _, name := range derive.Names(stage.ModeFixedDuty) {
 		if found[name] < 3 {
 			t.Errorf("%s: found in %d of %d stages", name, found[name], len(cases))
 		}
@@ -254,7 +254,7 @@ func TestTimesOfDuty(t *testing.T) {
 		if math.Abs(r.Value-k.want) > 1e-9*k.want || r.Input != d.Input || !r.Found {
 			t.Errorf("%s: %+v, want %g at duty %g", k.name, r, k.want, d.Input)
 		}
-		if !derive.OfDuty(k.name) || derive.From(c, k.name, d) != r {
+		if !derive.OfDuty(c.Point, k.name) || derive.From(c, k.name, d) != r {
 			t.Errorf("%s: %+v from the largest duty, want %+v", k.name, derive.From(c, k.name, d), r)
 		}
 	}
@@ -262,8 +262,8 @@ func TestTimesOfDuty(t *testing.T) {
 	if r := derive.Limit(typical(half()), finding.ShortestLowSidePulse); !r.Found || r.Value != 0 {
 		t.Errorf("%s: %+v, want 0", finding.ShortestLowSidePulse, r)
 	}
-	for _, name := range derive.Names()[3:] {
-		if derive.OfDuty(name) {
+	for _, name := range derive.Names(stage.ModeFixedDuty)[3:] {
+		if derive.OfDuty(c.Point, name) {
 			t.Errorf("%s is said to follow from the duty", name)
 		}
 	}
@@ -281,7 +281,7 @@ func TestHighVanishes(t *testing.T) {
 	if derive.Holds(c, finding.LargestDuty, 0.01) {
 		t.Error("a vanished pulse counts as holding")
 	}
-	for _, name := range derive.Names() {
+	for _, name := range derive.Names(stage.ModeFixedDuty) {
 		if r := derive.Limit(c, name); r.Found || r.Whole || r.Value == r.Value {
 			t.Errorf("%s: %+v, want none", name, r)
 		}
@@ -313,7 +313,7 @@ func TestNoLimit(t *testing.T) {
 		s := half()
 		k.change(s)
 		c := typical(s)
-		for _, name := range derive.Names() {
+		for _, name := range derive.Names(stage.ModeFixedDuty) {
 			if r := derive.Limit(c, name); r.Found || r.Whole || r.Value == r.Value || r.Input == r.Input {
 				t.Errorf("%s, %s: %+v, want none", k.name, name, r)
 			}
@@ -324,7 +324,7 @@ func TestNoLimit(t *testing.T) {
 // The binding one of two draws: the smallest where the quantity is limited from above, the largest where from below, and none before all.
 func TestTightest(t *testing.T) {
 	at := func(v float64) derive.Result { return derive.Result{Value: v} }
-	for _, name := range derive.Names() {
+	for _, name := range derive.Names(stage.ModeFixedDuty) {
 		below := name == finding.ShortestLowSidePulse || name == finding.LowestSwitchingFrequency
 		for _, k := range []struct {
 			a, b float64

@@ -218,6 +218,8 @@ type DerivedLimit struct {
 	Measure Measure // NaN where the range holds nowhere
 	Corner  Corner
 	Reason  string
+	// OperatingPoint is the one that binds, where the limit is that of all of them.
+	OperatingPoint string
 }
 
 // Collapse tells that there is no positive steady state, and how fast lockout is reached.
@@ -239,6 +241,9 @@ type DutyPoint struct {
 	CapacitanceCancels  bool
 	PeakDetector        bool
 	HighInterval        string
+	LowAngle, HighAngle Measure        // where in the fundamental V_BS is lowest and highest, at the binding corners; NaN without a fundamental
+	WithoutRefresh      Span           // longest time without recharge; unset of a fixed duty
+	Restart             Span           // V_BS at the first pulse after the pause of a burst; unset without one
 	Limits              []DerivedLimit // in the order of LimitNames
 	Missing             []string
 	Reason              string
@@ -253,13 +258,37 @@ const (
 	LargestDeadTime          = "largest dead time"
 	LowestSwitchingFrequency = "lowest switching frequency"
 	HighestSwitchingFreq     = "highest switching frequency"
+	LargestIndex             = "largest modulation index"
+	LowestFundamental        = "lowest fundamental frequency"
+	LongestIdle              = "longest pause between bursts"
+	LongestStall             = "longest stall"
 )
 
 // DutyLimits is the floating voltage of each operating point, and the first charge.
 type DutyLimits struct {
 	Points    []DutyPoint
-	Precharge *Precharge // nil: without an operating point
+	Precharge *Precharge     // nil: without an operating point
+	Limits    []DerivedLimit // the tightest of all operating points, in the order of their first appearance
+	Trace     []TracePoint   // where asked for
 }
+
+// TracePoint is V_BS at one time, at the corner in which its lowest value binds.
+type TracePoint struct {
+	OperatingPoint  string
+	Kind            string  // one of the Trace constants
+	Time            float64 // [s]
+	Angle           float64 // of the fundamental; NaN without one [rad]
+	FloatingVoltage float64 // [V]
+}
+
+// Kinds of trace.
+const (
+	TracePeriod      = "PERIOD"
+	TraceFundamental = "FUNDAMENTAL"
+	TraceBurst       = "BURST"
+	TraceHold        = "HOLD"
+	TracePrecharge   = "PRECHARGE"
+)
 
 // Precharge is the first charge of C_B.
 type Precharge struct {

@@ -16,6 +16,9 @@ type Period struct {
 	ChargeLeast   float64 // least that leaves, where the line of the gates' charge runs below 0, far under their plateau; not negative [C]
 	Return        float64 // returned at the falling edge, junction charge of D_B [C]
 
+	// Before are the intervals that precede the rising edge; nil: those of Off, the periods being alike.
+	Before []Interval
+
 	RecoverySpec float64 // Q_rr of D_B in its test, the most it can be; 0: none [C]
 	RecoveryTau  float64 // τ = Q_spec/I_test [s]
 
@@ -32,6 +35,7 @@ func (p Period) Map(v float64) (v1, dv float64) {
 // trace is what happens within a period.
 type trace struct {
 	after, low, high float64 // after the rising edge, lowest, highest [V]
+	onEnd            float64 // at the end of the on-time [V]
 	afterSlope       float64 // their derivatives by v before the edge [1]
 	lowSlope         float64
 	highSlope        float64
@@ -72,7 +76,7 @@ func (p *Period) pass(w *law, v float64, tr *trace) (v1, dv float64) {
 		}
 		return v1, dv
 	}
-	*tr = trace{after: after, low: after, afterSlope: edge, lowSlope: edge, recovery: recovery, recoverySlope: -falls, highest: -1, carried: carried}
+	*tr = trace{after: after, onEnd: v1, low: after, afterSlope: edge, lowSlope: edge, recovery: recovery, recoverySlope: -falls, highest: -1, carried: carried}
 	if v1 < after {
 		tr.low, tr.lowSlope = v1, dv
 	}
@@ -140,8 +144,12 @@ func (p *Period) recovered(w *law, v float64) (charge, falls float64) {
 		return 0 * v, 0
 	}
 	least, slope, left, weakest := math.Inf(1), 0.0, 1.0, math.Inf(1)
-	for k := len(p.Off) - 1; k >= 0; k-- {
-		iv := &p.Off[k]
+	before := p.Before
+	if before == nil {
+		before = p.Off
+	}
+	for k := len(before) - 1; k >= 0; k-- {
+		iv := &before[k]
 		if iv.Duration <= 0 {
 			continue
 		}

@@ -44,7 +44,7 @@ func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.Du
 				duty.Points[k], first[k] = dutyPoint(b, p), precharge(b, p)
 			}
 		})
-		duty.Precharge = overPoints(first)
+		duty.Precharge, duty.Limits = overPoints(first), tightest(duty.Points)
 		for _, e := range events {
 			stress.Events, stress.Waveforms = append(stress.Events, e.Events...), append(stress.Waveforms, e.Waveforms...)
 		}
@@ -78,22 +78,29 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 		return finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: d}
 	}
 	out.RechargeWindow, out.RechargeRatio, out.Deficit = none(quantity.Time), none(quantity.Ratio), none(quantity.Voltage)
-	out.GateVoltageLow = none(quantity.Voltage)
+	out.GateVoltageLow, out.WithoutRefresh, out.Restart = none(quantity.Voltage), none(quantity.Time), none(quantity.Voltage)
+	out.LowAngle = finding.Measure{Value: math.NaN(), Dimension: quantity.Angle}
+	out.HighAngle = out.LowAngle
 	var low rule.Range
 	out.FloatingVoltageLow, low = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Low()) }, quantity.Voltage, false))
-	out.FloatingVoltageHigh, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage, true))
-	if p.Operating.LoadCurrent.Known() && p.Operating.LoadCurrent.Max+firstKnown(p.Operating.RippleCurrent.Max)/2 > 0 {
-		if h := &b.Stage.HighSide; h.OffBias.Known() && h.OffBias.Min == 0 && h.OffBias.Max == 0 { // all of V_BS drives the gate
+	var high rule.Range
+	out.FloatingVoltageHigh, high = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return c.High() }, quantity.Voltage, true))
+	if op := p.Operating; op.Sinusoidal != nil || op.LoadCurrent.Known() && op.LoadCurrent.Max+firstKnown(op.RippleCurrent.Max)/2 > 0 {
+		h := &b.Stage.HighSide
+		if op.Sinusoidal == nil && op.SixStep == nil && h.OffBias.Known() && h.OffBias.Min == 0 && h.OffBias.Max == 0 { // all of V_BS drives the gate
 			out.GateVoltageLow = out.FloatingVoltageLow
 		} else {
-			out.GateVoltageLow, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.Low())) }, quantity.Voltage, false))
+			out.GateVoltageLow, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Gate(c.LowForward())) }, quantity.Voltage, false))
 		}
 	}
 	if p.Operating.HeldOn != nil {
-		out.Limits = heldLimits(b, p)
+		out.Limits = []finding.DerivedLimit{timeLimit(b, p, finding.LongestOnTime, func(c *circuit.Circuit) float64 {
+			h, _ := c.Hold()
+			return h.Time(c.Required())
+		})}
 		return out
 	}
-	if p.Operating.FixedDuty == nil || low.Low.Space == nil {
+	if low.Low.Space == nil {
 		return out
 	}
 	out.RechargeWindow, _ = span(b.Range(p, func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time))
@@ -108,19 +115,29 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 		return c.Settled() - c.Low()
 	}, quantity.Voltage))
 	worst := circuit.Of(low.Low.Draw)
-	out.CapacitanceCancels = catalog.CapacitanceCancels(worst)
+	out.CapacitanceCancels = worst.CapacitanceCancels()
 	if math.IsInf(low.Low.Value, -1) {
-		out.Collapses = &finding.Collapse{Periods: catalog.Periods(worst), Corner: rule.Corner(&low.Low)}
+		out.Collapses = &finding.Collapse{Periods: worst.PeriodsToLockout(), Corner: rule.Corner(&low.Low)}
 	}
 	for _, s := range p.Spaces {
 		if c := circuit.Of(s.Typical()); catalog.PeakDetector(c) {
 			out.PeakDetector = true
-			q := c.Period()
-			out.HighInterval = q.Names[c.Steady().HighInterval]
+			q, k := c.HighPeriod()
+			out.HighInterval = q.Names[k]
 		}
 	}
+	if p.Operating.FixedDuty == nil {
+		out.LowAngle.Value = rule.Significant(worst.LowAngle())
+		if high.High.Space != nil {
+			out.HighAngle.Value = rule.Significant(circuit.Of(high.High.Draw).HighAngle())
+		}
+		out.WithoutRefresh, _ = span(b.Range(p, (*circuit.Circuit).Unrefreshed, quantity.Time))
+	}
+	if p.Operating.Burst != nil {
+		out.Restart, _ = span(b.Adverse(p, func(c *circuit.Circuit) float64 { return circuit.Empty(c.Restart()) }, quantity.Voltage, false))
+	}
 	if !b.Stopped() {
-		out.Limits = fixedLimits(p)
+		out.Limits = limits(b, p)
 	}
 	return out
 }
@@ -132,19 +149,30 @@ func firstKnown(v float64) float64 {
 	return v
 }
 
-// fixedLimits finds the derived limits of a fixed duty at the worst draws of what must hold, over all sets; the tightest one binds.
-func fixedLimits(p *rule.Point) []finding.DerivedLimit {
-	hold := worstDraws(p, derive.Hold)
+// limits finds the derived limits of an operating point at the worst draws of what must hold, over all sets; the tightest one binds.
+func limits(b *rule.Bench, p *rule.Point) []finding.DerivedLimit {
+	op := p.Operating
+	holds := derive.Hold
+	if op.Burst != nil {
+		holds = derive.Restarts
+	}
+	hold := worstDraws(p, holds)
 	stand := worstDraws(p, derive.Stand)
 	both := append(slices.Clone(hold), stand...)
 	duties := duties{}
 	var out []finding.DerivedLimit
-	for _, name := range derive.Names() {
+	for _, name := range derive.Names(op.Mode()) {
+		if b.Stopped() {
+			return out
+		}
 		draws := hold
 		if name == finding.LargestDeadTime {
 			draws = both
 		}
 		out = append(out, bindingLimit(name, draws, duties))
+	}
+	if op.Sinusoidal != nil || op.SixStep != nil {
+		out = append(out, timeLimit(b, p, finding.LongestStall, (*circuit.Circuit).Stall))
 	}
 	return out
 }
@@ -153,12 +181,12 @@ func fixedLimits(p *rule.Point) []finding.DerivedLimit {
 type duties map[*corner.Draw]derive.Result
 
 func (k duties) limit(c *circuit.Circuit, name string) derive.Result {
-	if !derive.OfDuty(name) {
+	if !derive.OfDuty(c.Point, name) {
 		return derive.Limit(c, name)
 	}
 	r, ok := k[c.Draw]
 	if !ok {
-		r = derive.Limit(c, finding.LargestDuty)
+		r = derive.Limit(c, derive.Duty(c.Point))
 		k[c.Draw] = r
 	}
 	return derive.From(c, name, r)
@@ -170,11 +198,11 @@ func worstDraws(p *rule.Point, f rule.Number) []corner.Worst {
 
 func dimensionOf(name string) quantity.Dimension {
 	switch name {
-	case finding.LargestDuty:
+	case finding.LargestDuty, finding.LargestIndex:
 		return quantity.Ratio
 	case finding.LargestResistance:
 		return quantity.Resistance
-	case finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq:
+	case finding.LowestSwitchingFrequency, finding.HighestSwitchingFreq, finding.LowestFundamental:
 		return quantity.Frequency
 	}
 	return quantity.Time
@@ -230,13 +258,10 @@ func bindingLimit(name string, draws []corner.Worst, known duties) finding.Deriv
 	return out
 }
 
-// heldLimits is the hold time of an operating point with the high side held on.
-func heldLimits(b *rule.Bench, p *rule.Point) []finding.DerivedLimit {
-	out := finding.DerivedLimit{Name: finding.LongestOnTime, Measure: finding.Measure{Value: math.NaN(), Dimension: quantity.Time}}
-	r := b.Range(p, func(c *circuit.Circuit) float64 {
-		h, _ := c.Hold()
-		return h.Time(c.Required())
-	}, quantity.Time)
+// timeLimit is a limit that is a time of the circuit itself; the shortest one binds.
+func timeLimit(b *rule.Bench, p *rule.Point, name string, f rule.Number) finding.DerivedLimit {
+	out := finding.DerivedLimit{Name: name, Measure: finding.Measure{Value: math.NaN(), Dimension: quantity.Time}}
+	r := b.Range(p, f, quantity.Time)
 	switch {
 	case r.Low.Space == nil:
 		out.Reason = "cannot be evaluated"
@@ -248,5 +273,24 @@ func heldLimits(b *rule.Bench, p *rule.Point) []finding.DerivedLimit {
 	default:
 		out.Measure.Value, out.Corner = r.Span.Min, rule.Corner(&r.Low)
 	}
-	return []finding.DerivedLimit{out}
+	return out
+}
+
+// tightest is the binding one of each derived limit over all operating points.
+func tightest(points []finding.DutyPoint) (out []finding.DerivedLimit) {
+	for i := range points {
+		for _, l := range points[i].Limits {
+			l.OperatingPoint = points[i].OperatingPoint
+			k := slices.IndexFunc(out, func(o finding.DerivedLimit) bool { return o.Name == l.Name })
+			switch {
+			case k < 0:
+				out = append(out, l)
+			case l.Reason == "without limit" || out[k].Measure.Value != out[k].Measure.Value && out[k].Reason != "without limit":
+			case out[k].Reason == "without limit",
+				derive.Tightest(l.Name, derive.Result{Value: l.Measure.Value}, derive.Result{Value: out[k].Measure.Value}):
+				out[k] = l
+			}
+		}
+	}
+	return out
 }

@@ -73,10 +73,9 @@ func budget(b *rule.Bench, out *finding.Sizing) {
 			h, t := c.Hold()
 			return h.Start - h.Voltage(t)
 		}
-		st := c.Steady()
-		if st.Collapses {
+		if c.Steady().Collapses {
 			return math.Inf(1)
 		}
-		return st.BeforeEdge - st.Low
+		return c.Droop()
 	}, quantity.Voltage)
 }

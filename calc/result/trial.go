@@ -5,7 +5,6 @@ import (
 	"math"
 
 	"floatrail/calc/catalog"
-	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
 	"floatrail/calc/finding"
@@ -337,7 +336,7 @@ func (t *trial) ratings(out *finding.Sizing, c, r float64) {
 		if c.Point.HeldOn != nil {
 			return 0
 		}
-		return charge.Consumed(c.Budget()) / c.Period().T
+		return c.AverageCurrent()
 	})
 	if t.stage.Bootstrap.Element == stage.DiscreteDiode {
 		rec.DiodeAverageCurrent.Value = preferred.AtLeast(average/guard, preferred.E6)

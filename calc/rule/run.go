@@ -60,7 +60,9 @@ func NewBench(s *stage.Stage, p *stage.Policy) *Bench {
 		op := &s.OperatingPoints.Items[i]
 		pt := Point{Operating: op}
 		for _, set := range corner.Sets(op) {
-			pt.Spaces, pt.Events = append(pt.Spaces, corner.NewSpace(s, p, op, set)), append(pt.Events, corner.NewSpace(s, p, op, set))
+			space := corner.NewSpace(s, p, op, set)
+			space.Dear = op.Sinusoidal != nil || op.SixStep != nil || op.Burst != nil // many periods behind each number
+			pt.Spaces, pt.Events = append(pt.Spaces, space), append(pt.Events, corner.NewSpace(s, p, op, set))
 		}
 		b.Points = append(b.Points, pt)
 	}

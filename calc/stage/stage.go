@@ -1,6 +1,9 @@
 package stage
 
-import "strings"
+import (
+	"math"
+	"strings"
+)
 
 // Stage is one half-bridge with its floating supply and the conditions under which it works.
 type Stage struct {
@@ -68,6 +71,25 @@ func (p *OperatingPoint) Mode() string {
 	return ""
 }
 
+// ModeInputs are the quantities of the mode that is set.
+func (p *OperatingPoint) ModeInputs() []*Quantity {
+	switch {
+	case p.FixedDuty != nil:
+		return []*Quantity{&p.FixedDuty.Duty, &p.FixedDuty.LowSideOnTime}
+	case p.Sinusoidal != nil:
+		m := p.Sinusoidal
+		return []*Quantity{&m.ModulationIndex, &m.FundamentalFrequency, &m.DisplacementAngle}
+	case p.SixStep != nil:
+		return []*Quantity{&p.SixStep.ElectricalFrequency, &p.SixStep.Duty}
+	case p.Burst != nil:
+		m := p.Burst
+		return []*Quantity{&m.Duty, &m.ActiveTime, &m.IdleTime, &m.IdleNodeVoltage}
+	case p.HeldOn != nil:
+		return []*Quantity{&p.HeldOn.Duration, &p.HeldOn.InitialVoltage}
+	}
+	return nil
+}
+
 // FixedDuty is constant duty.
 type FixedDuty struct {
 	Header
@@ -82,6 +104,18 @@ type Sinusoidal struct {
 	FundamentalFrequency Quantity // [Hz]
 	DisplacementAngle    Quantity // [rad]
 	ZeroSequence         string
+}
+
+// RefreshesAlways tells whether no period leaves the high side on throughout: no clamp to the upper rail, and no index beyond the linear range.
+func (m *Sinusoidal) RefreshesAlways() bool {
+	most := m.ModulationIndex.Max
+	switch m.ZeroSequence {
+	case "NONE":
+		return most < 1
+	case "THIRD_HARMONIC", "MIN_MAX", "CLAMP_120_LOW":
+		return most < 2/math.Sqrt(3)
+	}
+	return false
 }
 
 // SixStep is six-step commutation.

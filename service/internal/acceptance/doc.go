@@ -62,6 +62,6 @@
 //
 // The cases of optimism, by the number of the design: 1 TestPullDownLoadsTheHeldSupply, 2 TestLittleRemainsOfTheNominalCapacitance,
 // 3 TestCapacitanceCancels, 4 TestDeadTimePumpsTheGate, 5 TestUndershootFallsInTheLongerRow, 6 TestLockoutTurnsOffBelowCOM,
-// 7 TestLockoutDoesNotSuitTheSwitch, 8 by its on-times TestClampHoldsTheHighSide, 9 TestUnknownInductanceIsNotNone and with another datum
+// 7 TestLockoutDoesNotSuitTheSwitch, 8 TestClampHoldsTheHighSide, 9 TestUnknownInductanceIsNotNone and with another datum
 // TestMissingDataNeverPasses, 10 TestLowSidePulseVanishes.
 package acceptance

@@ -8,6 +8,7 @@ import (
 	"floatrail/calc/corner"
 	"floatrail/calc/derive"
 	"floatrail/calc/finding"
+	"floatrail/calc/stage"
 )
 
 // TestDerivedLimitsTurn evaluates the floating supply just inside and just outside of every derived limit, at the worst draw of every
@@ -22,7 +23,7 @@ func TestDerivedLimitsTurn(t *testing.T) {
 				p := &j.bench.Points[i]
 				for _, w := range corner.SearchSets(p.Spaces, func(d *corner.Draw) float64 { return derive.Hold(circuit.Of(d)) }) {
 					c := circuit.Of(w.Draw)
-					for _, name := range derive.Names() {
+					for _, name := range derive.Names(stage.ModeFixedDuty) {
 						r := derive.Limit(c, name)
 						switch {
 						case r.Found:
