@@ -33,6 +33,7 @@ type signature struct {
 type memory struct {
 	slots [memoSlots][]*signature
 	known []*memory // of twins, which nobody changes any more
+	of    *Draw     // whose results alone are kept; nil: those of every draw
 }
 
 func (g *signature) hash(d *Draw) uint64 {
@@ -109,8 +110,8 @@ func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 		} else {
 			c.trace.reset()
 			*at = under(d, &c.trace, f)
-			if shared {
-				d.Space.memory.keep(slot, d, &entry{value: *at, trace: c.trace.clone()})
+			if m := d.Space.memory; shared && (m.of == nil || m.of == d) {
+				m.keep(slot, d, &entry{value: *at, trace: c.trace.clone()})
 			}
 		}
 		c.valid = true

@@ -94,7 +94,7 @@ func (m *Sampler) Draw(junction, ambient float64, place func(id int, r stage.Tri
 	for _, n := range s.spare { // what models keep with them belongs to the temperatures of another draw
 		n.Slot = nil
 	}
-	s.memory = &memory{}
+	s.memory = &memory{of: d} // draws that a model makes about this one share what it does not move
 	return d
 }
 
