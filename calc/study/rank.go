@@ -1,7 +1,6 @@
 package study
 
 import (
-	"cmp"
 	"math"
 	"slices"
 )
@@ -22,7 +21,15 @@ func midranks(values []float32, ranks []int32, sorted []place) []place {
 			sorted = append(sorted, place{v, int32(i)})
 		}
 	}
-	slices.SortFunc(sorted, func(a, b place) int { return cmp.Or(cmp.Compare(a.value, b.value), cmp.Compare(a.draw, b.draw)) })
+	slices.SortFunc(sorted, func(a, b place) int {
+		switch {
+		case a.value < b.value:
+			return -1
+		case a.value > b.value:
+			return 1
+		}
+		return int(a.draw - b.draw)
+	})
 	for from := 0; from < len(sorted); {
 		to := from
 		for to < len(sorted) && sorted[to].value == sorted[from].value {
@@ -60,18 +67,18 @@ func spearman(order []int32, ranks []int32) float64 {
 
 // ascending is the order of the draws by a stream.
 func (s stream) ascending(seed uint32, draws int) []int32 {
-	type place struct {
-		u    float64
-		draw int32
+	u, out := make([]float64, draws), make([]int32, draws)
+	for i := range u {
+		u[i], out[i] = s.at(seed, uint32(i)), int32(i)
 	}
-	all := make([]place, draws)
-	for i := range all {
-		all[i] = place{s.at(seed, uint32(i)), int32(i)}
-	}
-	slices.SortFunc(all, func(a, b place) int { return cmp.Or(cmp.Compare(a.u, b.u), cmp.Compare(a.draw, b.draw)) })
-	out := make([]int32, draws)
-	for i := range all {
-		out[i] = all[i].draw
-	}
+	slices.SortFunc(out, func(a, b int32) int {
+		switch {
+		case u[a] < u[b]:
+			return -1
+		case u[a] > u[b]:
+			return 1
+		}
+		return int(a - b)
+	})
 	return out
 }

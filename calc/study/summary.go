@@ -11,8 +11,10 @@ import (
 	"floatrail/calc/rule"
 )
 
-// mostRanked is the number of inputs in a ranking.
-const mostRanked = 10
+const (
+	mostRanked  = 10 // inputs in a ranking
+	leastRanked = 3  // standard deviations, of a correlation that is none, below which an input is not ranked
+)
 
 // results sums up every column.
 func (s *run) results(workers []*worker, findings []finding.Finding) []Result {
@@ -120,7 +122,7 @@ func (s *run) ranking(c *column, reads *corner.Reads, orders [][]int32, ranks []
 		if orders[i] == nil || !s.concerns(v, c.point) || !v.temperature() && !reads.Has(v.input.ID) {
 			continue
 		}
-		if rho := spearman(orders[i], ranks); math.Abs(rho) > z/math.Sqrt(float64(max(len(ranks)-1, 1))) {
+		if rho := spearman(orders[i], ranks); math.Abs(rho) > leastRanked/math.Sqrt(float64(max(len(ranks)-1, 1))) {
 			out = append(out, Correlation{Field: v.field(), Symbol: v.input.Declare.Symbol, Rho: rho})
 		}
 	}
