@@ -63,11 +63,25 @@ type Result struct {
 	Open              int
 	Percentiles       []Percentile // in the order of Percents, of the draws in which the rule could be evaluated; empty where there are none
 	Smallest, Largest finding.Measure
-	LeastMargin       finding.Margin // smallest margin of all draws, and its share of the limit
+	LeastMargin       finding.Margin // the smallest of all draws, as the worst case is taken: by its share of the limit where there is one
 	LeastDraw         int            // the first draw in which it was seen
 	Extreme           *Extreme       // nil where the worst-case review has no result
 	Ranking           []Correlation  // largest first
 	Missing, Reasons  []string       // of the first draw that is open
+
+	column *column
+}
+
+// Drawn is what the rule found at one draw; numbers are NaN where they cannot be had.
+type Drawn struct {
+	Outcome              finding.Outcome
+	Value, Margin, Share float64 // value, distance to the limit [unit of the rule]; its share of the limit [1]
+}
+
+// At is what the rule found at a draw.
+func (r *Result) At(draw int) Drawn {
+	c := r.column
+	return Drawn{c.outcome[draw], float64(c.value[draw]), float64(c.margin[draw]), float64(c.share[draw])}
 }
 
 // Percentile of a value with the interval between two order statistics; an end is not set where the draws are too few to have it.

@@ -60,7 +60,7 @@ func (s *run) result(k int, reads *corner.Reads, orders [][]int32) Result {
 	r := c.rule
 	draws := len(c.outcome)
 	out := Result{Rule: r.ID, Role: c.role, Point: name(s.points[c.point]), Smallest: r.Measure(math.NaN()), Largest: r.Measure(math.NaN()),
-		LeastMargin: r.Margin(math.NaN(), math.NaN())}
+		LeastMargin: r.Margin(math.NaN(), math.NaN()), column: c}
 	passed := 0
 	for _, o := range c.outcome {
 		switch o {
@@ -91,26 +91,28 @@ func (s *run) result(k int, reads *corner.Reads, orders [][]int32) Result {
 		low, i, high := Orders(len(sorted), p/100)
 		out.Percentiles = append(out.Percentiles, Percentile{Percent: p, Value: at(i), Low: at(low), High: at(high)})
 	}
-	sorted = midranks(c.margin, ranks, sorted)
-	if len(sorted) == 0 {
+	if sorted = midranks(c.margin, ranks, sorted); len(sorted) == 0 {
 		return out
 	}
 	out.LeastDraw = int(sorted[0].draw)
-	out.LeastMargin.Absolute = r.Margin(float64(sorted[0].value), math.NaN()).Absolute
-	out.LeastMargin.Relative = smallest(c.share)
+	if i := smallest(c.share); i >= 0 {
+		out.LeastDraw = i
+	}
+	out.LeastMargin.Absolute = r.Margin(float64(c.margin[out.LeastDraw]), math.NaN()).Absolute
+	out.LeastMargin.Relative = rule.Significant(float64(c.share[out.LeastDraw]))
 	out.Ranking = s.ranking(c, reads, orders, ranks)
 	return out
 }
 
-// smallest of numbers, NaN where there is none.
-func smallest(values []float32) float64 {
-	least := math.NaN()
-	for _, v := range values {
-		if x := float64(v); x == x && !(x >= least) {
-			least = x
+// smallest is the place of the first smallest number, -1 where there is none.
+func smallest(values []float32) int {
+	at := -1
+	for i, v := range values {
+		if v == v && (at < 0 || v < values[at]) {
+			at = i
 		}
 	}
-	return least
+	return at
 }
 
 // ranking correlates the margin of a column with every variate that the column read, and with the temperatures of its operating point. What so many
