@@ -53,6 +53,9 @@ func (m *memory) find(slot int, d *Draw) *entry {
 		}
 	}
 	for _, g := range m.slots[slot] {
+		if len(g.entries) == 0 {
+			continue
+		}
 		e := g.entries[g.hash(d)]
 		if e == nil {
 			continue
@@ -69,6 +72,15 @@ func (m *memory) find(slot int, d *Draw) *entry {
 		}
 	}
 	return nil
+}
+
+// forget drops all results.
+func (m *memory) forget() {
+	for _, slot := range m.slots {
+		for _, g := range slot {
+			clear(g.entries)
+		}
+	}
 }
 
 // keep stores a result under the inputs that its evaluation read.

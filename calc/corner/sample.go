@@ -48,6 +48,7 @@ func NewSampler(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint) *Samp
 		}
 	}
 	m.draw = space.at(append([]float64(nil), space.typ...))
+	space.memory = &memory{of: m.draw} // draws that a model makes about this one share what it does not move
 	return m
 }
 
@@ -94,7 +95,7 @@ func (m *Sampler) Draw(junction, ambient float64, place func(id int, r stage.Tri
 	for _, n := range s.spare { // what models keep with them belongs to the temperatures of another draw
 		n.Slot = nil
 	}
-	s.memory = &memory{of: d} // draws that a model makes about this one share what it does not move
+	s.memory.forget()
 	return d
 }
 

@@ -300,7 +300,7 @@ func significant(v float64) float64 {
 	if v == 0 || v != v || math.IsInf(v, 0) {
 		return v
 	}
-	scale := math.Pow(10, 5-math.Floor(math.Log10(math.Abs(v))))
+	scale := math.Pow10(5 - int(math.Floor(math.Log10(math.Abs(v)))))
 	if math.IsInf(scale, 0) || scale == 0 {
 		return v
 	}

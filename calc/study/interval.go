@@ -39,16 +39,22 @@ func NewShare(count, of int) Share {
 	return s
 }
 
-// Orders are the numbers, from 1 on, of the order statistics of n draws that stand for a quantile p and enclose it with at least the confidence,
-// at most half of the rest on either side; 0 for an end that no draw of so few can be. The quantile is the smallest value that the share p of the
-// draws does not exceed. Source: David, Nagaraja, "Order Statistics", 3rd ed., 2003, 7.1; from memory, held against SciPy.
-func Orders(n int, p float64) (low, at, high int) {
-	at = min(max(int(math.Ceil(float64(n)*p-1e-9)), 1), n) // a product that rounding puts above a whole number is meant to be that
-	low = binomial(n, p, (1-Confidence)/2)
-	if high = binomial(n, p, (1+Confidence)/2) + 1; high > n {
-		high = 0
+// order is the order statistic that stands for a quantile, and those that enclose it, by their numbers from 1 on; 0 for an end that there is not.
+type order struct{ low, at, high int }
+
+// orderOf is the smallest of n draws that the share p of them does not exceed, enclosed by order statistics between which the quantile p lies with at
+// least the confidence, whatever the distribution; at most half of the rest is left on either side, and of too few draws there is no such end. Source:
+// David, Nagaraja, "Order Statistics", 3rd ed., 2003, 7.1; from memory, held against SciPy.
+func orderOf(n int, p float64) order {
+	o := order{
+		low:  binomial(n, p, (1-Confidence)/2),
+		at:   min(max(int(math.Ceil(float64(n)*p-1e-9)), 1), n), // a product that rounding puts above a whole number is meant to be that
+		high: binomial(n, p, (1+Confidence)/2) + 1,
 	}
-	return low, at, high
+	if o.high > n {
+		o.high = 0
+	}
+	return o
 }
 
 // least is a probability that nothing here can see.

@@ -31,21 +31,30 @@ type run struct {
 	points       []*stage.OperatingPoint
 	variates     []variate
 	columns      []column
-	byPoint      [][]int // columns of each point
-	worst        []finding.Outcome
+	byPoint      [][]int           // columns of each point
+	worst        []finding.Outcome // of each draw
+	orders       []order           // of each percentile of all draws
 	stopped      func() bool
 }
 
 // Run draws and evaluates. It tells progress after fixed numbers of draws, the first time after a few; an error of progress ends the study, and so
 // does the end of the context. Neither the number of processors nor the order of work enters the report.
 func Run(ctx context.Context, r Request, progress func(Progress) error) (Report, error) {
-	policy := r.Policy
-	r.Stage.Complete(&policy)
 	rules := slices.DeleteFunc(catalog.All(), func(rl *rule.Rule) bool {
 		return rl.Tally != nil || rl.OnlySimulated || len(r.Families) > 0 && !slices.Contains(r.Families, rl.Family())
 	})
+	return study(ctx, r, rules, progress)
+}
+
+// study is Run for some rules.
+func study(ctx context.Context, r Request, rules []*rule.Rule, progress func(Progress) error) (Report, error) {
+	policy := r.Policy
+	r.Stage.Complete(&policy)
 	s := &run{stage: r.Stage, policy: &policy, seed: r.Seed, distribution: r.Distribution, variates: variates(r.Stage),
 		worst: make([]finding.Outcome, r.Draws), stopped: func() bool { return ctx.Err() != nil }}
+	for _, p := range Percents() {
+		s.orders = append(s.orders, orderOf(r.Draws, p/100))
+	}
 	for i := range r.Stage.OperatingPoints.Items {
 		s.points = append(s.points, &r.Stage.OperatingPoints.Items[i])
 	}

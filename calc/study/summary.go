@@ -24,7 +24,7 @@ func (s *run) results(workers []*worker, findings []finding.Finding) []Result {
 			reads[k].Join(&w.reads[k])
 		}
 	}
-	orders := s.orders(reads)
+	orders := s.ascending(reads)
 	worst := extremes(findings)
 	out := make([]Result, len(s.columns))
 	rule.SideBySide(len(s.columns), func(k int) {
@@ -42,8 +42,8 @@ func (s *run) results(workers []*worker, findings []finding.Finding) []Result {
 	return out
 }
 
-// orders are the draws in the ascending order of every variate that any column read; nil for the others.
-func (s *run) orders(reads []corner.Reads) [][]int32 {
+// ascending are the draws in the ascending order of every variate that any column read; nil for the others.
+func (s *run) ascending(reads []corner.Reads) [][]int32 {
 	out := make([][]int32, len(s.variates))
 	rule.SideBySide(len(out), func(i int) {
 		if slices.ContainsFunc(s.columns, func(c column) bool { return s.concerns(&s.variates[i], c.point) }) && !s.stopped() &&
@@ -87,9 +87,12 @@ func (s *run) result(k int, reads *corner.Reads, orders [][]int32) Result {
 		return r.Measure(float64(sorted[i-1].value))
 	}
 	out.Smallest, out.Largest = at(1), at(len(sorted))
-	for _, p := range Percents() {
-		low, i, high := Orders(len(sorted), p/100)
-		out.Percentiles = append(out.Percentiles, Percentile{Percent: p, Value: at(i), Low: at(low), High: at(high)})
+	for i, p := range Percents() {
+		o := s.orders[i]
+		if len(sorted) < draws {
+			o = orderOf(len(sorted), p/100)
+		}
+		out.Percentiles = append(out.Percentiles, Percentile{Percent: p, Value: at(o.at), Low: at(o.low), High: at(o.high)})
 	}
 	if sorted = midranks(c.margin, ranks, sorted); len(sorted) == 0 {
 		return out
