@@ -175,6 +175,21 @@ func TestNothingToJudge(t *testing.T) {
 	}
 }
 
+// TestPanicsComeOut: a panic beside a rule reaches the caller's goroutine.
+func TestPanicsComeOut(t *testing.T) {
+	defer func() {
+		if p := recover(); p != "broken" {
+			t.Errorf("recovered %v", p)
+		}
+	}()
+	sideBySide(10, func(i int) {
+		if i == 7 {
+			panic("broken")
+		}
+	})
+	t.Error("it went on")
+}
+
 // TestStreamsOfAStage: every input that varies has a stream of its own, named by its path and by the name of its operating point.
 func TestStreamsOfAStage(t *testing.T) {
 	names := func(points ...string) map[string]stream {

@@ -97,7 +97,7 @@ func (s *run) draw(ctx context.Context, progress func(Progress) error) ([]*worke
 	p := Progress{Draws: draws}
 	for from, to := 0, min(firstBlock, draws); from < draws; from, to = to, min(draws, (to/step+1)*step) {
 		var halted atomic.Bool
-		rule.SideBySide((to-from+unit-1)/unit, func(i int) {
+		sideBySide((to-from+unit-1)/unit, func(i int) {
 			w := pool.take()
 			defer pool.give(w)
 			for k := from + i*unit; k < min(from+(i+1)*unit, to); k++ {
@@ -122,6 +122,25 @@ func (s *run) draw(ctx context.Context, progress func(Progress) error) ([]*worke
 		}
 	}
 	return pool.all, nil
+}
+
+// sideBySide is rule.SideBySide, but a panic, which is a mistake of ours, comes out where it was called: whoever called us may recover from it there.
+func sideBySide(n int, f func(i int)) {
+	var mu sync.Mutex
+	var broken any
+	rule.SideBySide(n, func(i int) {
+		defer func() {
+			if p := recover(); p != nil {
+				mu.Lock()
+				defer mu.Unlock()
+				broken = p
+			}
+		}()
+		f(i)
+	})
+	if broken != nil {
+		panic(broken)
+	}
 }
 
 // pool holds the workers that nobody uses, of which there are never more than processors.

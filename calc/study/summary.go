@@ -27,7 +27,7 @@ func (s *run) results(workers []*worker, findings []finding.Finding) []Result {
 	orders := s.ascending(reads)
 	worst := extremes(findings)
 	out := make([]Result, len(s.columns))
-	rule.SideBySide(len(s.columns), func(k int) {
+	sideBySide(len(s.columns), func(k int) {
 		if s.stopped() {
 			return
 		}
@@ -45,7 +45,7 @@ func (s *run) results(workers []*worker, findings []finding.Finding) []Result {
 // ascending are the draws in the ascending order of every variate that any column read; nil for the others.
 func (s *run) ascending(reads []corner.Reads) [][]int32 {
 	out := make([][]int32, len(s.variates))
-	rule.SideBySide(len(out), func(i int) {
+	sideBySide(len(out), func(i int) {
 		if slices.ContainsFunc(s.columns, func(c column) bool { return s.concerns(&s.variates[i], c.point) }) && !s.stopped() &&
 			(s.variates[i].temperature() || slices.ContainsFunc(reads, func(r corner.Reads) bool { return r.Has(s.variates[i].input.ID) })) {
 			out[i] = s.variates[i].stream.ascending(s.seed, len(s.worst))
