@@ -260,3 +260,42 @@ func TestStudyStops(t *testing.T) {
 		cancel()
 	}
 }
+
+// Over REST a deadline ends the lines with an error, and a client that hangs up ends the study.
+func TestStudyStopsOverREST(t *testing.T) {
+	c := settings()
+	c.Deadline = time.Second
+	r := start(t, c, realHandlers)
+	body := studyBody(t, `"draws":100000`)
+	code, kind, lines := r.study(body)
+	last := lines[len(lines)-1]
+	if code != http.StatusOK || kind != "application/x-ndjson" || len(lines) < 2 || !bytes.HasPrefix(last, []byte(`{"error":{"code":4,`)) {
+		t.Errorf("%d %s, %d lines, the last one %.300s", code, kind, len(lines), last)
+	}
+	ctx, cancel := context.WithCancel(context.Background())
+	defer cancel()
+	request, err := http.NewRequestWithContext(ctx, http.MethodPost, r.http+"/v1/tolerance-studies", strings.NewReader(body))
+	if err != nil {
+		t.Fatal(err)
+	}
+	request.Header.Set("Content-Type", "application/json")
+	answer, err := (&http.Client{Transport: r.transport}).Do(request)
+	if err != nil {
+		t.Fatal(err)
+	}
+	first := make([]byte, 64)
+	if _, err := io.ReadFull(answer.Body, first); err != nil || !bytes.HasPrefix(first, []byte(`{"result":{"engine":`)) {
+		t.Errorf("first line %q, %v", first, err)
+	}
+	cancel()
+	_ = answer.Body.Close()
+	hungUp := time.Now()
+	within(t, 5*time.Second, "the place is free", func() bool { return r.metric("floatrail_lane_running", `lane="simulation"`) == 0 })
+	if took := time.Since(hungUp); took > 100*time.Millisecond*slowdown {
+		t.Errorf("the study ran on for %v", took)
+	}
+	within(t, 5*time.Second, "both calls are counted", func() bool {
+		return r.metric("floatrail_requests_total", `method="StudyTolerances"`, `transport="rest"`, `code="Canceled"`) == 1 &&
+			r.metric("floatrail_requests_total", `method="StudyTolerances"`, `transport="rest"`, `code="DeadlineExceeded"`) == 1
+	})
+}

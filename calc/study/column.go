@@ -94,11 +94,11 @@ func (w *worker) temperature(t stage.Triple, id int) float64 {
 func (w *worker) evaluate(draw int) (worst finding.Outcome, ok bool) {
 	w.prepare(draw)
 	for p := range w.points {
-		if w.stopped() {
-			return worst, false
-		}
 		d := w.at(p)
 		for _, k := range w.byPoint[p] {
+			if w.stopped() {
+				return worst, false
+			}
 			c := &w.columns[k]
 			margin, o, t := w.judge(k, d)
 			c.outcome[draw] = o

@@ -17,9 +17,11 @@ var missing = float32(math.NaN())
 
 // Blocks of draws.
 const (
-	firstBlock = 16 // draws until the first progress: some milliseconds
-	unit       = 8  // draws that one processor takes at once
-	blocks     = 20 // of the rest
+	firstBlock  = 16 // draws until the first progress, at most: some milliseconds
+	firstVisits = 48 // draws times operating points until then, at most
+	mostUnit    = 8  // draws that one processor takes at once, at most
+	units       = 16 // in which a block is shared out, at least
+	blocks      = 20 // of the rest
 )
 
 // run is a study under way.
@@ -93,10 +95,12 @@ func study(ctx context.Context, r Request, rules []*rule.Rule, progress func(Pro
 func (s *run) draw(ctx context.Context, progress func(Progress) error) ([]*worker, error) {
 	pool := newPool(s)
 	draws := len(s.worst)
+	first := max(2, min(firstBlock, firstVisits/len(s.points)))
 	step := max(firstBlock, (draws+blocks-1)/blocks)
 	p := Progress{Draws: draws}
-	for from, to := 0, min(firstBlock, draws); from < draws; from, to = to, min(draws, (to/step+1)*step) {
+	for from, to := 0, min(first, draws); from < draws; from, to = to, min(draws, (to/step+1)*step) {
 		var halted atomic.Bool
+		unit := max(1, min(mostUnit, (to-from)/units))
 		sideBySide((to-from+unit-1)/unit, func(i int) {
 			w := pool.take()
 			defer pool.give(w)
