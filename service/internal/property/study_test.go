@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"os"
+	"slices"
 	"strconv"
 	"testing"
 
@@ -110,6 +111,15 @@ func TestExtremesBoundDraws(t *testing.T) {
 				if !seen[at] && draws >= decisive {
 					t.Errorf("%s %s: no draw lies beyond the worst case any more, though %s", at.rule, at.role, beyond[s.name][at])
 				}
+			}
+			within := 0
+			for i := range draws {
+				if !slices.ContainsFunc(out.Results, func(c study.Result) bool { return c.At(i).Outcome > finding.Marginal }) {
+					within++
+				}
+			}
+			if o := &out.Overall; o.Yield.Count != within || o.Yield.Count+o.Failed+o.Open != draws {
+				t.Errorf("overall %+v, but in %d draws every rule is within its limit", o, within)
 			}
 			if want := len(catalog.All()) / 2; judged < want {
 				t.Errorf("only %d places are judged, expected at least %d", judged, want)
