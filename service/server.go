@@ -67,7 +67,7 @@ func newServer(c config.Config, log *slog.Logger, provide func(rpc.Options) pb.F
 	limits := guard.Limits{Request: c.MaxRequest, Board: c.MaxBoard, Deadline: c.Deadline}
 	built := build()
 	metrics := telemetry.New(registry, built, rpc.New(rpc.Options{Version: built.Version}).Rules())
-	handlers := provide(rpc.Options{Version: built.Version, Observe: metrics.Observe, Carried: carried})
+	handlers := provide(rpc.Options{Version: built.Version, Observe: metrics.Observe, Studied: metrics.Studied, Carried: carried})
 	s.serveGRPC(handlers, metrics, limits)
 	if s.conn, err = gateway.Dial(s.inside); err != nil {
 		return s, err

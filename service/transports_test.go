@@ -115,7 +115,7 @@ func TestEveryRoute(t *testing.T) {
 		{"POST", "/v1/board-reviews", "application/json", `{}`, 501, "", "", `ReviewBoard`},
 		{"POST", "/v1/revision-comparisons", "application/json", `{}`, 501, "", "", `CompareRevisions`},
 		{"POST", "/v1/alternate-studies", "application/json", `{}`, 501, "", "", `StudyAlternates`},
-		{"POST", "/v1/tolerance-studies", "application/json", `{}`, 501, "", "", `StudyTolerances`},
+		{"POST", "/v1/tolerance-studies", "application/json", `{}`, 400, "", "", `"field":"stage"`},
 		{"POST", "/v1/data-gaps", "application/json", `{}`, 501, "", "", `ListDataGaps`},
 	} {
 		answer, data, err := r.do(c.method, r.http+c.path, c.contentType, strings.NewReader(c.body))

@@ -33,6 +33,7 @@ type signature struct {
 type memory struct {
 	slots [memoSlots][]*signature
 	known []*memory // of twins, which nobody changes any more
+	of    *Draw     // whose results alone are kept; nil: those of every draw
 }
 
 func (g *signature) hash(d *Draw) uint64 {
@@ -52,6 +53,9 @@ func (m *memory) find(slot int, d *Draw) *entry {
 		}
 	}
 	for _, g := range m.slots[slot] {
+		if len(g.entries) == 0 {
+			continue
+		}
 		e := g.entries[g.hash(d)]
 		if e == nil {
 			continue
@@ -68,6 +72,15 @@ func (m *memory) find(slot int, d *Draw) *entry {
 		}
 	}
 	return nil
+}
+
+// forget drops all results.
+func (m *memory) forget() {
+	for _, slot := range m.slots {
+		for _, g := range slot {
+			clear(g.entries)
+		}
+	}
 }
 
 // keep stores a result under the inputs that its evaluation read.
@@ -109,8 +122,8 @@ func Memo[T any](d *Draw, slot int, shared bool, at *T, f func() T) *T {
 		} else {
 			c.trace.reset()
 			*at = under(d, &c.trace, f)
-			if shared {
-				d.Space.memory.keep(slot, d, &entry{value: *at, trace: c.trace.clone()})
+			if m := d.Space.memory; shared && (m.of == nil || m.of == d) {
+				m.keep(slot, d, &entry{value: *at, trace: c.trace.clone()})
 			}
 		}
 		c.valid = true

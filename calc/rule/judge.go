@@ -200,23 +200,10 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 		res.check = r.Check(circuit.Of(d), role)
 		return 0
 	})
-	c := &res.check
 	res.notes = nil
 	w.Trace.Add(t)
-	res.margin = r.margin(*c)
-	switch {
-	case res.margin != res.margin || !t.Complete():
-		res.outcome = finding.Open
+	if res.margin, res.outcome = r.Judge(res.check, t.Complete()); res.outcome == finding.Open {
 		return
-	case res.margin < 0:
-		res.outcome = finding.Fail
-	case r.guardSlack(*c) < 0:
-		res.outcome = finding.Marginal
-	default:
-		res.outcome = finding.Pass
-	}
-	if c.Floor > res.outcome && c.Floor != finding.Open {
-		res.outcome = c.Floor
 	}
 	if w.Partial && res.outcome != finding.Fail { // elsewhere it may be worse; a failure is one wherever it stands
 		res.outcome, res.margin = finding.Open, math.NaN()
@@ -232,6 +219,26 @@ func (b *Bench) decide(r *Rule, role string, res *result) {
 			res.notes = append(res.notes, fmt.Sprintf("satisfied only under an optimistic assumption: %s: %s", stage.Relative(a.Field), a.Reason))
 		}
 	}
+}
+
+// Judge gives the margin of a check, of value and limit at six digits, and its outcome by the numbers alone; OPEN where they cannot be had, or
+// where complete tells that something was missing.
+func (r *Rule) Judge(c Check, complete bool) (margin float64, o finding.Outcome) {
+	margin = r.margin(c)
+	switch {
+	case margin != margin || !complete:
+		return margin, finding.Open
+	case margin < 0:
+		o = finding.Fail
+	case r.guardSlack(c) < 0:
+		o = finding.Marginal
+	default:
+		o = finding.Pass
+	}
+	if c.Floor > o && c.Floor != finding.Open {
+		o = c.Floor
+	}
+	return margin, o
 }
 
 // stretch makes a pass MARGINAL where it holds only within the spread that the policy puts for ends nobody gave.
@@ -293,7 +300,7 @@ func significant(v float64) float64 {
 	if v == 0 || v != v || math.IsInf(v, 0) {
 		return v
 	}
-	scale := math.Pow(10, 5-math.Floor(math.Log10(math.Abs(v))))
+	scale := math.Pow10(5 - int(math.Floor(math.Log10(math.Abs(v)))))
 	if math.IsInf(scale, 0) || scale == 0 {
 		return v
 	}

@@ -91,16 +91,22 @@ func (r *Rule) finite(v float64) finding.Measure {
 }
 
 func (b *Bench) numbers(r *Rule, o *result) (value, limit finding.Measure, m finding.Margin) {
-	value, limit = r.finite(o.check.Value), r.finite(o.check.Limit)
-	m.Absolute = r.finite(o.margin)
+	return r.finite(o.check.Value), r.finite(o.check.Limit), r.Margin(o.margin, o.check.Limit)
+}
+
+// Measure is a value of the rule; what has no bound is not set.
+func (r *Rule) Measure(v float64) finding.Measure { return r.finite(v) }
+
+// Margin is a distance to a limit, and its share of the limit.
+func (r *Rule) Margin(margin, limit float64) finding.Margin {
+	m := finding.Margin{Absolute: r.finite(margin), Relative: math.NaN()}
 	if m.Absolute.Dimension == quantity.Temperature {
 		m.Absolute.Dimension = quantity.TemperatureDifference
 	}
-	m.Relative = math.NaN()
-	if l := o.check.Limit; l != 0 && !(math.Abs(o.margin) > boundless) && !math.IsInf(l, 0) {
-		m.Relative = significant(o.margin / math.Abs(l))
+	if limit != 0 && !(math.Abs(margin) > boundless) && !math.IsInf(limit, 0) {
+		m.Relative = significant(margin / math.Abs(limit))
 	}
-	return value, limit, m
+	return m
 }
 
 func (b *Bench) open(r *Rule, role string, f *finding.Finding, res *result) {

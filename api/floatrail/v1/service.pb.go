@@ -81,6 +81,59 @@ func (CompareRevisionsResponse_Change_Value) EnumDescriptor() ([]byte, []int) {
 	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{15, 0, 0}
 }
 
+// Values of Distribution.
+type StudyTolerancesRequest_Distribution_Value int32
+
+const (
+	// UNIFORM.
+	StudyTolerancesRequest_Distribution_UNSPECIFIED StudyTolerancesRequest_Distribution_Value = 0
+	// Even between min and max.
+	StudyTolerancesRequest_Distribution_UNIFORM StudyTolerancesRequest_Distribution_Value = 1
+	// Normal about typ, truncated at min and max, each of which lies three standard deviations away on its side.
+	StudyTolerancesRequest_Distribution_NORMAL StudyTolerancesRequest_Distribution_Value = 2
+)
+
+// Enum value maps for StudyTolerancesRequest_Distribution_Value.
+var (
+	StudyTolerancesRequest_Distribution_Value_name = map[int32]string{
+		0: "UNSPECIFIED",
+		1: "UNIFORM",
+		2: "NORMAL",
+	}
+	StudyTolerancesRequest_Distribution_Value_value = map[string]int32{
+		"UNSPECIFIED": 0,
+		"UNIFORM":     1,
+		"NORMAL":      2,
+	}
+)
+
+func (x StudyTolerancesRequest_Distribution_Value) Enum() *StudyTolerancesRequest_Distribution_Value {
+	p := new(StudyTolerancesRequest_Distribution_Value)
+	*p = x
+	return p
+}
+
+func (x StudyTolerancesRequest_Distribution_Value) String() string {
+	return protoimpl.X.EnumStringOf(x.Descriptor(), protoreflect.EnumNumber(x))
+}
+
+func (StudyTolerancesRequest_Distribution_Value) Descriptor() protoreflect.EnumDescriptor {
+	return file_floatrail_v1_service_proto_enumTypes[1].Descriptor()
+}
+
+func (StudyTolerancesRequest_Distribution_Value) Type() protoreflect.EnumType {
+	return &file_floatrail_v1_service_proto_enumTypes[1]
+}
+
+func (x StudyTolerancesRequest_Distribution_Value) Number() protoreflect.EnumNumber {
+	return protoreflect.EnumNumber(x)
+}
+
+// Deprecated: Use StudyTolerancesRequest_Distribution_Value.Descriptor instead.
+func (StudyTolerancesRequest_Distribution_Value) EnumDescriptor() ([]byte, []int) {
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{19, 0, 0}
+}
+
 // What answered: the same request to the same engine gives the same bytes.
 type Engine struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -1677,10 +1730,14 @@ type StudyTolerancesRequest struct {
 	Stage *Stage `protobuf:"bytes,2,opt,name=stage,proto3" json:"stage,omitempty"`
 	// The numbers by which the design is judged.
 	Policy *Policy `protobuf:"bytes,3,opt,name=policy,proto3" json:"policy,omitempty"`
-	// Number of draws.
+	// Number of draws, 1 to 100000; absent: 1000. The draws times the operating points are at most 300000.
 	Draws *uint32 `protobuf:"varint,4,opt,name=draws,proto3,oneof" json:"draws,omitempty"`
-	// Seed of the counter-based generator.
-	Seed          *uint32 `protobuf:"varint,5,opt,name=seed,proto3,oneof" json:"seed,omitempty"`
+	// Seed of the counter-based generator; absent: 0. The same seed gives the same draws.
+	Seed *uint32 `protobuf:"varint,5,opt,name=seed,proto3,oneof" json:"seed,omitempty"`
+	// How every input is drawn; absent: UNIFORM.
+	Distribution StudyTolerancesRequest_Distribution_Value `protobuf:"varint,6,opt,name=distribution,proto3,enum=floatrail.v1.StudyTolerancesRequest_Distribution_Value" json:"distribution,omitempty"`
+	// What the answer shall contain: families alone.
+	Options       *Options `protobuf:"bytes,7,opt,name=options,proto3" json:"options,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -1750,15 +1807,53 @@ func (x *StudyTolerancesRequest) GetSeed() uint32 {
 	return 0
 }
 
-// Response of StudyTolerances.
+func (x *StudyTolerancesRequest) GetDistribution() StudyTolerancesRequest_Distribution_Value {
+	if x != nil {
+		return x.Distribution
+	}
+	return StudyTolerancesRequest_Distribution_UNSPECIFIED
+}
+
+func (x *StudyTolerancesRequest) GetOptions() *Options {
+	if x != nil {
+		return x.Options
+	}
+	return nil
+}
+
+// Response of StudyTolerances: one message for each progress, then one with the study, in which `done` is `draws`.
 type StudyTolerancesResponse struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// What answered.
 	Engine *Engine `protobuf:"bytes,1,opt,name=engine,proto3" json:"engine,omitempty"`
 	// Draws done.
 	Done *uint32 `protobuf:"varint,2,opt,name=done,proto3,oneof" json:"done,omitempty"`
-	// Yield of each rule.
-	Yields        []*RuleYield `protobuf:"bytes,3,rep,name=yields,proto3" json:"yields,omitempty"`
+	// Each rule at each operating point to which it applies, in the order of the catalogue; in the last message.
+	Yields []*RuleYield `protobuf:"bytes,3,rep,name=yields,proto3" json:"yields,omitempty"`
+	// Name of the stage.
+	StageId *string `protobuf:"bytes,4,opt,name=stage_id,json=stageId,proto3,oneof" json:"stage_id,omitempty"`
+	// Draws asked for.
+	Draws *uint32 `protobuf:"varint,5,opt,name=draws,proto3,oneof" json:"draws,omitempty"`
+	// Seed of the draws.
+	Seed *uint32 `protobuf:"varint,6,opt,name=seed,proto3,oneof" json:"seed,omitempty"`
+	// How every input was drawn.
+	Distribution StudyTolerancesRequest_Distribution_Value `protobuf:"varint,7,opt,name=distribution,proto3,enum=floatrail.v1.StudyTolerancesRequest_Distribution_Value" json:"distribution,omitempty"`
+	// Of the draws done, those in which every rule is within its limit at every operating point.
+	Within *uint32 `protobuf:"varint,8,opt,name=within,proto3,oneof" json:"within,omitempty"`
+	// All rules at all operating points together; in the last message.
+	Overall *OverallYield `protobuf:"bytes,9,opt,name=overall,proto3" json:"overall,omitempty"`
+	// The percentiles of every yield, in their order, in percent: 1, 5, 50, 95, 99.
+	Percents []float64 `protobuf:"fixed64,10,rep,packed,name=percents,proto3" json:"percents,omitempty"`
+	// Confidence of every interval, as a share.
+	Confidence *float64 `protobuf:"fixed64,11,opt,name=confidence,proto3,oneof" json:"confidence,omitempty"`
+	// Values that were assumed.
+	Assumptions []*Assumption `protobuf:"bytes,12,rep,name=assumptions,proto3" json:"assumptions,omitempty"`
+	// How markings, letter codes and tolerances were read.
+	Readings []*Reading `protobuf:"bytes,13,rep,name=readings,proto3" json:"readings,omitempty"`
+	// What the study does not decide.
+	Note *string `protobuf:"bytes,14,opt,name=note,proto3,oneof" json:"note,omitempty"`
+	// What to keep in mind before the answer is used.
+	Caution       *string `protobuf:"bytes,15,opt,name=caution,proto3,oneof" json:"caution,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -1814,6 +1909,227 @@ func (x *StudyTolerancesResponse) GetYields() []*RuleYield {
 	return nil
 }
 
+func (x *StudyTolerancesResponse) GetStageId() string {
+	if x != nil && x.StageId != nil {
+		return *x.StageId
+	}
+	return ""
+}
+
+func (x *StudyTolerancesResponse) GetDraws() uint32 {
+	if x != nil && x.Draws != nil {
+		return *x.Draws
+	}
+	return 0
+}
+
+func (x *StudyTolerancesResponse) GetSeed() uint32 {
+	if x != nil && x.Seed != nil {
+		return *x.Seed
+	}
+	return 0
+}
+
+func (x *StudyTolerancesResponse) GetDistribution() StudyTolerancesRequest_Distribution_Value {
+	if x != nil {
+		return x.Distribution
+	}
+	return StudyTolerancesRequest_Distribution_UNSPECIFIED
+}
+
+func (x *StudyTolerancesResponse) GetWithin() uint32 {
+	if x != nil && x.Within != nil {
+		return *x.Within
+	}
+	return 0
+}
+
+func (x *StudyTolerancesResponse) GetOverall() *OverallYield {
+	if x != nil {
+		return x.Overall
+	}
+	return nil
+}
+
+func (x *StudyTolerancesResponse) GetPercents() []float64 {
+	if x != nil {
+		return x.Percents
+	}
+	return nil
+}
+
+func (x *StudyTolerancesResponse) GetConfidence() float64 {
+	if x != nil && x.Confidence != nil {
+		return *x.Confidence
+	}
+	return 0
+}
+
+func (x *StudyTolerancesResponse) GetAssumptions() []*Assumption {
+	if x != nil {
+		return x.Assumptions
+	}
+	return nil
+}
+
+func (x *StudyTolerancesResponse) GetReadings() []*Reading {
+	if x != nil {
+		return x.Readings
+	}
+	return nil
+}
+
+func (x *StudyTolerancesResponse) GetNote() string {
+	if x != nil && x.Note != nil {
+		return *x.Note
+	}
+	return ""
+}
+
+func (x *StudyTolerancesResponse) GetCaution() string {
+	if x != nil && x.Caution != nil {
+		return *x.Caution
+	}
+	return ""
+}
+
+// All rules at all operating points together.
+type OverallYield struct {
+	state protoimpl.MessageState `protogen:"open.v1"`
+	// Share of draws in which every rule is within its limit. A draw with an open rule is not.
+	Share *float64 `protobuf:"fixed64,1,opt,name=share,proto3,oneof" json:"share,omitempty"`
+	// Confidence interval of the share (Wilson score).
+	Interval *ShareInterval `protobuf:"bytes,2,opt,name=interval,proto3" json:"interval,omitempty"`
+	// Draws in which every rule is within its limit.
+	Within *uint32 `protobuf:"varint,3,opt,name=within,proto3,oneof" json:"within,omitempty"`
+	// Draws in which a rule fails.
+	Failed *uint32 `protobuf:"varint,4,opt,name=failed,proto3,oneof" json:"failed,omitempty"`
+	// Draws in which no rule fails and one could not be evaluated.
+	Open          *uint32 `protobuf:"varint,5,opt,name=open,proto3,oneof" json:"open,omitempty"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
+}
+
+func (x *OverallYield) Reset() {
+	*x = OverallYield{}
+	mi := &file_floatrail_v1_service_proto_msgTypes[21]
+	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+	ms.StoreMessageInfo(mi)
+}
+
+func (x *OverallYield) String() string {
+	return protoimpl.X.MessageStringOf(x)
+}
+
+func (*OverallYield) ProtoMessage() {}
+
+func (x *OverallYield) ProtoReflect() protoreflect.Message {
+	mi := &file_floatrail_v1_service_proto_msgTypes[21]
+	if x != nil {
+		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+		if ms.LoadMessageInfo() == nil {
+			ms.StoreMessageInfo(mi)
+		}
+		return ms
+	}
+	return mi.MessageOf(x)
+}
+
+// Deprecated: Use OverallYield.ProtoReflect.Descriptor instead.
+func (*OverallYield) Descriptor() ([]byte, []int) {
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{21}
+}
+
+func (x *OverallYield) GetShare() float64 {
+	if x != nil && x.Share != nil {
+		return *x.Share
+	}
+	return 0
+}
+
+func (x *OverallYield) GetInterval() *ShareInterval {
+	if x != nil {
+		return x.Interval
+	}
+	return nil
+}
+
+func (x *OverallYield) GetWithin() uint32 {
+	if x != nil && x.Within != nil {
+		return *x.Within
+	}
+	return 0
+}
+
+func (x *OverallYield) GetFailed() uint32 {
+	if x != nil && x.Failed != nil {
+		return *x.Failed
+	}
+	return 0
+}
+
+func (x *OverallYield) GetOpen() uint32 {
+	if x != nil && x.Open != nil {
+		return *x.Open
+	}
+	return 0
+}
+
+// Confidence interval of a share.
+type ShareInterval struct {
+	state protoimpl.MessageState `protogen:"open.v1"`
+	// Lower end.
+	Low *float64 `protobuf:"fixed64,1,opt,name=low,proto3,oneof" json:"low,omitempty"`
+	// Upper end.
+	High          *float64 `protobuf:"fixed64,2,opt,name=high,proto3,oneof" json:"high,omitempty"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
+}
+
+func (x *ShareInterval) Reset() {
+	*x = ShareInterval{}
+	mi := &file_floatrail_v1_service_proto_msgTypes[22]
+	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+	ms.StoreMessageInfo(mi)
+}
+
+func (x *ShareInterval) String() string {
+	return protoimpl.X.MessageStringOf(x)
+}
+
+func (*ShareInterval) ProtoMessage() {}
+
+func (x *ShareInterval) ProtoReflect() protoreflect.Message {
+	mi := &file_floatrail_v1_service_proto_msgTypes[22]
+	if x != nil {
+		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+		if ms.LoadMessageInfo() == nil {
+			ms.StoreMessageInfo(mi)
+		}
+		return ms
+	}
+	return mi.MessageOf(x)
+}
+
+// Deprecated: Use ShareInterval.ProtoReflect.Descriptor instead.
+func (*ShareInterval) Descriptor() ([]byte, []int) {
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{22}
+}
+
+func (x *ShareInterval) GetLow() float64 {
+	if x != nil && x.Low != nil {
+		return *x.Low
+	}
+	return 0
+}
+
+func (x *ShareInterval) GetHigh() float64 {
+	if x != nil && x.High != nil {
+		return *x.High
+	}
+	return 0
+}
+
 // Yield of one rule.
 type RuleYield struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -1821,17 +2137,51 @@ type RuleYield struct {
 	Rule *string `protobuf:"bytes,1,opt,name=rule,proto3,oneof" json:"rule,omitempty"`
 	// Operating point.
 	OperatingPoint *string `protobuf:"bytes,2,opt,name=operating_point,json=operatingPoint,proto3,oneof" json:"operating_point,omitempty"`
-	// Share of draws within the limit.
+	// Share of draws within the limit. A draw in which the rule could not be evaluated is not.
 	Share *float64 `protobuf:"fixed64,3,opt,name=share,proto3,oneof" json:"share,omitempty"`
-	// 1st, 50th and 99th percentile of the value.
-	Percentiles   []*Measure `protobuf:"bytes,4,rep,name=percentiles,proto3" json:"percentiles,omitempty"`
+	// Percentiles of the value in the order of `percents`, each the smallest value that this part of the draws does not exceed; those draws alone in
+	// which the rule could be evaluated count. Empty where there are none; an element without a number has no bound.
+	Percentiles []*Measure `protobuf:"bytes,4,rep,name=percentiles,proto3" json:"percentiles,omitempty"`
+	// Role of the part that the rule judges; unset where there is one only.
+	Role *string `protobuf:"bytes,5,opt,name=role,proto3,oneof" json:"role,omitempty"`
+	// Confidence interval of the share (Wilson score).
+	Interval *ShareInterval `protobuf:"bytes,6,opt,name=interval,proto3" json:"interval,omitempty"`
+	// Share of draws within the guard.
+	GuardShare *float64 `protobuf:"fixed64,7,opt,name=guard_share,json=guardShare,proto3,oneof" json:"guard_share,omitempty"`
+	// Confidence interval of that share (Wilson score).
+	GuardInterval *ShareInterval `protobuf:"bytes,8,opt,name=guard_interval,json=guardInterval,proto3" json:"guard_interval,omitempty"`
+	// Draws within the guard.
+	Passed *uint32 `protobuf:"varint,9,opt,name=passed,proto3,oneof" json:"passed,omitempty"`
+	// Draws between guard and limit, or within the limit only under an optimistic assumption.
+	Marginal *uint32 `protobuf:"varint,10,opt,name=marginal,proto3,oneof" json:"marginal,omitempty"`
+	// Draws beyond the limit.
+	Failed *uint32 `protobuf:"varint,11,opt,name=failed,proto3,oneof" json:"failed,omitempty"`
+	// Draws in which the rule could not be evaluated.
+	Open *uint32 `protobuf:"varint,12,opt,name=open,proto3,oneof" json:"open,omitempty"`
+	// Confidence interval of each percentile, between two order statistics, whatever the distribution; an end is unset where the draws are too few to
+	// have it.
+	PercentileIntervals []*Window `protobuf:"bytes,13,rep,name=percentile_intervals,json=percentileIntervals,proto3" json:"percentile_intervals,omitempty"`
+	// Smallest value of all draws.
+	Smallest *Measure `protobuf:"bytes,14,opt,name=smallest,proto3" json:"smallest,omitempty"`
+	// Largest value of all draws.
+	Largest *Measure `protobuf:"bytes,15,opt,name=largest,proto3" json:"largest,omitempty"`
+	// Smallest margin of all draws: by its share of the limit where there is one.
+	LeastMargin *Margin `protobuf:"bytes,16,opt,name=least_margin,json=leastMargin,proto3" json:"least_margin,omitempty"`
+	// What the worst case over extreme values is at the same operating point: this decides.
+	Extreme *PointResult `protobuf:"bytes,17,opt,name=extreme,proto3" json:"extreme,omitempty"`
+	// Inputs by how closely the margin goes with them, at most ten, closest first; what so many draws cannot tell from chance is left out.
+	Ranking []*Correlation `protobuf:"bytes,18,rep,name=ranking,proto3" json:"ranking,omitempty"`
+	// Fields whose absence keeps the rule open in the first draw that is.
+	Missing []string `protobuf:"bytes,19,rep,name=missing,proto3" json:"missing,omitempty"`
+	// Why else it is open there.
+	Reasons       []string `protobuf:"bytes,20,rep,name=reasons,proto3" json:"reasons,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
 
 func (x *RuleYield) Reset() {
 	*x = RuleYield{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[21]
+	mi := &file_floatrail_v1_service_proto_msgTypes[23]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1843,7 +2193,7 @@ func (x *RuleYield) String() string {
 func (*RuleYield) ProtoMessage() {}
 
 func (x *RuleYield) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[21]
+	mi := &file_floatrail_v1_service_proto_msgTypes[23]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1856,7 +2206,7 @@ func (x *RuleYield) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use RuleYield.ProtoReflect.Descriptor instead.
 func (*RuleYield) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{21}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{23}
 }
 
 func (x *RuleYield) GetRule() string {
@@ -1887,6 +2237,191 @@ func (x *RuleYield) GetPercentiles() []*Measure {
 	return nil
 }
 
+func (x *RuleYield) GetRole() string {
+	if x != nil && x.Role != nil {
+		return *x.Role
+	}
+	return ""
+}
+
+func (x *RuleYield) GetInterval() *ShareInterval {
+	if x != nil {
+		return x.Interval
+	}
+	return nil
+}
+
+func (x *RuleYield) GetGuardShare() float64 {
+	if x != nil && x.GuardShare != nil {
+		return *x.GuardShare
+	}
+	return 0
+}
+
+func (x *RuleYield) GetGuardInterval() *ShareInterval {
+	if x != nil {
+		return x.GuardInterval
+	}
+	return nil
+}
+
+func (x *RuleYield) GetPassed() uint32 {
+	if x != nil && x.Passed != nil {
+		return *x.Passed
+	}
+	return 0
+}
+
+func (x *RuleYield) GetMarginal() uint32 {
+	if x != nil && x.Marginal != nil {
+		return *x.Marginal
+	}
+	return 0
+}
+
+func (x *RuleYield) GetFailed() uint32 {
+	if x != nil && x.Failed != nil {
+		return *x.Failed
+	}
+	return 0
+}
+
+func (x *RuleYield) GetOpen() uint32 {
+	if x != nil && x.Open != nil {
+		return *x.Open
+	}
+	return 0
+}
+
+func (x *RuleYield) GetPercentileIntervals() []*Window {
+	if x != nil {
+		return x.PercentileIntervals
+	}
+	return nil
+}
+
+func (x *RuleYield) GetSmallest() *Measure {
+	if x != nil {
+		return x.Smallest
+	}
+	return nil
+}
+
+func (x *RuleYield) GetLargest() *Measure {
+	if x != nil {
+		return x.Largest
+	}
+	return nil
+}
+
+func (x *RuleYield) GetLeastMargin() *Margin {
+	if x != nil {
+		return x.LeastMargin
+	}
+	return nil
+}
+
+func (x *RuleYield) GetExtreme() *PointResult {
+	if x != nil {
+		return x.Extreme
+	}
+	return nil
+}
+
+func (x *RuleYield) GetRanking() []*Correlation {
+	if x != nil {
+		return x.Ranking
+	}
+	return nil
+}
+
+func (x *RuleYield) GetMissing() []string {
+	if x != nil {
+		return x.Missing
+	}
+	return nil
+}
+
+func (x *RuleYield) GetReasons() []string {
+	if x != nil {
+		return x.Reasons
+	}
+	return nil
+}
+
+// How closely a margin goes with one input over the draws.
+type Correlation struct {
+	state protoimpl.MessageState `protogen:"open.v1"`
+	// Path of the input; of the temperatures of an operating point, which move together, the ambient one.
+	Field *string `protobuf:"bytes,1,opt,name=field,proto3,oneof" json:"field,omitempty"`
+	// The trade's symbol.
+	Symbol *string `protobuf:"bytes,2,opt,name=symbol,proto3,oneof" json:"symbol,omitempty"`
+	// Spearman's rank correlation with the margin: positive where the margin grows with the input.
+	Rho *float64 `protobuf:"fixed64,3,opt,name=rho,proto3,oneof" json:"rho,omitempty"`
+	// Its square: the share of the scatter of the margin's ranks that goes with the input alone.
+	Squared       *float64 `protobuf:"fixed64,4,opt,name=squared,proto3,oneof" json:"squared,omitempty"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
+}
+
+func (x *Correlation) Reset() {
+	*x = Correlation{}
+	mi := &file_floatrail_v1_service_proto_msgTypes[24]
+	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+	ms.StoreMessageInfo(mi)
+}
+
+func (x *Correlation) String() string {
+	return protoimpl.X.MessageStringOf(x)
+}
+
+func (*Correlation) ProtoMessage() {}
+
+func (x *Correlation) ProtoReflect() protoreflect.Message {
+	mi := &file_floatrail_v1_service_proto_msgTypes[24]
+	if x != nil {
+		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+		if ms.LoadMessageInfo() == nil {
+			ms.StoreMessageInfo(mi)
+		}
+		return ms
+	}
+	return mi.MessageOf(x)
+}
+
+// Deprecated: Use Correlation.ProtoReflect.Descriptor instead.
+func (*Correlation) Descriptor() ([]byte, []int) {
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{24}
+}
+
+func (x *Correlation) GetField() string {
+	if x != nil && x.Field != nil {
+		return *x.Field
+	}
+	return ""
+}
+
+func (x *Correlation) GetSymbol() string {
+	if x != nil && x.Symbol != nil {
+		return *x.Symbol
+	}
+	return ""
+}
+
+func (x *Correlation) GetRho() float64 {
+	if x != nil && x.Rho != nil {
+		return *x.Rho
+	}
+	return 0
+}
+
+func (x *Correlation) GetSquared() float64 {
+	if x != nil && x.Squared != nil {
+		return *x.Squared
+	}
+	return 0
+}
+
 // Request of ListDataGaps.
 type ListDataGapsRequest struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -1902,7 +2437,7 @@ type ListDataGapsRequest struct {
 
 func (x *ListDataGapsRequest) Reset() {
 	*x = ListDataGapsRequest{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[22]
+	mi := &file_floatrail_v1_service_proto_msgTypes[25]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1914,7 +2449,7 @@ func (x *ListDataGapsRequest) String() string {
 func (*ListDataGapsRequest) ProtoMessage() {}
 
 func (x *ListDataGapsRequest) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[22]
+	mi := &file_floatrail_v1_service_proto_msgTypes[25]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1927,7 +2462,7 @@ func (x *ListDataGapsRequest) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use ListDataGapsRequest.ProtoReflect.Descriptor instead.
 func (*ListDataGapsRequest) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{22}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{25}
 }
 
 func (x *ListDataGapsRequest) GetParts() []*Part {
@@ -1964,7 +2499,7 @@ type ListDataGapsResponse struct {
 
 func (x *ListDataGapsResponse) Reset() {
 	*x = ListDataGapsResponse{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[23]
+	mi := &file_floatrail_v1_service_proto_msgTypes[26]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1976,7 +2511,7 @@ func (x *ListDataGapsResponse) String() string {
 func (*ListDataGapsResponse) ProtoMessage() {}
 
 func (x *ListDataGapsResponse) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[23]
+	mi := &file_floatrail_v1_service_proto_msgTypes[26]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1989,7 +2524,7 @@ func (x *ListDataGapsResponse) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use ListDataGapsResponse.ProtoReflect.Descriptor instead.
 func (*ListDataGapsResponse) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{23}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{26}
 }
 
 func (x *ListDataGapsResponse) GetEngine() *Engine {
@@ -2021,7 +2556,7 @@ type DataGap struct {
 
 func (x *DataGap) Reset() {
 	*x = DataGap{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[24]
+	mi := &file_floatrail_v1_service_proto_msgTypes[27]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2033,7 +2568,7 @@ func (x *DataGap) String() string {
 func (*DataGap) ProtoMessage() {}
 
 func (x *DataGap) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[24]
+	mi := &file_floatrail_v1_service_proto_msgTypes[27]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2046,7 +2581,7 @@ func (x *DataGap) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use DataGap.ProtoReflect.Descriptor instead.
 func (*DataGap) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{24}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{27}
 }
 
 func (x *DataGap) GetField() string {
@@ -2081,7 +2616,7 @@ type ListRulesRequest struct {
 
 func (x *ListRulesRequest) Reset() {
 	*x = ListRulesRequest{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[25]
+	mi := &file_floatrail_v1_service_proto_msgTypes[28]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2093,7 +2628,7 @@ func (x *ListRulesRequest) String() string {
 func (*ListRulesRequest) ProtoMessage() {}
 
 func (x *ListRulesRequest) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[25]
+	mi := &file_floatrail_v1_service_proto_msgTypes[28]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2106,7 +2641,7 @@ func (x *ListRulesRequest) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use ListRulesRequest.ProtoReflect.Descriptor instead.
 func (*ListRulesRequest) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{25}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{28}
 }
 
 func (x *ListRulesRequest) GetFamilies() []string {
@@ -2129,7 +2664,7 @@ type ListRulesResponse struct {
 
 func (x *ListRulesResponse) Reset() {
 	*x = ListRulesResponse{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[26]
+	mi := &file_floatrail_v1_service_proto_msgTypes[29]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2141,7 +2676,7 @@ func (x *ListRulesResponse) String() string {
 func (*ListRulesResponse) ProtoMessage() {}
 
 func (x *ListRulesResponse) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[26]
+	mi := &file_floatrail_v1_service_proto_msgTypes[29]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2154,7 +2689,7 @@ func (x *ListRulesResponse) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use ListRulesResponse.ProtoReflect.Descriptor instead.
 func (*ListRulesResponse) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{26}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{29}
 }
 
 func (x *ListRulesResponse) GetEngine() *Engine {
@@ -2182,7 +2717,7 @@ type GetRuleRequest struct {
 
 func (x *GetRuleRequest) Reset() {
 	*x = GetRuleRequest{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[27]
+	mi := &file_floatrail_v1_service_proto_msgTypes[30]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2194,7 +2729,7 @@ func (x *GetRuleRequest) String() string {
 func (*GetRuleRequest) ProtoMessage() {}
 
 func (x *GetRuleRequest) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[27]
+	mi := &file_floatrail_v1_service_proto_msgTypes[30]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2207,7 +2742,7 @@ func (x *GetRuleRequest) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use GetRuleRequest.ProtoReflect.Descriptor instead.
 func (*GetRuleRequest) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{27}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{30}
 }
 
 func (x *GetRuleRequest) GetId() string {
@@ -2230,7 +2765,7 @@ type GetRuleResponse struct {
 
 func (x *GetRuleResponse) Reset() {
 	*x = GetRuleResponse{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[28]
+	mi := &file_floatrail_v1_service_proto_msgTypes[31]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2242,7 +2777,7 @@ func (x *GetRuleResponse) String() string {
 func (*GetRuleResponse) ProtoMessage() {}
 
 func (x *GetRuleResponse) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[28]
+	mi := &file_floatrail_v1_service_proto_msgTypes[31]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2255,7 +2790,7 @@ func (x *GetRuleResponse) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use GetRuleResponse.ProtoReflect.Descriptor instead.
 func (*GetRuleResponse) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{28}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{31}
 }
 
 func (x *GetRuleResponse) GetEngine() *Engine {
@@ -2307,7 +2842,7 @@ type Rule struct {
 
 func (x *Rule) Reset() {
 	*x = Rule{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[29]
+	mi := &file_floatrail_v1_service_proto_msgTypes[32]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2319,7 +2854,7 @@ func (x *Rule) String() string {
 func (*Rule) ProtoMessage() {}
 
 func (x *Rule) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[29]
+	mi := &file_floatrail_v1_service_proto_msgTypes[32]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2332,7 +2867,7 @@ func (x *Rule) ProtoReflect() protoreflect.Message {
 
 // Deprecated: Use Rule.ProtoReflect.Descriptor instead.
 func (*Rule) Descriptor() ([]byte, []int) {
-	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{29}
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{32}
 }
 
 func (x *Rule) GetId() string {
@@ -2435,7 +2970,7 @@ type CompareRevisionsResponse_Change struct {
 
 func (x *CompareRevisionsResponse_Change) Reset() {
 	*x = CompareRevisionsResponse_Change{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[30]
+	mi := &file_floatrail_v1_service_proto_msgTypes[33]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2447,7 +2982,7 @@ func (x *CompareRevisionsResponse_Change) String() string {
 func (*CompareRevisionsResponse_Change) ProtoMessage() {}
 
 func (x *CompareRevisionsResponse_Change) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[30]
+	mi := &file_floatrail_v1_service_proto_msgTypes[33]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2480,7 +3015,7 @@ type CompareRevisionsResponse_Item struct {
 
 func (x *CompareRevisionsResponse_Item) Reset() {
 	*x = CompareRevisionsResponse_Item{}
-	mi := &file_floatrail_v1_service_proto_msgTypes[31]
+	mi := &file_floatrail_v1_service_proto_msgTypes[34]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -2492,7 +3027,7 @@ func (x *CompareRevisionsResponse_Item) String() string {
 func (*CompareRevisionsResponse_Item) ProtoMessage() {}
 
 func (x *CompareRevisionsResponse_Item) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_service_proto_msgTypes[31]
+	mi := &file_floatrail_v1_service_proto_msgTypes[34]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -2534,6 +3069,43 @@ func (x *CompareRevisionsResponse_Item) GetCauses() []*Change {
 		return x.Causes
 	}
 	return nil
+}
+
+// How an input is drawn between its ends.
+type StudyTolerancesRequest_Distribution struct {
+	state         protoimpl.MessageState `protogen:"open.v1"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
+}
+
+func (x *StudyTolerancesRequest_Distribution) Reset() {
+	*x = StudyTolerancesRequest_Distribution{}
+	mi := &file_floatrail_v1_service_proto_msgTypes[35]
+	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+	ms.StoreMessageInfo(mi)
+}
+
+func (x *StudyTolerancesRequest_Distribution) String() string {
+	return protoimpl.X.MessageStringOf(x)
+}
+
+func (*StudyTolerancesRequest_Distribution) ProtoMessage() {}
+
+func (x *StudyTolerancesRequest_Distribution) ProtoReflect() protoreflect.Message {
+	mi := &file_floatrail_v1_service_proto_msgTypes[35]
+	if x != nil {
+		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+		if ms.LoadMessageInfo() == nil {
+			ms.StoreMessageInfo(mi)
+		}
+		return ms
+	}
+	return mi.MessageOf(x)
+}
+
+// Deprecated: Use StudyTolerancesRequest_Distribution.ProtoReflect.Descriptor instead.
+func (*StudyTolerancesRequest_Distribution) Descriptor() ([]byte, []int) {
+	return file_floatrail_v1_service_proto_rawDescGZIP(), []int{19, 0}
 }
 
 var File_floatrail_v1_service_proto protoreflect.FileDescriptor
@@ -2699,28 +3271,108 @@ const file_floatrail_v1_service_proto_rawDesc = "" +
 	"\x06engine\x18\x01 \x01(\v2\x14.floatrail.v1.EngineR\x06engine\x125\n" +
 	"\averdict\x18\x02 \x01(\x0e2\x1b.floatrail.v1.Verdict.ValueR\averdict\x121\n" +
 	"\bfindings\x18\x03 \x03(\v2\x15.floatrail.v1.FindingR\bfindings\x125\n" +
-	"\abinding\x18\x04 \x03(\v2\x1b.floatrail.v1.AlternateListR\abinding\"\xe2\x01\n" +
+	"\abinding\x18\x04 \x03(\v2\x1b.floatrail.v1.AlternateListR\abinding\"\xb3\x03\n" +
 	"\x16StudyTolerancesRequest\x12(\n" +
 	"\x05parts\x18\x01 \x03(\v2\x12.floatrail.v1.PartR\x05parts\x12)\n" +
 	"\x05stage\x18\x02 \x01(\v2\x13.floatrail.v1.StageR\x05stage\x12,\n" +
 	"\x06policy\x18\x03 \x01(\v2\x14.floatrail.v1.PolicyR\x06policy\x12\x19\n" +
 	"\x05draws\x18\x04 \x01(\rH\x00R\x05draws\x88\x01\x01\x12\x17\n" +
-	"\x04seed\x18\x05 \x01(\rH\x01R\x04seed\x88\x01\x01B\b\n" +
+	"\x04seed\x18\x05 \x01(\rH\x01R\x04seed\x88\x01\x01\x12[\n" +
+	"\fdistribution\x18\x06 \x01(\x0e27.floatrail.v1.StudyTolerancesRequest.Distribution.ValueR\fdistribution\x12/\n" +
+	"\aoptions\x18\a \x01(\v2\x15.floatrail.v1.OptionsR\aoptions\x1aA\n" +
+	"\fDistribution\"1\n" +
+	"\x05Value\x12\x0f\n" +
+	"\vUNSPECIFIED\x10\x00\x12\v\n" +
+	"\aUNIFORM\x10\x01\x12\n" +
+	"\n" +
+	"\x06NORMAL\x10\x02B\b\n" +
 	"\x06_drawsB\a\n" +
-	"\x05_seed\"\x9a\x01\n" +
+	"\x05_seed\"\xd5\x05\n" +
 	"\x17StudyTolerancesResponse\x12,\n" +
 	"\x06engine\x18\x01 \x01(\v2\x14.floatrail.v1.EngineR\x06engine\x12\x17\n" +
 	"\x04done\x18\x02 \x01(\rH\x00R\x04done\x88\x01\x01\x12/\n" +
-	"\x06yields\x18\x03 \x03(\v2\x17.floatrail.v1.RuleYieldR\x06yieldsB\a\n" +
-	"\x05_done\"\xcd\x01\n" +
+	"\x06yields\x18\x03 \x03(\v2\x17.floatrail.v1.RuleYieldR\x06yields\x12\x1e\n" +
+	"\bstage_id\x18\x04 \x01(\tH\x01R\astageId\x88\x01\x01\x12\x19\n" +
+	"\x05draws\x18\x05 \x01(\rH\x02R\x05draws\x88\x01\x01\x12\x17\n" +
+	"\x04seed\x18\x06 \x01(\rH\x03R\x04seed\x88\x01\x01\x12[\n" +
+	"\fdistribution\x18\a \x01(\x0e27.floatrail.v1.StudyTolerancesRequest.Distribution.ValueR\fdistribution\x12\x1b\n" +
+	"\x06within\x18\b \x01(\rH\x04R\x06within\x88\x01\x01\x124\n" +
+	"\aoverall\x18\t \x01(\v2\x1a.floatrail.v1.OverallYieldR\aoverall\x12\x1a\n" +
+	"\bpercents\x18\n" +
+	" \x03(\x01R\bpercents\x12#\n" +
+	"\n" +
+	"confidence\x18\v \x01(\x01H\x05R\n" +
+	"confidence\x88\x01\x01\x12:\n" +
+	"\vassumptions\x18\f \x03(\v2\x18.floatrail.v1.AssumptionR\vassumptions\x121\n" +
+	"\breadings\x18\r \x03(\v2\x15.floatrail.v1.ReadingR\breadings\x12\x17\n" +
+	"\x04note\x18\x0e \x01(\tH\x06R\x04note\x88\x01\x01\x12\x1d\n" +
+	"\acaution\x18\x0f \x01(\tH\aR\acaution\x88\x01\x01B\a\n" +
+	"\x05_doneB\v\n" +
+	"\t_stage_idB\b\n" +
+	"\x06_drawsB\a\n" +
+	"\x05_seedB\t\n" +
+	"\a_withinB\r\n" +
+	"\v_confidenceB\a\n" +
+	"\x05_noteB\n" +
+	"\n" +
+	"\b_caution\"\xde\x01\n" +
+	"\fOverallYield\x12\x19\n" +
+	"\x05share\x18\x01 \x01(\x01H\x00R\x05share\x88\x01\x01\x127\n" +
+	"\binterval\x18\x02 \x01(\v2\x1b.floatrail.v1.ShareIntervalR\binterval\x12\x1b\n" +
+	"\x06within\x18\x03 \x01(\rH\x01R\x06within\x88\x01\x01\x12\x1b\n" +
+	"\x06failed\x18\x04 \x01(\rH\x02R\x06failed\x88\x01\x01\x12\x17\n" +
+	"\x04open\x18\x05 \x01(\rH\x03R\x04open\x88\x01\x01B\b\n" +
+	"\x06_shareB\t\n" +
+	"\a_withinB\t\n" +
+	"\a_failedB\a\n" +
+	"\x05_open\"P\n" +
+	"\rShareInterval\x12\x15\n" +
+	"\x03low\x18\x01 \x01(\x01H\x00R\x03low\x88\x01\x01\x12\x17\n" +
+	"\x04high\x18\x02 \x01(\x01H\x01R\x04high\x88\x01\x01B\x06\n" +
+	"\x04_lowB\a\n" +
+	"\x05_high\"\xc6\a\n" +
 	"\tRuleYield\x12\x17\n" +
 	"\x04rule\x18\x01 \x01(\tH\x00R\x04rule\x88\x01\x01\x12,\n" +
 	"\x0foperating_point\x18\x02 \x01(\tH\x01R\x0eoperatingPoint\x88\x01\x01\x12\x19\n" +
 	"\x05share\x18\x03 \x01(\x01H\x02R\x05share\x88\x01\x01\x127\n" +
-	"\vpercentiles\x18\x04 \x03(\v2\x15.floatrail.v1.MeasureR\vpercentilesB\a\n" +
+	"\vpercentiles\x18\x04 \x03(\v2\x15.floatrail.v1.MeasureR\vpercentiles\x12\x17\n" +
+	"\x04role\x18\x05 \x01(\tH\x03R\x04role\x88\x01\x01\x127\n" +
+	"\binterval\x18\x06 \x01(\v2\x1b.floatrail.v1.ShareIntervalR\binterval\x12$\n" +
+	"\vguard_share\x18\a \x01(\x01H\x04R\n" +
+	"guardShare\x88\x01\x01\x12B\n" +
+	"\x0eguard_interval\x18\b \x01(\v2\x1b.floatrail.v1.ShareIntervalR\rguardInterval\x12\x1b\n" +
+	"\x06passed\x18\t \x01(\rH\x05R\x06passed\x88\x01\x01\x12\x1f\n" +
+	"\bmarginal\x18\n" +
+	" \x01(\rH\x06R\bmarginal\x88\x01\x01\x12\x1b\n" +
+	"\x06failed\x18\v \x01(\rH\aR\x06failed\x88\x01\x01\x12\x17\n" +
+	"\x04open\x18\f \x01(\rH\bR\x04open\x88\x01\x01\x12G\n" +
+	"\x14percentile_intervals\x18\r \x03(\v2\x14.floatrail.v1.WindowR\x13percentileIntervals\x121\n" +
+	"\bsmallest\x18\x0e \x01(\v2\x15.floatrail.v1.MeasureR\bsmallest\x12/\n" +
+	"\alargest\x18\x0f \x01(\v2\x15.floatrail.v1.MeasureR\alargest\x127\n" +
+	"\fleast_margin\x18\x10 \x01(\v2\x14.floatrail.v1.MarginR\vleastMargin\x123\n" +
+	"\aextreme\x18\x11 \x01(\v2\x19.floatrail.v1.PointResultR\aextreme\x123\n" +
+	"\aranking\x18\x12 \x03(\v2\x19.floatrail.v1.CorrelationR\aranking\x12\x18\n" +
+	"\amissing\x18\x13 \x03(\tR\amissing\x12\x18\n" +
+	"\areasons\x18\x14 \x03(\tR\areasonsB\a\n" +
 	"\x05_ruleB\x12\n" +
 	"\x10_operating_pointB\b\n" +
-	"\x06_share\"\x98\x01\n" +
+	"\x06_shareB\a\n" +
+	"\x05_roleB\x0e\n" +
+	"\f_guard_shareB\t\n" +
+	"\a_passedB\v\n" +
+	"\t_marginalB\t\n" +
+	"\a_failedB\a\n" +
+	"\x05_open\"\xa4\x01\n" +
+	"\vCorrelation\x12\x19\n" +
+	"\x05field\x18\x01 \x01(\tH\x00R\x05field\x88\x01\x01\x12\x1b\n" +
+	"\x06symbol\x18\x02 \x01(\tH\x01R\x06symbol\x88\x01\x01\x12\x15\n" +
+	"\x03rho\x18\x03 \x01(\x01H\x02R\x03rho\x88\x01\x01\x12\x1d\n" +
+	"\asquared\x18\x04 \x01(\x01H\x03R\asquared\x88\x01\x01B\b\n" +
+	"\x06_fieldB\t\n" +
+	"\a_symbolB\x06\n" +
+	"\x04_rhoB\n" +
+	"\n" +
+	"\b_squared\"\x98\x01\n" +
 	"\x13ListDataGapsRequest\x12(\n" +
 	"\x05parts\x18\x01 \x03(\v2\x12.floatrail.v1.PartR\x05parts\x12)\n" +
 	"\x05stage\x18\x02 \x01(\v2\x13.floatrail.v1.StageR\x05stage\x12,\n" +
@@ -2797,186 +3449,209 @@ func file_floatrail_v1_service_proto_rawDescGZIP() []byte {
 	return file_floatrail_v1_service_proto_rawDescData
 }
 
-var file_floatrail_v1_service_proto_enumTypes = make([]protoimpl.EnumInfo, 1)
-var file_floatrail_v1_service_proto_msgTypes = make([]protoimpl.MessageInfo, 32)
+var file_floatrail_v1_service_proto_enumTypes = make([]protoimpl.EnumInfo, 2)
+var file_floatrail_v1_service_proto_msgTypes = make([]protoimpl.MessageInfo, 36)
 var file_floatrail_v1_service_proto_goTypes = []any{
-	(CompareRevisionsResponse_Change_Value)(0), // 0: floatrail.v1.CompareRevisionsResponse.Change.Value
-	(*Engine)(nil),                          // 1: floatrail.v1.Engine
-	(*SizeSupplyRequest)(nil),               // 2: floatrail.v1.SizeSupplyRequest
-	(*SizeSupplyResponse)(nil),              // 3: floatrail.v1.SizeSupplyResponse
-	(*CheckDutyLimitsRequest)(nil),          // 4: floatrail.v1.CheckDutyLimitsRequest
-	(*CheckDutyLimitsResponse)(nil),         // 5: floatrail.v1.CheckDutyLimitsResponse
-	(*CheckTransientStressRequest)(nil),     // 6: floatrail.v1.CheckTransientStressRequest
-	(*CheckTransientStressResponse)(nil),    // 7: floatrail.v1.CheckTransientStressResponse
-	(*ReviewStageRequest)(nil),              // 8: floatrail.v1.ReviewStageRequest
-	(*ReviewStageResponse)(nil),             // 9: floatrail.v1.ReviewStageResponse
-	(*ReviewBoardRequest)(nil),              // 10: floatrail.v1.ReviewBoardRequest
-	(*ReviewBoardResponse)(nil),             // 11: floatrail.v1.ReviewBoardResponse
-	(*StageFaults)(nil),                     // 12: floatrail.v1.StageFaults
-	(*Fault)(nil),                           // 13: floatrail.v1.Fault
-	(*BoardSummary)(nil),                    // 14: floatrail.v1.BoardSummary
-	(*CompareRevisionsRequest)(nil),         // 15: floatrail.v1.CompareRevisionsRequest
-	(*CompareRevisionsResponse)(nil),        // 16: floatrail.v1.CompareRevisionsResponse
-	(*StudyAlternatesRequest)(nil),          // 17: floatrail.v1.StudyAlternatesRequest
-	(*AlternateList)(nil),                   // 18: floatrail.v1.AlternateList
-	(*StudyAlternatesResponse)(nil),         // 19: floatrail.v1.StudyAlternatesResponse
-	(*StudyTolerancesRequest)(nil),          // 20: floatrail.v1.StudyTolerancesRequest
-	(*StudyTolerancesResponse)(nil),         // 21: floatrail.v1.StudyTolerancesResponse
-	(*RuleYield)(nil),                       // 22: floatrail.v1.RuleYield
-	(*ListDataGapsRequest)(nil),             // 23: floatrail.v1.ListDataGapsRequest
-	(*ListDataGapsResponse)(nil),            // 24: floatrail.v1.ListDataGapsResponse
-	(*DataGap)(nil),                         // 25: floatrail.v1.DataGap
-	(*ListRulesRequest)(nil),                // 26: floatrail.v1.ListRulesRequest
-	(*ListRulesResponse)(nil),               // 27: floatrail.v1.ListRulesResponse
-	(*GetRuleRequest)(nil),                  // 28: floatrail.v1.GetRuleRequest
-	(*GetRuleResponse)(nil),                 // 29: floatrail.v1.GetRuleResponse
-	(*Rule)(nil),                            // 30: floatrail.v1.Rule
-	(*CompareRevisionsResponse_Change)(nil), // 31: floatrail.v1.CompareRevisionsResponse.Change
-	(*CompareRevisionsResponse_Item)(nil),   // 32: floatrail.v1.CompareRevisionsResponse.Item
-	(*Part)(nil),                            // 33: floatrail.v1.Part
-	(*Stage)(nil),                           // 34: floatrail.v1.Stage
-	(*Policy)(nil),                          // 35: floatrail.v1.Policy
-	(*Options)(nil),                         // 36: floatrail.v1.Options
-	(Verdict_Value)(0),                      // 37: floatrail.v1.Verdict.Value
-	(*Coverage)(nil),                        // 38: floatrail.v1.Coverage
-	(*Finding)(nil),                         // 39: floatrail.v1.Finding
-	(*Assumption)(nil),                      // 40: floatrail.v1.Assumption
-	(*Reading)(nil),                         // 41: floatrail.v1.Reading
-	(*Waiver)(nil),                          // 42: floatrail.v1.Waiver
-	(*SizingResult)(nil),                    // 43: floatrail.v1.SizingResult
-	(*DutyLimitsResult)(nil),                // 44: floatrail.v1.DutyLimitsResult
-	(*TransientStressResult)(nil),           // 45: floatrail.v1.TransientStressResult
-	(*Measure)(nil),                         // 46: floatrail.v1.Measure
-	(*Reference)(nil),                       // 47: floatrail.v1.Reference
-	(Severity_Value)(0),                     // 48: floatrail.v1.Severity.Value
-	(*Change)(nil),                          // 49: floatrail.v1.Change
+	(CompareRevisionsResponse_Change_Value)(0),     // 0: floatrail.v1.CompareRevisionsResponse.Change.Value
+	(StudyTolerancesRequest_Distribution_Value)(0), // 1: floatrail.v1.StudyTolerancesRequest.Distribution.Value
+	(*Engine)(nil),                              // 2: floatrail.v1.Engine
+	(*SizeSupplyRequest)(nil),                   // 3: floatrail.v1.SizeSupplyRequest
+	(*SizeSupplyResponse)(nil),                  // 4: floatrail.v1.SizeSupplyResponse
+	(*CheckDutyLimitsRequest)(nil),              // 5: floatrail.v1.CheckDutyLimitsRequest
+	(*CheckDutyLimitsResponse)(nil),             // 6: floatrail.v1.CheckDutyLimitsResponse
+	(*CheckTransientStressRequest)(nil),         // 7: floatrail.v1.CheckTransientStressRequest
+	(*CheckTransientStressResponse)(nil),        // 8: floatrail.v1.CheckTransientStressResponse
+	(*ReviewStageRequest)(nil),                  // 9: floatrail.v1.ReviewStageRequest
+	(*ReviewStageResponse)(nil),                 // 10: floatrail.v1.ReviewStageResponse
+	(*ReviewBoardRequest)(nil),                  // 11: floatrail.v1.ReviewBoardRequest
+	(*ReviewBoardResponse)(nil),                 // 12: floatrail.v1.ReviewBoardResponse
+	(*StageFaults)(nil),                         // 13: floatrail.v1.StageFaults
+	(*Fault)(nil),                               // 14: floatrail.v1.Fault
+	(*BoardSummary)(nil),                        // 15: floatrail.v1.BoardSummary
+	(*CompareRevisionsRequest)(nil),             // 16: floatrail.v1.CompareRevisionsRequest
+	(*CompareRevisionsResponse)(nil),            // 17: floatrail.v1.CompareRevisionsResponse
+	(*StudyAlternatesRequest)(nil),              // 18: floatrail.v1.StudyAlternatesRequest
+	(*AlternateList)(nil),                       // 19: floatrail.v1.AlternateList
+	(*StudyAlternatesResponse)(nil),             // 20: floatrail.v1.StudyAlternatesResponse
+	(*StudyTolerancesRequest)(nil),              // 21: floatrail.v1.StudyTolerancesRequest
+	(*StudyTolerancesResponse)(nil),             // 22: floatrail.v1.StudyTolerancesResponse
+	(*OverallYield)(nil),                        // 23: floatrail.v1.OverallYield
+	(*ShareInterval)(nil),                       // 24: floatrail.v1.ShareInterval
+	(*RuleYield)(nil),                           // 25: floatrail.v1.RuleYield
+	(*Correlation)(nil),                         // 26: floatrail.v1.Correlation
+	(*ListDataGapsRequest)(nil),                 // 27: floatrail.v1.ListDataGapsRequest
+	(*ListDataGapsResponse)(nil),                // 28: floatrail.v1.ListDataGapsResponse
+	(*DataGap)(nil),                             // 29: floatrail.v1.DataGap
+	(*ListRulesRequest)(nil),                    // 30: floatrail.v1.ListRulesRequest
+	(*ListRulesResponse)(nil),                   // 31: floatrail.v1.ListRulesResponse
+	(*GetRuleRequest)(nil),                      // 32: floatrail.v1.GetRuleRequest
+	(*GetRuleResponse)(nil),                     // 33: floatrail.v1.GetRuleResponse
+	(*Rule)(nil),                                // 34: floatrail.v1.Rule
+	(*CompareRevisionsResponse_Change)(nil),     // 35: floatrail.v1.CompareRevisionsResponse.Change
+	(*CompareRevisionsResponse_Item)(nil),       // 36: floatrail.v1.CompareRevisionsResponse.Item
+	(*StudyTolerancesRequest_Distribution)(nil), // 37: floatrail.v1.StudyTolerancesRequest.Distribution
+	(*Part)(nil),                                // 38: floatrail.v1.Part
+	(*Stage)(nil),                               // 39: floatrail.v1.Stage
+	(*Policy)(nil),                              // 40: floatrail.v1.Policy
+	(*Options)(nil),                             // 41: floatrail.v1.Options
+	(Verdict_Value)(0),                          // 42: floatrail.v1.Verdict.Value
+	(*Coverage)(nil),                            // 43: floatrail.v1.Coverage
+	(*Finding)(nil),                             // 44: floatrail.v1.Finding
+	(*Assumption)(nil),                          // 45: floatrail.v1.Assumption
+	(*Reading)(nil),                             // 46: floatrail.v1.Reading
+	(*Waiver)(nil),                              // 47: floatrail.v1.Waiver
+	(*SizingResult)(nil),                        // 48: floatrail.v1.SizingResult
+	(*DutyLimitsResult)(nil),                    // 49: floatrail.v1.DutyLimitsResult
+	(*TransientStressResult)(nil),               // 50: floatrail.v1.TransientStressResult
+	(*Measure)(nil),                             // 51: floatrail.v1.Measure
+	(*Window)(nil),                              // 52: floatrail.v1.Window
+	(*Margin)(nil),                              // 53: floatrail.v1.Margin
+	(*PointResult)(nil),                         // 54: floatrail.v1.PointResult
+	(*Reference)(nil),                           // 55: floatrail.v1.Reference
+	(Severity_Value)(0),                         // 56: floatrail.v1.Severity.Value
+	(*Change)(nil),                              // 57: floatrail.v1.Change
 }
 var file_floatrail_v1_service_proto_depIdxs = []int32{
-	33,  // 0: floatrail.v1.SizeSupplyRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 1: floatrail.v1.SizeSupplyRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 2: floatrail.v1.SizeSupplyRequest.policy:type_name -> floatrail.v1.Policy
-	36,  // 3: floatrail.v1.SizeSupplyRequest.options:type_name -> floatrail.v1.Options
-	1,   // 4: floatrail.v1.SizeSupplyResponse.engine:type_name -> floatrail.v1.Engine
-	37,  // 5: floatrail.v1.SizeSupplyResponse.verdict:type_name -> floatrail.v1.Verdict.Value
-	38,  // 6: floatrail.v1.SizeSupplyResponse.coverage:type_name -> floatrail.v1.Coverage
-	39,  // 7: floatrail.v1.SizeSupplyResponse.findings:type_name -> floatrail.v1.Finding
-	40,  // 8: floatrail.v1.SizeSupplyResponse.assumptions:type_name -> floatrail.v1.Assumption
-	41,  // 9: floatrail.v1.SizeSupplyResponse.readings:type_name -> floatrail.v1.Reading
-	42,  // 10: floatrail.v1.SizeSupplyResponse.unused_waivers:type_name -> floatrail.v1.Waiver
-	43,  // 11: floatrail.v1.SizeSupplyResponse.sizing:type_name -> floatrail.v1.SizingResult
-	33,  // 12: floatrail.v1.CheckDutyLimitsRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 13: floatrail.v1.CheckDutyLimitsRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 14: floatrail.v1.CheckDutyLimitsRequest.policy:type_name -> floatrail.v1.Policy
-	36,  // 15: floatrail.v1.CheckDutyLimitsRequest.options:type_name -> floatrail.v1.Options
-	1,   // 16: floatrail.v1.CheckDutyLimitsResponse.engine:type_name -> floatrail.v1.Engine
-	37,  // 17: floatrail.v1.CheckDutyLimitsResponse.verdict:type_name -> floatrail.v1.Verdict.Value
-	38,  // 18: floatrail.v1.CheckDutyLimitsResponse.coverage:type_name -> floatrail.v1.Coverage
-	39,  // 19: floatrail.v1.CheckDutyLimitsResponse.findings:type_name -> floatrail.v1.Finding
-	40,  // 20: floatrail.v1.CheckDutyLimitsResponse.assumptions:type_name -> floatrail.v1.Assumption
-	41,  // 21: floatrail.v1.CheckDutyLimitsResponse.readings:type_name -> floatrail.v1.Reading
-	42,  // 22: floatrail.v1.CheckDutyLimitsResponse.unused_waivers:type_name -> floatrail.v1.Waiver
-	44,  // 23: floatrail.v1.CheckDutyLimitsResponse.duty_limits:type_name -> floatrail.v1.DutyLimitsResult
-	33,  // 24: floatrail.v1.CheckTransientStressRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 25: floatrail.v1.CheckTransientStressRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 26: floatrail.v1.CheckTransientStressRequest.policy:type_name -> floatrail.v1.Policy
-	36,  // 27: floatrail.v1.CheckTransientStressRequest.options:type_name -> floatrail.v1.Options
-	1,   // 28: floatrail.v1.CheckTransientStressResponse.engine:type_name -> floatrail.v1.Engine
-	37,  // 29: floatrail.v1.CheckTransientStressResponse.verdict:type_name -> floatrail.v1.Verdict.Value
-	38,  // 30: floatrail.v1.CheckTransientStressResponse.coverage:type_name -> floatrail.v1.Coverage
-	39,  // 31: floatrail.v1.CheckTransientStressResponse.findings:type_name -> floatrail.v1.Finding
-	40,  // 32: floatrail.v1.CheckTransientStressResponse.assumptions:type_name -> floatrail.v1.Assumption
-	41,  // 33: floatrail.v1.CheckTransientStressResponse.readings:type_name -> floatrail.v1.Reading
-	42,  // 34: floatrail.v1.CheckTransientStressResponse.unused_waivers:type_name -> floatrail.v1.Waiver
-	45,  // 35: floatrail.v1.CheckTransientStressResponse.transient_stress:type_name -> floatrail.v1.TransientStressResult
-	33,  // 36: floatrail.v1.ReviewStageRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 37: floatrail.v1.ReviewStageRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 38: floatrail.v1.ReviewStageRequest.policy:type_name -> floatrail.v1.Policy
-	42,  // 39: floatrail.v1.ReviewStageRequest.waivers:type_name -> floatrail.v1.Waiver
-	36,  // 40: floatrail.v1.ReviewStageRequest.options:type_name -> floatrail.v1.Options
-	1,   // 41: floatrail.v1.ReviewStageResponse.engine:type_name -> floatrail.v1.Engine
-	37,  // 42: floatrail.v1.ReviewStageResponse.verdict:type_name -> floatrail.v1.Verdict.Value
-	38,  // 43: floatrail.v1.ReviewStageResponse.coverage:type_name -> floatrail.v1.Coverage
-	39,  // 44: floatrail.v1.ReviewStageResponse.findings:type_name -> floatrail.v1.Finding
-	40,  // 45: floatrail.v1.ReviewStageResponse.assumptions:type_name -> floatrail.v1.Assumption
-	41,  // 46: floatrail.v1.ReviewStageResponse.readings:type_name -> floatrail.v1.Reading
-	42,  // 47: floatrail.v1.ReviewStageResponse.unused_waivers:type_name -> floatrail.v1.Waiver
-	44,  // 48: floatrail.v1.ReviewStageResponse.duty_limits:type_name -> floatrail.v1.DutyLimitsResult
-	45,  // 49: floatrail.v1.ReviewStageResponse.transient_stress:type_name -> floatrail.v1.TransientStressResult
-	33,  // 50: floatrail.v1.ReviewBoardRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 51: floatrail.v1.ReviewBoardRequest.stages:type_name -> floatrail.v1.Stage
-	35,  // 52: floatrail.v1.ReviewBoardRequest.policy:type_name -> floatrail.v1.Policy
-	42,  // 53: floatrail.v1.ReviewBoardRequest.waivers:type_name -> floatrail.v1.Waiver
-	36,  // 54: floatrail.v1.ReviewBoardRequest.options:type_name -> floatrail.v1.Options
-	9,   // 55: floatrail.v1.ReviewBoardResponse.stage:type_name -> floatrail.v1.ReviewStageResponse
-	12,  // 56: floatrail.v1.ReviewBoardResponse.faults:type_name -> floatrail.v1.StageFaults
-	14,  // 57: floatrail.v1.ReviewBoardResponse.summary:type_name -> floatrail.v1.BoardSummary
-	13,  // 58: floatrail.v1.StageFaults.faults:type_name -> floatrail.v1.Fault
-	37,  // 59: floatrail.v1.BoardSummary.verdict:type_name -> floatrail.v1.Verdict.Value
-	33,  // 60: floatrail.v1.CompareRevisionsRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 61: floatrail.v1.CompareRevisionsRequest.before:type_name -> floatrail.v1.Stage
-	34,  // 62: floatrail.v1.CompareRevisionsRequest.after:type_name -> floatrail.v1.Stage
-	35,  // 63: floatrail.v1.CompareRevisionsRequest.policy:type_name -> floatrail.v1.Policy
-	36,  // 64: floatrail.v1.CompareRevisionsRequest.options:type_name -> floatrail.v1.Options
-	1,   // 65: floatrail.v1.CompareRevisionsResponse.engine:type_name -> floatrail.v1.Engine
-	32,  // 66: floatrail.v1.CompareRevisionsResponse.items:type_name -> floatrail.v1.CompareRevisionsResponse.Item
-	33,  // 67: floatrail.v1.StudyAlternatesRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 68: floatrail.v1.StudyAlternatesRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 69: floatrail.v1.StudyAlternatesRequest.policy:type_name -> floatrail.v1.Policy
-	18,  // 70: floatrail.v1.StudyAlternatesRequest.alternates:type_name -> floatrail.v1.AlternateList
-	1,   // 71: floatrail.v1.StudyAlternatesResponse.engine:type_name -> floatrail.v1.Engine
-	37,  // 72: floatrail.v1.StudyAlternatesResponse.verdict:type_name -> floatrail.v1.Verdict.Value
-	39,  // 73: floatrail.v1.StudyAlternatesResponse.findings:type_name -> floatrail.v1.Finding
-	18,  // 74: floatrail.v1.StudyAlternatesResponse.binding:type_name -> floatrail.v1.AlternateList
-	33,  // 75: floatrail.v1.StudyTolerancesRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 76: floatrail.v1.StudyTolerancesRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 77: floatrail.v1.StudyTolerancesRequest.policy:type_name -> floatrail.v1.Policy
-	1,   // 78: floatrail.v1.StudyTolerancesResponse.engine:type_name -> floatrail.v1.Engine
-	22,  // 79: floatrail.v1.StudyTolerancesResponse.yields:type_name -> floatrail.v1.RuleYield
-	46,  // 80: floatrail.v1.RuleYield.percentiles:type_name -> floatrail.v1.Measure
-	33,  // 81: floatrail.v1.ListDataGapsRequest.parts:type_name -> floatrail.v1.Part
-	34,  // 82: floatrail.v1.ListDataGapsRequest.stage:type_name -> floatrail.v1.Stage
-	35,  // 83: floatrail.v1.ListDataGapsRequest.policy:type_name -> floatrail.v1.Policy
-	1,   // 84: floatrail.v1.ListDataGapsResponse.engine:type_name -> floatrail.v1.Engine
-	25,  // 85: floatrail.v1.ListDataGapsResponse.gaps:type_name -> floatrail.v1.DataGap
-	1,   // 86: floatrail.v1.ListRulesResponse.engine:type_name -> floatrail.v1.Engine
-	30,  // 87: floatrail.v1.ListRulesResponse.rules:type_name -> floatrail.v1.Rule
-	1,   // 88: floatrail.v1.GetRuleResponse.engine:type_name -> floatrail.v1.Engine
-	30,  // 89: floatrail.v1.GetRuleResponse.rule:type_name -> floatrail.v1.Rule
-	47,  // 90: floatrail.v1.Rule.sources:type_name -> floatrail.v1.Reference
-	48,  // 91: floatrail.v1.Rule.severity_fail:type_name -> floatrail.v1.Severity.Value
-	48,  // 92: floatrail.v1.Rule.severity_marginal:type_name -> floatrail.v1.Severity.Value
-	48,  // 93: floatrail.v1.Rule.severity_open:type_name -> floatrail.v1.Severity.Value
-	0,   // 94: floatrail.v1.CompareRevisionsResponse.Item.change:type_name -> floatrail.v1.CompareRevisionsResponse.Change.Value
-	39,  // 95: floatrail.v1.CompareRevisionsResponse.Item.before:type_name -> floatrail.v1.Finding
-	39,  // 96: floatrail.v1.CompareRevisionsResponse.Item.after:type_name -> floatrail.v1.Finding
-	49,  // 97: floatrail.v1.CompareRevisionsResponse.Item.causes:type_name -> floatrail.v1.Change
-	2,   // 98: floatrail.v1.FloatRail.SizeSupply:input_type -> floatrail.v1.SizeSupplyRequest
-	4,   // 99: floatrail.v1.FloatRail.CheckDutyLimits:input_type -> floatrail.v1.CheckDutyLimitsRequest
-	6,   // 100: floatrail.v1.FloatRail.CheckTransientStress:input_type -> floatrail.v1.CheckTransientStressRequest
-	8,   // 101: floatrail.v1.FloatRail.ReviewStage:input_type -> floatrail.v1.ReviewStageRequest
-	10,  // 102: floatrail.v1.FloatRail.ReviewBoard:input_type -> floatrail.v1.ReviewBoardRequest
-	15,  // 103: floatrail.v1.FloatRail.CompareRevisions:input_type -> floatrail.v1.CompareRevisionsRequest
-	17,  // 104: floatrail.v1.FloatRail.StudyAlternates:input_type -> floatrail.v1.StudyAlternatesRequest
-	20,  // 105: floatrail.v1.FloatRail.StudyTolerances:input_type -> floatrail.v1.StudyTolerancesRequest
-	23,  // 106: floatrail.v1.FloatRail.ListDataGaps:input_type -> floatrail.v1.ListDataGapsRequest
-	26,  // 107: floatrail.v1.FloatRail.ListRules:input_type -> floatrail.v1.ListRulesRequest
-	28,  // 108: floatrail.v1.FloatRail.GetRule:input_type -> floatrail.v1.GetRuleRequest
-	3,   // 109: floatrail.v1.FloatRail.SizeSupply:output_type -> floatrail.v1.SizeSupplyResponse
-	5,   // 110: floatrail.v1.FloatRail.CheckDutyLimits:output_type -> floatrail.v1.CheckDutyLimitsResponse
-	7,   // 111: floatrail.v1.FloatRail.CheckTransientStress:output_type -> floatrail.v1.CheckTransientStressResponse
-	9,   // 112: floatrail.v1.FloatRail.ReviewStage:output_type -> floatrail.v1.ReviewStageResponse
-	11,  // 113: floatrail.v1.FloatRail.ReviewBoard:output_type -> floatrail.v1.ReviewBoardResponse
-	16,  // 114: floatrail.v1.FloatRail.CompareRevisions:output_type -> floatrail.v1.CompareRevisionsResponse
-	19,  // 115: floatrail.v1.FloatRail.StudyAlternates:output_type -> floatrail.v1.StudyAlternatesResponse
-	21,  // 116: floatrail.v1.FloatRail.StudyTolerances:output_type -> floatrail.v1.StudyTolerancesResponse
-	24,  // 117: floatrail.v1.FloatRail.ListDataGaps:output_type -> floatrail.v1.ListDataGapsResponse
-	27,  // 118: floatrail.v1.FloatRail.ListRules:output_type -> floatrail.v1.ListRulesResponse
-	29,  // 119: floatrail.v1.FloatRail.GetRule:output_type -> floatrail.v1.GetRuleResponse
-	109, // [109:120] is the sub-list for method output_type
-	98,  // [98:109] is the sub-list for method input_type
-	98,  // [98:98] is the sub-list for extension type_name
-	98,  // [98:98] is the sub-list for extension extendee
-	0,   // [0:98] is the sub-list for field type_name
+	38,  // 0: floatrail.v1.SizeSupplyRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 1: floatrail.v1.SizeSupplyRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 2: floatrail.v1.SizeSupplyRequest.policy:type_name -> floatrail.v1.Policy
+	41,  // 3: floatrail.v1.SizeSupplyRequest.options:type_name -> floatrail.v1.Options
+	2,   // 4: floatrail.v1.SizeSupplyResponse.engine:type_name -> floatrail.v1.Engine
+	42,  // 5: floatrail.v1.SizeSupplyResponse.verdict:type_name -> floatrail.v1.Verdict.Value
+	43,  // 6: floatrail.v1.SizeSupplyResponse.coverage:type_name -> floatrail.v1.Coverage
+	44,  // 7: floatrail.v1.SizeSupplyResponse.findings:type_name -> floatrail.v1.Finding
+	45,  // 8: floatrail.v1.SizeSupplyResponse.assumptions:type_name -> floatrail.v1.Assumption
+	46,  // 9: floatrail.v1.SizeSupplyResponse.readings:type_name -> floatrail.v1.Reading
+	47,  // 10: floatrail.v1.SizeSupplyResponse.unused_waivers:type_name -> floatrail.v1.Waiver
+	48,  // 11: floatrail.v1.SizeSupplyResponse.sizing:type_name -> floatrail.v1.SizingResult
+	38,  // 12: floatrail.v1.CheckDutyLimitsRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 13: floatrail.v1.CheckDutyLimitsRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 14: floatrail.v1.CheckDutyLimitsRequest.policy:type_name -> floatrail.v1.Policy
+	41,  // 15: floatrail.v1.CheckDutyLimitsRequest.options:type_name -> floatrail.v1.Options
+	2,   // 16: floatrail.v1.CheckDutyLimitsResponse.engine:type_name -> floatrail.v1.Engine
+	42,  // 17: floatrail.v1.CheckDutyLimitsResponse.verdict:type_name -> floatrail.v1.Verdict.Value
+	43,  // 18: floatrail.v1.CheckDutyLimitsResponse.coverage:type_name -> floatrail.v1.Coverage
+	44,  // 19: floatrail.v1.CheckDutyLimitsResponse.findings:type_name -> floatrail.v1.Finding
+	45,  // 20: floatrail.v1.CheckDutyLimitsResponse.assumptions:type_name -> floatrail.v1.Assumption
+	46,  // 21: floatrail.v1.CheckDutyLimitsResponse.readings:type_name -> floatrail.v1.Reading
+	47,  // 22: floatrail.v1.CheckDutyLimitsResponse.unused_waivers:type_name -> floatrail.v1.Waiver
+	49,  // 23: floatrail.v1.CheckDutyLimitsResponse.duty_limits:type_name -> floatrail.v1.DutyLimitsResult
+	38,  // 24: floatrail.v1.CheckTransientStressRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 25: floatrail.v1.CheckTransientStressRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 26: floatrail.v1.CheckTransientStressRequest.policy:type_name -> floatrail.v1.Policy
+	41,  // 27: floatrail.v1.CheckTransientStressRequest.options:type_name -> floatrail.v1.Options
+	2,   // 28: floatrail.v1.CheckTransientStressResponse.engine:type_name -> floatrail.v1.Engine
+	42,  // 29: floatrail.v1.CheckTransientStressResponse.verdict:type_name -> floatrail.v1.Verdict.Value
+	43,  // 30: floatrail.v1.CheckTransientStressResponse.coverage:type_name -> floatrail.v1.Coverage
+	44,  // 31: floatrail.v1.CheckTransientStressResponse.findings:type_name -> floatrail.v1.Finding
+	45,  // 32: floatrail.v1.CheckTransientStressResponse.assumptions:type_name -> floatrail.v1.Assumption
+	46,  // 33: floatrail.v1.CheckTransientStressResponse.readings:type_name -> floatrail.v1.Reading
+	47,  // 34: floatrail.v1.CheckTransientStressResponse.unused_waivers:type_name -> floatrail.v1.Waiver
+	50,  // 35: floatrail.v1.CheckTransientStressResponse.transient_stress:type_name -> floatrail.v1.TransientStressResult
+	38,  // 36: floatrail.v1.ReviewStageRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 37: floatrail.v1.ReviewStageRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 38: floatrail.v1.ReviewStageRequest.policy:type_name -> floatrail.v1.Policy
+	47,  // 39: floatrail.v1.ReviewStageRequest.waivers:type_name -> floatrail.v1.Waiver
+	41,  // 40: floatrail.v1.ReviewStageRequest.options:type_name -> floatrail.v1.Options
+	2,   // 41: floatrail.v1.ReviewStageResponse.engine:type_name -> floatrail.v1.Engine
+	42,  // 42: floatrail.v1.ReviewStageResponse.verdict:type_name -> floatrail.v1.Verdict.Value
+	43,  // 43: floatrail.v1.ReviewStageResponse.coverage:type_name -> floatrail.v1.Coverage
+	44,  // 44: floatrail.v1.ReviewStageResponse.findings:type_name -> floatrail.v1.Finding
+	45,  // 45: floatrail.v1.ReviewStageResponse.assumptions:type_name -> floatrail.v1.Assumption
+	46,  // 46: floatrail.v1.ReviewStageResponse.readings:type_name -> floatrail.v1.Reading
+	47,  // 47: floatrail.v1.ReviewStageResponse.unused_waivers:type_name -> floatrail.v1.Waiver
+	49,  // 48: floatrail.v1.ReviewStageResponse.duty_limits:type_name -> floatrail.v1.DutyLimitsResult
+	50,  // 49: floatrail.v1.ReviewStageResponse.transient_stress:type_name -> floatrail.v1.TransientStressResult
+	38,  // 50: floatrail.v1.ReviewBoardRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 51: floatrail.v1.ReviewBoardRequest.stages:type_name -> floatrail.v1.Stage
+	40,  // 52: floatrail.v1.ReviewBoardRequest.policy:type_name -> floatrail.v1.Policy
+	47,  // 53: floatrail.v1.ReviewBoardRequest.waivers:type_name -> floatrail.v1.Waiver
+	41,  // 54: floatrail.v1.ReviewBoardRequest.options:type_name -> floatrail.v1.Options
+	10,  // 55: floatrail.v1.ReviewBoardResponse.stage:type_name -> floatrail.v1.ReviewStageResponse
+	13,  // 56: floatrail.v1.ReviewBoardResponse.faults:type_name -> floatrail.v1.StageFaults
+	15,  // 57: floatrail.v1.ReviewBoardResponse.summary:type_name -> floatrail.v1.BoardSummary
+	14,  // 58: floatrail.v1.StageFaults.faults:type_name -> floatrail.v1.Fault
+	42,  // 59: floatrail.v1.BoardSummary.verdict:type_name -> floatrail.v1.Verdict.Value
+	38,  // 60: floatrail.v1.CompareRevisionsRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 61: floatrail.v1.CompareRevisionsRequest.before:type_name -> floatrail.v1.Stage
+	39,  // 62: floatrail.v1.CompareRevisionsRequest.after:type_name -> floatrail.v1.Stage
+	40,  // 63: floatrail.v1.CompareRevisionsRequest.policy:type_name -> floatrail.v1.Policy
+	41,  // 64: floatrail.v1.CompareRevisionsRequest.options:type_name -> floatrail.v1.Options
+	2,   // 65: floatrail.v1.CompareRevisionsResponse.engine:type_name -> floatrail.v1.Engine
+	36,  // 66: floatrail.v1.CompareRevisionsResponse.items:type_name -> floatrail.v1.CompareRevisionsResponse.Item
+	38,  // 67: floatrail.v1.StudyAlternatesRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 68: floatrail.v1.StudyAlternatesRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 69: floatrail.v1.StudyAlternatesRequest.policy:type_name -> floatrail.v1.Policy
+	19,  // 70: floatrail.v1.StudyAlternatesRequest.alternates:type_name -> floatrail.v1.AlternateList
+	2,   // 71: floatrail.v1.StudyAlternatesResponse.engine:type_name -> floatrail.v1.Engine
+	42,  // 72: floatrail.v1.StudyAlternatesResponse.verdict:type_name -> floatrail.v1.Verdict.Value
+	44,  // 73: floatrail.v1.StudyAlternatesResponse.findings:type_name -> floatrail.v1.Finding
+	19,  // 74: floatrail.v1.StudyAlternatesResponse.binding:type_name -> floatrail.v1.AlternateList
+	38,  // 75: floatrail.v1.StudyTolerancesRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 76: floatrail.v1.StudyTolerancesRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 77: floatrail.v1.StudyTolerancesRequest.policy:type_name -> floatrail.v1.Policy
+	1,   // 78: floatrail.v1.StudyTolerancesRequest.distribution:type_name -> floatrail.v1.StudyTolerancesRequest.Distribution.Value
+	41,  // 79: floatrail.v1.StudyTolerancesRequest.options:type_name -> floatrail.v1.Options
+	2,   // 80: floatrail.v1.StudyTolerancesResponse.engine:type_name -> floatrail.v1.Engine
+	25,  // 81: floatrail.v1.StudyTolerancesResponse.yields:type_name -> floatrail.v1.RuleYield
+	1,   // 82: floatrail.v1.StudyTolerancesResponse.distribution:type_name -> floatrail.v1.StudyTolerancesRequest.Distribution.Value
+	23,  // 83: floatrail.v1.StudyTolerancesResponse.overall:type_name -> floatrail.v1.OverallYield
+	45,  // 84: floatrail.v1.StudyTolerancesResponse.assumptions:type_name -> floatrail.v1.Assumption
+	46,  // 85: floatrail.v1.StudyTolerancesResponse.readings:type_name -> floatrail.v1.Reading
+	24,  // 86: floatrail.v1.OverallYield.interval:type_name -> floatrail.v1.ShareInterval
+	51,  // 87: floatrail.v1.RuleYield.percentiles:type_name -> floatrail.v1.Measure
+	24,  // 88: floatrail.v1.RuleYield.interval:type_name -> floatrail.v1.ShareInterval
+	24,  // 89: floatrail.v1.RuleYield.guard_interval:type_name -> floatrail.v1.ShareInterval
+	52,  // 90: floatrail.v1.RuleYield.percentile_intervals:type_name -> floatrail.v1.Window
+	51,  // 91: floatrail.v1.RuleYield.smallest:type_name -> floatrail.v1.Measure
+	51,  // 92: floatrail.v1.RuleYield.largest:type_name -> floatrail.v1.Measure
+	53,  // 93: floatrail.v1.RuleYield.least_margin:type_name -> floatrail.v1.Margin
+	54,  // 94: floatrail.v1.RuleYield.extreme:type_name -> floatrail.v1.PointResult
+	26,  // 95: floatrail.v1.RuleYield.ranking:type_name -> floatrail.v1.Correlation
+	38,  // 96: floatrail.v1.ListDataGapsRequest.parts:type_name -> floatrail.v1.Part
+	39,  // 97: floatrail.v1.ListDataGapsRequest.stage:type_name -> floatrail.v1.Stage
+	40,  // 98: floatrail.v1.ListDataGapsRequest.policy:type_name -> floatrail.v1.Policy
+	2,   // 99: floatrail.v1.ListDataGapsResponse.engine:type_name -> floatrail.v1.Engine
+	29,  // 100: floatrail.v1.ListDataGapsResponse.gaps:type_name -> floatrail.v1.DataGap
+	2,   // 101: floatrail.v1.ListRulesResponse.engine:type_name -> floatrail.v1.Engine
+	34,  // 102: floatrail.v1.ListRulesResponse.rules:type_name -> floatrail.v1.Rule
+	2,   // 103: floatrail.v1.GetRuleResponse.engine:type_name -> floatrail.v1.Engine
+	34,  // 104: floatrail.v1.GetRuleResponse.rule:type_name -> floatrail.v1.Rule
+	55,  // 105: floatrail.v1.Rule.sources:type_name -> floatrail.v1.Reference
+	56,  // 106: floatrail.v1.Rule.severity_fail:type_name -> floatrail.v1.Severity.Value
+	56,  // 107: floatrail.v1.Rule.severity_marginal:type_name -> floatrail.v1.Severity.Value
+	56,  // 108: floatrail.v1.Rule.severity_open:type_name -> floatrail.v1.Severity.Value
+	0,   // 109: floatrail.v1.CompareRevisionsResponse.Item.change:type_name -> floatrail.v1.CompareRevisionsResponse.Change.Value
+	44,  // 110: floatrail.v1.CompareRevisionsResponse.Item.before:type_name -> floatrail.v1.Finding
+	44,  // 111: floatrail.v1.CompareRevisionsResponse.Item.after:type_name -> floatrail.v1.Finding
+	57,  // 112: floatrail.v1.CompareRevisionsResponse.Item.causes:type_name -> floatrail.v1.Change
+	3,   // 113: floatrail.v1.FloatRail.SizeSupply:input_type -> floatrail.v1.SizeSupplyRequest
+	5,   // 114: floatrail.v1.FloatRail.CheckDutyLimits:input_type -> floatrail.v1.CheckDutyLimitsRequest
+	7,   // 115: floatrail.v1.FloatRail.CheckTransientStress:input_type -> floatrail.v1.CheckTransientStressRequest
+	9,   // 116: floatrail.v1.FloatRail.ReviewStage:input_type -> floatrail.v1.ReviewStageRequest
+	11,  // 117: floatrail.v1.FloatRail.ReviewBoard:input_type -> floatrail.v1.ReviewBoardRequest
+	16,  // 118: floatrail.v1.FloatRail.CompareRevisions:input_type -> floatrail.v1.CompareRevisionsRequest
+	18,  // 119: floatrail.v1.FloatRail.StudyAlternates:input_type -> floatrail.v1.StudyAlternatesRequest
+	21,  // 120: floatrail.v1.FloatRail.StudyTolerances:input_type -> floatrail.v1.StudyTolerancesRequest
+	27,  // 121: floatrail.v1.FloatRail.ListDataGaps:input_type -> floatrail.v1.ListDataGapsRequest
+	30,  // 122: floatrail.v1.FloatRail.ListRules:input_type -> floatrail.v1.ListRulesRequest
+	32,  // 123: floatrail.v1.FloatRail.GetRule:input_type -> floatrail.v1.GetRuleRequest
+	4,   // 124: floatrail.v1.FloatRail.SizeSupply:output_type -> floatrail.v1.SizeSupplyResponse
+	6,   // 125: floatrail.v1.FloatRail.CheckDutyLimits:output_type -> floatrail.v1.CheckDutyLimitsResponse
+	8,   // 126: floatrail.v1.FloatRail.CheckTransientStress:output_type -> floatrail.v1.CheckTransientStressResponse
+	10,  // 127: floatrail.v1.FloatRail.ReviewStage:output_type -> floatrail.v1.ReviewStageResponse
+	12,  // 128: floatrail.v1.FloatRail.ReviewBoard:output_type -> floatrail.v1.ReviewBoardResponse
+	17,  // 129: floatrail.v1.FloatRail.CompareRevisions:output_type -> floatrail.v1.CompareRevisionsResponse
+	20,  // 130: floatrail.v1.FloatRail.StudyAlternates:output_type -> floatrail.v1.StudyAlternatesResponse
+	22,  // 131: floatrail.v1.FloatRail.StudyTolerances:output_type -> floatrail.v1.StudyTolerancesResponse
+	28,  // 132: floatrail.v1.FloatRail.ListDataGaps:output_type -> floatrail.v1.ListDataGapsResponse
+	31,  // 133: floatrail.v1.FloatRail.ListRules:output_type -> floatrail.v1.ListRulesResponse
+	33,  // 134: floatrail.v1.FloatRail.GetRule:output_type -> floatrail.v1.GetRuleResponse
+	124, // [124:135] is the sub-list for method output_type
+	113, // [113:124] is the sub-list for method input_type
+	113, // [113:113] is the sub-list for extension type_name
+	113, // [113:113] is the sub-list for extension extendee
+	0,   // [0:113] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_service_proto_init() }
@@ -3009,16 +3684,19 @@ func file_floatrail_v1_service_proto_init() {
 	file_floatrail_v1_service_proto_msgTypes[19].OneofWrappers = []any{}
 	file_floatrail_v1_service_proto_msgTypes[20].OneofWrappers = []any{}
 	file_floatrail_v1_service_proto_msgTypes[21].OneofWrappers = []any{}
+	file_floatrail_v1_service_proto_msgTypes[22].OneofWrappers = []any{}
+	file_floatrail_v1_service_proto_msgTypes[23].OneofWrappers = []any{}
 	file_floatrail_v1_service_proto_msgTypes[24].OneofWrappers = []any{}
 	file_floatrail_v1_service_proto_msgTypes[27].OneofWrappers = []any{}
-	file_floatrail_v1_service_proto_msgTypes[29].OneofWrappers = []any{}
+	file_floatrail_v1_service_proto_msgTypes[30].OneofWrappers = []any{}
+	file_floatrail_v1_service_proto_msgTypes[32].OneofWrappers = []any{}
 	type x struct{}
 	out := protoimpl.TypeBuilder{
 		File: protoimpl.DescBuilder{
 			GoPackagePath: reflect.TypeOf(x{}).PkgPath(),
 			RawDescriptor: unsafe.Slice(unsafe.StringData(file_floatrail_v1_service_proto_rawDesc), len(file_floatrail_v1_service_proto_rawDesc)),
-			NumEnums:      1,
-			NumMessages:   32,
+			NumEnums:      2,
+			NumMessages:   36,
 			NumExtensions: 0,
 			NumServices:   1,
 		},

@@ -52,7 +52,7 @@ type FloatRailClient interface {
 	CompareRevisions(ctx context.Context, in *CompareRevisionsRequest, opts ...grpc.CallOption) (*CompareRevisionsResponse, error)
 	// Whether the list of approved alternates passes, and which binds.
 	StudyAlternates(ctx context.Context, in *StudyAlternatesRequest, opts ...grpc.CallOption) (*StudyAlternatesResponse, error)
-	// Seeded Monte Carlo over the inputs.
+	// Seeded Monte Carlo over the inputs: progress at regular numbers of draws, at last the study.
 	StudyTolerances(ctx context.Context, in *StudyTolerancesRequest, opts ...grpc.CallOption) (grpc.ServerStreamingClient[StudyTolerancesResponse], error)
 	// What is missing, ordered by how many rules it unlocks.
 	ListDataGaps(ctx context.Context, in *ListDataGapsRequest, opts ...grpc.CallOption) (*ListDataGapsResponse, error)
@@ -218,7 +218,7 @@ type FloatRailServer interface {
 	CompareRevisions(context.Context, *CompareRevisionsRequest) (*CompareRevisionsResponse, error)
 	// Whether the list of approved alternates passes, and which binds.
 	StudyAlternates(context.Context, *StudyAlternatesRequest) (*StudyAlternatesResponse, error)
-	// Seeded Monte Carlo over the inputs.
+	// Seeded Monte Carlo over the inputs: progress at regular numbers of draws, at last the study.
 	StudyTolerances(*StudyTolerancesRequest, grpc.ServerStreamingServer[StudyTolerancesResponse]) error
 	// What is missing, ordered by how many rules it unlocks.
 	ListDataGaps(context.Context, *ListDataGapsRequest) (*ListDataGapsResponse, error)

@@ -178,18 +178,20 @@ func wireFinding(f *finding.Finding) *pb.Finding {
 		Role:     label(f.Role),
 		Missing:  f.Missing,
 		Notes:    f.Notes,
-		Points: each(f.Points, func(p *finding.PointResult) *pb.PointResult {
-			return &pb.PointResult{
-				OperatingPoint: label(p.OperatingPoint), Outcome: outcome(p.Outcome), Value: wireMeasure(&p.Value), Limit: wireMeasure(&p.Limit),
-				Margin: wireMargin(&p.Margin),
-			}
-		}),
-		Known: proto.Bool(f.Known),
+		Points:   each(f.Points, wirePoint),
+		Known:    proto.Bool(f.Known),
 	}
 	if f.Waiver != nil {
 		out.Waiver = wireWaiver(f.Waiver)
 	}
 	return out
+}
+
+func wirePoint(p *finding.PointResult) *pb.PointResult {
+	return &pb.PointResult{
+		OperatingPoint: label(p.OperatingPoint), Outcome: outcome(p.Outcome), Value: wireMeasure(&p.Value), Limit: wireMeasure(&p.Limit),
+		Margin: wireMargin(&p.Margin),
+	}
 }
 
 func wireCorner(c *finding.Corner) *pb.Corner {

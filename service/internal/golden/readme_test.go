@@ -214,8 +214,15 @@ func readmeCurl(t *testing.T, blocks []block, place func(string) string) {
 		if status != http.StatusOK || len(data) == 0 {
 			t.Errorf("%s: status %d, %.200s", line, status, data)
 		}
-		if strings.Contains(url, "/v1/") && !json.Valid(data) {
-			t.Errorf("%s: not JSON", line)
+		answers := bytes.Split(bytes.TrimSuffix(data, []byte("\n")), []byte("\n")) // of a stream one a line
+		for _, a := range answers {
+			if strings.Contains(url, "/v1/") && !json.Valid(a) {
+				t.Errorf("%s: not JSON", line)
+			}
+		}
+		if last := answers[len(answers)-1]; strings.HasSuffix(url, "-studies") && (len(answers) < 3 || !bytes.Contains(last, []byte(`{"result":{`)) ||
+			!bytes.Contains(last, []byte(`"overall":{"share":`))) {
+			t.Errorf("%s: %d lines, the last one %.200s", line, len(answers), last)
 		}
 	}
 }
@@ -283,7 +290,7 @@ func readmeJSON(t *testing.T, blocks []block) {
 	if err := json.Unmarshal(answer(t, "buck48"), &live); err != nil {
 		t.Fatal(err)
 	}
-	findings, waivers, options := 0, 0, 0
+	findings, waivers, options, studies := 0, 0, 0, 0
 	for _, b := range blocks {
 		if b.language != "json" {
 			continue
@@ -296,6 +303,13 @@ func readmeJSON(t *testing.T, blocks []block) {
 		if excerpt["waivers"] != nil {
 			waivers++
 			if err := protojson.Unmarshal(data, new(pb.ReviewStageRequest)); err != nil {
+				t.Error(err)
+			}
+			continue
+		}
+		if excerpt["draws"] != nil {
+			studies++
+			if err := protojson.Unmarshal(data, new(pb.StudyTolerancesRequest)); err != nil {
 				t.Error(err)
 			}
 			continue
@@ -314,8 +328,8 @@ func readmeJSON(t *testing.T, blocks []block) {
 			t.Errorf("no finding of buck48 reads\n%s", data)
 		}
 	}
-	if findings != 1 || waivers != 1 || options != 1 {
-		t.Errorf("%d findings, %d waivers and %d options, want one of each", findings, waivers, options)
+	if findings != 1 || waivers != 1 || options != 1 || studies != 1 {
+		t.Errorf("%d findings, %d waivers, %d options and %d studies, want one of each", findings, waivers, options, studies)
 	}
 }
 

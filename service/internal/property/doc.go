@@ -12,5 +12,7 @@
 //	critical    of a sound stage one parameter makes each CRITICAL rule fail, and without its data it does not pass
 //	sound       well-designed stages raise no false alarm
 //	outcomes    the table of outcomes over the corpus
+//	sampler     a draw in the memory of others is what it is in a space of its own
+//	study       no draw of a tolerance study lies beyond the worst case; studies depend on nothing but their request
 //	sizing      the parts that sizing recommends pass the review
 package property

@@ -13,3 +13,6 @@ const tries = 24
 
 // randomStages is the number of random stages about each demo stage.
 const randomStages = 120
+
+// studied is the number of draws that are held against the extreme values.
+const studied = 300

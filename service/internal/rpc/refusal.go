@@ -79,17 +79,23 @@ func summary(faults []convert.Fault) string {
 	return b.String()
 }
 
-// notOffered refuses options that this build does not carry out, and with inert those that change nothing in what the method answers: an option
-// that is silently ignored looks like one that found nothing.
-func notOffered(o *pb.Options, inert bool) []convert.Fault {
+// Why a method takes no options about simulated switching events.
+const (
+	noEvents   = "this method judges no switching events, ReviewStage and CheckTransientStress do"
+	closedForm = "a study draws closed forms alone, ReviewStage and CheckTransientStress simulate"
+)
+
+// notOffered refuses options that this build does not carry out, and with a reason also those about simulated events: an option that is silently
+// ignored looks like one that found nothing.
+func notOffered(o *pb.Options, unsimulated string) []convert.Fault {
 	var faults []convert.Fault
 	for _, option := range []struct {
 		name, why string
 		read      bool
 	}{
 		{"fixes", "this build offers no search for fixes", o.GetFixes()},
-		{"simulate", "this method judges no switching events, ReviewStage and CheckTransientStress do", inert && o.GetSimulate()},
-		{"waveforms", "this method judges no switching events, ReviewStage and CheckTransientStress do", inert && o.GetWaveforms()},
+		{"simulate", unsimulated, unsimulated != "" && o.GetSimulate()},
+		{"waveforms", unsimulated, unsimulated != "" && o.GetWaveforms()},
 		{"trace", "this build offers no traces of V_BS", o.GetTrace()},
 	} {
 		if option.read {

@@ -8,6 +8,7 @@ import (
 	"strconv"
 	"strings"
 
+	"google.golang.org/grpc"
 	"google.golang.org/grpc/codes"
 	"google.golang.org/grpc/status"
 	"google.golang.org/protobuf/proto"
@@ -17,6 +18,7 @@ import (
 	"floatrail/calc/catalog"
 	"floatrail/calc/finding"
 	"floatrail/calc/rule"
+	"floatrail/calc/study"
 	"floatrail/service/internal/convert"
 	"floatrail/service/internal/wire"
 )
@@ -29,6 +31,7 @@ type Handlers struct {
 	rules   []*rule.Rule
 	ids     []string
 	observe func(*finding.Report)
+	studied func(*study.Report)
 	carried func(context.Context) *wire.Report
 }
 
@@ -38,19 +41,25 @@ type Options struct {
 	Version string
 	// Observe is told of every report; nil: nobody.
 	Observe func(*finding.Report)
+	// Studied is told of every study; nil: nobody.
+	Studied func(*study.Report)
 	// Carried gives what the REST interface found wrong with the body of a call; nil: nothing ever.
 	Carried func(context.Context) *wire.Report
 }
 
 // New returns the handlers.
 func New(o Options) *Handlers {
-	h := &Handlers{engine: convert.Engine{Version: o.Version, RuleSet: catalog.RuleSet}, rules: catalog.All(), observe: o.Observe, carried: o.Carried}
+	h := &Handlers{engine: convert.Engine{Version: o.Version, RuleSet: catalog.RuleSet}, rules: catalog.All(), observe: o.Observe,
+		studied: o.Studied, carried: o.Carried}
 	for _, r := range h.rules {
 		h.ids = append(h.ids, r.ID)
 	}
 	h.binder = convert.New().WithRules(h.ids)
 	if h.observe == nil {
 		h.observe = func(*finding.Report) {}
+	}
+	if h.studied == nil {
+		h.studied = func(*study.Report) {}
 	}
 	if h.carried == nil {
 		h.carried = func(context.Context) *wire.Report { return nil }
@@ -62,7 +71,7 @@ func New(o Options) *Handlers {
 func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb.SizeSupplyResponse, error) {
 	request, readings, faults := h.binder.SizeSupply(r)
 	own(&request, "charge", "capacitor", "diode", "resistor")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), true)...), calc.WithSizing)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), noEvents)...), calc.WithSizing)
 	if err != nil {
 		return nil, err
 	}
@@ -73,7 +82,7 @@ func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb
 func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsRequest) (*pb.CheckDutyLimitsResponse, error) {
 	request, readings, faults := h.binder.CheckDutyLimits(r)
 	own(&request, "charge", "supply", "duty")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), true)...), calc.WithDutyLimits)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), noEvents)...), calc.WithDutyLimits)
 	if err != nil {
 		return nil, err
 	}
@@ -84,7 +93,7 @@ func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsReq
 func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransientStressRequest) (*pb.CheckTransientStressResponse, error) {
 	request, readings, faults := h.binder.CheckTransientStress(r)
 	own(&request, "gate", "node")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), false)...), calc.WithTransient)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), "")...), calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}
@@ -94,11 +103,28 @@ func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransien
 // ReviewStage answers with every rule on one stage.
 func (h *Handlers) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.ReviewStageResponse, error) {
 	request, readings, faults := h.binder.ReviewStage(r)
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), false)...), calc.WithDutyLimits|calc.WithTransient)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), "")...), calc.WithDutyLimits|calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}
 	return convert.ReviewStageResponse(h.engine, report, readings), nil
+}
+
+// StudyTolerances answers with the progress of a study and at last the study.
+func (h *Handlers) StudyTolerances(r *pb.StudyTolerancesRequest, stream grpc.ServerStreamingServer[pb.StudyTolerancesResponse]) error {
+	ctx := stream.Context()
+	request, readings, faults := h.binder.StudyTolerances(r)
+	if err := refusal(h.carried(ctx), append(faults, notOffered(r.GetOptions(), closedForm)...)); err != nil {
+		return err
+	}
+	report, err := study.Run(ctx, request, func(p study.Progress) error {
+		return stream.Send(convert.StudyProgress(h.engine, &request, p))
+	})
+	if err != nil {
+		return err
+	}
+	h.studied(&report)
+	return stream.Send(convert.StudyTolerancesResponse(h.engine, &report, readings))
 }
 
 // own limits a check to the families it is about, where the request names none.

@@ -30,11 +30,6 @@ func (h *Handlers) StudyAlternates(context.Context, *pb.StudyAlternatesRequest) 
 	return nil, notOfferedMethod("StudyAlternates", "review the stage with each alternate by ReviewStage (POST /v1/reviews)")
 }
 
-// StudyTolerances is not offered.
-func (h *Handlers) StudyTolerances(*pb.StudyTolerancesRequest, grpc.ServerStreamingServer[pb.StudyTolerancesResponse]) error {
-	return notOfferedMethod("StudyTolerances", "ReviewStage (POST /v1/reviews) judges the worst case over all tolerances")
-}
-
 // ListDataGaps is not offered.
 func (h *Handlers) ListDataGaps(context.Context, *pb.ListDataGapsRequest) (*pb.ListDataGapsResponse, error) {
 	return nil, notOfferedMethod("ListDataGaps", "the findings of ReviewStage (POST /v1/reviews) name the missing fields")

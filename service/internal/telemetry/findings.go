@@ -8,6 +8,7 @@ import (
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/calc/finding"
 	"floatrail/calc/stage"
+	"floatrail/calc/study"
 )
 
 // undeclared is the field label of a path that the contract does not have.
@@ -52,6 +53,14 @@ func (m *Metrics) Observe(r *finding.Report) {
 	m.simulated[runs].Add(float64(r.Simulations))
 	m.simulated[steps].Add(float64(r.SimulationSteps))
 	m.simulated[failures].Add(float64(r.SimulationFailures))
+	for range r.Internal {
+		m.Panic(InRule)
+	}
+}
+
+// Studied counts what one study took.
+func (m *Metrics) Studied(r *study.Report) {
+	m.draws.Add(float64(r.Draws))
 	for range r.Internal {
 		m.Panic(InRule)
 	}

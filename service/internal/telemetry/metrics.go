@@ -53,6 +53,7 @@ type Metrics struct {
 	missing    *prometheus.CounterVec
 	panics     *prometheus.CounterVec
 	events     *prometheus.CounterVec
+	draws      prometheus.Counter
 	simulated  map[string]prometheus.Counter
 	fields     map[string]bool // of the contract, by which missing inputs are counted
 }
@@ -90,6 +91,7 @@ func New(registry prometheus.Registerer, build Build, rules []*pb.Rule) *Metrics
 		events:     counter("switching_events_total", "Switching events in answers, by method and by whether they could be evaluated.", "method", "result"),
 		fields:     declaredFields(),
 	}
+	m.draws = counter("study_draws_total", "Draws of tolerance studies that were finished.").WithLabelValues()
 	m.simulated = map[string]prometheus.Counter{}
 	for name, help := range map[string]string{
 		runs: "Switching events simulated, those that only a search looked at included.", steps: "Steps of the integrator in simulated switching events.",

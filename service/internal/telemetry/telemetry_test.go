@@ -8,6 +8,7 @@ import (
 
 	"floatrail/calc/finding"
 	"floatrail/calc/stage"
+	"floatrail/calc/study"
 )
 
 func TestFieldLabelsAreBounded(t *testing.T) {
@@ -46,6 +47,7 @@ func TestObserve(t *testing.T) {
 		{Rule: "a/b", Outcome: finding.Pass},
 		{Rule: "c/d", Outcome: finding.Open, Severity: stage.Major, Missing: []string{"stage.driver.uvloRising", "stage.operatingPoints[1].deadTime", "stage.operatingPoints[0].deadTime"}},
 	}})
+	m.Studied(&study.Report{Draws: 700, Internal: 1})
 	for _, c := range []struct {
 		what string
 		got  prometheus.Collector
@@ -60,7 +62,8 @@ func TestObserve(t *testing.T) {
 		{"events simulated", m.events.WithLabelValues("SIMULATION", "evaluated"), 2},
 		{"simulations that failed", m.events.WithLabelValues("SIMULATION", "open"), 2},
 		{"events estimated", m.events.WithLabelValues("ESTIMATE", "evaluated"), 1},
-		{"rules that panicked", m.panics.WithLabelValues(InRule), 2},
+		{"rules that panicked", m.panics.WithLabelValues(InRule), 3},
+		{"draws", m.draws, 700},
 	} {
 		if got := testutil.ToFloat64(c.got); got != c.want {
 			t.Errorf("%s: %v, want %v", c.what, got, c.want)
