@@ -331,6 +331,15 @@ func (c *Circuit) shortestPulse() float64 {
 	return c.Need(&c.Stage.Driver.MinimumPulse) + c.Need(&c.Stage.Driver.EdgeTime)
 }
 
+// LeastDuty is the smallest duty whose pulse the driver passes to the high side [1].
+func (c *Circuit) LeastDuty() float64 {
+	pulse := c.Value(&c.Stage.Driver.MinimumPulse) + c.Value(&c.Stage.Driver.EdgeTime)
+	if c.Stage.LowSide.Kind != stage.DiodeOnly && c.Point.SixStep == nil {
+		pulse += c.Value(&c.Point.DeadTime)
+	}
+	return pulse * c.Value(&c.Point.SwitchingFrequency)
+}
+
 // HighPulse is the shortest pulse that the high side is commanded for, whether the driver passes it or not [s]; +Inf where it is commanded for none.
 func (c *Circuit) HighPulse() float64 {
 	switch {

@@ -488,6 +488,7 @@ func peakFrom(p *recharge.Period, v float64) float64 {
 	if v != v {
 		return nan
 	}
+	v = math.Max(v, 0) // a steady state below 0 V is a number of the law, not a charge of C_B
 	for i := range p.Off {
 		iv := p.Off[i]
 		if iv.Conducts {
@@ -526,6 +527,7 @@ func (c *Circuit) elementPower(r float64) float64 {
 // resistorEnergy is what a resistance r [ohm] of the element takes in a period from V_BS = v [V] at the end of the on-time on [J].
 func resistorEnergy(p *recharge.Period, v, r float64) float64 {
 	energy := 0.0
+	v = math.Max(v, 0)
 	for i := range p.Off {
 		energy += loss.ResistorEnergy(p.Element, p.Off[i], p.Capacitance, v, r)
 		v, _ = p.Element.Advance(v, p.Off[i], p.Capacitance)

@@ -194,6 +194,11 @@ func Limit(c *circuit.Circuit, name string) Result {
 		return Result{Value: math.NaN(), Input: math.NaN()}
 	}
 	good, bad := here, s.toward
+	if least := leastDuty(c); name == Duty(c.Point) && here < least && now < 0 { // no pulse reaches the switch there: the first that does counts
+		here = least
+		now = at(here)
+		good = here
+	}
 	if now < 0 {
 		good, bad = s.back, here
 		for k := 1; k <= backSteps && !(at(good) >= 0); k++ { // it may hold in between only: pulses vanish at the far end
@@ -235,6 +240,14 @@ func From(c *circuit.Circuit, name string, duty Result) Result {
 		duty.Value = s.limit(c, duty.Input)
 	}
 	return duty
+}
+
+// leastDuty is the smallest duty whose pulse reaches the high side; 0 for what stands for a duty.
+func leastDuty(c *circuit.Circuit) float64 {
+	if c.Point.Sinusoidal != nil {
+		return 0
+	}
+	return c.LeastDuty() * (1 + 1e-9)
 }
 
 // backSteps is the number of values tried on the way back where neither the drawn value holds nor the far end.

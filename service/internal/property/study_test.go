@@ -56,11 +56,9 @@ func studied1(t testing.TB, tree any, draws int, seed uint32, d study.Distributi
 }
 
 // beyond are the places at which draws are known to lie beyond the worst case, with the reason: the search of the worst case does not follow the edge at
-// which the floating supply of the strained stage collapses. The outcomes of all draws are bounded there as everywhere.
+// which the low-side pulse of the strained stage vanishes. The outcomes of all draws are bounded there as everywhere.
 var beyond = map[string]map[remark]string{
 	"buck48 strained": {
-		{"diode/peak-current", "repetitive"}:         "the current grows until the steady state collapses and counts from an empty C_B beyond; the largest lies at the edge",
-		{"resistor/power", ""}:                       "there is no power beyond the collapse, and the largest lies at the edge",
 		{"gate/overvoltage", "driver"}:               "where the low-side pulse vanishes, V_BS is highest for some duties within the range, and collapses for others",
 		{"gate/overvoltage", "highSide"}:             "the same V_BS",
 		{"capacitor/voltage", "bootstrap.capacitor"}: "the same V_BS",
