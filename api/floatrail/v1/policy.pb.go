@@ -446,7 +446,7 @@ type Options struct {
 	Simulate *bool `protobuf:"varint,2,opt,name=simulate,proto3,oneof" json:"simulate,omitempty"`
 	// Return waveforms of the simulated events, each at its worst draw; needs `simulate`. Taken by ReviewStage and CheckTransientStress alone.
 	Waveforms *bool `protobuf:"varint,3,opt,name=waveforms,proto3,oneof" json:"waveforms,omitempty"`
-	// Return traces of V_BS.
+	// Return traces of V_BS. Taken by ReviewStage and CheckDutyLimits alone.
 	Trace *bool `protobuf:"varint,4,opt,name=trace,proto3,oneof" json:"trace,omitempty"`
 	// Return every operating point of a finding.
 	PerPoint *bool `protobuf:"varint,5,opt,name=per_point,json=perPoint,proto3,oneof" json:"per_point,omitempty"`

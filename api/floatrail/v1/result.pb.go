@@ -21,6 +21,70 @@ const (
 	_ = protoimpl.EnforceVersion(protoimpl.MaxVersion - 20)
 )
 
+// Values of Kind.
+type TracePoint_Kind_Value int32
+
+const (
+	TracePoint_Kind_UNSPECIFIED TracePoint_Kind_Value = 0
+	// One switching period, from before its rising edge.
+	TracePoint_Kind_PERIOD TracePoint_Kind_Value = 1
+	// A fundamental, or a revolution of six-step operation, from its beginning.
+	TracePoint_Kind_FUNDAMENTAL TracePoint_Kind_Value = 2
+	// A burst and the pause after it.
+	TracePoint_Kind_BURST TracePoint_Kind_Value = 3
+	// The time for which the high side is held on.
+	TracePoint_Kind_HOLD TracePoint_Kind_Value = 4
+	// The first charge.
+	TracePoint_Kind_PRECHARGE TracePoint_Kind_Value = 5
+)
+
+// Enum value maps for TracePoint_Kind_Value.
+var (
+	TracePoint_Kind_Value_name = map[int32]string{
+		0: "UNSPECIFIED",
+		1: "PERIOD",
+		2: "FUNDAMENTAL",
+		3: "BURST",
+		4: "HOLD",
+		5: "PRECHARGE",
+	}
+	TracePoint_Kind_Value_value = map[string]int32{
+		"UNSPECIFIED": 0,
+		"PERIOD":      1,
+		"FUNDAMENTAL": 2,
+		"BURST":       3,
+		"HOLD":        4,
+		"PRECHARGE":   5,
+	}
+)
+
+func (x TracePoint_Kind_Value) Enum() *TracePoint_Kind_Value {
+	p := new(TracePoint_Kind_Value)
+	*p = x
+	return p
+}
+
+func (x TracePoint_Kind_Value) String() string {
+	return protoimpl.X.EnumStringOf(x.Descriptor(), protoreflect.EnumNumber(x))
+}
+
+func (TracePoint_Kind_Value) Descriptor() protoreflect.EnumDescriptor {
+	return file_floatrail_v1_result_proto_enumTypes[0].Descriptor()
+}
+
+func (TracePoint_Kind_Value) Type() protoreflect.EnumType {
+	return &file_floatrail_v1_result_proto_enumTypes[0]
+}
+
+func (x TracePoint_Kind_Value) Number() protoreflect.EnumNumber {
+	return protoreflect.EnumNumber(x)
+}
+
+// Deprecated: Use TracePoint_Kind_Value.Descriptor instead.
+func (TracePoint_Kind_Value) EnumDescriptor() ([]byte, []int) {
+	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{9, 0, 0}
+}
+
 // Values of Event.
 type TransientEvent_Event_Value int32
 
@@ -61,11 +125,11 @@ func (x TransientEvent_Event_Value) String() string {
 }
 
 func (TransientEvent_Event_Value) Descriptor() protoreflect.EnumDescriptor {
-	return file_floatrail_v1_result_proto_enumTypes[0].Descriptor()
+	return file_floatrail_v1_result_proto_enumTypes[1].Descriptor()
 }
 
 func (TransientEvent_Event_Value) Type() protoreflect.EnumType {
-	return &file_floatrail_v1_result_proto_enumTypes[0]
+	return &file_floatrail_v1_result_proto_enumTypes[1]
 }
 
 func (x TransientEvent_Event_Value) Number() protoreflect.EnumNumber {
@@ -111,11 +175,11 @@ func (x TransientEvent_Method_Value) String() string {
 }
 
 func (TransientEvent_Method_Value) Descriptor() protoreflect.EnumDescriptor {
-	return file_floatrail_v1_result_proto_enumTypes[1].Descriptor()
+	return file_floatrail_v1_result_proto_enumTypes[2].Descriptor()
 }
 
 func (TransientEvent_Method_Value) Type() protoreflect.EnumType {
-	return &file_floatrail_v1_result_proto_enumTypes[1]
+	return &file_floatrail_v1_result_proto_enumTypes[2]
 }
 
 func (x TransientEvent_Method_Value) Number() protoreflect.EnumNumber {
@@ -480,8 +544,11 @@ type DutyLimitsResult struct {
 	Points []*DutyPoint `protobuf:"bytes,1,rep,name=points,proto3" json:"points,omitempty"`
 	// First charge.
 	Precharge *Precharge `protobuf:"bytes,2,opt,name=precharge,proto3" json:"precharge,omitempty"`
-	// V_BS over one period, on request.
-	Trace         []*TracePoint `protobuf:"bytes,3,rep,name=trace,proto3" json:"trace,omitempty"`
+	// V_BS over a period, a fundamental, a burst, a hold and the first charge, on request: of each operating point at the corner in which its lowest V_BS
+	// binds, of the first charge at the corner in which it takes longest.
+	Trace []*TracePoint `protobuf:"bytes,3,rep,name=trace,proto3" json:"trace,omitempty"`
+	// The tightest of each derived limit over all operating points, with the one that binds.
+	Limits        []*DerivedLimit `protobuf:"bytes,4,rep,name=limits,proto3" json:"limits,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -537,6 +604,13 @@ func (x *DutyLimitsResult) GetTrace() []*TracePoint {
 	return nil
 }
 
+func (x *DutyLimitsResult) GetLimits() []*DerivedLimit {
+	if x != nil {
+		return x.Limits
+	}
+	return nil
+}
+
 // Results of one operating point.
 type DutyPoint struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -581,9 +655,25 @@ type DutyPoint struct {
 	// Fields whose absence keeps the point open.
 	Missing []string `protobuf:"bytes,20,rep,name=missing,proto3" json:"missing,omitempty"`
 	// Why the point was not evaluated.
-	Reason        *string `protobuf:"bytes,21,opt,name=reason,proto3,oneof" json:"reason,omitempty"`
-	unknownFields protoimpl.UnknownFields
-	sizeCache     protoimpl.SizeCache
+	Reason *string `protobuf:"bytes,21,opt,name=reason,proto3,oneof" json:"reason,omitempty"`
+	// Largest modulation index that holds every limit.
+	LargestModulationIndex *Measure `protobuf:"bytes,22,opt,name=largest_modulation_index,json=largestModulationIndex,proto3" json:"largest_modulation_index,omitempty"`
+	// Lowest fundamental or electrical frequency that holds every limit.
+	LowestFundamentalFrequency *Measure `protobuf:"bytes,23,opt,name=lowest_fundamental_frequency,json=lowestFundamentalFrequency,proto3" json:"lowest_fundamental_frequency,omitempty"`
+	// Longest pause between bursts after which the first pulse finds the driver's rising lockout threshold.
+	LongestIdleTime *Measure `protobuf:"bytes,24,opt,name=longest_idle_time,json=longestIdleTime,proto3" json:"longest_idle_time,omitempty"`
+	// Longest time for which the fundamental may stand still while the high side is held on.
+	LongestStall *Measure `protobuf:"bytes,25,opt,name=longest_stall,json=longestStall,proto3" json:"longest_stall,omitempty"`
+	// Where in the fundamental V_BS is lowest, at the binding corner.
+	LowAngle *Measure `protobuf:"bytes,26,opt,name=low_angle,json=lowAngle,proto3" json:"low_angle,omitempty"`
+	// Where in the fundamental V_BS is highest, at the binding corner.
+	HighAngle *Measure `protobuf:"bytes,27,opt,name=high_angle,json=highAngle,proto3" json:"high_angle,omitempty"`
+	// Longest time from the end of a recharge to the end of an on-time before the next.
+	TimeWithoutRecharge *Span `protobuf:"bytes,28,opt,name=time_without_recharge,json=timeWithoutRecharge,proto3" json:"time_without_recharge,omitempty"`
+	// V_BS at the first pulse after a pause.
+	RestartVoltage *Span `protobuf:"bytes,29,opt,name=restart_voltage,json=restartVoltage,proto3" json:"restart_voltage,omitempty"`
+	unknownFields  protoimpl.UnknownFields
+	sizeCache      protoimpl.SizeCache
 }
 
 func (x *DutyPoint) Reset() {
@@ -763,6 +853,62 @@ func (x *DutyPoint) GetReason() string {
 	return ""
 }
 
+func (x *DutyPoint) GetLargestModulationIndex() *Measure {
+	if x != nil {
+		return x.LargestModulationIndex
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetLowestFundamentalFrequency() *Measure {
+	if x != nil {
+		return x.LowestFundamentalFrequency
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetLongestIdleTime() *Measure {
+	if x != nil {
+		return x.LongestIdleTime
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetLongestStall() *Measure {
+	if x != nil {
+		return x.LongestStall
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetLowAngle() *Measure {
+	if x != nil {
+		return x.LowAngle
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetHighAngle() *Measure {
+	if x != nil {
+		return x.HighAngle
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetTimeWithoutRecharge() *Span {
+	if x != nil {
+		return x.TimeWithoutRecharge
+	}
+	return nil
+}
+
+func (x *DutyPoint) GetRestartVoltage() *Span {
+	if x != nil {
+		return x.RestartVoltage
+	}
+	return nil
+}
+
 // One derived limit: the value of one quantity at which the floating supply just holds.
 type DerivedLimit struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
@@ -773,9 +919,11 @@ type DerivedLimit struct {
 	// The binding corner.
 	Corner *Corner `protobuf:"bytes,3,opt,name=corner,proto3" json:"corner,omitempty"`
 	// Why there is none, or that the whole plausible range holds.
-	Reason        *string `protobuf:"bytes,4,opt,name=reason,proto3,oneof" json:"reason,omitempty"`
-	unknownFields protoimpl.UnknownFields
-	sizeCache     protoimpl.SizeCache
+	Reason *string `protobuf:"bytes,4,opt,name=reason,proto3,oneof" json:"reason,omitempty"`
+	// The operating point that binds, where the limit is that of all of them.
+	OperatingPoint *string `protobuf:"bytes,5,opt,name=operating_point,json=operatingPoint,proto3,oneof" json:"operating_point,omitempty"`
+	unknownFields  protoimpl.UnknownFields
+	sizeCache      protoimpl.SizeCache
 }
 
 func (x *DerivedLimit) Reset() {
@@ -832,6 +980,13 @@ func (x *DerivedLimit) GetCorner() *Corner {
 func (x *DerivedLimit) GetReason() string {
 	if x != nil && x.Reason != nil {
 		return *x.Reason
+	}
+	return ""
+}
+
+func (x *DerivedLimit) GetOperatingPoint() string {
+	if x != nil && x.OperatingPoint != nil {
+		return *x.OperatingPoint
 	}
 	return ""
 }
@@ -985,14 +1140,18 @@ func (x *Precharge) GetSettledVoltage() *Span {
 // One point of a trace.
 type TracePoint struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
-	// Name.
+	// Name; unset of the first charge.
 	OperatingPoint *string `protobuf:"bytes,1,opt,name=operating_point,json=operatingPoint,proto3,oneof" json:"operating_point,omitempty"`
-	// Time from the rising edge.
+	// Time from the beginning of the trace.
 	Time *Measure `protobuf:"bytes,2,opt,name=time,proto3" json:"time,omitempty"`
 	// V_BS.
 	FloatingVoltage *Measure `protobuf:"bytes,3,opt,name=floating_voltage,json=floatingVoltage,proto3" json:"floating_voltage,omitempty"`
-	unknownFields   protoimpl.UnknownFields
-	sizeCache       protoimpl.SizeCache
+	// What the trace runs over.
+	Kind TracePoint_Kind_Value `protobuf:"varint,4,opt,name=kind,proto3,enum=floatrail.v1.TracePoint_Kind_Value" json:"kind,omitempty"`
+	// Angle of the fundamental.
+	Angle         *Measure `protobuf:"bytes,5,opt,name=angle,proto3" json:"angle,omitempty"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
 }
 
 func (x *TracePoint) Reset() {
@@ -1042,6 +1201,20 @@ func (x *TracePoint) GetTime() *Measure {
 func (x *TracePoint) GetFloatingVoltage() *Measure {
 	if x != nil {
 		return x.FloatingVoltage
+	}
+	return nil
+}
+
+func (x *TracePoint) GetKind() TracePoint_Kind_Value {
+	if x != nil {
+		return x.Kind
+	}
+	return TracePoint_Kind_UNSPECIFIED
+}
+
+func (x *TracePoint) GetAngle() *Measure {
+	if x != nil {
+		return x.Angle
 	}
 	return nil
 }
@@ -1591,6 +1764,43 @@ func (x *Waveform) GetValue() []float64 {
 	return nil
 }
 
+// What a trace runs over.
+type TracePoint_Kind struct {
+	state         protoimpl.MessageState `protogen:"open.v1"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
+}
+
+func (x *TracePoint_Kind) Reset() {
+	*x = TracePoint_Kind{}
+	mi := &file_floatrail_v1_result_proto_msgTypes[15]
+	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+	ms.StoreMessageInfo(mi)
+}
+
+func (x *TracePoint_Kind) String() string {
+	return protoimpl.X.MessageStringOf(x)
+}
+
+func (*TracePoint_Kind) ProtoMessage() {}
+
+func (x *TracePoint_Kind) ProtoReflect() protoreflect.Message {
+	mi := &file_floatrail_v1_result_proto_msgTypes[15]
+	if x != nil {
+		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
+		if ms.LoadMessageInfo() == nil {
+			ms.StoreMessageInfo(mi)
+		}
+		return ms
+	}
+	return mi.MessageOf(x)
+}
+
+// Deprecated: Use TracePoint_Kind.ProtoReflect.Descriptor instead.
+func (*TracePoint_Kind) Descriptor() ([]byte, []int) {
+	return file_floatrail_v1_result_proto_rawDescGZIP(), []int{9, 0}
+}
+
 // Which edge.
 type TransientEvent_Event struct {
 	state         protoimpl.MessageState `protogen:"open.v1"`
@@ -1600,7 +1810,7 @@ type TransientEvent_Event struct {
 
 func (x *TransientEvent_Event) Reset() {
 	*x = TransientEvent_Event{}
-	mi := &file_floatrail_v1_result_proto_msgTypes[15]
+	mi := &file_floatrail_v1_result_proto_msgTypes[16]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1612,7 +1822,7 @@ func (x *TransientEvent_Event) String() string {
 func (*TransientEvent_Event) ProtoMessage() {}
 
 func (x *TransientEvent_Event) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_result_proto_msgTypes[15]
+	mi := &file_floatrail_v1_result_proto_msgTypes[16]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1637,7 +1847,7 @@ type TransientEvent_Method struct {
 
 func (x *TransientEvent_Method) Reset() {
 	*x = TransientEvent_Method{}
-	mi := &file_floatrail_v1_result_proto_msgTypes[16]
+	mi := &file_floatrail_v1_result_proto_msgTypes[17]
 	ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 	ms.StoreMessageInfo(mi)
 }
@@ -1649,7 +1859,7 @@ func (x *TransientEvent_Method) String() string {
 func (*TransientEvent_Method) ProtoMessage() {}
 
 func (x *TransientEvent_Method) ProtoReflect() protoreflect.Message {
-	mi := &file_floatrail_v1_result_proto_msgTypes[16]
+	mi := &file_floatrail_v1_result_proto_msgTypes[17]
 	if x != nil {
 		ms := protoimpl.X.MessageStateOf(protoimpl.Pointer(x))
 		if ms.LoadMessageInfo() == nil {
@@ -1700,12 +1910,12 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"\x15reservoir_capacitance\x18\t \x01(\v2\x15.floatrail.v1.MeasureR\x14reservoirCapacitance\"\\\n" +
 	"\x06Window\x12'\n" +
 	"\x03low\x18\x01 \x01(\v2\x15.floatrail.v1.MeasureR\x03low\x12)\n" +
-	"\x04high\x18\x02 \x01(\v2\x15.floatrail.v1.MeasureR\x04high\"\xaa\x01\n" +
+	"\x04high\x18\x02 \x01(\v2\x15.floatrail.v1.MeasureR\x04high\"\xde\x01\n" +
 	"\x10DutyLimitsResult\x12/\n" +
 	"\x06points\x18\x01 \x03(\v2\x17.floatrail.v1.DutyPointR\x06points\x125\n" +
 	"\tprecharge\x18\x02 \x01(\v2\x17.floatrail.v1.PrechargeR\tprecharge\x12.\n" +
-	"\x05trace\x18\x03 \x03(\v2\x18.floatrail.v1.TracePointR\x05trace\"\xad\n" +
-	"\n" +
+	"\x05trace\x18\x03 \x03(\v2\x18.floatrail.v1.TracePointR\x05trace\x122\n" +
+	"\x06limits\x18\x04 \x03(\v2\x1a.floatrail.v1.DerivedLimitR\x06limits\"\xc5\x0e\n" +
 	"\tDutyPoint\x12,\n" +
 	"\x0foperating_point\x18\x01 \x01(\tH\x00R\x0eoperatingPoint\x88\x01\x01\x12;\n" +
 	"\x0frecharge_window\x18\x02 \x01(\v2\x12.floatrail.v1.SpanR\x0erechargeWindow\x129\n" +
@@ -1728,19 +1938,30 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"\rhigh_interval\x18\x12 \x01(\tH\x03R\fhighInterval\x88\x01\x01\x122\n" +
 	"\x06limits\x18\x13 \x03(\v2\x1a.floatrail.v1.DerivedLimitR\x06limits\x12\x18\n" +
 	"\amissing\x18\x14 \x03(\tR\amissing\x12\x1b\n" +
-	"\x06reason\x18\x15 \x01(\tH\x04R\x06reason\x88\x01\x01B\x12\n" +
+	"\x06reason\x18\x15 \x01(\tH\x04R\x06reason\x88\x01\x01\x12O\n" +
+	"\x18largest_modulation_index\x18\x16 \x01(\v2\x15.floatrail.v1.MeasureR\x16largestModulationIndex\x12W\n" +
+	"\x1clowest_fundamental_frequency\x18\x17 \x01(\v2\x15.floatrail.v1.MeasureR\x1alowestFundamentalFrequency\x12A\n" +
+	"\x11longest_idle_time\x18\x18 \x01(\v2\x15.floatrail.v1.MeasureR\x0flongestIdleTime\x12:\n" +
+	"\rlongest_stall\x18\x19 \x01(\v2\x15.floatrail.v1.MeasureR\flongestStall\x122\n" +
+	"\tlow_angle\x18\x1a \x01(\v2\x15.floatrail.v1.MeasureR\blowAngle\x124\n" +
+	"\n" +
+	"high_angle\x18\x1b \x01(\v2\x15.floatrail.v1.MeasureR\thighAngle\x12F\n" +
+	"\x15time_without_recharge\x18\x1c \x01(\v2\x12.floatrail.v1.SpanR\x13timeWithoutRecharge\x12;\n" +
+	"\x0frestart_voltage\x18\x1d \x01(\v2\x12.floatrail.v1.SpanR\x0erestartVoltageB\x12\n" +
 	"\x10_operating_pointB\x16\n" +
 	"\x14_capacitance_cancelsB\x10\n" +
 	"\x0e_peak_detectorB\x10\n" +
 	"\x0e_high_intervalB\t\n" +
-	"\a_reason\"\xb7\x01\n" +
+	"\a_reason\"\xf9\x01\n" +
 	"\fDerivedLimit\x12\x17\n" +
 	"\x04name\x18\x01 \x01(\tH\x00R\x04name\x88\x01\x01\x12/\n" +
 	"\ameasure\x18\x02 \x01(\v2\x15.floatrail.v1.MeasureR\ameasure\x12,\n" +
 	"\x06corner\x18\x03 \x01(\v2\x14.floatrail.v1.CornerR\x06corner\x12\x1b\n" +
-	"\x06reason\x18\x04 \x01(\tH\x01R\x06reason\x88\x01\x01B\a\n" +
+	"\x06reason\x18\x04 \x01(\tH\x01R\x06reason\x88\x01\x01\x12,\n" +
+	"\x0foperating_point\x18\x05 \x01(\tH\x02R\x0eoperatingPoint\x88\x01\x01B\a\n" +
 	"\x05_nameB\t\n" +
-	"\a_reason\"c\n" +
+	"\a_reasonB\x12\n" +
+	"\x10_operating_point\"c\n" +
 	"\bCollapse\x12\x1d\n" +
 	"\aperiods\x18\x01 \x01(\x05H\x00R\aperiods\x88\x01\x01\x12,\n" +
 	"\x06corner\x18\x02 \x01(\v2\x14.floatrail.v1.CornerR\x06cornerB\n" +
@@ -1753,12 +1974,23 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"\x0fresistor_energy\x18\x04 \x01(\v2\x12.floatrail.v1.SpanR\x0eresistorEnergy\x127\n" +
 	"\rreservoir_low\x18\x05 \x01(\v2\x12.floatrail.v1.SpanR\freservoirLow\x12;\n" +
 	"\x0fsettled_voltage\x18\x06 \x01(\v2\x12.floatrail.v1.SpanR\x0esettledVoltageB\t\n" +
-	"\a_pulses\"\xbb\x01\n" +
+	"\a_pulses\"\x84\x03\n" +
 	"\n" +
 	"TracePoint\x12,\n" +
 	"\x0foperating_point\x18\x01 \x01(\tH\x00R\x0eoperatingPoint\x88\x01\x01\x12)\n" +
 	"\x04time\x18\x02 \x01(\v2\x15.floatrail.v1.MeasureR\x04time\x12@\n" +
-	"\x10floating_voltage\x18\x03 \x01(\v2\x15.floatrail.v1.MeasureR\x0ffloatingVoltageB\x12\n" +
+	"\x10floating_voltage\x18\x03 \x01(\v2\x15.floatrail.v1.MeasureR\x0ffloatingVoltage\x127\n" +
+	"\x04kind\x18\x04 \x01(\x0e2#.floatrail.v1.TracePoint.Kind.ValueR\x04kind\x12+\n" +
+	"\x05angle\x18\x05 \x01(\v2\x15.floatrail.v1.MeasureR\x05angle\x1aa\n" +
+	"\x04Kind\"Y\n" +
+	"\x05Value\x12\x0f\n" +
+	"\vUNSPECIFIED\x10\x00\x12\n" +
+	"\n" +
+	"\x06PERIOD\x10\x01\x12\x0f\n" +
+	"\vFUNDAMENTAL\x10\x02\x12\t\n" +
+	"\x05BURST\x10\x03\x12\b\n" +
+	"\x04HOLD\x10\x04\x12\r\n" +
+	"\tPRECHARGE\x10\x05B\x12\n" +
 	"\x10_operating_point\"\x83\x01\n" +
 	"\x15TransientStressResult\x124\n" +
 	"\x06events\x18\x01 \x03(\v2\x1c.floatrail.v1.TransientEventR\x06events\x124\n" +
@@ -1847,113 +2079,126 @@ func file_floatrail_v1_result_proto_rawDescGZIP() []byte {
 	return file_floatrail_v1_result_proto_rawDescData
 }
 
-var file_floatrail_v1_result_proto_enumTypes = make([]protoimpl.EnumInfo, 2)
-var file_floatrail_v1_result_proto_msgTypes = make([]protoimpl.MessageInfo, 17)
+var file_floatrail_v1_result_proto_enumTypes = make([]protoimpl.EnumInfo, 3)
+var file_floatrail_v1_result_proto_msgTypes = make([]protoimpl.MessageInfo, 18)
 var file_floatrail_v1_result_proto_goTypes = []any{
-	(TransientEvent_Event_Value)(0),  // 0: floatrail.v1.TransientEvent.Event.Value
-	(TransientEvent_Method_Value)(0), // 1: floatrail.v1.TransientEvent.Method.Value
-	(*SizingResult)(nil),             // 2: floatrail.v1.SizingResult
-	(*BudgetItem)(nil),               // 3: floatrail.v1.BudgetItem
-	(*RecommendedParts)(nil),         // 4: floatrail.v1.RecommendedParts
-	(*Window)(nil),                   // 5: floatrail.v1.Window
-	(*DutyLimitsResult)(nil),         // 6: floatrail.v1.DutyLimitsResult
-	(*DutyPoint)(nil),                // 7: floatrail.v1.DutyPoint
-	(*DerivedLimit)(nil),             // 8: floatrail.v1.DerivedLimit
-	(*Collapse)(nil),                 // 9: floatrail.v1.Collapse
-	(*Precharge)(nil),                // 10: floatrail.v1.Precharge
-	(*TracePoint)(nil),               // 11: floatrail.v1.TracePoint
-	(*TransientStressResult)(nil),    // 12: floatrail.v1.TransientStressResult
-	(*TransientEvent)(nil),           // 13: floatrail.v1.TransientEvent
-	(*Comparison)(nil),               // 14: floatrail.v1.Comparison
-	(*UndershootDuration)(nil),       // 15: floatrail.v1.UndershootDuration
-	(*Waveform)(nil),                 // 16: floatrail.v1.Waveform
-	(*TransientEvent_Event)(nil),     // 17: floatrail.v1.TransientEvent.Event
-	(*TransientEvent_Method)(nil),    // 18: floatrail.v1.TransientEvent.Method
-	(*Span)(nil),                     // 19: floatrail.v1.Span
-	(*Measure)(nil),                  // 20: floatrail.v1.Measure
-	(*Corner)(nil),                   // 21: floatrail.v1.Corner
+	(TracePoint_Kind_Value)(0),       // 0: floatrail.v1.TracePoint.Kind.Value
+	(TransientEvent_Event_Value)(0),  // 1: floatrail.v1.TransientEvent.Event.Value
+	(TransientEvent_Method_Value)(0), // 2: floatrail.v1.TransientEvent.Method.Value
+	(*SizingResult)(nil),             // 3: floatrail.v1.SizingResult
+	(*BudgetItem)(nil),               // 4: floatrail.v1.BudgetItem
+	(*RecommendedParts)(nil),         // 5: floatrail.v1.RecommendedParts
+	(*Window)(nil),                   // 6: floatrail.v1.Window
+	(*DutyLimitsResult)(nil),         // 7: floatrail.v1.DutyLimitsResult
+	(*DutyPoint)(nil),                // 8: floatrail.v1.DutyPoint
+	(*DerivedLimit)(nil),             // 9: floatrail.v1.DerivedLimit
+	(*Collapse)(nil),                 // 10: floatrail.v1.Collapse
+	(*Precharge)(nil),                // 11: floatrail.v1.Precharge
+	(*TracePoint)(nil),               // 12: floatrail.v1.TracePoint
+	(*TransientStressResult)(nil),    // 13: floatrail.v1.TransientStressResult
+	(*TransientEvent)(nil),           // 14: floatrail.v1.TransientEvent
+	(*Comparison)(nil),               // 15: floatrail.v1.Comparison
+	(*UndershootDuration)(nil),       // 16: floatrail.v1.UndershootDuration
+	(*Waveform)(nil),                 // 17: floatrail.v1.Waveform
+	(*TracePoint_Kind)(nil),          // 18: floatrail.v1.TracePoint.Kind
+	(*TransientEvent_Event)(nil),     // 19: floatrail.v1.TransientEvent.Event
+	(*TransientEvent_Method)(nil),    // 20: floatrail.v1.TransientEvent.Method
+	(*Span)(nil),                     // 21: floatrail.v1.Span
+	(*Measure)(nil),                  // 22: floatrail.v1.Measure
+	(*Corner)(nil),                   // 23: floatrail.v1.Corner
 }
 var file_floatrail_v1_result_proto_depIdxs = []int32{
-	3,  // 0: floatrail.v1.SizingResult.budget:type_name -> floatrail.v1.BudgetItem
-	19, // 1: floatrail.v1.SizingResult.total_charge:type_name -> floatrail.v1.Span
-	19, // 2: floatrail.v1.SizingResult.voltage_budget:type_name -> floatrail.v1.Span
-	19, // 3: floatrail.v1.SizingResult.minimum_capacitance:type_name -> floatrail.v1.Span
-	19, // 4: floatrail.v1.SizingResult.effective_capacitance:type_name -> floatrail.v1.Span
-	19, // 5: floatrail.v1.SizingResult.ripple:type_name -> floatrail.v1.Span
-	4,  // 6: floatrail.v1.SizingResult.recommended:type_name -> floatrail.v1.RecommendedParts
-	19, // 7: floatrail.v1.BudgetItem.charge:type_name -> floatrail.v1.Span
-	20, // 8: floatrail.v1.RecommendedParts.capacitance:type_name -> floatrail.v1.Measure
-	20, // 9: floatrail.v1.RecommendedParts.capacitor_voltage:type_name -> floatrail.v1.Measure
-	20, // 10: floatrail.v1.RecommendedParts.resistance:type_name -> floatrail.v1.Measure
-	5,  // 11: floatrail.v1.RecommendedParts.resistance_window:type_name -> floatrail.v1.Window
-	5,  // 12: floatrail.v1.RecommendedParts.capacitance_window:type_name -> floatrail.v1.Window
-	20, // 13: floatrail.v1.RecommendedParts.diode_reverse_voltage:type_name -> floatrail.v1.Measure
-	20, // 14: floatrail.v1.RecommendedParts.diode_average_current:type_name -> floatrail.v1.Measure
-	20, // 15: floatrail.v1.RecommendedParts.diode_peak_current:type_name -> floatrail.v1.Measure
-	20, // 16: floatrail.v1.RecommendedParts.reservoir_capacitance:type_name -> floatrail.v1.Measure
-	20, // 17: floatrail.v1.Window.low:type_name -> floatrail.v1.Measure
-	20, // 18: floatrail.v1.Window.high:type_name -> floatrail.v1.Measure
-	7,  // 19: floatrail.v1.DutyLimitsResult.points:type_name -> floatrail.v1.DutyPoint
-	10, // 20: floatrail.v1.DutyLimitsResult.precharge:type_name -> floatrail.v1.Precharge
-	11, // 21: floatrail.v1.DutyLimitsResult.trace:type_name -> floatrail.v1.TracePoint
-	19, // 22: floatrail.v1.DutyPoint.recharge_window:type_name -> floatrail.v1.Span
-	19, // 23: floatrail.v1.DutyPoint.recharge_ratio:type_name -> floatrail.v1.Span
-	19, // 24: floatrail.v1.DutyPoint.deficit:type_name -> floatrail.v1.Span
-	19, // 25: floatrail.v1.DutyPoint.floating_voltage_low:type_name -> floatrail.v1.Span
-	19, // 26: floatrail.v1.DutyPoint.floating_voltage_high:type_name -> floatrail.v1.Span
-	19, // 27: floatrail.v1.DutyPoint.gate_voltage_low:type_name -> floatrail.v1.Span
-	9,  // 28: floatrail.v1.DutyPoint.collapses:type_name -> floatrail.v1.Collapse
-	20, // 29: floatrail.v1.DutyPoint.largest_duty:type_name -> floatrail.v1.Measure
-	20, // 30: floatrail.v1.DutyPoint.longest_on_time:type_name -> floatrail.v1.Measure
-	20, // 31: floatrail.v1.DutyPoint.shortest_low_side_pulse:type_name -> floatrail.v1.Measure
-	20, // 32: floatrail.v1.DutyPoint.largest_resistance:type_name -> floatrail.v1.Measure
-	20, // 33: floatrail.v1.DutyPoint.largest_dead_time:type_name -> floatrail.v1.Measure
-	20, // 34: floatrail.v1.DutyPoint.lowest_switching_frequency:type_name -> floatrail.v1.Measure
-	20, // 35: floatrail.v1.DutyPoint.highest_switching_frequency:type_name -> floatrail.v1.Measure
-	8,  // 36: floatrail.v1.DutyPoint.limits:type_name -> floatrail.v1.DerivedLimit
-	20, // 37: floatrail.v1.DerivedLimit.measure:type_name -> floatrail.v1.Measure
-	21, // 38: floatrail.v1.DerivedLimit.corner:type_name -> floatrail.v1.Corner
-	21, // 39: floatrail.v1.Collapse.corner:type_name -> floatrail.v1.Corner
-	19, // 40: floatrail.v1.Precharge.time:type_name -> floatrail.v1.Span
-	19, // 41: floatrail.v1.Precharge.peak_current:type_name -> floatrail.v1.Span
-	19, // 42: floatrail.v1.Precharge.resistor_energy:type_name -> floatrail.v1.Span
-	19, // 43: floatrail.v1.Precharge.reservoir_low:type_name -> floatrail.v1.Span
-	19, // 44: floatrail.v1.Precharge.settled_voltage:type_name -> floatrail.v1.Span
-	20, // 45: floatrail.v1.TracePoint.time:type_name -> floatrail.v1.Measure
-	20, // 46: floatrail.v1.TracePoint.floating_voltage:type_name -> floatrail.v1.Measure
-	13, // 47: floatrail.v1.TransientStressResult.events:type_name -> floatrail.v1.TransientEvent
-	16, // 48: floatrail.v1.TransientStressResult.waveforms:type_name -> floatrail.v1.Waveform
-	0,  // 49: floatrail.v1.TransientEvent.event:type_name -> floatrail.v1.TransientEvent.Event.Value
-	1,  // 50: floatrail.v1.TransientEvent.method:type_name -> floatrail.v1.TransientEvent.Method.Value
-	19, // 51: floatrail.v1.TransientEvent.node_min:type_name -> floatrail.v1.Span
-	19, // 52: floatrail.v1.TransientEvent.pin_min:type_name -> floatrail.v1.Span
-	19, // 53: floatrail.v1.TransientEvent.rail_to_com_min:type_name -> floatrail.v1.Span
-	15, // 54: floatrail.v1.TransientEvent.undershoots:type_name -> floatrail.v1.UndershootDuration
-	19, // 55: floatrail.v1.TransientEvent.floating_voltage_gain:type_name -> floatrail.v1.Span
-	19, // 56: floatrail.v1.TransientEvent.node_max:type_name -> floatrail.v1.Span
-	19, // 57: floatrail.v1.TransientEvent.rail_max:type_name -> floatrail.v1.Span
-	19, // 58: floatrail.v1.TransientEvent.high_side_peak:type_name -> floatrail.v1.Span
-	19, // 59: floatrail.v1.TransientEvent.low_side_peak:type_name -> floatrail.v1.Span
-	19, // 60: floatrail.v1.TransientEvent.slew_peak:type_name -> floatrail.v1.Span
-	19, // 61: floatrail.v1.TransientEvent.slew_10_to_90:type_name -> floatrail.v1.Span
-	19, // 62: floatrail.v1.TransientEvent.miller_low:type_name -> floatrail.v1.Span
-	19, // 63: floatrail.v1.TransientEvent.miller_high:type_name -> floatrail.v1.Span
-	19, // 64: floatrail.v1.TransientEvent.gate_min:type_name -> floatrail.v1.Span
-	19, // 65: floatrail.v1.TransientEvent.current_slope:type_name -> floatrail.v1.Span
-	19, // 66: floatrail.v1.TransientEvent.ring_frequency:type_name -> floatrail.v1.Span
-	19, // 67: floatrail.v1.TransientEvent.ring_damping:type_name -> floatrail.v1.Span
-	14, // 68: floatrail.v1.TransientEvent.comparisons:type_name -> floatrail.v1.Comparison
-	20, // 69: floatrail.v1.Comparison.simulated:type_name -> floatrail.v1.Measure
-	20, // 70: floatrail.v1.Comparison.estimated:type_name -> floatrail.v1.Measure
-	20, // 71: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
-	19, // 72: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
-	19, // 73: floatrail.v1.UndershootDuration.total:type_name -> floatrail.v1.Span
-	20, // 74: floatrail.v1.UndershootDuration.each:type_name -> floatrail.v1.Measure
-	75, // [75:75] is the sub-list for method output_type
-	75, // [75:75] is the sub-list for method input_type
-	75, // [75:75] is the sub-list for extension type_name
-	75, // [75:75] is the sub-list for extension extendee
-	0,  // [0:75] is the sub-list for field type_name
+	4,  // 0: floatrail.v1.SizingResult.budget:type_name -> floatrail.v1.BudgetItem
+	21, // 1: floatrail.v1.SizingResult.total_charge:type_name -> floatrail.v1.Span
+	21, // 2: floatrail.v1.SizingResult.voltage_budget:type_name -> floatrail.v1.Span
+	21, // 3: floatrail.v1.SizingResult.minimum_capacitance:type_name -> floatrail.v1.Span
+	21, // 4: floatrail.v1.SizingResult.effective_capacitance:type_name -> floatrail.v1.Span
+	21, // 5: floatrail.v1.SizingResult.ripple:type_name -> floatrail.v1.Span
+	5,  // 6: floatrail.v1.SizingResult.recommended:type_name -> floatrail.v1.RecommendedParts
+	21, // 7: floatrail.v1.BudgetItem.charge:type_name -> floatrail.v1.Span
+	22, // 8: floatrail.v1.RecommendedParts.capacitance:type_name -> floatrail.v1.Measure
+	22, // 9: floatrail.v1.RecommendedParts.capacitor_voltage:type_name -> floatrail.v1.Measure
+	22, // 10: floatrail.v1.RecommendedParts.resistance:type_name -> floatrail.v1.Measure
+	6,  // 11: floatrail.v1.RecommendedParts.resistance_window:type_name -> floatrail.v1.Window
+	6,  // 12: floatrail.v1.RecommendedParts.capacitance_window:type_name -> floatrail.v1.Window
+	22, // 13: floatrail.v1.RecommendedParts.diode_reverse_voltage:type_name -> floatrail.v1.Measure
+	22, // 14: floatrail.v1.RecommendedParts.diode_average_current:type_name -> floatrail.v1.Measure
+	22, // 15: floatrail.v1.RecommendedParts.diode_peak_current:type_name -> floatrail.v1.Measure
+	22, // 16: floatrail.v1.RecommendedParts.reservoir_capacitance:type_name -> floatrail.v1.Measure
+	22, // 17: floatrail.v1.Window.low:type_name -> floatrail.v1.Measure
+	22, // 18: floatrail.v1.Window.high:type_name -> floatrail.v1.Measure
+	8,  // 19: floatrail.v1.DutyLimitsResult.points:type_name -> floatrail.v1.DutyPoint
+	11, // 20: floatrail.v1.DutyLimitsResult.precharge:type_name -> floatrail.v1.Precharge
+	12, // 21: floatrail.v1.DutyLimitsResult.trace:type_name -> floatrail.v1.TracePoint
+	9,  // 22: floatrail.v1.DutyLimitsResult.limits:type_name -> floatrail.v1.DerivedLimit
+	21, // 23: floatrail.v1.DutyPoint.recharge_window:type_name -> floatrail.v1.Span
+	21, // 24: floatrail.v1.DutyPoint.recharge_ratio:type_name -> floatrail.v1.Span
+	21, // 25: floatrail.v1.DutyPoint.deficit:type_name -> floatrail.v1.Span
+	21, // 26: floatrail.v1.DutyPoint.floating_voltage_low:type_name -> floatrail.v1.Span
+	21, // 27: floatrail.v1.DutyPoint.floating_voltage_high:type_name -> floatrail.v1.Span
+	21, // 28: floatrail.v1.DutyPoint.gate_voltage_low:type_name -> floatrail.v1.Span
+	10, // 29: floatrail.v1.DutyPoint.collapses:type_name -> floatrail.v1.Collapse
+	22, // 30: floatrail.v1.DutyPoint.largest_duty:type_name -> floatrail.v1.Measure
+	22, // 31: floatrail.v1.DutyPoint.longest_on_time:type_name -> floatrail.v1.Measure
+	22, // 32: floatrail.v1.DutyPoint.shortest_low_side_pulse:type_name -> floatrail.v1.Measure
+	22, // 33: floatrail.v1.DutyPoint.largest_resistance:type_name -> floatrail.v1.Measure
+	22, // 34: floatrail.v1.DutyPoint.largest_dead_time:type_name -> floatrail.v1.Measure
+	22, // 35: floatrail.v1.DutyPoint.lowest_switching_frequency:type_name -> floatrail.v1.Measure
+	22, // 36: floatrail.v1.DutyPoint.highest_switching_frequency:type_name -> floatrail.v1.Measure
+	9,  // 37: floatrail.v1.DutyPoint.limits:type_name -> floatrail.v1.DerivedLimit
+	22, // 38: floatrail.v1.DutyPoint.largest_modulation_index:type_name -> floatrail.v1.Measure
+	22, // 39: floatrail.v1.DutyPoint.lowest_fundamental_frequency:type_name -> floatrail.v1.Measure
+	22, // 40: floatrail.v1.DutyPoint.longest_idle_time:type_name -> floatrail.v1.Measure
+	22, // 41: floatrail.v1.DutyPoint.longest_stall:type_name -> floatrail.v1.Measure
+	22, // 42: floatrail.v1.DutyPoint.low_angle:type_name -> floatrail.v1.Measure
+	22, // 43: floatrail.v1.DutyPoint.high_angle:type_name -> floatrail.v1.Measure
+	21, // 44: floatrail.v1.DutyPoint.time_without_recharge:type_name -> floatrail.v1.Span
+	21, // 45: floatrail.v1.DutyPoint.restart_voltage:type_name -> floatrail.v1.Span
+	22, // 46: floatrail.v1.DerivedLimit.measure:type_name -> floatrail.v1.Measure
+	23, // 47: floatrail.v1.DerivedLimit.corner:type_name -> floatrail.v1.Corner
+	23, // 48: floatrail.v1.Collapse.corner:type_name -> floatrail.v1.Corner
+	21, // 49: floatrail.v1.Precharge.time:type_name -> floatrail.v1.Span
+	21, // 50: floatrail.v1.Precharge.peak_current:type_name -> floatrail.v1.Span
+	21, // 51: floatrail.v1.Precharge.resistor_energy:type_name -> floatrail.v1.Span
+	21, // 52: floatrail.v1.Precharge.reservoir_low:type_name -> floatrail.v1.Span
+	21, // 53: floatrail.v1.Precharge.settled_voltage:type_name -> floatrail.v1.Span
+	22, // 54: floatrail.v1.TracePoint.time:type_name -> floatrail.v1.Measure
+	22, // 55: floatrail.v1.TracePoint.floating_voltage:type_name -> floatrail.v1.Measure
+	0,  // 56: floatrail.v1.TracePoint.kind:type_name -> floatrail.v1.TracePoint.Kind.Value
+	22, // 57: floatrail.v1.TracePoint.angle:type_name -> floatrail.v1.Measure
+	14, // 58: floatrail.v1.TransientStressResult.events:type_name -> floatrail.v1.TransientEvent
+	17, // 59: floatrail.v1.TransientStressResult.waveforms:type_name -> floatrail.v1.Waveform
+	1,  // 60: floatrail.v1.TransientEvent.event:type_name -> floatrail.v1.TransientEvent.Event.Value
+	2,  // 61: floatrail.v1.TransientEvent.method:type_name -> floatrail.v1.TransientEvent.Method.Value
+	21, // 62: floatrail.v1.TransientEvent.node_min:type_name -> floatrail.v1.Span
+	21, // 63: floatrail.v1.TransientEvent.pin_min:type_name -> floatrail.v1.Span
+	21, // 64: floatrail.v1.TransientEvent.rail_to_com_min:type_name -> floatrail.v1.Span
+	16, // 65: floatrail.v1.TransientEvent.undershoots:type_name -> floatrail.v1.UndershootDuration
+	21, // 66: floatrail.v1.TransientEvent.floating_voltage_gain:type_name -> floatrail.v1.Span
+	21, // 67: floatrail.v1.TransientEvent.node_max:type_name -> floatrail.v1.Span
+	21, // 68: floatrail.v1.TransientEvent.rail_max:type_name -> floatrail.v1.Span
+	21, // 69: floatrail.v1.TransientEvent.high_side_peak:type_name -> floatrail.v1.Span
+	21, // 70: floatrail.v1.TransientEvent.low_side_peak:type_name -> floatrail.v1.Span
+	21, // 71: floatrail.v1.TransientEvent.slew_peak:type_name -> floatrail.v1.Span
+	21, // 72: floatrail.v1.TransientEvent.slew_10_to_90:type_name -> floatrail.v1.Span
+	21, // 73: floatrail.v1.TransientEvent.miller_low:type_name -> floatrail.v1.Span
+	21, // 74: floatrail.v1.TransientEvent.miller_high:type_name -> floatrail.v1.Span
+	21, // 75: floatrail.v1.TransientEvent.gate_min:type_name -> floatrail.v1.Span
+	21, // 76: floatrail.v1.TransientEvent.current_slope:type_name -> floatrail.v1.Span
+	21, // 77: floatrail.v1.TransientEvent.ring_frequency:type_name -> floatrail.v1.Span
+	21, // 78: floatrail.v1.TransientEvent.ring_damping:type_name -> floatrail.v1.Span
+	15, // 79: floatrail.v1.TransientEvent.comparisons:type_name -> floatrail.v1.Comparison
+	22, // 80: floatrail.v1.Comparison.simulated:type_name -> floatrail.v1.Measure
+	22, // 81: floatrail.v1.Comparison.estimated:type_name -> floatrail.v1.Measure
+	22, // 82: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
+	21, // 83: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
+	21, // 84: floatrail.v1.UndershootDuration.total:type_name -> floatrail.v1.Span
+	22, // 85: floatrail.v1.UndershootDuration.each:type_name -> floatrail.v1.Measure
+	86, // [86:86] is the sub-list for method output_type
+	86, // [86:86] is the sub-list for method input_type
+	86, // [86:86] is the sub-list for extension type_name
+	86, // [86:86] is the sub-list for extension extendee
+	0,  // [0:86] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_result_proto_init() }
@@ -1978,8 +2223,8 @@ func file_floatrail_v1_result_proto_init() {
 		File: protoimpl.DescBuilder{
 			GoPackagePath: reflect.TypeOf(x{}).PkgPath(),
 			RawDescriptor: unsafe.Slice(unsafe.StringData(file_floatrail_v1_result_proto_rawDesc), len(file_floatrail_v1_result_proto_rawDesc)),
-			NumEnums:      2,
-			NumMessages:   17,
+			NumEnums:      3,
+			NumMessages:   18,
 			NumExtensions: 0,
 			NumServices:   0,
 		},

@@ -96,9 +96,14 @@ func sample() *finding.Report {
 				{Name: finding.LargestDuty, Measure: volts(1), Corner: corner, Reason: "r"}, {Name: finding.LongestOnTime, Measure: volts(2)},
 				{Name: finding.ShortestLowSidePulse, Measure: volts(3)}, {Name: finding.LargestResistance, Measure: volts(4)}, {Name: finding.LargestDeadTime, Measure: volts(5)},
 				{Name: finding.LowestSwitchingFrequency, Measure: volts(6)}, {Name: finding.HighestSwitchingFreq, Measure: volts(7)},
+				{Name: finding.LargestIndex, Measure: volts(8)}, {Name: finding.LowestFundamental, Measure: volts(9)}, {Name: finding.LongestIdle, Measure: volts(10)},
+				{Name: finding.LongestStall, Measure: volts(11)},
 			},
+			LowAngle: volts(1), HighAngle: volts(2), WithoutRefresh: span, Restart: span,
 			Missing: []string{"m"}, Reason: "r",
-		}}, Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span}},
+		}}, Limits: []finding.DerivedLimit{{Name: finding.LargestDuty, Measure: volts(1), Corner: corner, Reason: "r", OperatingPoint: "p"}},
+			Trace:     []finding.TracePoint{{OperatingPoint: "p", Kind: finding.TraceFundamental, Time: 1e-3, Angle: 0.5, FloatingVoltage: 12}},
+			Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span}},
 		Transient: &finding.TransientStress{Events: []finding.TransientEvent{{
 			Event: "TURN_OFF", OperatingPoint: "p", NodeMin: span, PinMin: span, RailToCOMMin: span,
 			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span, Total: span, Dips: 3, Each: []finding.Measure{volts(-1)}}},
@@ -131,8 +136,8 @@ func unset(m protoreflect.Message, path string) []string {
 
 func TestReviewStageResponseCarriesEverything(t *testing.T) {
 	got := ReviewStageResponse(Engine{"1.2.3", "7"}, sample(), []Reading{{"f", "4k7", "4.7 kΩ"}})
-	// What no report holds: fixes and traces.
-	want := []string{".findings.fixes", ".dutyLimits.trace"}
+	// What no report holds: fixes; and the operating point of a limit that stands under it already.
+	want := []string{".findings.fixes", ".dutyLimits.points.limits.operatingPoint"}
 	if missing := unset(got.ProtoReflect(), ""); strings.Join(missing, " ") != strings.Join(want, " ") {
 		t.Errorf("unset: %v, want %v", missing, want)
 	}
@@ -148,7 +153,8 @@ func TestReviewStageResponseCarriesEverything(t *testing.T) {
 		t.Errorf("sources %v", s)
 	}
 	p := got.GetDutyLimits().GetPoints()[0]
-	for i, m := range []*pb.Measure{p.LargestDuty, p.LongestOnTime, p.ShortestLowSidePulse, p.LargestResistance, p.LargestDeadTime, p.LowestSwitchingFrequency, p.HighestSwitchingFrequency} {
+	for i, m := range []*pb.Measure{p.LargestDuty, p.LongestOnTime, p.ShortestLowSidePulse, p.LargestResistance, p.LargestDeadTime, p.LowestSwitchingFrequency, p.HighestSwitchingFrequency,
+		p.LargestModulationIndex, p.LowestFundamentalFrequency, p.LongestIdleTime, p.LongestStall} {
 		if m.GetValue() != float64(i+1) {
 			t.Errorf("derived limit %d: %v", i, m)
 		}

@@ -7,6 +7,7 @@ import (
 
 	pb "floatrail/api/floatrail/v1"
 	"floatrail/calc/finding"
+	"floatrail/calc/quantity"
 )
 
 func wireSizing(s *finding.Sizing) *pb.SizingResult {
@@ -50,7 +51,21 @@ func wireDutyLimits(d *finding.DutyLimits) *pb.DutyLimitsResult {
 	if d == nil {
 		return nil
 	}
-	return &pb.DutyLimitsResult{Points: each(d.Points, wireDutyPoint), Precharge: wirePrecharge(d.Precharge)}
+	return &pb.DutyLimitsResult{Points: each(d.Points, wireDutyPoint), Precharge: wirePrecharge(d.Precharge), Limits: each(d.Limits, wireLimit),
+		Trace: each(d.Trace, wireTracePoint)}
+}
+
+func wireLimit(l *finding.DerivedLimit) *pb.DerivedLimit {
+	return &pb.DerivedLimit{Name: label(l.Name), Measure: wireMeasure(&l.Measure), Corner: wireCorner(&l.Corner), Reason: label(l.Reason),
+		OperatingPoint: label(l.OperatingPoint)}
+}
+
+func wireTracePoint(p *finding.TracePoint) *pb.TracePoint {
+	of := func(v float64, d quantity.Dimension) *pb.Measure {
+		return wireMeasure(&finding.Measure{Value: Round(v), Dimension: d})
+	}
+	return &pb.TracePoint{OperatingPoint: label(p.OperatingPoint), Kind: pb.TracePoint_Kind_Value(pb.TracePoint_Kind_Value_value[p.Kind]),
+		Time: of(p.Time, quantity.Time), FloatingVoltage: of(p.FloatingVoltage, quantity.Voltage), Angle: of(p.Angle, quantity.Angle)}
 }
 
 func wirePrecharge(p *finding.Precharge) *pb.Precharge {
@@ -148,11 +163,13 @@ func wireDutyPoint(p *finding.DutyPoint) *pb.DutyPoint {
 		CapacitanceCancels:  proto.Bool(p.CapacitanceCancels),
 		PeakDetector:        proto.Bool(p.PeakDetector),
 		HighInterval:        label(p.HighInterval),
-		Limits: each(p.Limits, func(l *finding.DerivedLimit) *pb.DerivedLimit {
-			return &pb.DerivedLimit{Name: label(l.Name), Measure: wireMeasure(&l.Measure), Corner: wireCorner(&l.Corner), Reason: label(l.Reason)}
-		}),
-		Missing: p.Missing,
-		Reason:  label(p.Reason),
+		Limits:              each(p.Limits, wireLimit),
+		LowAngle:            wireMeasure(&p.LowAngle),
+		HighAngle:           wireMeasure(&p.HighAngle),
+		TimeWithoutRecharge: wireSpan(&p.WithoutRefresh),
+		RestartVoltage:      wireSpan(&p.Restart),
+		Missing:             p.Missing,
+		Reason:              label(p.Reason),
 	}
 	if c := p.Collapses; c != nil {
 		out.Collapses = &pb.Collapse{Periods: count(c.Periods), Corner: wireCorner(&c.Corner)}
@@ -175,6 +192,14 @@ func wireDutyPoint(p *finding.DutyPoint) *pb.DutyPoint {
 			out.LowestSwitchingFrequency = m
 		case finding.HighestSwitchingFreq:
 			out.HighestSwitchingFrequency = m
+		case finding.LargestIndex:
+			out.LargestModulationIndex = m
+		case finding.LowestFundamental:
+			out.LowestFundamentalFrequency = m
+		case finding.LongestIdle:
+			out.LongestIdleTime = m
+		case finding.LongestStall:
+			out.LongestStall = m
 		}
 	}
 	return out
