@@ -206,3 +206,40 @@ func vanishNotes(c *circuit.Circuit) []string {
 	}
 	return out
 }
+
+// orderNote tells in which order the stages on the supply are charged, and in one sentence what the other order would give.
+func orderNote(c *circuit.Circuit) []string {
+	stages, atOnce, waits, interval := c.Order()
+	if stages == 1 {
+		return []string{"one bootstrap capacitor"}
+	}
+	together, inTurn := fmt.Sprintf("all %d at once", stages), "one after another"
+	if atOnce > 1 && atOnce < stages {
+		inTurn = fmt.Sprintf("%d at a time", atOnce)
+	}
+	if waits || atOnce == stages {
+		inTurn += ", each as soon as the one before has arrived"
+	} else {
+		inTurn += " every " + quantity.Format(interval, quantity.Time)
+	}
+	here, there := together, inTurn
+	if atOnce < stages {
+		here, there = there, here
+	}
+	return []string{fmt.Sprintf("%s: %s; %s: %s", here, orderNumbers(c.ReservoirLow(), c.PrechargeTime()), there, orderNumbers(c.OtherLow(), c.OtherTime()))}
+}
+
+// orderNumbers words the lowest V_DD [V] and the time of the first charge [s].
+func orderNumbers(low, time float64) string {
+	text := quantity.Format(low, quantity.Voltage)
+	if low != low {
+		text = "V_DD not known"
+	}
+	switch {
+	case math.IsInf(time, 1):
+		return text + ", V_BS never arrives"
+	case time != time:
+		return text + ", time not known"
+	}
+	return text + ", " + quantity.Format(time, quantity.Time)
+}

@@ -34,6 +34,7 @@ type Circuit struct {
 	offAt         [8]recharge.Interval
 	namesAt       [8]string
 	curveAt       [curves][]transient.CurvePoint
+	ordersAt      [2]charged
 	events        *events // nil: none asked for yet
 	estimating    bool    // events by closed forms, whatever the space says
 	focus         *Event  // the event that alone counts as occurring; nil: all that can
@@ -83,7 +84,8 @@ const (
 	slotSwing    // one for each event
 	slotSlope    = slotSwing + int(eventCount)
 	slotRecovery = slotSlope + int(eventCount)
-	slotCourse   = slotRecovery + 2 // one for each event and state of charge
+	slotCourse   = slotRecovery + 2                          // one for each event and state of charge
+	slotOrders   = slotCourse + int(charges)*int(eventCount) // of the first charge: as requested, the other one
 )
 
 var nan = math.NaN()

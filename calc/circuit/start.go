@@ -40,24 +40,6 @@ func (c *Circuit) pulses() (width, period float64) {
 	return width, period
 }
 
-// chargeTime is the time and the pulses of the first charge of a capacitor to the target; 0 pulses where the low side is held on [s].
-func (c *Circuit) chargeTime(ch startup.Charge) (float64, int) {
-	if c.pulsed() {
-		width, period := c.pulses()
-		return ch.PulsedTime(width, period, c.FirstTarget())
-	}
-	return ch.Time(c.FirstTarget()), 0
-}
-
-// FirstChargeTime is the time of the first charge [s], without the driver's enable delay, and its pulses.
-func (c *Circuit) FirstChargeTime() (float64, int) { return c.chargeTime(c.firstCharge()) }
-
-// PrechargeTime is the time from the beginning of the first charge to the first accepted pulse [s].
-func (c *Circuit) PrechargeTime() float64 {
-	t, _ := c.FirstChargeTime()
-	return t + c.Need(&c.Stage.Driver.EnableDelay)
-}
-
 // FirstPeak is the element's current when an empty C_B is first charged [A].
 func (c *Circuit) FirstPeak() float64 { return c.firstCharge().PeakCurrent() }
 
@@ -76,47 +58,6 @@ func (c *Circuit) FirstSettled() float64 {
 		return ch.PulsedSettled(c.pulses())
 	}
 	return ch.Settled()
-}
-
-// sharing is the number of stages on the supply.
-func (c *Circuit) sharing() int {
-	g := &c.Stage.GateSupply
-	if g.StagesSharing > 0 {
-		return g.StagesSharing
-	}
-	c.Assume(stage.Assumption{Field: g.Field + ".stagesSharing", Assumed: "1", Direction: stage.Optimistic,
-		Reason: "the number of stages on the supply is not given; this one alone is assumed"})
-	return 1
-}
-
-// Simultaneous is the number of bootstrap capacitors that are charged at once from the reservoir.
-func (c *Circuit) Simultaneous() int {
-	if n := c.Stage.Startup.Simultaneous; n > 0 {
-		return n
-	}
-	return c.sharing()
-}
-
-// ReservoirLow is the lowest V_DD while the bootstrap capacitors are charged at once from the reservoir [V].
-func (c *Circuit) ReservoirLow() float64 {
-	r := &c.Stage.GateSupply.Reservoir
-	switch r.Presence() {
-	case stage.NotFitted:
-		return c.Supply()
-	case stage.PresenceUnknown:
-		return c.Want(r.Field)
-	}
-	n := startup.Reservoir{
-		Element: c.Element(), Bootstrap: c.Fresh(), Reservoir: c.Effective(r, c.Supply), Count: c.Simultaneous(), Supply: c.Supply(),
-		Initial: c.Need(&c.Stage.Startup.InitialVoltage), Load: c.Loads().Total(),
-	}
-	if n.Reservoir <= 0 || n.Bootstrap <= 0 {
-		return c.Open("the bias curves leave no capacitance at this voltage")
-	}
-	if i, ok := c.Has(&c.Stage.GateSupply.CurrentLimit); ok {
-		n.SupplyCurrent = i
-	}
-	return n.Lowest()
 }
 
 // PrebiasedVoltage is V_BS at the first pulse on a node that stands at a voltage already [V]. With pulses of the low side it is what they

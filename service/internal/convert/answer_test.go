@@ -98,7 +98,8 @@ func sample() *finding.Report {
 				{Name: finding.LowestSwitchingFrequency, Measure: volts(6)}, {Name: finding.HighestSwitchingFreq, Measure: volts(7)},
 			},
 			Missing: []string{"m"}, Reason: "r",
-		}}, Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span}},
+		}}, Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span,
+			ReservoirLowSimultaneous: span, ReservoirLowStaged: span, TimeSimultaneous: span, TimeStaged: span}},
 		Transient: &finding.TransientStress{Events: []finding.TransientEvent{{
 			Event: "TURN_OFF", OperatingPoint: "p", NodeMin: span, PinMin: span, RailToCOMMin: span,
 			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span, Total: span, Dips: 3, Each: []finding.Measure{volts(-1)}}},
