@@ -108,11 +108,11 @@ func (c *Circuit) Order() (stages, atOnce int, waits bool, interval float64) {
 
 // alternative is the other one of two orders: all at once for groups, one after another, each waiting for the one before, for all at once.
 func (c *Circuit) alternative() startup.Order {
-	if o := c.order(); o.Groups() > 1 {
+	o := c.order()
+	if o.Groups() > 1 {
 		return c.limited(o.Together())
-	} else {
-		return c.limited(o.OneByOne())
 	}
+	return c.limited(o.OneByOne())
 }
 
 // Orders of the first charge.
