@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"floatrail/calc/capacitor"
+	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/finding"
 	"floatrail/calc/quantity"
@@ -176,6 +177,9 @@ func collapseNote(c *circuit.Circuit) []string {
 	if c.Point == nil || c.Point.FixedDuty == nil || !c.Steady().Collapses {
 		return nil
 	}
+	if alwaysOn(c) {
+		return []string{holdNote(c)}
+	}
 	text := "no positive steady state: the supply collapses"
 	if n := Periods(c); n > 0 {
 		text += fmt.Sprintf(" and reaches lockout after %d periods", n)
@@ -186,11 +190,31 @@ func collapseNote(c *circuit.Circuit) []string {
 	return []string{text}
 }
 
+// alwaysOn tells whether a fixed duty of 1 leaves neither an edge nor time for the low side.
+func alwaysOn(c *circuit.Circuit) bool {
+	return c.Point != nil && c.Point.FixedDuty != nil && c.Need(&c.Point.FixedDuty.Duty) == 1
+}
+
+// holdNote tells how long C_B holds what it was charged to, where nothing recharges it.
+func holdNote(c *circuit.Circuit) string {
+	start := settled(c)
+	hold := charge.Hold{Start: start, Capacitance: c.Capacitance(), Loads: c.Loads()}
+	text := "at a duty of 1 there is neither an edge nor time for the low side: nothing recharges C_B"
+	if t := hold.Time(c.Need(&c.Stage.Driver.UVLOFalling)); !math.IsInf(t, 1) {
+		return fmt.Sprintf("%s, and the supply collapses; from %s its hold lasts %s to lockout", text, quantity.Format(start, quantity.Voltage), quantity.Format(t, quantity.Time))
+	}
+	return text + "; its hold has no end only as long as nothing discharges it"
+}
+
+// settled is the V_BS to which C_B was charged before [V].
+func settled(c *circuit.Circuit) float64 {
+	return c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
+}
+
 // Periods counts the periods from the settled supply until lockout; 0 where that cannot be told.
 func Periods(c *circuit.Circuit) int {
 	p := c.Period()
-	start := c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
-	n := p.PeriodsUntil(start, c.Need(&c.Stage.Driver.UVLOFalling), 100_000)
+	n := p.PeriodsUntil(settled(c), c.Need(&c.Stage.Driver.UVLOFalling), 100_000)
 	return max(0, n)
 }
 
@@ -198,7 +222,7 @@ func Periods(c *circuit.Circuit) int {
 func vanishNotes(c *circuit.Circuit) []string {
 	p := c.Period()
 	var out []string
-	if p.LowVanishes {
+	if p.LowVanishes && !alwaysOn(c) {
 		out = append(out, "the low-side pulse is shorter than the driver passes and vanishes")
 	}
 	if p.HighVanishes {

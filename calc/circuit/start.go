@@ -63,16 +63,48 @@ func (c *Circuit) FirstSettled() float64 {
 // PrebiasedVoltage is V_BS at the first pulse on a node that stands at a voltage already [V]. With pulses of the low side it is what they
 // reach in the time available; without, what the element brings against the raised node.
 func (c *Circuit) PrebiasedVoltage() float64 {
-	s := &c.Stage.Startup
-	ch := c.firstCharge()
-	node := c.Need(&s.Prebias)
-	if c.pulsed() && c.Stage.LowSide.Kind != stage.DiodeOnly { // a diode does not pull the node down
+	available := c.Need(&c.Stage.Startup.TimeAvailable)
+	ch, how := c.prebiased()
+	switch how {
+	case byPulses:
 		width, period := c.pulses()
-		return ch.PulsedReached(width, period, c.Need(&s.TimeAvailable))
+		return ch.PulsedReached(width, period, available)
+	case disconnected:
+		return ch.Initial + available*0
 	}
-	if c.Stage.Bootstrap.Element == stage.IntegratedSwitch { // it conducts only while the low-side gate is on
-		return ch.Initial + node*0
+	return max(0, ch.Reached(available))
+}
+
+// PrebiasedSettled is the V_BS to which PrebiasedVoltage tends in a time without end [V].
+func (c *Circuit) PrebiasedSettled() float64 {
+	ch, how := c.prebiased()
+	switch how {
+	case byPulses:
+		return ch.PulsedSettled(c.pulses())
+	case disconnected:
+		return ch.Initial
+	}
+	return max(0, ch.Settled())
+}
+
+// Ways in which C_B is charged on a node that stands at a voltage.
+const (
+	againstNode  = iota // through a diode, against the raised node
+	byPulses            // by pulses of the low side, which pull the node down
+	disconnected        // not at all: an integrated switch conducts only while the low-side gate is on
+)
+
+// prebiased is the first charge on a node that stands at a voltage already, and how it comes about.
+func (c *Circuit) prebiased() (ch startup.Charge, how int) {
+	ch = c.firstCharge()
+	node := c.Need(&c.Stage.Startup.Prebias)
+	switch {
+	case c.pulsed() && c.Stage.LowSide.Kind != stage.DiodeOnly: // a diode does not pull the node down
+		return ch, byPulses
+	case c.Stage.Bootstrap.Element == stage.IntegratedSwitch:
+		ch.Initial += node * 0
+		return ch, disconnected
 	}
 	ch.Node = node
-	return max(0, ch.Reached(c.Need(&s.TimeAvailable)))
+	return ch, againstNode
 }
