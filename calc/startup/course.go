@@ -10,12 +10,13 @@ import (
 const (
 	mostLumps   = 8    // voltages that are told apart; of more, the two closest are taken together
 	mostSteps   = 2000 // of one group
-	alike       = 1e-5 // voltages no farther apart count as one [V]
+	alike       = 1e-3 // voltages no farther apart count as one [V]
 	blocking    = 1e-5 // of the charging current, below which another group counts as blocked [1]
 	farthest    = 1e5  // what has not arrived by then never does: beyond any time that can be asked for [s]
-	rootDigits  = 1e-12
+	rootDigits  = 1e-11
+	balanced    = 1e-9  // by which currents may miss each other and count as equal [1]
 	timeDigits  = 1e-14 // by which sums of spans may miss the time that they make [1]
-	stateDigits = 5e-5  // tolerance of a step of the integrator [V]
+	stateDigits = 2e-4  // tolerance of a step of the integrator [V]
 )
 
 // lump is capacitors at one voltage.
@@ -102,7 +103,7 @@ func (c *course) run(until float64, last bool) (ok bool) {
 		}
 		now, later := c.demand(&c.state)
 		held := math.IsInf(c.o.Reservoir.Reservoir, 1) || c.v >= c.o.Supply && now <= c.o.SupplyCurrent
-		if math.IsInf(until, 1) && c.finished(held || now <= c.o.SupplyCurrent, last) {
+		if math.IsInf(until, 1) && c.finished(held || now <= c.o.SupplyCurrent*(1+balanced), last) {
 			return true
 		}
 		switch {
@@ -151,7 +152,7 @@ func (c *course) resting(now float64) bool {
 		return false
 	}
 	for i := range c.k {
-		if c.o.Element.Current(c.v-c.lumps[i].v) > c.o.Load {
+		if c.o.Element.Current(c.v-c.lumps[i].v) > c.o.Load*(1+balanced) {
 			return false
 		}
 	}
@@ -236,8 +237,7 @@ func (c *course) advanced(h float64) state {
 	o, s := c.o, c.state
 	a := s.active()
 	cv, cb := o.Reservoir.Reservoir, a.n*o.Bootstrap
-	series := 1 / (a.n/cv + 1/o.Bootstrap)
-	pull := series * (o.SupplyCurrent/cv + o.Load/o.Bootstrap)
+	series, pull := c.series(a.n)
 	x, _ := o.Element.Advance(a.v, recharge.Interval{Duration: h, Drive: s.v, Conducts: true, Load: pull}, series)
 	u := s.v - x
 	w := (cv*(s.v-u) + cb*a.v + (o.SupplyCurrent-a.n*o.Load)*h) / (cv + cb)
@@ -248,59 +248,65 @@ func (c *course) advanced(h float64) state {
 	return s
 }
 
-// exact takes one step in closed form, of a length that grows from step to step and ends at an event.
-func (c *course) exact(until float64, h *float64) bool {
+// stride is a step of the closed form that ends at the next event to be expected: where V_DD is lowest, the group taking the supply's current, or
+// its rise has ended; thereafter where V_DD would be back if the group took no more than its load, and no less than six times the last step h [s].
+// falls tells which.
+func (c *course) stride(h float64) (span float64, falls bool) {
 	o, a := c.o, c.active()
-	if *h == 0 {
-		u := c.v - a.v
-		*h = 0.1 * o.Bootstrap * u / o.Element.Current(u)
-		if !(*h > 1e-12) {
-			*h = 1e-9
-		}
+	i := o.Element.Current(c.v - a.v)
+	if a.n*i > o.SupplyCurrent*(1+balanced) {
+		series, pull := c.series(a.n)
+		rest := o.Element.Drop(math.Max(o.SupplyCurrent/a.n, o.Load))
+		span, falls = o.Element.TimeTo(series, c.v, pull, a.v, c.v-rest), true
+	} else {
+		span = math.Max((o.Supply-c.v)*(o.Reservoir.Reservoir+a.n*o.Bootstrap)/(o.SupplyCurrent-a.n*o.Load), 6*h)
 	}
-	span := math.Min(*h, until-c.t)
+	if span > 0 && !math.IsInf(span, 1) {
+		return span, falls
+	}
+	if span = 6 * h; !(span > 0) {
+		span = math.Max(0.1*o.Bootstrap*(c.v-a.v)/i, 1e-9)
+	}
+	return span, falls
+}
+
+// series is C' of (2) for n capacitors [F], and I' [A].
+func (c *course) series(n float64) (farads, pull float64) {
+	o := c.o
+	farads = 1 / (n/o.Reservoir.Reservoir + 1/o.Bootstrap)
+	return farads, farads * (o.SupplyCurrent/o.Reservoir.Reservoir + o.Load/o.Bootstrap)
+}
+
+// exact takes one step in closed form, to an event or the end of a stride.
+func (c *course) exact(until float64, h *float64) bool {
+	o := c.o
+	span, falls := c.stride(*h)
+	span = math.Min(span, until-c.t)
 	next := c.advanced(span)
 	if c.others(&next) > 4*blocking { // another lump conducts again before
-		x, found := numeric.Root(func(x float64) float64 { s := c.advanced(x); return c.others(&s) - 2*blocking }, 0, span, rootDigits*span)
-		if !found {
+		conducts := func(s *state) float64 {
+			if x := c.others(s); x < blocking || x > 4*blocking {
+				return x - 2*blocking
+			}
+			return 0
+		}
+		if !c.cut(&span, &next, conducts) {
 			return false
 		}
-		span, next = x, c.advanced(x)
 	}
-	excess := func(x float64) float64 {
-		s := c.advanced(x)
-		return a.n*o.Element.Current(s.v-s.active().v) - o.SupplyCurrent
-	}
-	// V_DD has one minimum, where the lump takes the supply's current.
-	from, before := 0.0, a.n*o.Element.Current(c.v-a.v)-o.SupplyCurrent
-	bottom := math.NaN()
-	if before > 0 && excess(span) <= 0 {
-		if x, found := numeric.Root(excess, 0, span, rootDigits*span); found {
-			from, bottom = x, c.advanced(x).v
-		}
-	}
-	back := false
-	if next.v >= o.Supply && (c.v < o.Supply || from > 0) {
-		x, found := numeric.Root(func(x float64) float64 { return c.advanced(x).v - o.Supply }, from, span, rootDigits*span)
-		if !found {
-			return false
-		}
-		span, back = x, true
-		next = c.advanced(x)
+	back := !falls && next.v >= o.Supply
+	if back && c.v < o.Supply && !c.cut(&span, &next, func(s *state) float64 { return s.v - o.Supply }) {
+		return false
 	}
 	if c.arrived != c.arrived && next.active().v >= o.Target {
-		x, found := numeric.Root(func(x float64) float64 { s := c.advanced(x); return s.active().v - o.Target }, 0, span, rootDigits*span)
-		if !found {
+		there, at := span, next
+		if !c.cut(&there, &at, func(s *state) float64 { return s.active().v - o.Target }) {
 			return false
 		}
-		c.reach(c.t + x)
+		c.reach(c.t + there)
 		if math.IsInf(until, 1) {
-			span, back = x, false
-			next = c.advanced(x)
+			span, next, back = there, at, false
 			next.active().v = math.Max(next.active().v, o.Target)
-			if span < from {
-				bottom = math.NaN()
-			}
 		}
 	}
 	if next.v != next.v {
@@ -311,10 +317,16 @@ func (c *course) exact(until float64, h *float64) bool {
 		c.v = o.Supply
 	}
 	c.low = math.Min(c.low, c.v)
-	if bottom == bottom {
-		c.low = math.Min(c.low, bottom)
-	}
 	c.t += span
-	*h = 6 * span
+	*h = span
 	return true
+}
+
+// cut shortens a step to where something turns from below 0 to above.
+func (c *course) cut(span *float64, next *state, of func(*state) float64) bool {
+	x, found := numeric.Root(func(x float64) float64 { s := c.advanced(x); return of(&s) }, 0, *span, rootDigits**span)
+	if found {
+		*span, *next = x, c.advanced(x)
+	}
+	return found
 }

@@ -61,7 +61,7 @@
 //
 //	C_VDD·dv_DD/dt = I_s - Σ n_k·i(v_DD - v_k),   C_B·dv_k/dt = i(v_DD - v_k) - I_0                     (5)
 //
-// does not separate and is integrated by the stiff method of calc/internal/numeric to 50 µV a step; voltages within 10 µV are
+// does not separate and is integrated by the stiff method of calc/internal/numeric to 0.2 mV a step, 20 µV in all; voltages within 1 mV are
 // one, and of more than eight the two closest are taken together with their charge.
 //
 // Every rate in (5) rises with every other state, so by Kamke's comparison theorem (from memory) a state that is nowhere higher than another

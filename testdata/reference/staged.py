@@ -109,11 +109,11 @@ def cases():
     rng = np.random.default_rng(SEED)
     kinds = ("silicon", "schottky", "sharp", "switch")
     out = []
-    for n in range(32):
-        kind, order = kinds[n % 4], ("together", "waiting", "spaced", "crowded")[n // 4 % 4]
+    for n in range(40):
+        kind, order = kinds[n % 4], ("together", "waiting", "spaced", "crowded", "many")[n // 4 % 4 if n < 32 else 4]
         d = element(rng, kind)
         cb = log_uniform(rng, 100e-9, 22e-6)
-        stages = int(rng.choice([2, 3, 5, 6]))
+        stages = 12 if order == "many" else int(rng.choice([2, 3, 5, 6]))
         p = {
             "element": d, "bootstrap": cb, "reservoir": cb * log_uniform(rng, 3, 40), "stages": stages,
             "count": stages if order == "together" else int(rng.choice([1, 1, 2])), "interval": None,
@@ -126,7 +126,7 @@ def cases():
         refill = cb * p["supply"] / p["supply_current"]
         if order == "spaced":  # about the time in which the supply brings what a group takes
             p["interval"] = refill * log_uniform(rng, 0.5, 4) * p["count"]
-        if order == "crowded":  # several groups charge at once
+        if order == "crowded" or order == "many" and n % 8 >= 4:  # several groups charge at once
             p["interval"] = d["resistance"] * cb * log_uniform(rng, 0.03, 2)
         out.append({"name": f"{order} {kind} {n}", "kind": order, **p})
     return out
