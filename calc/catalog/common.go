@@ -201,7 +201,8 @@ func holdNote(c *circuit.Circuit) string {
 	hold := charge.Hold{Start: start, Capacitance: c.Capacitance(), Loads: c.Loads()}
 	text := "at a duty of 1 there is neither an edge nor time for the low side: nothing recharges C_B"
 	if t := hold.Time(c.Need(&c.Stage.Driver.UVLOFalling)); !math.IsInf(t, 1) {
-		return fmt.Sprintf("%s, and the supply collapses; from %s its hold lasts %s to lockout", text, quantity.Format(start, quantity.Voltage), quantity.Format(t, quantity.Time))
+		return fmt.Sprintf("%s, and the supply collapses; from %s its hold lasts %s to lockout", text, quantity.Format(start, quantity.Voltage),
+			quantity.Format(t, quantity.Time))
 	}
 	return text + "; its hold has no end only as long as nothing discharges it"
 }

@@ -50,9 +50,7 @@ func (c *Circuit) Charged() (stages, atOnce int) {
 // stiff tells whether V_DD stands, as no reservoir is fitted in which it could be stored.
 func (c *Circuit) stiff() bool { return c.Stage.GateSupply.Reservoir.Presence() == stage.NotFitted }
 
-// order is the first charge of all stages on the supply, which are taken to be equal, in the order of the request; together: all at once.
-// Groups that follow each other need the supply's limit: what it brings meanwhile decides. All at once without it takes a supply that brings
-// nothing, which is on the safe side.
+// order is the first charge of all stages on the supply, which are taken to be equal, in the order of the request, without a target.
 func (c *Circuit) order() startup.Order {
 	o := startup.Order{Reservoir: c.reservoir(), Target: math.NaN()}
 	o.Stages, o.Count = c.Charged()
@@ -63,7 +61,8 @@ func (c *Circuit) order() startup.Order {
 	return c.limited(o)
 }
 
-// limited gives an order the supply's current.
+// limited gives an order the supply's current. Groups that follow each other need its limit: what it brings meanwhile decides. All at once without it
+// takes a supply that brings nothing, which is on the safe side.
 func (c *Circuit) limited(o startup.Order) startup.Order {
 	switch limit := &c.Stage.GateSupply.CurrentLimit; {
 	case c.stiff():
@@ -139,15 +138,24 @@ func (c *Circuit) charge(which int) *charged {
 		if c.pulsed() {
 			out = c.chargePulsed(o, out.Lowest)
 		}
-		limit := &c.Stage.GateSupply.CurrentLimit
-		switch known := o.Bootstrap + o.Supply + o.Initial + o.Load + o.Target + o.Element.Drop(1e-3) + out.Last; {
+		switch limit := &c.Stage.GateSupply.CurrentLimit; {
 		case math.IsInf(out.Time, 1) && !c.stiff() && !limit.Given():
 			out.Time = c.Need(limit) // without it nobody knows whether they arrive
-		case out.Time != out.Time && known == known:
+		case out.Time != out.Time && c.known(o):
 			out.Time = c.Open("the first charge of the stages on the supply did not converge")
 		}
 		return out
 	})
+}
+
+// known tells whether all is there that an order is made of.
+func (c *Circuit) known(o startup.Order) bool {
+	sum := o.Bootstrap + o.Reservoir.Reservoir + o.Supply + o.Initial + o.Load + o.SupplyCurrent + o.Interval + o.Target + o.Element.Drop(1e-3)
+	if c.pulsed() {
+		width, period := c.pulses()
+		sum += width + period
+	}
+	return sum == sum
 }
 
 // chargePulsed is an order in which the low side is pulsed. On a V_DD that stands pulses are counted; how much later a reservoir lets them arrive

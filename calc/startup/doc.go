@@ -2,7 +2,8 @@
 // energy and end, and how far V_DD sags when several capacitors are charged from one reservoir, at once or group after group.
 //
 // Every interval follows the exact law of package recharge, and nothing steps through time but the charge of several groups of capacitors that share
-// a reservoir at different voltages, for which there is no closed form. The node stands at one voltage while C_B charges, normally 0 V. Below its lockout the driver is taken to draw its whole load I_0 already.
+// a reservoir at different voltages, for which there is no closed form. The node stands at one voltage while C_B charges, normally 0 V. Below its lockout the
+// driver is taken to draw its whole load I_0 already.
 //
 // # Continuous
 //

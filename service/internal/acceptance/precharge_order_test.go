@@ -189,7 +189,8 @@ func TestPrechargeWaitsForTheSupply(t *testing.T) {
 	want := (3*9e-6 - 10e-6*(12-end)) / limit
 	p := c.precharge(request(t, onReservoir(edits{"gateSupply.currentLimit": "10 mA"})))
 	all(t, "time by charge", p.GetTime(), want, 1e-3*want)
-	f := find(t, c.review(request(t, onReservoir(edits{"gateSupply.currentLimit": "10 mA", "driver.floatingQuiescentCurrent": "4 mA"}))).GetFindings(), "duty/pre-charge", "")
+	short := edits{"gateSupply.currentLimit": "10 mA", "driver.floatingQuiescentCurrent": "4 mA"}
+	f := find(t, c.review(request(t, onReservoir(short))).GetFindings(), "duty/pre-charge", "")
 	judged(t, f, fail, major)
 	says(t, f, "never reaches 9 V", "the supply's current does not bring V_DD back")
 }
