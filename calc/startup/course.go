@@ -12,6 +12,7 @@ const (
 	mostSteps   = 2000 // of one group
 	alike       = 1e-3 // voltages no farther apart count as one [V]
 	blocking    = 1e-5 // of the charging current, below which another group counts as blocked [1]
+	leastSlope  = 1e-9 // of a diode that has one [V]
 	farthest    = 1e5  // what has not arrived by then never does: beyond any time that can be asked for [s]
 	rootDigits  = 1e-11
 	balanced    = 1e-9  // by which currents may miss each other and count as equal [1]
@@ -44,9 +45,10 @@ type course struct {
 	never   bool    // some group never arrives
 	ended   bool    // the rise of the group that charges has ended
 
-	solver *numeric.Stiff
-	size   int // states of the solver
-	buffer [mostLumps + 1]float64
+	saturation float64 // I_S of a diode [A]; 0: a switch, or too little to be told
+	solver     *numeric.Stiff
+	size       int // states of the solver
+	buffer     [mostLumps + 1]float64
 }
 
 // begin connects n more capacitors. Lumps that have become alike are taken together first, and the closest two where there are too many.
@@ -83,7 +85,7 @@ func (c *course) join(i int) {
 // demand is the current that all lumps take [A], and what they may come to take if V_DD stands: at least their loads.
 func (c *course) demand(s *state) (now, later float64) {
 	for i := range s.k {
-		x := c.o.Element.Current(s.v - s.lumps[i].v)
+		x := c.current(s.v - s.lumps[i].v)
 		now += s.lumps[i].n * x
 		later += s.lumps[i].n * math.Max(x, c.o.Load)
 	}
@@ -152,7 +154,7 @@ func (c *course) resting(now float64) bool {
 		return false
 	}
 	for i := range c.k {
-		if c.o.Element.Current(c.v-c.lumps[i].v) > c.o.Load*(1+balanced) {
+		if c.current(c.v-c.lumps[i].v) > c.o.Load*(1+balanced) {
 			return false
 		}
 	}
@@ -221,9 +223,9 @@ func (c *course) others(s *state) float64 {
 	sum, a := 0.0, s.active()
 	for j := range s.k - 1 {
 		l := &s.lumps[j]
-		sum += l.n * math.Abs(c.o.Element.Current(s.v-l.v))
+		sum += l.n * math.Abs(c.current(s.v-l.v))
 	}
-	if i := a.n * c.o.Element.Current(s.v-a.v); i > 0 {
+	if i := a.n * c.current(s.v-a.v); i > 0 {
 		return sum / i
 	}
 	return math.Inf(1)
@@ -253,7 +255,7 @@ func (c *course) advanced(h float64) state {
 // falls tells which.
 func (c *course) stride(h float64) (span float64, falls bool) {
 	o, a := c.o, c.active()
-	i := o.Element.Current(c.v - a.v)
+	i := c.current(c.v - a.v)
 	if a.n*i > o.SupplyCurrent*(1+balanced) {
 		series, pull := c.series(a.n)
 		rest := o.Element.Drop(math.Max(o.SupplyCurrent/a.n, o.Load))

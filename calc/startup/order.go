@@ -53,6 +53,9 @@ func (o Order) Run() Outcome {
 		o.Count = o.Stages
 	}
 	c := &course{o: &o, state: state{v: o.Supply}, low: o.Supply}
+	if !o.Element.Switch && o.Element.Slope > leastSlope {
+		c.saturation = math.Exp(o.Element.LogSaturation)
+	}
 	waiting := o.Stages
 	out := Outcome{Last: nan}
 	for g := range groups {

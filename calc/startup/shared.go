@@ -23,7 +23,7 @@ func (c *course) Rates(y, dy []float64) bool {
 	o := c.o
 	sum := 0.0
 	for i := range c.k {
-		x := o.Element.Current(y[0] - y[i+1])
+		x := c.current(y[0] - y[i+1])
 		sum += c.lumps[i].n * x
 		dy[i+1] = (x - o.Load) / o.Bootstrap
 	}
@@ -36,7 +36,11 @@ func (c *course) Jacobian(y, j []float64) bool {
 	o, n := c.o, c.number()
 	clear(j)
 	for i := range c.k {
-		g := o.Element.Conductance(y[0] - y[i+1])
+		u := y[0] - y[i+1]
+		g := c.saturation / o.Element.Slope * math.Exp(u/o.Element.Slope)
+		if !(c.saturation > 0 && u < 0) {
+			g = o.Element.Conductance(u)
+		}
 		into := c.lumps[i].n * g / o.Reservoir.Reservoir
 		j[0] -= into
 		j[i+1] += into
@@ -44,6 +48,14 @@ func (c *course) Jacobian(y, j []float64) bool {
 		j[(i+1)*n+i+1] = -g / o.Bootstrap
 	}
 	return true
+}
+
+// current is the element's current [A]; that of a diode in reverse without the drop of at most R·I_S, which no digit of it needs.
+func (c *course) current(u float64) float64 {
+	if c.saturation > 0 && u < 0 {
+		return c.saturation * math.Expm1(u/c.o.Element.Slope)
+	}
+	return c.o.Element.Current(u)
 }
 
 // integrate steps (5) until a time [s], or until something happens that calls for another way: V_DD is back, the group that charges
