@@ -35,8 +35,7 @@ var chargeOversize = &rule.Rule{
 			return []string{"the reservoir bounds it"}
 		}
 		if math.IsInf(t, 1) {
-			return []string{"no capacitance is charged in time: V_BS never reaches the rising lockout threshold with margin; it settles at " +
-				quantity.Format(c.FirstSettled(), quantity.Voltage)}
+			return []string{"no capacitance is charged in time: " + neverArrives(c)}
 		}
 		return []string{fmt.Sprintf("the first charge bounds it: %s of %s available", quantity.Format(t, quantity.Time), quantity.Format(available, quantity.Time))}
 	},
@@ -58,11 +57,13 @@ func byReservoir(c *circuit.Circuit) float64 {
 func byTime(c *circuit.Circuit) float64 {
 	value := c.Fresh()
 	available, t := chargeTime(c)
-	return value * available / t
+	return value * math.Max(available, 0) / t
 }
 
-// chargeTime is the time available for the first charge and the time that C_B takes to the rising lockout with margin [s].
+// chargeTime is the time available for the first charge of the stages on the supply and the time that their C_B take to the rising lockout with margin,
+// both without what passes between given starts [s].
 func chargeTime(c *circuit.Circuit) (available, taken float64) {
 	taken, _ = c.FirstChargeTime()
-	return c.Need(&c.Stage.Startup.TimeAvailable), taken
+	delay := c.FirstChargeDelay()
+	return c.Need(&c.Stage.Startup.TimeAvailable) - delay, taken - delay
 }

@@ -27,7 +27,11 @@ var chargeStandingLoad = &rule.Rule{
 			return rule.Check{Value: c.NoPoint()}
 		}
 		pull, clamp, other, total := standing(c)
-		return rule.Check{Value: (pull + clamp + other) / total, Limit: standingShare, Guard: below(c, standingShare)}
+		share := (pull + clamp + other) / total
+		if total == 0 { // nothing is taken, nothing of it avoidable
+			share = 0
+		}
+		return rule.Check{Value: share, Limit: standingShare, Guard: below(c, standingShare)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		pull, clamp, other, total := standing(c)

@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"floatrail/calc/capacitor"
+	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/finding"
 	"floatrail/calc/quantity"
@@ -180,6 +181,9 @@ func collapseNote(c *circuit.Circuit) []string {
 	if c.Point == nil || c.Point.HeldOn != nil || !c.Steady().Collapses {
 		return nil
 	}
+	if alwaysOn(c) {
+		return []string{holdNote(c)}
+	}
 	text := "no positive steady state: the supply collapses"
 	if n := c.PeriodsToLockout(); n > 0 {
 		text += fmt.Sprintf(" and reaches lockout after %d periods", n)
@@ -229,6 +233,23 @@ func pauseNote(c *circuit.Circuit) string {
 	return text
 }
 
+// alwaysOn tells whether a fixed duty of 1 leaves neither an edge nor time for the low side.
+func alwaysOn(c *circuit.Circuit) bool {
+	return c.Point != nil && c.Point.FixedDuty != nil && c.Need(&c.Point.FixedDuty.Duty) == 1
+}
+
+// holdNote tells how long C_B holds what it was charged to, where nothing recharges it.
+func holdNote(c *circuit.Circuit) string {
+	start := c.ChargedTo()
+	hold := charge.Hold{Start: start, Capacitance: c.Capacitance(), Loads: c.Loads()}
+	text := "at a duty of 1 there is neither an edge nor time for the low side: nothing recharges C_B"
+	if t := hold.Time(c.Need(&c.Stage.Driver.UVLOFalling)); !math.IsInf(t, 1) {
+		return fmt.Sprintf("%s, and the supply collapses; from %s its hold lasts %s to lockout", text, quantity.Format(start, quantity.Voltage),
+			quantity.Format(t, quantity.Time))
+	}
+	return text + "; its hold has no end only as long as nothing discharges it"
+}
+
 // vanishNotes tells which pulses do not reach the switches.
 func vanishNotes(c *circuit.Circuit) []string {
 	if c.Point != nil && c.Point.Sinusoidal != nil {
@@ -239,7 +260,7 @@ func vanishNotes(c *circuit.Circuit) []string {
 	}
 	p := c.Period()
 	var out []string
-	if p.LowVanishes {
+	if p.LowVanishes && !alwaysOn(c) {
 		out = append(out, "the low-side pulse is shorter than the driver passes and vanishes")
 	}
 	if p.HighVanishes {
@@ -262,4 +283,41 @@ func vanishOverAngles(c *circuit.Circuit) (out []string) {
 		out = append(out, "at some angles the high-side pulse is shorter than the driver passes and vanishes; the low side stays on")
 	}
 	return out
+}
+
+// orderNote tells in which order the stages on the supply are charged, and in one sentence what the other order would give.
+func orderNote(c *circuit.Circuit) []string {
+	stages, atOnce, waits, interval := c.Order()
+	if stages == 1 {
+		return []string{"one bootstrap capacitor"}
+	}
+	together, inTurn := fmt.Sprintf("all %d at once", stages), "one after another"
+	if atOnce > 1 && atOnce < stages {
+		inTurn = fmt.Sprintf("%d at a time", atOnce)
+	}
+	if waits || atOnce == stages {
+		inTurn += ", each as soon as the one before has arrived"
+	} else {
+		inTurn += " every " + quantity.Format(interval, quantity.Time)
+	}
+	here, there := together, inTurn
+	if atOnce < stages {
+		here, there = there, here
+	}
+	return []string{fmt.Sprintf("%s: %s; %s: %s", here, orderNumbers(c.ReservoirLow(), c.PrechargeTime()), there, orderNumbers(c.OtherLow(), c.OtherTime()))}
+}
+
+// orderNumbers words the lowest V_DD [V] and the time of the first charge [s].
+func orderNumbers(low, time float64) string {
+	text := quantity.Format(low, quantity.Voltage)
+	if low != low {
+		text = "V_DD not known"
+	}
+	switch {
+	case math.IsInf(time, 1):
+		return text + ", V_BS never arrives"
+	case time != time:
+		return text + ", time not known"
+	}
+	return text + ", " + quantity.Format(time, quantity.Time)
 }

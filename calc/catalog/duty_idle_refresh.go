@@ -1,6 +1,7 @@
 package catalog
 
 import (
+	"fmt"
 	"math"
 
 	"floatrail/calc/circuit"
@@ -39,15 +40,23 @@ var dutyIdleRefresh = &rule.Rule{
 		return rule.Check{Value: v, Limit: limit, Guard: limit + c.Margin(limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, k rule.Check) []string {
-		switch {
-		case c.Point != nil && c.Point.Burst != nil && k.Value == circuit.Empty(c.Restart()):
+		if c.Point != nil && c.Point.Burst != nil && k.Value == circuit.Empty(c.Restart()) {
 			return []string{pauseNote(c)}
-		case k.Value >= k.Limit:
-		case c.Stage.LowSide.Kind == stage.DiodeOnly:
-			return []string{"the diode of the low side does not pull the node down: C_B is charged against the raised node only, in startup.timeAvailable"}
-		case !c.Stage.Startup.PulseWidth.Given():
-			return []string{"no pulse of the low side pulls the node down (startup.pulseWidth is not given): C_B is charged against the raised node only, in startup.timeAvailable"}
 		}
-		return nil
+		if k.Value >= k.Limit {
+			return nil
+		}
+		var out []string
+		if v := c.PrebiasedSettled(); v < k.Limit {
+			out = append(out, fmt.Sprintf("the stage never starts: however long it waits, V_BS comes to no more than %s on a node at %s",
+				quantity.Format(v, quantity.Voltage), quantity.Format(c.Need(&c.Stage.Startup.Prebias), quantity.Voltage)))
+		}
+		switch {
+		case c.Stage.LowSide.Kind == stage.DiodeOnly:
+			out = append(out, "the diode of the low side does not pull the node down: C_B is charged against the raised node only, in startup.timeAvailable")
+		case !c.Stage.Startup.PulseWidth.Given():
+			out = append(out, "no pulse of the low side pulls the node down (startup.pulseWidth is not given): C_B is charged against the raised node only, in startup.timeAvailable")
+		}
+		return out
 	},
 }

@@ -47,6 +47,7 @@ var dutyRechargeWindow = &rule.Rule{
 		shortest, even := leastPulse(c), c.BreakEvenWindow()
 		notes := slices.Concat(vanishNotes(c), collapseNote(c), cancelNote(c))
 		switch {
+		case alwaysOn(c):
 		case math.IsInf(even, 1):
 			notes = append(notes, "no window suffices: the element carries no charge at the required voltage")
 		case even > shortest:

@@ -34,6 +34,7 @@ type Circuit struct {
 	cycleAt       Cycle
 	namesAt       [8]string
 	curveAt       [curves][]transient.CurvePoint
+	ordersAt      [2]charged
 	events        *events // nil: none asked for yet
 	estimating    bool    // events by closed forms, whatever the space says
 	focus         *Event  // the event that alone counts as occurring; nil: all that can
@@ -84,8 +85,9 @@ const (
 	slotSwing    // one for each event
 	slotSlope    = slotSwing + int(eventCount)
 	slotRecovery = slotSlope + int(eventCount)
-	slotCourse   = slotRecovery + 2 // one for each event and state of charge
-	slotCycle    = slotCourse + int(charges)*int(eventCount)
+	slotCourse   = slotRecovery + 2                          // one for each event and state of charge
+	slotOrders   = slotCourse + int(charges)*int(eventCount) // of the first charge: as requested, the other one
+	slotCycle    = slotOrders + 2
 )
 
 var nan = math.NaN()

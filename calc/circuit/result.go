@@ -290,8 +290,12 @@ func (c *Circuit) PeriodsToLockout() int {
 		}
 		return max(0, y.Plan.PeriodsUntil(c.Supply()-c.Element().Drop(1e-3), lockout, mostModulated))
 	}
-	start := c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
-	return max(0, c.Period().PeriodsUntil(start, lockout, mostCounted))
+	return max(0, c.Period().PeriodsUntil(c.ChargedTo(), lockout, mostCounted))
+}
+
+// ChargedTo is the V_BS to which the low side at the load current charges C_B [V].
+func (c *Circuit) ChargedTo() float64 {
+	return c.Supply() - c.Element().Drop(1e-3) - c.LowSideNode(c.Need(&c.Point.LoadCurrent))
 }
 
 // How many periods are counted until lockout; where each has a law of its own fewer.

@@ -40,24 +40,6 @@ func (c *Circuit) pulses() (width, period float64) {
 	return width, period
 }
 
-// chargeTime is the time and the pulses of the first charge of a capacitor to the target; 0 pulses where the low side is held on [s].
-func (c *Circuit) chargeTime(ch startup.Charge) (float64, int) {
-	if c.pulsed() {
-		width, period := c.pulses()
-		return ch.PulsedTime(width, period, c.FirstTarget())
-	}
-	return ch.Time(c.FirstTarget()), 0
-}
-
-// FirstChargeTime is the time of the first charge [s], without the driver's enable delay, and its pulses.
-func (c *Circuit) FirstChargeTime() (float64, int) { return c.chargeTime(c.firstCharge()) }
-
-// PrechargeTime is the time from the beginning of the first charge to the first accepted pulse [s].
-func (c *Circuit) PrechargeTime() float64 {
-	t, _ := c.FirstChargeTime()
-	return t + c.Need(&c.Stage.Driver.EnableDelay)
-}
-
 // FirstPeak is the element's current when an empty C_B is first charged [A].
 func (c *Circuit) FirstPeak() float64 { return c.firstCharge().PeakCurrent() }
 
@@ -78,60 +60,51 @@ func (c *Circuit) FirstSettled() float64 {
 	return ch.Settled()
 }
 
-// sharing is the number of stages on the supply.
-func (c *Circuit) sharing() int {
-	g := &c.Stage.GateSupply
-	if g.StagesSharing > 0 {
-		return g.StagesSharing
-	}
-	c.Assume(stage.Assumption{Field: g.Field + ".stagesSharing", Assumed: "1", Direction: stage.Optimistic,
-		Reason: "the number of stages on the supply is not given; this one alone is assumed"})
-	return 1
-}
-
-// Simultaneous is the number of bootstrap capacitors that are charged at once from the reservoir.
-func (c *Circuit) Simultaneous() int {
-	if n := c.Stage.Startup.Simultaneous; n > 0 {
-		return n
-	}
-	return c.sharing()
-}
-
-// ReservoirLow is the lowest V_DD while the bootstrap capacitors are charged at once from the reservoir [V].
-func (c *Circuit) ReservoirLow() float64 {
-	r := &c.Stage.GateSupply.Reservoir
-	switch r.Presence() {
-	case stage.NotFitted:
-		return c.Supply()
-	case stage.PresenceUnknown:
-		return c.Want(r.Field)
-	}
-	n := startup.Reservoir{
-		Element: c.Element(), Bootstrap: c.Fresh(), Reservoir: c.Effective(r, c.Supply), Count: c.Simultaneous(), Supply: c.Supply(),
-		Initial: c.Need(&c.Stage.Startup.InitialVoltage), Load: c.Loads().Total(),
-	}
-	if n.Reservoir <= 0 || n.Bootstrap <= 0 {
-		return c.Open("the bias curves leave no capacitance at this voltage")
-	}
-	if i, ok := c.Has(&c.Stage.GateSupply.CurrentLimit); ok {
-		n.SupplyCurrent = i
-	}
-	return n.Lowest()
-}
-
 // PrebiasedVoltage is V_BS at the first pulse on a node that stands at a voltage already [V]. With pulses of the low side it is what they
 // reach in the time available; without, what the element brings against the raised node.
 func (c *Circuit) PrebiasedVoltage() float64 {
-	s := &c.Stage.Startup
-	ch := c.firstCharge()
-	node := c.Need(&s.Prebias)
-	if c.pulsed() && c.Stage.LowSide.Kind != stage.DiodeOnly { // a diode does not pull the node down
+	available := c.Need(&c.Stage.Startup.TimeAvailable)
+	ch, how := c.prebiased()
+	switch how {
+	case byPulses:
 		width, period := c.pulses()
-		return ch.PulsedReached(width, period, c.Need(&s.TimeAvailable))
+		return ch.PulsedReached(width, period, available)
+	case disconnected:
+		return ch.Initial + available*0
 	}
-	if c.Stage.Bootstrap.Element == stage.IntegratedSwitch { // it conducts only while the low-side gate is on
-		return ch.Initial + node*0
+	return max(0, ch.Reached(available))
+}
+
+// PrebiasedSettled is the V_BS to which PrebiasedVoltage tends in a time without end [V].
+func (c *Circuit) PrebiasedSettled() float64 {
+	ch, how := c.prebiased()
+	switch how {
+	case byPulses:
+		return ch.PulsedSettled(c.pulses())
+	case disconnected:
+		return ch.Initial
+	}
+	return max(0, ch.Settled())
+}
+
+// Ways in which C_B is charged on a node that stands at a voltage.
+const (
+	againstNode  = iota // through a diode, against the raised node
+	byPulses            // by pulses of the low side, which pull the node down
+	disconnected        // not at all: an integrated switch conducts only while the low-side gate is on
+)
+
+// prebiased is the first charge on a node that stands at a voltage already, and how it comes about.
+func (c *Circuit) prebiased() (ch startup.Charge, how int) {
+	ch = c.firstCharge()
+	node := c.Need(&c.Stage.Startup.Prebias)
+	switch {
+	case c.pulsed() && c.Stage.LowSide.Kind != stage.DiodeOnly: // a diode does not pull the node down
+		return ch, byPulses
+	case c.Stage.Bootstrap.Element == stage.IntegratedSwitch:
+		ch.Initial += node * 0
+		return ch, disconnected
 	}
 	ch.Node = node
-	return max(0, ch.Reached(c.Need(&s.TimeAvailable)))
+	return ch, againstNode
 }

@@ -95,6 +95,11 @@ func NewSpace(s *stage.Stage, p *stage.Policy, op *stage.OperatingPoint, set Set
 		&l.Measured.TurnOnCurrentSlope, &l.Measured.TurnOffVoltageSlope, &l.Measured.TurnOnVoltageSlope} {
 		sp.interior.set(q.ID)
 	}
+	u := &s.Startup
+	sp.interior.set(u.StageInterval.ID)
+	if u.Simultaneous > 0 && u.Simultaneous < s.GateSupply.StagesSharing { // a group that waits for the one before finds V_DD as that one's target has it
+		sp.interior.set(s.Driver.UVLORising.ID)
+	}
 	if op != nil {
 		for _, q := range []*stage.Quantity{&op.BusVoltage, &op.LoadCurrent, &op.RippleCurrent, &op.SwitchingFrequency, &op.DeadTime} {
 			sp.interior.set(q.ID)

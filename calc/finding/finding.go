@@ -292,12 +292,16 @@ const (
 
 // Precharge is the first charge of C_B.
 type Precharge struct {
-	Time           Span // to the rising lockout with margin, enable delay included
+	Time           Span // until the last stage is at the rising lockout with margin, enable delay included
 	Pulses         int  // most pulses of a pulsed first charge; 0: the low side is held on, or not known
 	PeakCurrent    Span
 	ResistorEnergy Span
 	ReservoirLow   Span
 	SettledVoltage Span
+
+	// Both orders of several stages on the supply: at once, and in groups. NaN where there is one stage.
+	ReservoirLowSimultaneous, ReservoirLowStaged Span
+	TimeSimultaneous, TimeStaged                 Span
 }
 
 // TransientStress is the switching events of each operating point.

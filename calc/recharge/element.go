@@ -79,6 +79,13 @@ func (e Element) Current(drive float64) float64 {
 	return i
 }
 
+// Conductance returns how much the current rises with the voltage drive = E - v across the element [S]: 1/(R + n·V_T/(i + I_S)).
+func (e Element) Conductance(drive float64) float64 {
+	w := e.law()
+	_, g := w.current(drive)
+	return g
+}
+
 // Drop returns the voltage across the whole element [V] at the current i [A], eq. (1).
 func (e Element) Drop(i float64) float64 {
 	w := e.law()

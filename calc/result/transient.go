@@ -243,6 +243,7 @@ func precharge(b *rule.Bench, p *rule.Point) finding.Precharge {
 		ReservoirLow:   span(func(c *circuit.Circuit) float64 { return c.ReservoirLow() }, quantity.Voltage),
 		SettledVoltage: span(func(c *circuit.Circuit) float64 { return c.FirstSettled() }, quantity.Voltage),
 	}
+	orders(&out, p, span)
 	if s := &b.Stage.Startup; s.PulseWidth.Given() || s.PulsePeriod.Given() {
 		if n := span(func(c *circuit.Circuit) float64 {
 			_, n := c.FirstChargeTime()
@@ -252,6 +253,30 @@ func precharge(b *rule.Bench, p *rule.Point) finding.Precharge {
 		}
 	}
 	return out
+}
+
+// orders gives the lowest V_DD and the time of several stages on the supply in both orders: that of the request is known already.
+func orders(out *finding.Precharge, p *rule.Point, span func(rule.Number, quantity.Dimension) finding.Span) {
+	none := finding.Span{Min: math.NaN(), Typ: math.NaN(), Max: math.NaN(), Dimension: quantity.Voltage}
+	out.ReservoirLowSimultaneous, out.ReservoirLowStaged = none, none
+	none.Dimension = quantity.Time
+	out.TimeSimultaneous, out.TimeStaged = none, none
+	stages, atOnce := 1, 1
+	corner.Evaluate(p.Spaces[0].Typical(), func(d *corner.Draw) float64 {
+		stages, atOnce, _, _ = circuit.Of(d).Order()
+		return 0
+	})
+	if stages == 1 {
+		return
+	}
+	low := span(func(c *circuit.Circuit) float64 { return c.OtherLow() }, quantity.Voltage)
+	time := span(func(c *circuit.Circuit) float64 { return c.OtherTime() }, quantity.Time)
+	out.ReservoirLowSimultaneous, out.TimeSimultaneous = out.ReservoirLow, out.Time
+	out.ReservoirLowStaged, out.TimeStaged = low, time
+	if atOnce < stages {
+		out.ReservoirLowSimultaneous, out.ReservoirLowStaged = low, out.ReservoirLow
+		out.TimeSimultaneous, out.TimeStaged = time, out.Time
+	}
 }
 
 // overPoints joins the first charge of all operating points: it does not depend on the mode, but on the temperatures. What one point does not
@@ -269,6 +294,10 @@ func overPoints(points []finding.Precharge) *finding.Precharge {
 		join(&out.ResistorEnergy, &p.ResistorEnergy)
 		join(&out.ReservoirLow, &p.ReservoirLow)
 		join(&out.SettledVoltage, &p.SettledVoltage)
+		join(&out.ReservoirLowSimultaneous, &p.ReservoirLowSimultaneous)
+		join(&out.ReservoirLowStaged, &p.ReservoirLowStaged)
+		join(&out.TimeSimultaneous, &p.TimeSimultaneous)
+		join(&out.TimeStaged, &p.TimeStaged)
 		out.Pulses = max(out.Pulses, p.Pulses)
 	}
 	return &out

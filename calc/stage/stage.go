@@ -150,7 +150,8 @@ type Startup struct {
 	PulsePeriod    Quantity // [s]
 	InitialVoltage Quantity // [V]
 	Prebias        Quantity // node voltage [V]
-	Simultaneous   int      // 0: not given
+	Simultaneous   int      // stages of a group; 0: not given
+	StageInterval  Quantity // between the starts of groups [s]
 }
 
 // Relative cuts the request's prefix (`stage.` or `stages[3].`) off a path.

@@ -1,8 +1,9 @@
 // Package startup is the first charge of bootstrap capacitors: its time, in one go or in pulses of the low side, its current,
-// energy and end, and how far V_DD sags when several capacitors are charged at once from one reservoir.
+// energy and end, and how far V_DD sags when several capacitors are charged from one reservoir, at once or group after group.
 //
-// Every interval follows the exact law of package recharge, so nothing steps through time. The node stands at one voltage while
-// C_B charges, normally 0 V. Below its lockout the driver is taken to draw its whole load I_0 already.
+// Every interval follows the exact law of package recharge, and nothing steps through time but the charge of several groups of capacitors that share
+// a reservoir at different voltages, for which there is no closed form. The node stands at one voltage while C_B charges, normally 0 V. Below its lockout the
+// driver is taken to draw its whole load I_0 already.
 //
 // # Continuous
 //
@@ -44,6 +45,33 @@
 //
 // With no load, no drop and no supply this is the charge balance V_DD·C_VDD/(C_VDD + n·C_B) for empty capacitors, to which a diode comes
 // at its last microampere only. A load counts twice: u is larger for it, and the charge that it takes during the rise is missing.
+//
+// # Groups
+//
+// Order charges n capacitors in groups of k, a group starting at each multiple of an interval, or as soon as the one before has arrived at the
+// target. A group that has not started takes nothing; one that has stays connected with its load I_0. The supply brings I_s while
+// V_DD lies below its nominal value V_0 and, once there, whatever is drawn up to I_s. V_DD and V_BS carry over from group to group. With
+// u = v_DD - v_B from the law, the charge of (2) gives both at any time:
+//
+//	v_B = [C_VDD·(v_DD0 - u) + n·C_B·v_B0 + (I_s - n·I_0)·t]/(C_VDD + n·C_B),   v_DD = v_B + u          (4)
+//
+// so that three phases have a closed form: one group charges while the diodes of all others block, which hold but for I_0·t/C_B (a group counts
+// as blocked below 1e-5 of the charging current); the groups have come to one voltage, and are one; the supply holds V_DD at V_0,
+// and each capacitor charges by itself. Where a phase ends - V_DD at V_0, V_BS at the target, another diode conducting again - is the root of an
+// expression in t. What remains, m groups at different voltages that conduct together,
+//
+//	C_VDD·dv_DD/dt = I_s - Σ n_k·i(v_DD - v_k),   C_B·dv_k/dt = i(v_DD - v_k) - I_0                     (5)
+//
+// does not separate and is integrated by the stiff method of calc/internal/numeric to 0.2 mV a step, 20 µV in all; voltages within 1 mV are
+// one, and of more than eight the two closest are taken together with their charge.
+//
+// Every rate in (5) rises with every other state, so by Kamke's comparison theorem (from memory) a state that is nowhere higher than another
+// one never becomes higher anywhere: less supply and more load never raise V_DD or a V_BS; a capacitor that started earlier
+// never stands lower than one that started later, so the last one to start is the last one to arrive; and once nothing rises any more,
+// nothing ever will. Of the start times this says nothing: an order that waits starts its groups later where V_DD is low.
+//
+// One after another is not the safer order by itself. When V_DD falls for a later group, the diodes of the earlier ones keep what those took; without
+// a supply V_DD ends at V_0·(C_VDD/(C_VDD + C_B))^n, below V_0·C_VDD/(C_VDD + n·C_B). What it gains is time for the supply.
 //
 // # Not included
 //

@@ -86,6 +86,19 @@ func (t train) centred() Charge {
 	return c
 }
 
+// PulsedMean returns the charge, with the element conducting throughout, that the pulses of a width [s] each period [s] follow in the mean, in
+// conducting time, and how far below the ends of the pulses it stands [V]; see the package comment. ok is false where there is no pulse, or
+// nothing can be computed.
+func (c Charge) PulsedMean(width, period float64) (mean Charge, below float64, ok bool) {
+	t, ok := c.pulses(width, period)
+	if !ok || !(t.width > 0) {
+		return Charge{}, math.NaN(), false
+	}
+	mean = t.centred()
+	mean.Initial += t.drop / 2
+	return mean, t.drop / 2, true
+}
+
 // PulsedTime returns the time [s] from the start of the first pulse to the target [V] and the number of pulses to it, the last one
 // included, for pulses of a width [s] each period [s]: 0 and 0 when V_BS starts there, +Inf and 0 when it never arrives. Up to
 // 64 pulses it is exact. Beyond, the average between them leaves an error of the order of (w/(R·C))²/12 of the time; see the package

@@ -1049,20 +1049,28 @@ func (x *Collapse) GetCorner() *Corner {
 // First charge of C_B.
 type Precharge struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
-	// Time to the rising lockout threshold with margin.
+	// Time until the last stage on the supply has reached the rising lockout threshold with margin, the driver's enable delay included.
 	Time *Span `protobuf:"bytes,1,opt,name=time,proto3" json:"time,omitempty"`
-	// Pulses of a pulsed first charge.
+	// Pulses of a pulsed first charge, of one stage.
 	Pulses *int32 `protobuf:"varint,2,opt,name=pulses,proto3,oneof" json:"pulses,omitempty"`
 	// Peak current of the element.
 	PeakCurrent *Span `protobuf:"bytes,3,opt,name=peak_current,json=peakCurrent,proto3" json:"peak_current,omitempty"`
 	// Energy that R_B takes.
 	ResistorEnergy *Span `protobuf:"bytes,4,opt,name=resistor_energy,json=resistorEnergy,proto3" json:"resistor_energy,omitempty"`
-	// Lowest V_DD.
+	// Lowest V_DD while all stages on the supply are charged, in the order of the request.
 	ReservoirLow *Span `protobuf:"bytes,5,opt,name=reservoir_low,json=reservoirLow,proto3" json:"reservoir_low,omitempty"`
 	// V_BS once settled.
 	SettledVoltage *Span `protobuf:"bytes,6,opt,name=settled_voltage,json=settledVoltage,proto3" json:"settled_voltage,omitempty"`
-	unknownFields  protoimpl.UnknownFields
-	sizeCache      protoimpl.SizeCache
+	// Of several stages on the supply, the lowest V_DD where all are charged at once.
+	ReservoirLowSimultaneous *Span `protobuf:"bytes,7,opt,name=reservoir_low_simultaneous,json=reservoirLowSimultaneous,proto3" json:"reservoir_low_simultaneous,omitempty"`
+	// The same where they are charged in groups: as the request has it, else one after another, each waiting for the one before.
+	ReservoirLowStaged *Span `protobuf:"bytes,8,opt,name=reservoir_low_staged,json=reservoirLowStaged,proto3" json:"reservoir_low_staged,omitempty"`
+	// The time where all are charged at once.
+	TimeSimultaneous *Span `protobuf:"bytes,9,opt,name=time_simultaneous,json=timeSimultaneous,proto3" json:"time_simultaneous,omitempty"`
+	// The same where they are charged in groups.
+	TimeStaged    *Span `protobuf:"bytes,10,opt,name=time_staged,json=timeStaged,proto3" json:"time_staged,omitempty"`
+	unknownFields protoimpl.UnknownFields
+	sizeCache     protoimpl.SizeCache
 }
 
 func (x *Precharge) Reset() {
@@ -1133,6 +1141,34 @@ func (x *Precharge) GetReservoirLow() *Span {
 func (x *Precharge) GetSettledVoltage() *Span {
 	if x != nil {
 		return x.SettledVoltage
+	}
+	return nil
+}
+
+func (x *Precharge) GetReservoirLowSimultaneous() *Span {
+	if x != nil {
+		return x.ReservoirLowSimultaneous
+	}
+	return nil
+}
+
+func (x *Precharge) GetReservoirLowStaged() *Span {
+	if x != nil {
+		return x.ReservoirLowStaged
+	}
+	return nil
+}
+
+func (x *Precharge) GetTimeSimultaneous() *Span {
+	if x != nil {
+		return x.TimeSimultaneous
+	}
+	return nil
+}
+
+func (x *Precharge) GetTimeStaged() *Span {
+	if x != nil {
+		return x.TimeStaged
 	}
 	return nil
 }
@@ -1966,14 +2002,20 @@ const file_floatrail_v1_result_proto_rawDesc = "" +
 	"\aperiods\x18\x01 \x01(\x05H\x00R\aperiods\x88\x01\x01\x12,\n" +
 	"\x06corner\x18\x02 \x01(\v2\x14.floatrail.v1.CornerR\x06cornerB\n" +
 	"\n" +
-	"\b_periods\"\xc5\x02\n" +
+	"\b_periods\"\xd3\x04\n" +
 	"\tPrecharge\x12&\n" +
 	"\x04time\x18\x01 \x01(\v2\x12.floatrail.v1.SpanR\x04time\x12\x1b\n" +
 	"\x06pulses\x18\x02 \x01(\x05H\x00R\x06pulses\x88\x01\x01\x125\n" +
 	"\fpeak_current\x18\x03 \x01(\v2\x12.floatrail.v1.SpanR\vpeakCurrent\x12;\n" +
 	"\x0fresistor_energy\x18\x04 \x01(\v2\x12.floatrail.v1.SpanR\x0eresistorEnergy\x127\n" +
 	"\rreservoir_low\x18\x05 \x01(\v2\x12.floatrail.v1.SpanR\freservoirLow\x12;\n" +
-	"\x0fsettled_voltage\x18\x06 \x01(\v2\x12.floatrail.v1.SpanR\x0esettledVoltageB\t\n" +
+	"\x0fsettled_voltage\x18\x06 \x01(\v2\x12.floatrail.v1.SpanR\x0esettledVoltage\x12P\n" +
+	"\x1areservoir_low_simultaneous\x18\a \x01(\v2\x12.floatrail.v1.SpanR\x18reservoirLowSimultaneous\x12D\n" +
+	"\x14reservoir_low_staged\x18\b \x01(\v2\x12.floatrail.v1.SpanR\x12reservoirLowStaged\x12?\n" +
+	"\x11time_simultaneous\x18\t \x01(\v2\x12.floatrail.v1.SpanR\x10timeSimultaneous\x123\n" +
+	"\vtime_staged\x18\n" +
+	" \x01(\v2\x12.floatrail.v1.SpanR\n" +
+	"timeStagedB\t\n" +
 	"\a_pulses\"\x84\x03\n" +
 	"\n" +
 	"TracePoint\x12,\n" +
@@ -2162,43 +2204,47 @@ var file_floatrail_v1_result_proto_depIdxs = []int32{
 	21, // 51: floatrail.v1.Precharge.resistor_energy:type_name -> floatrail.v1.Span
 	21, // 52: floatrail.v1.Precharge.reservoir_low:type_name -> floatrail.v1.Span
 	21, // 53: floatrail.v1.Precharge.settled_voltage:type_name -> floatrail.v1.Span
-	22, // 54: floatrail.v1.TracePoint.time:type_name -> floatrail.v1.Measure
-	22, // 55: floatrail.v1.TracePoint.floating_voltage:type_name -> floatrail.v1.Measure
-	0,  // 56: floatrail.v1.TracePoint.kind:type_name -> floatrail.v1.TracePoint.Kind.Value
-	22, // 57: floatrail.v1.TracePoint.angle:type_name -> floatrail.v1.Measure
-	14, // 58: floatrail.v1.TransientStressResult.events:type_name -> floatrail.v1.TransientEvent
-	17, // 59: floatrail.v1.TransientStressResult.waveforms:type_name -> floatrail.v1.Waveform
-	1,  // 60: floatrail.v1.TransientEvent.event:type_name -> floatrail.v1.TransientEvent.Event.Value
-	2,  // 61: floatrail.v1.TransientEvent.method:type_name -> floatrail.v1.TransientEvent.Method.Value
-	21, // 62: floatrail.v1.TransientEvent.node_min:type_name -> floatrail.v1.Span
-	21, // 63: floatrail.v1.TransientEvent.pin_min:type_name -> floatrail.v1.Span
-	21, // 64: floatrail.v1.TransientEvent.rail_to_com_min:type_name -> floatrail.v1.Span
-	16, // 65: floatrail.v1.TransientEvent.undershoots:type_name -> floatrail.v1.UndershootDuration
-	21, // 66: floatrail.v1.TransientEvent.floating_voltage_gain:type_name -> floatrail.v1.Span
-	21, // 67: floatrail.v1.TransientEvent.node_max:type_name -> floatrail.v1.Span
-	21, // 68: floatrail.v1.TransientEvent.rail_max:type_name -> floatrail.v1.Span
-	21, // 69: floatrail.v1.TransientEvent.high_side_peak:type_name -> floatrail.v1.Span
-	21, // 70: floatrail.v1.TransientEvent.low_side_peak:type_name -> floatrail.v1.Span
-	21, // 71: floatrail.v1.TransientEvent.slew_peak:type_name -> floatrail.v1.Span
-	21, // 72: floatrail.v1.TransientEvent.slew_10_to_90:type_name -> floatrail.v1.Span
-	21, // 73: floatrail.v1.TransientEvent.miller_low:type_name -> floatrail.v1.Span
-	21, // 74: floatrail.v1.TransientEvent.miller_high:type_name -> floatrail.v1.Span
-	21, // 75: floatrail.v1.TransientEvent.gate_min:type_name -> floatrail.v1.Span
-	21, // 76: floatrail.v1.TransientEvent.current_slope:type_name -> floatrail.v1.Span
-	21, // 77: floatrail.v1.TransientEvent.ring_frequency:type_name -> floatrail.v1.Span
-	21, // 78: floatrail.v1.TransientEvent.ring_damping:type_name -> floatrail.v1.Span
-	15, // 79: floatrail.v1.TransientEvent.comparisons:type_name -> floatrail.v1.Comparison
-	22, // 80: floatrail.v1.Comparison.simulated:type_name -> floatrail.v1.Measure
-	22, // 81: floatrail.v1.Comparison.estimated:type_name -> floatrail.v1.Measure
-	22, // 82: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
-	21, // 83: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
-	21, // 84: floatrail.v1.UndershootDuration.total:type_name -> floatrail.v1.Span
-	22, // 85: floatrail.v1.UndershootDuration.each:type_name -> floatrail.v1.Measure
-	86, // [86:86] is the sub-list for method output_type
-	86, // [86:86] is the sub-list for method input_type
-	86, // [86:86] is the sub-list for extension type_name
-	86, // [86:86] is the sub-list for extension extendee
-	0,  // [0:86] is the sub-list for field type_name
+	21, // 54: floatrail.v1.Precharge.reservoir_low_simultaneous:type_name -> floatrail.v1.Span
+	21, // 55: floatrail.v1.Precharge.reservoir_low_staged:type_name -> floatrail.v1.Span
+	21, // 56: floatrail.v1.Precharge.time_simultaneous:type_name -> floatrail.v1.Span
+	21, // 57: floatrail.v1.Precharge.time_staged:type_name -> floatrail.v1.Span
+	22, // 58: floatrail.v1.TracePoint.time:type_name -> floatrail.v1.Measure
+	22, // 59: floatrail.v1.TracePoint.floating_voltage:type_name -> floatrail.v1.Measure
+	0,  // 60: floatrail.v1.TracePoint.kind:type_name -> floatrail.v1.TracePoint.Kind.Value
+	22, // 61: floatrail.v1.TracePoint.angle:type_name -> floatrail.v1.Measure
+	14, // 62: floatrail.v1.TransientStressResult.events:type_name -> floatrail.v1.TransientEvent
+	17, // 63: floatrail.v1.TransientStressResult.waveforms:type_name -> floatrail.v1.Waveform
+	1,  // 64: floatrail.v1.TransientEvent.event:type_name -> floatrail.v1.TransientEvent.Event.Value
+	2,  // 65: floatrail.v1.TransientEvent.method:type_name -> floatrail.v1.TransientEvent.Method.Value
+	21, // 66: floatrail.v1.TransientEvent.node_min:type_name -> floatrail.v1.Span
+	21, // 67: floatrail.v1.TransientEvent.pin_min:type_name -> floatrail.v1.Span
+	21, // 68: floatrail.v1.TransientEvent.rail_to_com_min:type_name -> floatrail.v1.Span
+	16, // 69: floatrail.v1.TransientEvent.undershoots:type_name -> floatrail.v1.UndershootDuration
+	21, // 70: floatrail.v1.TransientEvent.floating_voltage_gain:type_name -> floatrail.v1.Span
+	21, // 71: floatrail.v1.TransientEvent.node_max:type_name -> floatrail.v1.Span
+	21, // 72: floatrail.v1.TransientEvent.rail_max:type_name -> floatrail.v1.Span
+	21, // 73: floatrail.v1.TransientEvent.high_side_peak:type_name -> floatrail.v1.Span
+	21, // 74: floatrail.v1.TransientEvent.low_side_peak:type_name -> floatrail.v1.Span
+	21, // 75: floatrail.v1.TransientEvent.slew_peak:type_name -> floatrail.v1.Span
+	21, // 76: floatrail.v1.TransientEvent.slew_10_to_90:type_name -> floatrail.v1.Span
+	21, // 77: floatrail.v1.TransientEvent.miller_low:type_name -> floatrail.v1.Span
+	21, // 78: floatrail.v1.TransientEvent.miller_high:type_name -> floatrail.v1.Span
+	21, // 79: floatrail.v1.TransientEvent.gate_min:type_name -> floatrail.v1.Span
+	21, // 80: floatrail.v1.TransientEvent.current_slope:type_name -> floatrail.v1.Span
+	21, // 81: floatrail.v1.TransientEvent.ring_frequency:type_name -> floatrail.v1.Span
+	21, // 82: floatrail.v1.TransientEvent.ring_damping:type_name -> floatrail.v1.Span
+	15, // 83: floatrail.v1.TransientEvent.comparisons:type_name -> floatrail.v1.Comparison
+	22, // 84: floatrail.v1.Comparison.simulated:type_name -> floatrail.v1.Measure
+	22, // 85: floatrail.v1.Comparison.estimated:type_name -> floatrail.v1.Measure
+	22, // 86: floatrail.v1.UndershootDuration.level:type_name -> floatrail.v1.Measure
+	21, // 87: floatrail.v1.UndershootDuration.duration:type_name -> floatrail.v1.Span
+	21, // 88: floatrail.v1.UndershootDuration.total:type_name -> floatrail.v1.Span
+	22, // 89: floatrail.v1.UndershootDuration.each:type_name -> floatrail.v1.Measure
+	90, // [90:90] is the sub-list for method output_type
+	90, // [90:90] is the sub-list for method input_type
+	90, // [90:90] is the sub-list for extension type_name
+	90, // [90:90] is the sub-list for extension extendee
+	0,  // [0:90] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_result_proto_init() }

@@ -1041,8 +1041,13 @@ type Startup struct {
 	InitialVoltage *Quantity `protobuf:"bytes,4,opt,name=initial_voltage,json=initialVoltage,proto3" json:"initial_voltage,omitempty"`
 	// Node voltage before the first pulse.
 	Prebias *Quantity `protobuf:"bytes,5,opt,name=prebias,proto3" json:"prebias,omitempty"`
-	// Stages charged at once from one reservoir.
-	Simultaneous  *int32 `protobuf:"varint,6,opt,name=simultaneous,proto3,oneof" json:"simultaneous,omitempty"`
+	// Stages charged at once from one reservoir. Where gateSupply.stagesSharing is more, the others follow in groups of as many, the last one
+	// perhaps smaller. Absent: all stages on the supply at once, or one after another where stageInterval is given.
+	Simultaneous *int32 `protobuf:"varint,6,opt,name=simultaneous,proto3,oneof" json:"simultaneous,omitempty"`
+	// Time from the start of one group of stages to the start of the next; 0 s starts all at once. Absent: where groups follow each other, each
+	// starts when the one before has reached the rising lockout threshold with margin. All stages on the supply are taken to be equal; those
+	// that have started stay connected, the others wait at initialVoltage.
+	StageInterval *Quantity `protobuf:"bytes,7,opt,name=stage_interval,json=stageInterval,proto3" json:"stage_interval,omitempty"`
 	unknownFields protoimpl.UnknownFields
 	sizeCache     protoimpl.SizeCache
 }
@@ -1117,6 +1122,13 @@ func (x *Startup) GetSimultaneous() int32 {
 		return *x.Simultaneous
 	}
 	return 0
+}
+
+func (x *Startup) GetStageInterval() *Quantity {
+	if x != nil {
+		return x.StageInterval
+	}
+	return nil
 }
 
 // Zero sequence that the modulator adds.
@@ -1298,7 +1310,7 @@ const file_floatrail_v1_stage_proto_rawDesc = "" +
 	"\x11idle_node_voltage\x18\x04 \x01(\v2\x16.floatrail.v1.QuantityB\x18\xb2\xe1\x18\x14\b\x01\x12\x05-10 V\x1a\x0510 kV \x01@\x0fR\x0fidleNodeVoltage\"\xbe\x01\n" +
 	"\x06HeldOn\x12V\n" +
 	"\bduration\x18\x01 \x01(\v2\x16.floatrail.v1.QuantityB\"\xb2\xe1\x18\x1e\b\a\x12\x041 ns\x1a\b100000 s \x01@\x0fR\x06t_holdR\bduration\x12\\\n" +
-	"\x0finitial_voltage\x18\x02 \x01(\v2\x16.floatrail.v1.QuantityB\x1b\xb2\xe1\x18\x17\b\x01\x12\x030 V\x1a\x05100 V \x01@\x0fR\x03V_0R\x0einitialVoltage\"\x8b\x04\n" +
+	"\x0finitial_voltage\x18\x02 \x01(\v2\x16.floatrail.v1.QuantityB\x1b\xb2\xe1\x18\x17\b\x01\x12\x030 V\x1a\x05100 V \x01@\x0fR\x03V_0R\x0einitialVoltage\"\xec\x04\n" +
 	"\aStartup\x12`\n" +
 	"\x0etime_available\x18\x01 \x01(\v2\x16.floatrail.v1.QuantityB!\xb2\xe1\x18\x1d\b\a\x12\x041 ns\x1a\x061000 s \x01@\x0fR\at_availR\rtimeAvailable\x12Q\n" +
 	"\vpulse_width\x18\x02 \x01(\v2\x16.floatrail.v1.QuantityB\x18\xb2\xe1\x18\x14\b\a\x12\x041 ns\x1a\x061000 s \x03@\x0fR\n" +
@@ -1306,7 +1318,8 @@ const file_floatrail_v1_stage_proto_rawDesc = "" +
 	"\fpulse_period\x18\x03 \x01(\v2\x16.floatrail.v1.QuantityB\x18\xb2\xe1\x18\x14\b\a\x12\x041 ns\x1a\x061000 s \x03@\x0fR\vpulsePeriod\x12r\n" +
 	"\x0finitial_voltage\x18\x04 \x01(\v2\x16.floatrail.v1.QuantityB1\xb2\xe1\x18-\b\x01\x12\x030 V\x1a\x05100 V \x02*\x05\x12\x030 V0\x01:\x10C_B starts empty@\x0fR\x0einitialVoltage\x12H\n" +
 	"\aprebias\x18\x05 \x01(\v2\x16.floatrail.v1.QuantityB\x16\xb2\xe1\x18\x12\b\x01\x12\x030 V\x1a\x0510 kV \x01@\x0fR\aprebias\x12'\n" +
-	"\fsimultaneous\x18\x06 \x01(\x05H\x00R\fsimultaneous\x88\x01\x01B\x0f\n" +
+	"\fsimultaneous\x18\x06 \x01(\x05H\x00R\fsimultaneous\x88\x01\x01\x12_\n" +
+	"\x0estage_interval\x18\a \x01(\v2\x16.floatrail.v1.QuantityB \xb2\xe1\x18\x1c\b\a\x12\x030 s\x1a\x061000 s \x03@\x0fR\at_stageR\rstageIntervalB\x0f\n" +
 	"\r_simultaneousB(Z&floatrail/api/floatrail/v1;floatrailv1b\x06proto3"
 
 var (
@@ -1403,11 +1416,12 @@ var file_floatrail_v1_stage_proto_depIdxs = []int32{
 	18, // 53: floatrail.v1.Startup.pulse_period:type_name -> floatrail.v1.Quantity
 	18, // 54: floatrail.v1.Startup.initial_voltage:type_name -> floatrail.v1.Quantity
 	18, // 55: floatrail.v1.Startup.prebias:type_name -> floatrail.v1.Quantity
-	56, // [56:56] is the sub-list for method output_type
-	56, // [56:56] is the sub-list for method input_type
-	56, // [56:56] is the sub-list for extension type_name
-	56, // [56:56] is the sub-list for extension extendee
-	0,  // [0:56] is the sub-list for field type_name
+	18, // 56: floatrail.v1.Startup.stage_interval:type_name -> floatrail.v1.Quantity
+	57, // [57:57] is the sub-list for method output_type
+	57, // [57:57] is the sub-list for method input_type
+	57, // [57:57] is the sub-list for extension type_name
+	57, // [57:57] is the sub-list for extension extendee
+	0,  // [0:57] is the sub-list for field type_name
 }
 
 func init() { file_floatrail_v1_stage_proto_init() }

@@ -9,12 +9,12 @@
 //	A02                                   TestPublishedSizing; calc/charge.TestPublishedSizing
 //	A03                                   TestPublishedDroop; calc/charge.TestPublishedDrop
 //	A04                                   TestPublishedDroop; calc/charge.TestPublishedChargeAndCapacitance
-//	A05                                   TestPublishedDroop; calc/charge.TestPublishedDrop, calc/recharge.TestPublishedHoldAndDroop
+//	A05                                   TestPublishedDroop, TestPublishedHoldInFindings; calc/charge.TestPublishedDrop, calc/recharge.TestPublishedHoldAndDroop
 //	A06, A07                              TestPublishedResistor; calc/recharge.TestPublishedResistorDeficit
 //	A11                                   TestPublishedSizing, TestPublishedExampleBreaksItsOwnLimit; calc/charge.TestPublishedDrop
 //	A15, with and without the resistor    TestPublishedSizing; calc/charge.TestPublishedSizing
 //	A16                                   TestPublishedSizing; calc/charge.TestPublishedSizing
-//	A21                                   TestPublishedDroop; calc/charge.TestPublishedDrop, calc/recharge.TestPublishedHoldAndDroop
+//	A21                                   TestPublishedDroop, TestPublishedHoldInFindings; calc/charge.TestPublishedDrop, calc/recharge.TestPublishedHoldAndDroop
 //	A22                                   TestPublishedSizing; calc/charge.TestPublishedSizing
 //
 //	resistor, diode, start-up
@@ -24,7 +24,7 @@
 //	D01                                   TestPublishedFirstCharge, TestPrechargeOfThePublishedExample; calc/recharge.TestPublishedCharging,
 //	                                      calc/startup.TestPublishedInitialCharge
 //	D05                                   TestPrechargeWaitsForTheLockout
-//	D10                                   TestPublishedHoldTime; calc/charge.TestPublishedHoldTime
+//	D10                                   TestPublishedHoldTime, TestPublishedHoldInFindings; calc/charge.TestPublishedHoldTime
 //
 //	node transients and overcharge
 //	E05                                   TestPublishedUndershoot; calc/transient.TestPublishedUndershoot
@@ -61,7 +61,10 @@
 // E07, the inductance of a via by its dimensions, and that of a length of track in E06 are not computed: a stage gives its inductances.
 //
 // The cases of optimism, by the number of the design: 1 TestPullDownLoadsTheHeldSupply, 2 TestLittleRemainsOfTheNominalCapacitance,
-// 3 TestCapacitanceCancels, 4 TestDeadTimePumpsTheGate, 5 TestUndershootFallsInTheLongerRow, 6 TestLockoutTurnsOffBelowCOM,
-// 7 TestLockoutDoesNotSuitTheSwitch, 8 TestClampHoldsTheHighSide, 9 TestUnknownInductanceIsNotNone and with another datum
-// TestMissingDataNeverPasses, 10 TestLowSidePulseVanishes.
+// 3 TestCapacitanceCancels and TestCancellingCapacitanceIsNotSizedUp, 4 TestDeadTimePumpsTheGate and TestPeakDetectorNamesItsInterval,
+// 5 TestUndershootFallsInTheLongerRow, 6 TestLockoutTurnsOffBelowCOM, 7 TestLockoutDoesNotSuitTheSwitch, 8
+// TestClampHoldsTheHighSide, 9 TestUnknownInductanceIsNotNone and with another datum TestMissingDataNeverPasses, 10 TestLowSidePulseVanishes.
+//
+// Starts that never come about and holds that nothing ends stand in start_hold_test.go; the order in which the stages on a supply are charged, in
+// precharge_order_test.go.
 package acceptance

@@ -102,8 +102,9 @@ func sample() *finding.Report {
 			LowAngle: volts(1), HighAngle: volts(2), WithoutRefresh: span, Restart: span,
 			Missing: []string{"m"}, Reason: "r",
 		}}, Limits: []finding.DerivedLimit{{Name: finding.LargestDuty, Measure: volts(1), Corner: corner, Reason: "r", OperatingPoint: "p"}},
-			Trace:     []finding.TracePoint{{OperatingPoint: "p", Kind: finding.TraceFundamental, Time: 1e-3, Angle: 0.5, FloatingVoltage: 12}},
-			Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span}},
+			Trace: []finding.TracePoint{{OperatingPoint: "p", Kind: finding.TraceFundamental, Time: 1e-3, Angle: 0.5, FloatingVoltage: 12}},
+			Precharge: &finding.Precharge{Time: span, Pulses: 3, PeakCurrent: span, ResistorEnergy: span, ReservoirLow: span, SettledVoltage: span,
+				ReservoirLowSimultaneous: span, ReservoirLowStaged: span, TimeSimultaneous: span, TimeStaged: span}},
 		Transient: &finding.TransientStress{Events: []finding.TransientEvent{{
 			Event: "TURN_OFF", OperatingPoint: "p", NodeMin: span, PinMin: span, RailToCOMMin: span,
 			Undershoots:         []finding.Undershoot{{Level: volts(-5), Duration: span, Total: span, Dips: 3, Each: []finding.Measure{volts(-1)}}},

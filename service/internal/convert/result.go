@@ -75,6 +75,8 @@ func wirePrecharge(p *finding.Precharge) *pb.Precharge {
 	out := &pb.Precharge{
 		Time: wireSpan(&p.Time), PeakCurrent: wireSpan(&p.PeakCurrent), ResistorEnergy: wireSpan(&p.ResistorEnergy),
 		ReservoirLow: wireSpan(&p.ReservoirLow), SettledVoltage: wireSpan(&p.SettledVoltage),
+		ReservoirLowSimultaneous: wireSpan(&p.ReservoirLowSimultaneous), ReservoirLowStaged: wireSpan(&p.ReservoirLowStaged),
+		TimeSimultaneous: wireSpan(&p.TimeSimultaneous), TimeStaged: wireSpan(&p.TimeStaged),
 	}
 	if p.Pulses > 0 {
 		out.Pulses = count(p.Pulses)
