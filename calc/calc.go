@@ -33,6 +33,7 @@ type Options struct {
 	Families  []string // families of rules; empty: all
 	Simulate  bool     // judge simulated switching events
 	Waveforms bool     // give the waveforms of simulated events
+	Trace     bool     // give V_BS over time
 }
 
 // Request is a stage with the policy and the waivers under which it is judged. The stage has passed stage.Check and is completed here.
@@ -81,7 +82,7 @@ func Review(ctx context.Context, r Request, parts int) (finding.Report, error) {
 		}
 	}
 	if ctx.Err() == nil {
-		out.DutyLimits, out.Transient = result.OfPoints(bench, parts&WithDutyLimits != 0, parts&WithTransient != 0, r.Options.Waveforms)
+		out.DutyLimits, out.Transient = result.OfPoints(bench, parts&WithDutyLimits != 0, parts&WithTransient != 0, r.Options.Waveforms, r.Options.Trace)
 	}
 	if parts&WithSizing != 0 && ctx.Err() == nil {
 		out.Sizing = result.Sizing(bench, trial, &policy)

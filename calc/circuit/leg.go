@@ -49,7 +49,12 @@ type Cycle struct {
 }
 
 // perPeriod is a sum over all periods as the mean of one of the carrier.
-func (y *Cycle) perPeriod(sum float64) float64 { return sum * y.Plan.Carrier() / y.Plan.Time() }
+func (y *Cycle) perPeriod(sum float64) float64 {
+	if y.Plan == nil {
+		return nan
+	}
+	return sum * y.Plan.Carrier() / y.Plan.Time()
+}
 
 // modulated tells whether the carrier periods of an operating point differ from one another.
 func (c *Circuit) modulated() bool {

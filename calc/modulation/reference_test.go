@@ -4,7 +4,6 @@ import (
 	"encoding/json"
 	"math"
 	"os"
-	"strings"
 	"testing"
 
 	"floatrail/calc/recharge"
@@ -119,68 +118,92 @@ func (c *referenceCase) plan() *Plan {
 	return nil
 }
 
-func TestReferenceExplore(t *testing.T) {
-	total := map[bool]int{}
-	worst := 0.0
+// TestReference holds every modulated case of testdata/reference/modulation.json, which integrates each period of the periodic solution by an explicit
+// Runge-Kutta method of order 8 (SciPy, see the script), against the collocation over many periods and against the law of every period.
+func TestReference(t *testing.T) {
+	const volts, share = 0.3e-3, 1e-3 // [V], relative
+	kinds := map[string]int{}
 	for _, c := range references(t) {
 		p := c.plan()
-		if p == nil || strings.Contains(c.Name, "zzz") {
+		if p == nil {
 			continue
 		}
+		kinds[c.Kind]++
+		e := &c.Expected
 		for _, exact := range []bool{true, false} {
 			s := p.steady(math.NaN(), defaultTolerance, exact)
-			e := &c.Expected
-			on := math.NaN()
-			if e.LowSourcing != nil {
-				on = s.OnLow.Value - *e.LowSourcing
+			bad := func(what string, got, want, tolerance float64) {
+				if !(math.Abs(got-want) <= tolerance) {
+					t.Errorf("%s, exact %v: %s %.9g, want %.9g ± %.1g", c.Name, exact, what, got, want, tolerance)
+				}
 			}
-			total[exact] += s.Passes
-			if !exact {
-				worst = max(worst, math.Abs(s.Low.Value-e.Low), math.Abs(s.High.Value-e.High))
+			if !s.Converged || s.Collapses != e.Collapses {
+				t.Errorf("%s: converged %v, collapses %v, want %v", c.Name, s.Converged, s.Collapses, e.Collapses)
 			}
-			angle := p.Angle(s.Low.Period) * 180 / math.Pi
+			bad("lowest V_BS", s.Low.Value, e.Low, volts)
+			bad("highest V_BS", s.High.Value, e.High, volts)
+			if e.LowSourcing == nil {
+				if s.OnLow.Period >= 0 {
+					t.Errorf("%s: forward current at %v", c.Name, s.OnLow)
+				}
+			} else {
+				bad("lowest V_BS with forward current", s.OnLow.Value, *e.LowSourcing, volts)
+			}
+			bad("recharge current", s.Charge/p.Time(), e.RechargeCurrent, share*e.RechargeCurrent)
+			if e.RivalDifference > 2*volts { // otherwise another period is as low
+				at, want := s.Low.Period, e.LowAngle
+				if c.Kind != "burst" {
+					want *= float64(p.periods) / 360
+				}
+				bad("period of the lowest V_BS", at, want, 1+1e-6)
+			}
+			for i, k := range e.AtPeriod {
+				bad("V_BS before an edge", s.before(k), e.Before[i], volts)
+			}
 			if c.Kind == "burst" {
-				angle = s.Low.Period
+				bad("V_BS after the pause", s.Start, e.IdleEnd, volts)
+				if (s.Start > c.UVLORising) != e.Restarts {
+					t.Errorf("%s: restarts at %g", c.Name, s.Start)
+				}
 			}
-			tm := p.Timing()
-			wr := -1.0
-			if e.WithoutRefresh != nil {
-				wr = *e.WithoutRefresh
-			}
-			if exact && (math.Abs(tm.LongestOn/e.LongestOn-1) > 1e-6 || math.Abs(tm.WithoutRefresh/wr-1) > 1e-6) {
-				t.Log(c.Name, "TIMING", tm.LongestOn, e.LongestOn, tm.WithoutRefresh, wr)
-			}
-			t.Logf("%-45.45s n %5d runs %2d passes %6d steps %5d low %+.1e high %+.1e on %+.1e angle %+.3f per, i %+.1e collapse %v/%v rival %.1e",
-				c.Name, p.periods, len(p.runs), s.Passes, len(s.steps), s.Low.Value-e.Low, s.High.Value-e.High, on,
-				(angle-e.LowAngle)/360*float64(p.periods), s.Charge/p.time/e.RechargeCurrent-1, s.Collapses, e.Collapses, e.RivalDifference)
+		}
+		timing := p.Timing()
+		if math.Abs(timing.LongestOn-e.LongestOn) > 1e-9*e.LongestOn {
+			t.Errorf("%s: longest on-time %.12g, want %.12g", c.Name, timing.LongestOn, e.LongestOn)
+		}
+		if want := e.WithoutRefresh; want == nil && !math.IsInf(timing.WithoutRefresh, 1) || want != nil && math.Abs(timing.WithoutRefresh-*want) > 1e-9**want {
+			t.Errorf("%s: %.12g without recharge, want %v", c.Name, timing.WithoutRefresh, want)
 		}
 	}
-	t.Log(total, worst)
+	if kinds["sinusoidal"] < 40 || kinds["sixStep"] < 8 || kinds["burst"] < 6 {
+		t.Errorf("cases: %v", kinds)
+	}
 }
 
-func BenchmarkFundamental(b *testing.B) {
-	for _, c := range references(b) {
-		if c.Name != "motoring" && c.Name != "min-max" && c.Name != "clamp 60" && c.Name != "peak detector" && c.Name != "recovery, motoring" && c.Name != "larger resistor" {
+// before is V_BS before the edge of a period [V].
+func (s *Steady) before(k int) float64 {
+	for i := range s.steps {
+		q := &s.steps[i]
+		if k < q.from || k >= q.to {
 			continue
 		}
-		c.Periods = 16000
-		p := c.plan()
-		ref := p.steady(math.NaN(), defaultTolerance, true)
-		b.Run(c.Name, func(b *testing.B) {
-			var s Steady
-			for b.Loop() {
-				s = c.plan().Steady(13)
-			}
-			b.ReportMetric(float64(s.Passes), "passes")
-			b.ReportMetric(float64(len(s.steps)), "steps")
-			b.ReportMetric(s.Low.Value-ref.Low.Value, "dlow")
-			b.ReportMetric(s.High.Value-ref.High.Value, "dhigh")
-			b.ReportMetric(s.Low.Period-ref.Low.Period, "dperiod")
-		})
-		b.Run(c.Name+"/exact", func(b *testing.B) {
-			for b.Loop() {
-				p.steady(13, defaultTolerance, true)
-			}
-		})
+		if !q.merged {
+			return q.before(float64(k))
+		}
+		y, before := new(layout), new(layout) // some periods of those that come as one
+		r := &s.plan.runs[q.run]
+		if k == q.from {
+			return q.v[0]
+		}
+		r.at(float64(q.from), y)
+		y.time, y.on = y.time*float64(k-q.from), y.on*float64(k-q.from)
+		for j := range y.n {
+			y.off[j].Duration *= float64(k - q.from)
+		}
+		(&walker{plan: s.plan}).previous(q.run, before)
+		p := s.plan.leg.period(before, y)
+		v, _ := p.Map(q.v[0])
+		return v
 	}
+	return math.NaN()
 }

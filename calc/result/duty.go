@@ -18,7 +18,7 @@ import (
 
 // OfPoints gives what is known of each operating point: the floating voltages with their derived limits, and the switching events, with their waveforms
 // where they are simulated, as asked for.
-func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.DutyLimits, *finding.TransientStress) {
+func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms, trace bool) (*finding.DutyLimits, *finding.TransientStress) {
 	duty, stress := &finding.DutyLimits{}, &finding.TransientStress{}
 	if n := len(b.Points); b.Points[0].Operating != nil {
 		kinds := [][]circuit.Event{circuit.Events()} // of work on the events of one point, each simulated one by itself
@@ -31,6 +31,7 @@ func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.Du
 		first := make([]finding.Precharge, n)
 		events := make([]finding.TransientStress, n*len(kinds))
 		duty.Points = make([]finding.DutyPoint, n)
+		traces := make([][]finding.TracePoint, n)
 		rule.SideBySide(n*(len(kinds)+1), func(i int) { // the events first: they take most
 			k := i % n
 			switch p, kind := &b.Points[k], i/n; {
@@ -41,10 +42,18 @@ func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.Du
 				}
 				events[k*len(kinds)+kind] = eventsOf(b, at, kinds[kind], waveforms)
 			case kind == len(kinds) && dutyLimits:
-				duty.Points[k], first[k] = dutyPoint(b, p), precharge(b, p)
+				var worst corner.Worst
+				duty.Points[k], worst = dutyPoint(b, p)
+				first[k] = precharge(b, p)
+				if trace && !b.Stopped() {
+					traces[k] = traceOf(p, &worst)
+				}
 			}
 		})
 		duty.Precharge, duty.Limits = overPoints(first), tightest(duty.Points)
+		if trace && dutyLimits {
+			duty.Trace = append(slices.Concat(traces...), tracePrecharge(b)...)
+		}
 		for _, e := range events {
 			stress.Events, stress.Waveforms = append(stress.Events, e.Events...), append(stress.Waveforms, e.Waveforms...)
 		}
@@ -58,7 +67,8 @@ func OfPoints(b *rule.Bench, dutyLimits, transient, waveforms bool) (*finding.Du
 	return duty, stress
 }
 
-func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
+// dutyPoint is what is known of an operating point, and the draw at which its V_BS is lowest.
+func dutyPoint(b *rule.Bench, p *rule.Point) (finding.DutyPoint, corner.Worst) {
 	out := finding.DutyPoint{OperatingPoint: p.Name()}
 	fail := func(r *rule.Range) {
 		for _, m := range r.Missing {
@@ -98,10 +108,10 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 			h, _ := c.Hold()
 			return h.Time(c.Required())
 		})}
-		return out
+		return out, low.Low
 	}
 	if low.Low.Space == nil {
-		return out
+		return out, low.Low
 	}
 	out.RechargeWindow, _ = span(b.Range(p, func(c *circuit.Circuit) float64 { return c.Period().Window }, quantity.Time))
 	out.RechargeRatio, _ = span(b.Range(p, func(c *circuit.Circuit) float64 {
@@ -139,7 +149,7 @@ func dutyPoint(b *rule.Bench, p *rule.Point) finding.DutyPoint {
 	if !b.Stopped() {
 		out.Limits = limits(b, p)
 	}
-	return out
+	return out, low.Low
 }
 
 func firstKnown(v float64) float64 {

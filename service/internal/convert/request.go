@@ -162,7 +162,7 @@ func (w *walk) optionsAt(in *pb.Options, path string) calc.Options {
 	}
 	m := in.ProtoReflect()
 	w.unknown(m, path)
-	out := calc.Options{PerPoint: in.GetPerPoint(), Simulate: in.GetSimulate(), Waveforms: in.GetWaveforms()}
+	out := calc.Options{PerPoint: in.GetPerPoint(), Simulate: in.GetSimulate(), Waveforms: in.GetWaveforms(), Trace: in.GetTrace()}
 	if out.Waveforms && !out.Simulate {
 		w.fault(path+".waveforms", refusal("true without simulate", "waveforms of simulated events alone: true in "+path+".simulate, or false or absent here", ""))
 	}

@@ -79,15 +79,16 @@ func summary(faults []convert.Fault) string {
 	return b.String()
 }
 
-// Why a method takes no options about simulated switching events.
+// Why a method takes no options about simulated switching events, or no traces.
 const (
 	noEvents   = "this method judges no switching events, ReviewStage and CheckTransientStress do"
 	closedForm = "a study draws closed forms alone, ReviewStage and CheckTransientStress simulate"
+	noFloating = "this method answers no floating voltages, ReviewStage and CheckDutyLimits do"
 )
 
-// notOffered refuses options that this build does not carry out, and with a reason also those about simulated events: an option that is silently
-// ignored looks like one that found nothing.
-func notOffered(o *pb.Options, unsimulated string) []convert.Fault {
+// notOffered refuses options that this build does not carry out, and with a reason also those about simulated events, and traces of V_BS: an option
+// that is silently ignored looks like one that found nothing.
+func notOffered(o *pb.Options, unsimulated, untraced string) []convert.Fault {
 	var faults []convert.Fault
 	for _, option := range []struct {
 		name, why string
@@ -96,7 +97,7 @@ func notOffered(o *pb.Options, unsimulated string) []convert.Fault {
 		{"fixes", "this build offers no search for fixes", o.GetFixes()},
 		{"simulate", unsimulated, unsimulated != "" && o.GetSimulate()},
 		{"waveforms", unsimulated, unsimulated != "" && o.GetWaveforms()},
-		{"trace", "this build offers no traces of V_BS", o.GetTrace()},
+		{"trace", untraced, untraced != "" && o.GetTrace()},
 	} {
 		if option.read {
 			faults = append(faults, convert.Fault{Field: "options." + option.name, Description: "read true; " + option.why + ", expected false or absent"})

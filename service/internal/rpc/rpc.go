@@ -71,7 +71,7 @@ func New(o Options) *Handlers {
 func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb.SizeSupplyResponse, error) {
 	request, readings, faults := h.binder.SizeSupply(r)
 	own(&request, "charge", "capacitor", "diode", "resistor")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), noEvents)...), calc.WithSizing)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), noEvents, noFloating)...), calc.WithSizing)
 	if err != nil {
 		return nil, err
 	}
@@ -82,7 +82,7 @@ func (h *Handlers) SizeSupply(ctx context.Context, r *pb.SizeSupplyRequest) (*pb
 func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsRequest) (*pb.CheckDutyLimitsResponse, error) {
 	request, readings, faults := h.binder.CheckDutyLimits(r)
 	own(&request, "charge", "supply", "duty")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), noEvents)...), calc.WithDutyLimits)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), noEvents, "")...), calc.WithDutyLimits)
 	if err != nil {
 		return nil, err
 	}
@@ -93,7 +93,7 @@ func (h *Handlers) CheckDutyLimits(ctx context.Context, r *pb.CheckDutyLimitsReq
 func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransientStressRequest) (*pb.CheckTransientStressResponse, error) {
 	request, readings, faults := h.binder.CheckTransientStress(r)
 	own(&request, "gate", "node")
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), "")...), calc.WithTransient)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), "", noFloating)...), calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}
@@ -103,7 +103,7 @@ func (h *Handlers) CheckTransientStress(ctx context.Context, r *pb.CheckTransien
 // ReviewStage answers with every rule on one stage.
 func (h *Handlers) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*pb.ReviewStageResponse, error) {
 	request, readings, faults := h.binder.ReviewStage(r)
-	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), "")...), calc.WithDutyLimits|calc.WithTransient)
+	report, err := h.review(ctx, request, append(faults, notOffered(r.GetOptions(), "", "")...), calc.WithDutyLimits|calc.WithTransient)
 	if err != nil {
 		return nil, err
 	}
@@ -114,7 +114,7 @@ func (h *Handlers) ReviewStage(ctx context.Context, r *pb.ReviewStageRequest) (*
 func (h *Handlers) StudyTolerances(r *pb.StudyTolerancesRequest, stream grpc.ServerStreamingServer[pb.StudyTolerancesResponse]) error {
 	ctx := stream.Context()
 	request, readings, faults := h.binder.StudyTolerances(r)
-	if err := refusal(h.carried(ctx), append(faults, notOffered(r.GetOptions(), closedForm)...)); err != nil {
+	if err := refusal(h.carried(ctx), append(faults, notOffered(r.GetOptions(), closedForm, noFloating)...)); err != nil {
 		return err
 	}
 	report, err := study.Run(ctx, request, func(p study.Progress) error {
