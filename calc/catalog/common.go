@@ -271,15 +271,11 @@ func vanishNotes(c *circuit.Circuit) []string {
 
 // vanishOverAngles is vanishNotes of a sinusoidal modulation.
 func vanishOverAngles(c *circuit.Circuit) (out []string) {
-	y := c.Cycle()
-	if y.Plan == nil {
-		return nil
-	}
-	t := y.Plan.Timing()
-	if t.LowVanishes {
+	low, high := c.Vanishing()
+	if low {
 		out = append(out, "at some angles the low-side pulse is shorter than the driver passes and vanishes")
 	}
-	if t.HighVanishes {
+	if high {
 		out = append(out, "at some angles the high-side pulse is shorter than the driver passes and vanishes; the low side stays on")
 	}
 	return out

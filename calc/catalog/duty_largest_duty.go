@@ -33,7 +33,7 @@ var dutyLargestDuty = &rule.Rule{
 			return rule.Check{Value: low}
 		}
 		d := c.Need(derive.DutyOf(c.Point))
-		l := derive.Limit(c, derive.Duty(c.Point))
+		l := derive.LargestDuty(c)
 		limit := l.Value
 		if !l.Found && !l.Whole {
 			limit = 0

@@ -10,6 +10,7 @@ import (
 	"floatrail/calc/capacitor"
 	"floatrail/calc/charge"
 	"floatrail/calc/corner"
+	"floatrail/calc/modulation"
 	"floatrail/calc/recharge"
 	"floatrail/calc/stage"
 	"floatrail/calc/transient"
@@ -32,12 +33,15 @@ type Circuit struct {
 	edgeAt        edge
 	budgetAt      []charge.Item
 	cycleAt       Cycle
-	namesAt       [8]string
-	curveAt       [curves][]transient.CurvePoint
-	ordersAt      [2]charged
-	events        *events // nil: none asked for yet
-	estimating    bool    // events by closed forms, whatever the space says
-	focus         *Event  // the event that alone counts as occurring; nil: all that can
+	planAt        *modulation.Plan
+
+	DutyAt     any // the largest duty, kept for the package that derives it
+	namesAt    [8]string
+	curveAt    [curves][]transient.CurvePoint
+	ordersAt   [2]charged
+	events     *events // nil: none asked for yet
+	estimating bool    // events by closed forms, whatever the space says
+	focus      *Event  // the event that alone counts as occurring; nil: all that can
 }
 
 // events are the results about switching events.
@@ -88,6 +92,8 @@ const (
 	slotCourse   = slotRecovery + 2                          // one for each event and state of charge
 	slotOrders   = slotCourse + int(charges)*int(eventCount) // of the first charge: as requested, the other one
 	slotCycle    = slotOrders + 2
+	slotPlan     = slotCycle + 1
+	SlotDuty     = slotPlan + 1 // of the largest duty, which is derived
 )
 
 var nan = math.NaN()

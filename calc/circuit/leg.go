@@ -32,6 +32,67 @@ func (c *Circuit) leg() *modulation.Leg {
 	return l
 }
 
+// curve is a drop over the current of a position: points, level below the first, and on the last slope beyond the last.
+type curve struct{ x, y []float64 }
+
+func (d *curve) at(i float64) float64 {
+	n := len(d.x)
+	if n == 0 {
+		return nan
+	}
+	if i <= d.x[0] || n == 1 {
+		return d.y[0]
+	}
+	k := 1
+	for k+1 < n && i > d.x[k] {
+		k++
+	}
+	return d.y[k-1] + (d.y[k]-d.y[k-1])*(i-d.x[k-1])/(d.x[k]-d.x[k-1])
+}
+
+// nodes are freewheelNode and LowSideNode, read once for the thousands of periods of a modulated operating point at currents up to one [A].
+func (c *Circuit) nodes(most float64) (freewheeling, lowOn func(float64) float64) {
+	s := &c.Stage.LowSide
+	c.freewheelNode(most) // notes what is missing or assumed
+	c.LowSideNode(most)
+	c.LowSideNode(-most)
+	var reverse, channel curve
+	for i := range s.Reverse.ForwardPoints.Items {
+		x := c.Need(&s.Reverse.ForwardPoints.Items[i].Current) * s.Count()
+		reverse.x, reverse.y = append(reverse.x, x), append(reverse.y, c.ReverseDrop(s, x))
+	}
+	for i := range s.ChannelPoints.Items {
+		x := c.Need(&s.ChannelPoints.Items[i].Current) * s.Count()
+		channel.x, channel.y = append(channel.x, x), append(channel.y, c.channelDrop(s, x))
+	}
+	shunt := c.shunt()
+	freewheeling = func(i float64) float64 {
+		if i > 0 {
+			return -reverse.at(i) - i*shunt
+		}
+		return 0
+	}
+	if s.Kind == stage.IGBT || s.Kind == stage.DiodeOnly {
+		return freewheeling, func(i float64) float64 {
+			switch {
+			case i > 0:
+				return -reverse.at(i) - i*shunt
+			case i == 0:
+				return 0
+			}
+			return channel.at(-i) - i*shunt
+		}
+	}
+	resistance := c.Need(&s.OnResistance) / s.Count()
+	return freewheeling, func(i float64) float64 {
+		drop := i * resistance
+		if i > 0 && len(reverse.x) > 0 && drop > 0.3 {
+			drop = math.Min(drop, reverse.at(i))
+		}
+		return -drop - i*shunt
+	}
+}
+
 // complete tells whether a leg has all its numbers for currents up to one out of the node [A].
 func complete(l *modulation.Leg, current float64) bool {
 	sum := l.Element.Resistance + l.Element.Slope + l.Element.LogSaturation + l.Capacitance + l.Supply + l.Bus + l.Period + l.DeadTime + l.Shortest +
@@ -80,8 +141,13 @@ var zeroSequences = map[string]modulation.ZeroSequence{"NONE": modulation.None, 
 
 // plan is the periods of a modulated operating point; nil where an input is missing.
 func (c *Circuit) plan() *modulation.Plan {
+	return *corner.Memo(c.Draw, slotPlan, false, &c.planAt, c.makePlan)
+}
+
+func (c *Circuit) makePlan() *modulation.Plan {
 	op := c.Point
 	l, current := c.leg(), c.Need(&op.LoadCurrent)
+	l.Freewheeling, l.LowOn = c.nodes(math.Abs(current))
 	usable := complete(l, current)
 	fundamental := func(f float64) {
 		if f*l.Period*fewestPeriods > 1 {

@@ -312,8 +312,7 @@ func (c *Circuit) Hold() (h charge.Hold, duration float64) {
 func (c *Circuit) lowVanishes() bool {
 	op := c.Point
 	if c.modulated() {
-		y := c.Cycle()
-		return y.Plan != nil && y.Plan.Timing().LowVanishes
+		return c.timing().LowVanishes
 	}
 	if op.FixedDuty == nil {
 		return false
@@ -348,10 +347,7 @@ func (c *Circuit) HighPulse() float64 {
 	case c.Stage.LowSide.Kind == "":
 		return c.Want(c.Stage.LowSide.Field + ".kind")
 	case c.modulated():
-		if y := c.Cycle(); y.Plan != nil {
-			return y.Plan.Timing().ShortestHigh
-		}
-		return nan
+		return c.timing().ShortestHigh
 	}
 	pulse := c.Need(&c.Point.FixedDuty.Duty) / c.Need(&c.Point.SwitchingFrequency)
 	if c.Stage.LowSide.Kind != stage.DiodeOnly {

@@ -152,29 +152,28 @@ func (c *Circuit) Restart() float64 {
 	return y.Start
 }
 
-// Unrefreshed is the longest time from the end of a recharge to the end of an on-time before the next one [s]; +Inf where nothing recharges C_B.
-func (c *Circuit) Unrefreshed() float64 {
-	if y := c.Cycle(); y.Plan != nil {
-		return y.Plan.Timing().WithoutRefresh
+// timing is what the periods of a modulated operating point say without any voltage.
+func (c *Circuit) timing() modulation.Timing {
+	if p := c.plan(); p != nil {
+		return p.Timing()
 	}
-	return nan
+	return modulation.Timing{LongestOn: nan, WithoutRefresh: nan, ShortestHigh: nan, ShortestLow: nan}
 }
+
+// Vanishing tells which pulses of a modulated operating point the driver does not pass at some angles.
+func (c *Circuit) Vanishing() (low, high bool) {
+	t := c.timing()
+	return t.LowVanishes, t.HighVanishes
+}
+
+// Unrefreshed is the longest time from the end of a recharge to the end of an on-time before the next one [s]; +Inf where nothing recharges C_B.
+func (c *Circuit) Unrefreshed() float64 { return c.timing().WithoutRefresh }
 
 // LongestOn is the longest uninterrupted on-time of the high side at a modulated operating point [s].
-func (c *Circuit) LongestOn() float64 {
-	if y := c.Cycle(); y.Plan != nil {
-		return y.Plan.Timing().LongestOn
-	}
-	return nan
-}
+func (c *Circuit) LongestOn() float64 { return c.timing().LongestOn }
 
 // ShortestLow is the shortest pulse of the low side at a modulated operating point [s]; +Inf without any.
-func (c *Circuit) ShortestLow() float64 {
-	if y := c.Cycle(); y.Plan != nil {
-		return y.Plan.Timing().ShortestLow
-	}
-	return nan
-}
+func (c *Circuit) ShortestLow() float64 { return c.timing().ShortestLow }
 
 // Endures is how long a modulated operating point's longest time without recharge could last until V_BS falls to what it must keep [s].
 func (c *Circuit) Endures() float64 {
@@ -470,9 +469,11 @@ func (c *Circuit) RepetitivePeak() float64 {
 	case y.Collapses:
 		return peakFrom(&c.base().Period, 0)
 	}
+	// The current is largest where most drives it at the end of the on-time.
 	peak := 0.0
-	y.eachPass(func(at modulation.Layout, p recharge.Passage, _ float64) {
-		peak = math.Max(peak, peakFrom(&at.Period, p.OnEnd+at.Return/at.Capacitance))
+	y.Strongest(func(at modulation.Layout, onEnd, across float64) (more bool) {
+		peak = math.Max(peak, peakFrom(&at.Period, onEnd+at.Return/at.Capacitance))
+		return at.Element.Current(across) > peak
 	})
 	return peak
 }

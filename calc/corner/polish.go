@@ -53,7 +53,7 @@ const frugalMoves = 4
 
 const (
 	dearPasses = 2
-	minorShare = 0.02 // of all effects together that those of minor inputs make [1]
+	minorShare = 0.05 // of all effects together that those of minor inputs make [1]
 )
 
 // minor are the inputs whose effects together are a small share of all.

@@ -254,15 +254,20 @@ func (w Worst) On(twin *Space) Worst {
 	return w
 }
 
-// Survey evaluates a function where a frugal search will: at the typical draw, and one of several parts of the draws with one input at an end.
+// Survey evaluates a function where a search will: at the typical draw, and one of several parts of the draws with one input at an end; at both ends
+// unless the space is frugal.
 func (s *Space) Survey(f Function, part, parts int) {
 	_, t := Evaluate(s.Typical(), f)
 	k := 0
 	t.clone().used.each(func(id int) {
 		if s.low[id] < s.high[id] {
-			if k++; k%parts == part {
-				far := s.farEnd(id)
-				Evaluate(s.probe(id, far, s.sample(id, far)), f)
+			if k++; k%parts != part {
+				return
+			}
+			far := s.farEnd(id)
+			Evaluate(s.probe(id, far, s.sample(id, far)), f)
+			if !s.Frugal {
+				Evaluate(s.probe(id, 3-far, s.sample(id, 3-far)), f)
 			}
 		}
 	})

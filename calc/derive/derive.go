@@ -210,8 +210,17 @@ func Limit(c *circuit.Circuit, name string) Result {
 	} else if !(at(bad) < 0) {
 		return Result{Value: s.limit(c, bad), Input: bad, Whole: true}
 	}
-	v := turn(at, good, bad)
+	digits := float64(turnDigits)
+	if c.Space.Dear {
+		digits = dearDigits
+	}
+	v := turn(at, good, bad, digits)
 	return Result{Value: s.limit(c, v), Input: v, Found: v == v}
+}
+
+// LargestDuty is the limit on the duty, or on what stands for it, at the draw of a circuit, found once.
+func LargestDuty(c *circuit.Circuit) Result {
+	return (*corner.Memo(c.Draw, circuit.SlotDuty, false, &c.DutyAt, func() any { return Limit(c, Duty(c.Point)) })).(Result)
 }
 
 // OfDuty tells whether a limit follows from the largest duty; From then spares solving again.
@@ -267,9 +276,15 @@ func Holds(c *circuit.Circuit, name string, input float64) bool {
 	return s.at(c, input) >= 0
 }
 
-// turn finds where a function that is not negative at good becomes negative toward bad, to 1e-7 of the value, on the good side. The search
+// How exactly a limit is found, relative; dearDigits where evaluations take some time.
+const (
+	turnDigits = 1e-7
+	dearDigits = 1e-5
+)
+
+// turn finds where a function that is not negative at good becomes negative toward bad, to some digits of the value, on the good side. The search
 // runs over the logarithm where both ends are positive and far apart.
-func turn(f func(float64) float64, good, bad float64) float64 {
+func turn(f func(float64) float64, good, bad, digits float64) float64 {
 	to := func(u float64) float64 { return u }
 	from := to
 	if good > 0 && bad > 0 && (bad > 4*good || good > 4*bad) {
@@ -289,7 +304,7 @@ func turn(f func(float64) float64, good, bad float64) float64 {
 	if to(2) != 2 {
 		scale = 1
 	}
-	if _, ok := numeric.Root(g, a, b, 1e-7*scale); !ok {
+	if _, ok := numeric.Root(g, a, b, digits*scale); !ok {
 		return math.NaN()
 	}
 	return best

@@ -1,7 +1,9 @@
 package modulation
 
 import (
+	"cmp"
 	"math"
+	"slices"
 
 	"floatrail/calc/recharge"
 )
@@ -355,6 +357,28 @@ func (s *Steady) Each(f func(at Layout, before, weight float64)) {
 			if w != 0 {
 				f(s.plan.At(step.position(k)), step.v[k], w)
 			}
+		}
+	}
+}
+
+// Strongest calls f with the sampled periods in the order of what drives the element at the end of the on-time [V], strongest first, each with V_BS
+// there [V], until f wants no more.
+func (s *Steady) Strongest(f func(at Layout, onEnd, across float64) (more bool)) {
+	type sample struct{ step, k int }
+	var all []sample
+	for i := range s.steps {
+		for _, k := range s.steps[i].order() {
+			all = append(all, sample{i, k})
+		}
+	}
+	of := func(a sample) *seen { return &s.steps[a.step].seen[a.k] }
+	slices.SortStableFunc(all, func(a, b sample) int { return cmp.Compare(of(b).across, of(a).across) })
+	for _, a := range all {
+		if math.IsInf(of(a).across, -1) {
+			return
+		}
+		if !f(s.plan.At(s.steps[a.step].position(a.k)), of(a).onEnd, of(a).across) {
+			return
 		}
 	}
 }

@@ -54,6 +54,7 @@ type seen struct {
 	recovery         float64 // [C]
 	window, on       float64 // in which the element can conduct, of the high side [s]
 	gates            float64 // turn-ons of the high side [1]
+	onEnd, across    float64 // V_BS at the end of the on-time, and the most that drives the element then [V]
 }
 
 // several tells whether the step is one of several periods.

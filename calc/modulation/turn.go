@@ -9,6 +9,7 @@ import (
 const (
 	defaultTolerance = 3e-4 // of a step's polynomial [V]
 	mostNewton       = 12
+	alike            = 2000 // periods of a fundamental from which on the intervals before an edge are taken to be those of its own period
 	fewest           = 10   // periods of a step that is worth a polynomial
 	closeEnough      = 1e-6 // V_BS at which a turn has met the one before [V]
 )
@@ -28,7 +29,7 @@ type walker struct {
 // pass carries V_BS through the period at x of a run, the one before it being of the same run.
 func (w *walker) pass(r *run, x, v float64) (p recharge.Passage, out seen) {
 	r.at(x, &w.now)
-	if w.plan.leg.RecoverySpec > 0 && !r.constant {
+	if w.plan.leg.RecoverySpec > 0 && !r.constant && w.plan.periods < alike {
 		r.at(x-1, &w.before)
 		return w.through(&w.before, v)
 	}
@@ -39,10 +40,11 @@ func (w *walker) through(before *layout, v float64) (p recharge.Passage, out see
 	w.passes++
 	period := w.plan.leg.period(before, &w.now)
 	p = w.flow.Pass(&period, v)
-	out = seen{low: p.Low, high: p.High, onLow: math.Inf(1), recharged: p.Recharged, recovery: p.Recovery, on: w.now.on}
+	out = seen{low: p.Low, high: p.High, onLow: math.Inf(1), recharged: p.Recharged, recovery: p.Recovery, on: w.now.on, onEnd: p.OnEnd, across: math.Inf(-1)}
 	for k := range w.now.n {
 		if w.now.off[k].Conducts {
 			out.window += w.now.off[k].Duration
+			out.across = math.Max(out.across, w.now.off[k].Drive-p.OnEnd)
 		}
 	}
 	if w.now.on > 0 && !before.full() {

@@ -196,7 +196,7 @@ func (k duties) limit(c *circuit.Circuit, name string) derive.Result {
 	}
 	r, ok := k[c.Draw]
 	if !ok {
-		r = derive.Limit(c, derive.Duty(c.Point))
+		r = derive.LargestDuty(c)
 		k[c.Draw] = r
 	}
 	return derive.From(c, name, r)

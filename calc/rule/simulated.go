@@ -72,29 +72,35 @@ func (b *Bench) adopt(jobs []*job) {
 	}
 }
 
-// surveyParts is the number of parts in which the draws of one event are surveyed.
+// surveyParts is the number of parts in which the draws of one event, or of one modulated operating point, are surveyed.
 const surveyParts = 3
 
-// survey simulates the events of all operating points where their searches will look first. As any of these draws may be taken by any processor, none
-// of them waits for a point that takes long.
+// survey evaluates what is dear where the searches will look first: the events of all operating points where they are simulated, and the periodic solutions
+// of modulated points. As any of these draws may be taken by any processor, none of them waits for a point that takes long.
 func (b *Bench) survey() {
-	if !b.simulated {
-		return
-	}
 	type task struct {
-		home, twin *corner.Space
-		event      circuit.Event
-		part       int
+		homes []*corner.Space // which come to know what the twin does
+		twin  *corner.Space
+		what  corner.Function
+		part  int
 	}
 	var tasks []task
+	add := func(what corner.Function, model func() any, homes ...*corner.Space) {
+		for part := range surveyParts {
+			tasks = append(tasks, task{homes, homes[0].Twin(model()), what, part})
+		}
+	}
 	for i := range b.Points {
-		home := corner.Home(b.Points[i].Simulated)
+		p := &b.Points[i]
+		if home := corner.Home(p.Spaces); home.Dear {
+			add(func(d *corner.Draw) float64 { return circuit.Of(d).Cycle().Low.Value }, func() any { return nil }, home, corner.Home(p.Events))
+		}
+		if !b.simulated {
+			continue
+		}
 		for _, e := range circuit.Events() {
-			if !circuit.Occurs(b.Stage, b.Points[i].Operating, e) {
-				continue
-			}
-			for part := range surveyParts {
-				tasks = append(tasks, task{home, home.Twin(b.simulation()), e, part})
+			if circuit.Occurs(b.Stage, p.Operating, e) {
+				add(func(d *corner.Draw) float64 { return circuit.Of(d).Survey(e) }, func() any { return b.simulation() }, corner.Home(p.Simulated))
 			}
 		}
 	}
@@ -103,11 +109,11 @@ func (b *Bench) survey() {
 		if b.Stopped() {
 			return
 		}
-		b.guarded(&job{}, func() {
-			t.twin.Survey(func(d *corner.Draw) float64 { return circuit.Of(d).Survey(t.event) }, t.part, surveyParts)
-		})
+		b.guarded(&job{}, func() { t.twin.Survey(t.what, t.part, surveyParts) })
 	})
 	for i := range tasks {
-		tasks[i].home.Adopt(tasks[i].twin)
+		for _, home := range tasks[i].homes {
+			home.Adopt(tasks[i].twin)
+		}
 	}
 }
