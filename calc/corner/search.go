@@ -52,7 +52,7 @@ func Evaluate(d *Draw, f Function) (float64, *Trace) {
 // usable tells whether a value counts: not NaN, and nothing was missing.
 func usable(v float64, t *Trace) bool { return v == v && t.Complete() }
 
-// Effects are, of a frugal search, how far each input moves the function from its typical draw to one end, largest first.
+// Effects are, where evaluations are dear, how far each input moves the function from its typical draw to its ends, largest first.
 func (w *Worst) Effects() []Swing { return w.effects }
 
 // tolerance below which two values count as equal, relative.

@@ -25,8 +25,11 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 		return u
 	}
 	digits := float64(breakEvenDigits)
-	if s.Frugal {
+	switch {
+	case s.Frugal:
 		digits = frugalDigits
+	case s.Dear:
+		digits = dearDigits
 	}
 	best, found := math.NaN(), false
 	for _, end := range []float64{low, high} {
@@ -51,6 +54,7 @@ func (s *Space) BreakEven(d *Draw, q *stage.Quantity, f Function, low, high floa
 // How exactly a break-even value is found, relative; frugalDigits where evaluations are dear.
 const (
 	breakEvenDigits = 1e-4
+	dearDigits      = 1e-3
 	frugalDigits    = 1e-2
 )
 

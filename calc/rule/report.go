@@ -235,8 +235,8 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 			return
 		}
 	}
-	for _, s := range swings {
-		if len(f.BreakEven) == most || s.Range < leastSwing*swings[0].Range {
+	for i, s := range swings {
+		if len(f.BreakEven) == most || s.Range < leastSwing*swings[0].Range || w.Space.Dear && i == dearBreakEvens {
 			return
 		}
 		d := s.Input.Declare
@@ -261,6 +261,7 @@ func (b *Bench) breakEvens(r *Rule, role string, f *finding.Finding, w *corner.W
 // What is sought where every value tried is a simulation.
 const (
 	frugalBreakEvens = 3
+	dearBreakEvens   = 4   // inputs that are tried where evaluations take some time
 	frugalReach      = 8.0 // times the value at the worst draw, and as small
 )
 
