@@ -184,19 +184,34 @@ func (w *walker) extreme(steps []step, of func(*seen) float64, sign float64) (be
 			take(of(&s.seen[0]), float64(at), s.v[0])
 			continue
 		}
-		nearest, at := math.Inf(1), 0
-		for k := range s.seen {
-			if v := of(&s.seen[k]); v < nearest {
-				nearest, at = v, k
-			}
+		if nearest, at := s.lowest(of); nearest <= least+candidates {
+			w.within(s, at, of, take)
 		}
-		if !(nearest <= least+candidates) {
-			continue
-		}
-		w.within(s, s.position(at), of, take)
 	}
 	best.Value *= sign
 	return best, best.Period >= 0
+}
+
+// lowest is about where what of tells is smallest in a step of several periods, by the cubic through the positions.
+func (s *step) lowest(of func(*seen) float64) (v, at float64) {
+	const looks = 24
+	v = math.Inf(1)
+	var values [4]float64
+	for k := range values {
+		if values[k] = of(&s.seen[k]); values[k] < v {
+			v, at = values[k], s.position(k)
+		}
+	}
+	for k := range looks {
+		x, between := (float64(k)+0.5)/looks, 0.0
+		for j := range values {
+			between += values[j] * value(&cubic[j], x)
+		}
+		if between < v {
+			v, at = between, float64(s.from)+x*s.span()
+		}
+	}
+	return v, at
 }
 
 // within looks for the best whole period of a step, downhill from a position along ever shorter strides.
@@ -237,8 +252,8 @@ func (w *walker) held(out *Steady) {
 		w.plan.runs[s.run].at(float64(s.from), &y)
 		return y.conducts()
 	}
-	fall := func(from float64, s *step, k int) {
-		if d := from - s.seen[k].low; d > out.Droop || out.Droop != out.Droop {
+	fall := func(from, to float64) {
+		if d := from - to; d > out.Droop || out.Droop != out.Droop {
 			out.Droop = d
 		}
 	}
@@ -252,12 +267,14 @@ func (w *walker) held(out *Steady) {
 			from = began
 		}
 		if i >= n || again {
-			fall(from, s, 0)
-			for k := 1; k < len(s.seen) && s.several(); k++ {
-				if again {
-					fall(s.v[k], s, k)
-				} else {
-					fall(from, s, k)
+			fall(from, w.firstLow(s, again))
+			switch {
+			case !s.several():
+			case again:
+				out.Droop = math.Max(out.Droop, s.largestFall())
+			default:
+				for k := 1; k < len(s.seen); k++ {
+					fall(from, s.seen[k].low)
 				}
 			}
 		}
@@ -277,6 +294,28 @@ func (w *walker) held(out *Steady) {
 			began = from
 		}
 	}
+}
+
+// firstLow is the lowest V_BS in the first period of a step. Of a long time in which the element could conduct it is that of one carrier period: what
+// V_BS loses there while it stands above the drive is no fall without recharge, as it is none where every period stands by itself [V].
+func (w *walker) firstLow(s *step, refreshes bool) float64 {
+	if !s.merged || !refreshes || s.to-s.from == 1 {
+		return s.seen[0].low
+	}
+	w.previous(s.run, &w.before)
+	w.plan.runs[s.run].at(float64(s.from), &w.now)
+	_, saw := w.through(&w.before, s.v[0])
+	return saw.low
+}
+
+// largestFall is the largest fall within one period of a step of several, each of which recharges, by the cubic through the positions [V].
+func (s *step) largestFall() float64 {
+	falls := *s
+	for k := range falls.seen {
+		falls.seen[k].low -= s.v[k]
+	}
+	v, _ := falls.lowest(func(saw *seen) float64 { return saw.low })
+	return -v
 }
 
 // Layout describes one carrier period.
