@@ -49,7 +49,12 @@ type Cycle struct {
 }
 
 // perPeriod is a sum over all periods as the mean of one of the carrier.
-func (y *Cycle) perPeriod(sum float64) float64 { return sum * y.Plan.Carrier() / y.Plan.Time() }
+func (y *Cycle) perPeriod(sum float64) float64 {
+	if y.Plan == nil {
+		return nan
+	}
+	return sum * y.Plan.Carrier() / y.Plan.Time()
+}
 
 // modulated tells whether the carrier periods of an operating point differ from one another.
 func (c *Circuit) modulated() bool {
@@ -152,14 +157,11 @@ func (c *Circuit) described(y modulation.Layout, names []string) Period {
 func (c *Circuit) representative() Period {
 	y := c.Cycle()
 	if y.Plan == nil || !(y.Low.Period >= 0) {
-		if y.Plan != nil && y.Collapses { // whatever V_BS it is that nothing holds
-			p := c.described(y.Plan.At(0), nil)
-			p.Window = 0
-			return p
+		if y.Plan == nil || !y.Collapses {
+			return Period{}
 		}
-		return Period{}
 	}
-	p := c.described(y.Plan.At(y.Low.Period), nil)
+	p := c.described(y.Plan.At(math.Max(0, y.Low.Period)), nil) // the first, whatever V_BS it is that nothing holds
 	p.T, p.Window, p.OnTime = y.Plan.Carrier(), y.perPeriod(y.Window), y.perPeriod(y.OnTime)
 	return p
 }

@@ -22,7 +22,7 @@ type Steady struct {
 	Held     float64 // V_BS before the edge that begins the time without recharge in which V_BS is lowest [V]
 	OnHeld   float64 // the same for OnLow [V]
 	Charge   float64 // through the element in all periods [C]
-	Window   float64 // in which the element can conduct, of all periods [s]
+	Window   float64 // in which the element can conduct, of all periods, whether it collapses or not [s]
 	OnTime   float64 // of the high side in all periods [s]
 	Gates    float64 // turn-ons of the high side in all periods [1]
 	Recovery float64 // largest recovery charge of D_B at a rising edge [C]
@@ -79,7 +79,8 @@ func (p *Plan) steady(start, tolerance float64, exact bool) Steady {
 			high = v
 		}
 		if v == 0 && rise <= 0 {
-			out.Collapses, out.Converged, out.Passes = true, true, w.passes
+			out.Collapses, out.Converged, out.Passes, out.steps = true, true, w.passes, w.steps
+			out.times()
 			return out
 		}
 		step := rise / (1 - slope)
@@ -141,15 +142,27 @@ func (w *walker) describe(out *Steady) {
 		for k, weight := range s.weights() {
 			if weight != 0 {
 				out.Charge += weight * s.seen[k].recharged
-				out.Window += weight * s.seen[k].window
-				out.OnTime += weight * s.seen[k].on
-				out.Gates += weight * s.seen[k].gates
 				out.Recovery = math.Max(out.Recovery, s.seen[k].recovery)
 			}
 		}
 	}
 	out.Collapses = out.Low.Value <= 0
+	out.times()
 	w.held(out)
+}
+
+// times sums what does not depend on any voltage.
+func (s *Steady) times() {
+	for i := range s.steps {
+		step := &s.steps[i]
+		for k, weight := range step.weights() {
+			if weight != 0 {
+				s.Window += weight * step.seen[k].window
+				s.OnTime += weight * step.seen[k].on
+				s.Gates += weight * step.seen[k].gates
+			}
+		}
+	}
 }
 
 // candidates are so close to the best of the sampled periods that a period between them may be better [V].
