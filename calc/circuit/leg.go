@@ -23,6 +23,9 @@ func (c *Circuit) leg() *modulation.Leg {
 		Charge: e.gate + e.offBias + e.levelShift, ChargePerVolt: e.gatePerVolt, Least: e.offBias + e.levelShift, Junction: e.junction,
 		RecoverySpec: e.recovery, RecoveryTau: e.tau,
 	}
+	if l.DiodeLow { // which has no channel to ask for
+		l.LowOn = c.freewheelNode
+	}
 	if op.SixStep == nil {
 		l.DeadTime = c.Need(&op.DeadTime)
 	}
