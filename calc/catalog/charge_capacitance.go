@@ -48,7 +48,7 @@ var chargeCapacitance = &rule.Rule{
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
 		out := slices.Concat(collapseNote(c), cancelNote(c))
-		if drop := c.Drop(c.Required()); drop <= 0 {
+		if drop := c.Drop(c.Required()); drop <= 0 && !math.IsInf(drop, -1) {
 			out = append(out, "no capacitance suffices: recharge leaves nothing above the required voltage (budget "+
 				quantity.Format(drop, quantity.Voltage)+")")
 		}

@@ -25,7 +25,17 @@ var chargeGateSufficiency = &rule.Rule{
 	},
 	Quantity: "Lowest gate drive of the high side", Against: "drive at which the on-state is specified", Dimension: quantity.Voltage, Sense: rule.AtLeast,
 	Inapplicable: func(_ *stage.Stage, op *stage.OperatingPoint, _ string) string {
-		if op != nil && op.Sinusoidal == nil && op.LoadCurrent.Known() && op.RippleCurrent.Known() && op.LoadCurrent.Max+op.RippleCurrent.Max/2 <= 0 {
+		if op == nil || !op.LoadCurrent.Known() || !op.RippleCurrent.Known() {
+			return ""
+		}
+		most := op.LoadCurrent.Max
+		if op.Sinusoidal != nil { // of either sign, an amplitude
+			if op.LoadCurrent.OpenBelow || op.LoadCurrent.OpenAbove {
+				return ""
+			}
+			most = max(most, -op.LoadCurrent.Min)
+		}
+		if most+op.RippleCurrent.Max/2 <= 0 {
 			return "the high-side channel carries no forward current"
 		}
 		return ""

@@ -1,6 +1,7 @@
 package catalog
 
 import (
+	"math"
 	"slices"
 
 	"floatrail/calc/circuit"
@@ -40,6 +41,9 @@ var dutyLargestDuty = &rule.Rule{
 		}
 		if derive.Hold(c) < 0 && rule.Significant(limit) >= rule.Significant(d) { // it lies closer below the duty than a shown number tells
 			limit = (1 - justBelow) * d
+		}
+		if d == 0 && derive.Hold(c) < 0 { // not even the least one holds
+			limit = math.Inf(-1)
 		}
 		if c.Point.Sinusoidal != nil {
 			if l.Whole { // no index breaks it

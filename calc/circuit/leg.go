@@ -23,6 +23,9 @@ func (c *Circuit) leg() *modulation.Leg {
 		Charge: e.gate + e.offBias + e.levelShift, ChargePerVolt: e.gatePerVolt, Least: e.offBias + e.levelShift, Junction: e.junction,
 		RecoverySpec: e.recovery, RecoveryTau: e.tau,
 	}
+	if l.DiodeLow { // which has no channel to ask for
+		l.LowOn = c.freewheelNode
+	}
 	if op.SixStep == nil {
 		l.DeadTime = c.Need(&op.DeadTime)
 	}
@@ -54,8 +57,10 @@ func (d *curve) at(i float64) float64 {
 func (c *Circuit) nodes(most float64) (freewheeling, lowOn func(float64) float64) {
 	s := &c.Stage.LowSide
 	c.freewheelNode(most) // notes what is missing or assumed
-	c.LowSideNode(most)
-	c.LowSideNode(-most)
+	if s.Kind != stage.DiodeOnly {
+		c.LowSideNode(most)
+		c.LowSideNode(-most)
+	}
 	var reverse, channel curve
 	for i := range s.Reverse.ForwardPoints.Items {
 		x := c.Need(&s.Reverse.ForwardPoints.Items[i].Current) * s.Count()
@@ -72,7 +77,10 @@ func (c *Circuit) nodes(most float64) (freewheeling, lowOn func(float64) float64
 		}
 		return 0
 	}
-	if s.Kind == stage.IGBT || s.Kind == stage.DiodeOnly {
+	switch s.Kind {
+	case stage.DiodeOnly:
+		return freewheeling, freewheeling
+	case stage.IGBT:
 		return freewheeling, func(i float64) float64 {
 			switch {
 			case i > 0:
@@ -223,14 +231,11 @@ func (c *Circuit) described(y modulation.Layout, names []string) Period {
 func (c *Circuit) representative() Period {
 	y := c.Cycle()
 	if y.Plan == nil || !(y.Low.Period >= 0) {
-		if y.Plan != nil && y.Collapses { // whatever V_BS it is that nothing holds
-			p := c.described(y.Plan.At(0), nil)
-			p.Window = 0
-			return p
+		if y.Plan == nil || !y.Collapses {
+			return Period{}
 		}
-		return Period{}
 	}
-	p := c.described(y.Plan.At(y.Low.Period), nil)
+	p := c.described(y.Plan.At(math.Max(0, y.Low.Period)), nil) // the first, whatever V_BS it is that nothing holds
 	p.T, p.Window, p.OnTime = y.Plan.Carrier(), y.perPeriod(y.Window), y.perPeriod(y.OnTime)
 	return p
 }

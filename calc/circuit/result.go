@@ -126,11 +126,17 @@ func (c *Circuit) fallen() (from, to float64) {
 	return y.Held, y.Low.Value
 }
 
+// emptied tells whether a modulated operating point has no periodic solution at all, so that nothing is known of any fall of V_BS.
+func (c *Circuit) emptied() bool {
+	y := c.Cycle()
+	return y.Collapses && y.Held != y.Held
+}
+
 // Droop is the fall of V_BS from before a rising edge to the next recharge, the largest of all periods [V]; +Inf where nothing is known of it.
 func (c *Circuit) Droop() float64 {
 	if c.modulated() {
 		y := c.Cycle()
-		if y.Collapses && y.Droop != y.Droop {
+		if y.Collapses { // C_B is empty at its end
 			return math.Inf(1)
 		}
 		return y.Droop
@@ -179,8 +185,11 @@ func (c *Circuit) ShortestLow() float64 { return c.timing().ShortestLow }
 func (c *Circuit) Endures() float64 {
 	t := c.Unrefreshed()
 	y := c.Cycle()
-	if y.Plan == nil || math.IsInf(t, 1) || y.Collapses && y.Held != y.Held {
-		return t * 0
+	switch {
+	case y.Plan == nil || t != t:
+		return nan
+	case math.IsInf(t, 1) || c.emptied():
+		return 0
 	}
 	keep := c.Required()
 	from, to := c.fallen()
@@ -272,12 +281,20 @@ func (c *Circuit) CapacitanceCancels() bool {
 	if w, p := y.perPeriod(y.Window), c.Period(); !(w > 0) || w > 0.2*p.Element.Resistance*p.Capacitance {
 		return false
 	}
+	if y.Collapses { // so large a capacitor that nothing empties it tells whether enough comes in the mean
+		e, v := c.edge(), c.Required()
+		leaves := c.Loads().Total()*y.Plan.Time() + y.Gates*math.Max(0, e.gate+e.offBias+e.levelShift+e.gatePerVolt*v)
+		return y.Plan.WithCapacitance(c.Capacitance() + leaves/unmoved).Steady(nan).Collapses
+	}
 	twice := y.Plan.WithCapacitance(2 * c.Capacitance()).Steady(y.Start)
-	if y.Collapses || twice.Collapses {
-		return y.Collapses && twice.Collapses
+	if twice.Collapses {
+		return false
 	}
 	return c.Settled()-twice.Low.Value > 0.9*(c.Settled()-y.Low.Value)
 }
+
+// unmoved is by how little a capacitor's voltage moves that is taken to have none [V].
+const unmoved = 0.1
 
 // PeriodsToLockout counts the periods from the settled supply until V_BS falls below its lockout; 0 where that cannot be told.
 func (c *Circuit) PeriodsToLockout() int {
@@ -354,6 +371,9 @@ func (c *Circuit) Drop(keep float64) float64 {
 // Left is what recharge leaves above a voltage that V_BS must keep [V].
 func (c *Circuit) Left(keep float64) float64 {
 	if c.modulated() {
+		if c.emptied() {
+			return math.Inf(-1) + 0*keep
+		}
 		from, _ := c.fallen()
 		return from - keep
 	}
@@ -382,6 +402,9 @@ func (c *Circuit) CycleCharge() float64 {
 		return h.Capacitance * (h.Start - h.Voltage(t))
 	}
 	if c.modulated() {
+		if c.emptied() {
+			return math.Inf(1)
+		}
 		from, to := c.fallen()
 		return c.Capacitance() * (from - to)
 	}
@@ -425,17 +448,20 @@ func (c *Circuit) breakEvenOfCycle() float64 {
 	if y.Plan == nil {
 		return nan
 	}
-	from, to := c.fallen()
-	v := c.Required() + from - to
-	if v != v {
-		if y.Collapses {
-			return math.Inf(1)
-		}
+	v, q, loads := c.Required(), y.perPeriod(y.Charge), c.Loads().Total()
+	if c.emptied() { // what leaves at the required voltage, whatever comes
+		e := c.edge()
+		q = loads*y.Plan.Carrier() + y.perPeriod(y.Gates)*math.Max(0, e.gate+e.offBias+e.levelShift+e.gatePerVolt*v)
+	} else {
+		from, to := c.fallen()
+		v += from - to
+	}
+	if v != v || q != q {
 		return nan
 	}
 	sum := 0.0
 	y.Each(func(at modulation.Layout, _, weight float64) { sum += weight * brought(&at.Period, v) })
-	return breakEven(y.perPeriod(y.Charge), y.perPeriod(sum), y.perPeriod(y.Window), c.Loads().Total())
+	return breakEven(q, y.perPeriod(sum), y.perPeriod(y.Window), loads)
 }
 
 // breakEven is the window that brings a charge where another one brings so much [s], [C], if it carries more than the load [A].

@@ -124,8 +124,8 @@ func plan(c *circuit.Circuit, name string) search {
 	op := c.Point
 	f := c.Value(&op.SwitchingFrequency)
 	period := 1 / f
-	const leastDuty, mostIndex, mostResistance, decades, mostIdle = 1e-3, 4, 1e6, 1e4, 1e5
-	s := search{input: DutyOf(op), toward: 1, back: leastDuty, holds: works(Hold)}
+	const backDuty, mostResistance, decades, mostIdle = 1e-3, 1e6, 1e4, 1e5
+	s := search{input: DutyOf(op), toward: 1, back: backDuty, holds: works(Hold)}
 	if op.Sinusoidal != nil {
 		s.toward = mostIndex
 	}
@@ -181,6 +181,9 @@ func plan(c *circuit.Circuit, name string) search {
 	return frequency
 }
 
+// Modulation indices between which the largest one is looked for, where the drawn one turns no switch on and off [1].
+const leastIndex, mostIndex = 1. / 1024, 4.
+
 // fewestPeriods of the carrier in a fundamental that are looked at.
 const fewestPeriods = 6 * (1 + 1e-9)
 
@@ -194,7 +197,7 @@ func Limit(c *circuit.Circuit, name string) Result {
 		return Result{Value: math.NaN(), Input: math.NaN()}
 	}
 	good, bad := here, s.toward
-	if least := leastDuty(c); name == Duty(c.Point) && here < least && now < 0 { // no pulse reaches the switch there: the first that does counts
+	if least := leastDuty(c, at); name == Duty(c.Point) && here < least && now < 0 { // no pulse reaches the switch there: the first that does counts
 		here = least
 		now = at(here)
 		good = here
@@ -209,6 +212,9 @@ func Limit(c *circuit.Circuit, name string) Result {
 		}
 	} else if !(at(bad) < 0) {
 		return Result{Value: s.limit(c, bad), Input: bad, Whole: true}
+	}
+	if far := bad * nearNothing; good == 0 && (name == finding.LongestIdle || name == finding.LargestResistance) && at(far) >= 0 {
+		good = far // a range that begins at 0 and spans decades is searched by its logarithm
 	}
 	digits := float64(turnDigits)
 	if c.Space.Dear {
@@ -251,13 +257,25 @@ func From(c *circuit.Circuit, name string, duty Result) Result {
 	return duty
 }
 
-// leastDuty is the smallest duty whose pulse reaches the high side; 0 for what stands for a duty.
-func leastDuty(c *circuit.Circuit) float64 {
-	if c.Point.Sinusoidal != nil {
+// leastDuty is the smallest duty whose pulse reaches the high side. Of a modulation index it is the first of a series that holds, where the drawn one
+// leaves the high side either off or on throughout; 0 elsewhere.
+func leastDuty(c *circuit.Circuit, at func(float64) float64) float64 {
+	if c.Point.Sinusoidal == nil {
+		return c.LeastDuty() * (1 + 1e-9)
+	}
+	if y := c.Cycle(); y.Plan == nil || y.Gates > 0 {
 		return 0
 	}
-	return c.LeastDuty() * (1 + 1e-9)
+	for m := leastIndex; m <= mostIndex; m *= 2 {
+		if at(m) >= 0 {
+			return m
+		}
+	}
+	return 0
 }
+
+// nearNothing is so small a share of a range from 0 on that nothing turns within it.
+const nearNothing = 1e-13
 
 // backSteps is the number of values tried on the way back where neither the drawn value holds nor the far end.
 const backSteps = 24

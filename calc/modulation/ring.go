@@ -18,7 +18,7 @@ type Steady struct {
 	Held     float64 // V_BS before the edge that begins the time without recharge in which V_BS is lowest [V]
 	OnHeld   float64 // the same for OnLow [V]
 	Charge   float64 // through the element in all periods [C]
-	Window   float64 // in which the element can conduct, of all periods [s]
+	Window   float64 // in which the element can conduct, of all periods, whether it collapses or not [s]
 	OnTime   float64 // of the high side in all periods [s]
 	Gates    float64 // turn-ons of the high side in all periods [1]
 	Recovery float64 // largest recovery charge of D_B at a rising edge [C]
@@ -81,7 +81,8 @@ func (p *Plan) steady(start, tolerance float64, exact bool) Steady {
 			high = v
 		}
 		if v == 0 && rise <= 0 {
-			out.Collapses, out.Converged, out.Passes = true, true, w.passes
+			out.Collapses, out.Converged, out.Passes, out.steps = true, true, w.passes, w.steps
+			out.times()
 			return out
 		}
 		step := rise / (1 - slope)
@@ -130,153 +131,4 @@ func (p *Plan) ceiling() float64 {
 		most = l.Supply
 	}
 	return math.Max(most, 0)*1.1 + 1 + l.Junction/l.Capacitance
-}
-
-// describe finds the extremes and means of the solution.
-func (w *walker) describe(out *Steady) {
-	out.Low, _ = w.extreme(out.steps, func(s *seen) float64 { return s.low }, 1)
-	out.OnLow, _ = w.extreme(out.steps, func(s *seen) float64 { return s.onLow }, 1)
-	out.High, _ = w.extreme(out.steps, func(s *seen) float64 { return -s.high }, -1)
-	out.Charge = 0
-	for i := range out.steps {
-		s := &out.steps[i]
-		for k, weight := range s.weights() {
-			if weight != 0 {
-				out.Charge += weight * s.seen[k].recharged
-				out.Window += weight * s.seen[k].window
-				out.OnTime += weight * s.seen[k].on
-				out.Gates += weight * s.seen[k].gates
-				out.Recovery = math.Max(out.Recovery, s.seen[k].recovery)
-			}
-		}
-	}
-	out.Collapses = out.Low.Value <= 0
-	w.held(out)
-}
-
-// candidates are so close to the best of the sampled periods that a period between them may be better [V].
-const candidates = 1e-3
-
-// extreme finds the period in which what of is smallest; sign turns it to what is reported.
-func (w *walker) extreme(steps []step, of func(*seen) float64, sign float64) (best Extreme, found bool) {
-	least := math.Inf(1)
-	for i := range steps {
-		for k := range steps[i].seen {
-			if k > 0 && !steps[i].several() {
-				break
-			}
-			least = math.Min(least, of(&steps[i].seen[k]))
-		}
-	}
-	best = Extreme{Value: math.Inf(1), Period: -1, Before: math.NaN()}
-	take := func(v, x, before float64) bool {
-		if v < best.Value {
-			best = Extreme{v, x, before}
-			return true
-		}
-		return false
-	}
-	for i := range steps {
-		s := &steps[i]
-		if !s.several() {
-			at := s.from
-			if s.merged && sign > 0 { // V_BS falls throughout
-				at = s.to - 1
-			}
-			take(of(&s.seen[0]), float64(at), s.v[0])
-			continue
-		}
-		nearest, at := math.Inf(1), 0
-		for k := range s.seen {
-			if v := of(&s.seen[k]); v < nearest {
-				nearest, at = v, k
-			}
-		}
-		if !(nearest <= least+candidates) {
-			continue
-		}
-		w.within(s, s.position(at), of, take)
-	}
-	best.Value *= sign
-	return best, best.Period >= 0
-}
-
-// within looks for the best whole period of a step, downhill from a position along ever shorter strides.
-func (w *walker) within(s *step, from float64, of func(*seen) float64, take func(v, x, before float64) bool) {
-	run := &w.plan.runs[s.run]
-	look := func(k int) float64 {
-		x := float64(k)
-		before := s.before(x)
-		_, saw := w.pass(run, x, before)
-		v := of(&saw)
-		take(v, x, before)
-		return v
-	}
-	k := min(max(int(math.Round(from)), s.from), s.to-1)
-	here := look(k)
-	for stride := max(1, (s.to-s.from)/4); stride > 0; {
-		moved := false
-		for _, to := range []int{k - stride, k + stride} {
-			if to < s.from || to >= s.to {
-				continue
-			}
-			if v := look(to); v < here {
-				k, here, moved = to, v, true
-				break
-			}
-		}
-		if !moved {
-			stride /= 2
-		}
-	}
-}
-
-// held finds the largest fall between two recharges, and where the one begins in which V_BS is lowest.
-func (w *walker) held(out *Steady) {
-	began := math.NaN() // V_BS as the present time without recharge began
-	var y layout
-	refreshes := func(s *step) bool {
-		w.plan.runs[s.run].at(float64(s.from), &y)
-		return y.conducts()
-	}
-	fall := func(from float64, s *step, k int) {
-		if d := from - s.seen[k].low; d > out.Droop || out.Droop != out.Droop {
-			out.Droop = d
-		}
-	}
-	n := len(out.steps)
-	found := [2]bool{}
-	for i := range 2 * n { // the second round knows what the end of the first leaves
-		s := &out.steps[i%n]
-		again := refreshes(s)
-		from := s.v[0]
-		if began == began {
-			from = began
-		}
-		if i >= n || again {
-			fall(from, s, 0)
-			for k := 1; k < len(s.seen) && s.several(); k++ {
-				if again {
-					fall(s.v[k], s, k)
-				} else {
-					fall(from, s, k)
-				}
-			}
-		}
-		for j, of := range []struct {
-			low  *Extreme
-			held *float64
-		}{{&out.Low, &out.Held}, {&out.OnLow, &out.OnHeld}} {
-			if !(of.low.Period >= float64(s.from) && of.low.Period < float64(s.to)) || found[j] && i < n {
-				continue
-			}
-			*of.held, found[j] = from, true
-			if again && s.several() && of.low.Period > float64(s.from) {
-				*of.held = of.low.Before
-			}
-		}
-		if began = math.NaN(); !again {
-			began = from
-		}
-	}
 }

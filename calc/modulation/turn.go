@@ -212,16 +212,23 @@ func (w *walker) collocate(s step, sure bool) (next, slope, grow float64, ok boo
 			break
 		}
 	}
-	// Neither the first period nor the one at between is a node: what the cubic misses there tells how good it is.
+	// Neither the first period nor the ones looked at between are nodes: what the cubic misses there tells how good it is.
 	e := w.missed(&s, 0, first)
 	if sure {
 		w.steps = append(w.steps, s)
 		return next, slope, 1, e <= 2
 	}
-	if e <= 1 {
-		x := float64(s.from) + between*last
-		there, _ := w.pass(run, x, s.before(x))
-		e = math.Max(e, w.missed(&s, between, there))
+	look := func(at float64) {
+		if x := float64(s.from) + at*last; e <= 1 {
+			there, _ := w.pass(run, x, s.before(x))
+			e = math.Max(e, w.missed(&s, at, there))
+		}
+	}
+	look(between)
+	for k := 1; k < len(run.marks); k++ { // where duty and current turn, V_BS may do what no node sees: one of the pair that ends and begins a piece
+		if m := run.marks[k]; m > s.from && m < s.to-1 && m > run.marks[k-1]+1 {
+			look(float64(m-s.from) * h)
+		}
 	}
 	grow = math.Min(4, 0.9*math.Pow(math.Max(e, 1e-9), -0.25))
 	if !(e <= 1) {
