@@ -6,7 +6,7 @@
 //	stage     the request as a valid stage: every value with its spread, its source, and its path
 //	corner    worst-case sets per operating point and temperature; the search for the worst draw
 //	circuit   the stage at one draw, as the models take it
-//	models    charge, capacitor, recharge, startup, transient, loss: equations with their sources
+//	models    charge, capacitor, recharge, modulation, startup, transient, loss: equations with their sources
 //	derive    inverse problems on the same models: derived limits
 //	rule      value against limit and guard; outcome, message, corner, ranking, break-even
 //	catalog   the rules, one a file
