@@ -250,11 +250,10 @@ func vanishNotes(c *circuit.Circuit) []string {
 
 // vanishOverAngles is vanishNotes of a sinusoidal modulation.
 func vanishOverAngles(c *circuit.Circuit) (out []string) {
-	y := c.Cycle()
-	if y.Plan == nil {
+	t := c.Timing()
+	if t == nil {
 		return nil
 	}
-	t := y.Plan.Timing()
 	if t.LowVanishes {
 		out = append(out, "at some angles the low-side pulse is shorter than the driver passes and vanishes")
 	}

@@ -312,8 +312,8 @@ func (c *Circuit) Hold() (h charge.Hold, duration float64) {
 func (c *Circuit) lowVanishes() bool {
 	op := c.Point
 	if c.modulated() {
-		y := c.Cycle()
-		return y.Plan != nil && y.Plan.Timing().LowVanishes
+		t := c.Timing()
+		return t != nil && t.LowVanishes
 	}
 	if op.FixedDuty == nil {
 		return false
@@ -348,8 +348,8 @@ func (c *Circuit) HighPulse() float64 {
 	case c.Stage.LowSide.Kind == "":
 		return c.Want(c.Stage.LowSide.Field + ".kind")
 	case c.modulated():
-		if y := c.Cycle(); y.Plan != nil {
-			return y.Plan.Timing().ShortestHigh
+		if t := c.Timing(); t != nil {
+			return t.ShortestHigh
 		}
 		return nan
 	}

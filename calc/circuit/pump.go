@@ -91,8 +91,8 @@ func (c *Circuit) base() *Period {
 }
 
 func (c *Circuit) crest() Period {
-	op, y := c.Point, c.Cycle()
-	if y.Plan == nil {
+	op, plan := c.Point, c.plan()
+	if plan == nil {
 		return Period{}
 	}
 	share := 0.0 // of the fundamental
@@ -108,7 +108,7 @@ func (c *Circuit) crest() Period {
 			share = 0.75
 		}
 	}
-	return c.described(y.Plan.Alone(math.Floor(share*float64(y.Plan.Periods()))), nil)
+	return c.described(plan.Alone(math.Floor(share*float64(plan.Periods()))), nil)
 }
 
 // parts divides the dip of an event. A current that falls drives the flux L2·I into the loop of COM, so that the inductance shares in the depth

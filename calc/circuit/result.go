@@ -158,26 +158,37 @@ func (c *Circuit) Restart() float64 {
 	return y.Start
 }
 
+// Timing is what the plan of a modulated operating point says without its solution, which takes many times as long to find; nil where an input is
+// missing.
+func (c *Circuit) Timing() *modulation.Timing {
+	p := c.plan()
+	if p == nil {
+		return nil
+	}
+	t := p.Timing()
+	return &t
+}
+
 // Unrefreshed is the longest time from the end of a recharge to the end of an on-time before the next one [s]; +Inf where nothing recharges C_B.
 func (c *Circuit) Unrefreshed() float64 {
-	if y := c.Cycle(); y.Plan != nil {
-		return y.Plan.Timing().WithoutRefresh
+	if t := c.Timing(); t != nil {
+		return t.WithoutRefresh
 	}
 	return nan
 }
 
 // LongestOn is the longest uninterrupted on-time of the high side at a modulated operating point [s].
 func (c *Circuit) LongestOn() float64 {
-	if y := c.Cycle(); y.Plan != nil {
-		return y.Plan.Timing().LongestOn
+	if t := c.Timing(); t != nil {
+		return t.LongestOn
 	}
 	return nan
 }
 
 // ShortestLow is the shortest pulse of the low side at a modulated operating point [s]; +Inf without any.
 func (c *Circuit) ShortestLow() float64 {
-	if y := c.Cycle(); y.Plan != nil {
-		return y.Plan.Timing().ShortestLow
+	if t := c.Timing(); t != nil {
+		return t.ShortestLow
 	}
 	return nan
 }
@@ -338,20 +349,35 @@ func (c *Circuit) Budget() []charge.Item {
 	return *corner.Memo(c.Draw, slotBudget, false, &c.budgetAt, c.budget)
 }
 
-func (c *Circuit) budget() []charge.Item {
-	p := c.Period()
+// edgeCharge is what leaves at a rising edge in the steady state, or where there is none at the required voltage, and that voltage [V].
+func (c *Circuit) edgeCharge() (edge charge.Edge, v float64) {
 	st := c.Steady()
 	v, rec := st.AfterEdge, st.Recovery
 	if st.Collapses {
-		v, rec = c.Required(), p.RecoverySpec
+		v, rec = c.Required(), c.Period().RecoverySpec
 	}
-	edge := charge.Edge{}
+	return c.EdgeCharges(v, rec), v
+}
+
+// EdgeGate is the gate charge of one rising edge [C]; 0 where the node never rises. A mean over all periods says nothing beside it of a modulation
+// that turns the high side on in some of them only.
+func (c *Circuit) EdgeGate() float64 {
+	if !c.modulated() && !c.Period().Edges {
+		return 0
+	}
+	edge, _ := c.edgeCharge()
+	return edge.Gate
+}
+
+func (c *Circuit) budget() []charge.Item {
+	p := c.Period()
+	edge, v := c.edgeCharge()
 	switch {
 	case c.modulated():
 		y := c.Cycle()
-		edge = c.EdgeCharges(v, rec).Share(y.perPeriod(y.Gates))
-	case p.Edges:
-		edge = c.EdgeCharges(v, rec)
+		edge = edge.Share(y.perPeriod(y.Gates))
+	case !p.Edges:
+		edge = charge.Edge{}
 	}
 	return charge.AppendItems(c.budgetAt[:0], c.Loads(), edge, charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
 }
