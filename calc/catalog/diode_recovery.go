@@ -3,7 +3,6 @@ package catalog
 import (
 	"fmt"
 
-	"floatrail/calc/charge"
 	"floatrail/calc/circuit"
 	"floatrail/calc/quantity"
 	"floatrail/calc/rule"
@@ -33,13 +32,7 @@ var diodeRecovery = &rule.Rule{
 		if st.Collapses {
 			v = p.RecoverySpec
 		}
-		var gate float64
-		for _, it := range c.Budget() {
-			if it.Name == charge.ItemGate {
-				gate = it.Charge
-			}
-		}
-		limit := recoveryShare * gate
+		limit := recoveryShare * c.EdgeGate()
 		return rule.Check{Value: v, Limit: limit, Guard: below(c, limit)}
 	},
 	Explain: func(c *circuit.Circuit, _ string, ch rule.Check) []string {

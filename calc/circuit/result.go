@@ -341,20 +341,35 @@ func (c *Circuit) Budget() []charge.Item {
 	return *corner.Memo(c.Draw, slotBudget, false, &c.budgetAt, c.budget)
 }
 
-func (c *Circuit) budget() []charge.Item {
-	p := c.Period()
+// edgeCharge is what leaves at a rising edge in the steady state, or where there is none at the required voltage, and that voltage [V].
+func (c *Circuit) edgeCharge() (edge charge.Edge, v float64) {
 	st := c.Steady()
 	v, rec := st.AfterEdge, st.Recovery
 	if st.Collapses {
-		v, rec = c.Required(), p.RecoverySpec
+		v, rec = c.Required(), c.Period().RecoverySpec
 	}
-	edge := charge.Edge{}
+	return c.EdgeCharges(v, rec), v
+}
+
+// EdgeGate is the gate charge of one rising edge [C]; 0 where the node never rises. A mean over all periods says nothing beside it of a modulation
+// that turns the high side on in some of them only.
+func (c *Circuit) EdgeGate() float64 {
+	if !c.modulated() && !c.Period().Edges {
+		return 0
+	}
+	edge, _ := c.edgeCharge()
+	return edge.Gate
+}
+
+func (c *Circuit) budget() []charge.Item {
+	p := c.Period()
+	edge, v := c.edgeCharge()
 	switch {
 	case c.modulated():
 		y := c.Cycle()
-		edge = c.EdgeCharges(v, rec).Share(y.perPeriod(y.Gates))
-	case p.Edges:
-		edge = c.EdgeCharges(v, rec)
+		edge = edge.Share(y.perPeriod(y.Gates))
+	case !p.Edges:
+		edge = charge.Edge{}
 	}
 	return charge.AppendItems(c.budgetAt[:0], c.Loads(), edge, charge.Interval{Period: p.T, OnTime: p.OnTime, Voltage: v})
 }

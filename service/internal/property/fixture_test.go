@@ -35,7 +35,8 @@ func strained(t testing.TB) any {
 	)
 }
 
-// subjects are the stages that properties are tried on: the demo stages, of which one hardly objects to anything, and that one strained.
+// subjects are the stages that properties are tried on: the demo stages, of which one hardly objects to anything, that one strained, and one
+// whose operating points are modulated.
 func subjects(t testing.TB) []variant {
 	t.Helper()
 	return []variant{
@@ -43,5 +44,6 @@ func subjects(t testing.TB) []variant {
 		{name: "buck48 strained", tree: strained(t)},
 		{name: "gan650", tree: document(t, "gan650")},
 		{name: "drive400", tree: document(t, "drive400")},
+		{name: "drive400 modulated", tree: modulated(t)},
 	}
 }
