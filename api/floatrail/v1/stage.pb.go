@@ -26,13 +26,18 @@ type Sinusoidal_ZeroSequence_Value int32
 
 const (
 	Sinusoidal_ZeroSequence_UNSPECIFIED Sinusoidal_ZeroSequence_Value = 0
-	Sinusoidal_ZeroSequence_NONE        Sinusoidal_ZeroSequence_Value = 1
-	// sin 3θ / 6.
+	// Nothing.
+	Sinusoidal_ZeroSequence_NONE Sinusoidal_ZeroSequence_Value = 1
+	// m·sin 3θ / 6.
 	Sinusoidal_ZeroSequence_THIRD_HARMONIC Sinusoidal_ZeroSequence_Value = 2
-	Sinusoidal_ZeroSequence_MIN_MAX        Sinusoidal_ZeroSequence_Value = 3
-	Sinusoidal_ZeroSequence_CLAMP_60       Sinusoidal_ZeroSequence_Value = 4
+	// Less the mean of the largest and the smallest of the three references: symmetrical space vector.
+	Sinusoidal_ZeroSequence_MIN_MAX Sinusoidal_ZeroSequence_Value = 3
+	// The reference of largest magnitude at its rail, for 60° centred on the phase's own peak: the high side is held on for 1/(6·f_1).
+	Sinusoidal_ZeroSequence_CLAMP_60 Sinusoidal_ZeroSequence_Value = 4
+	// The largest reference at the upper rail, for 120° centred on the phase's own peak: the high side is held on for 1/(3·f_1).
 	Sinusoidal_ZeroSequence_CLAMP_120_HIGH Sinusoidal_ZeroSequence_Value = 5
-	Sinusoidal_ZeroSequence_CLAMP_120_LOW  Sinusoidal_ZeroSequence_Value = 6
+	// The smallest reference at the lower rail: the high side is never held on.
+	Sinusoidal_ZeroSequence_CLAMP_120_LOW Sinusoidal_ZeroSequence_Value = 6
 )
 
 // Enum value maps for Sinusoidal_ZeroSequence_Value.
@@ -89,9 +94,12 @@ type SixStep_Chopping_Value int32
 
 const (
 	SixStep_Chopping_UNSPECIFIED SixStep_Chopping_Value = 0
-	SixStep_Chopping_HIGH_SIDE   SixStep_Chopping_Value = 1
-	SixStep_Chopping_LOW_SIDE    SixStep_Chopping_Value = 2
-	SixStep_Chopping_BOTH        SixStep_Chopping_Value = 3
+	// The high side chops in its sector; the low side stays on in its own.
+	SixStep_Chopping_HIGH_SIDE SixStep_Chopping_Value = 1
+	// The low side chops in its sector; the high side stays on in its own.
+	SixStep_Chopping_LOW_SIDE SixStep_Chopping_Value = 2
+	// Each chops in its sector.
+	SixStep_Chopping_BOTH SixStep_Chopping_Value = 3
 )
 
 // Enum value maps for SixStep_Chopping_Value.
@@ -498,7 +506,8 @@ type OperatingPoint struct {
 	Name *string `protobuf:"bytes,1,opt,name=name,proto3,oneof" json:"name,omitempty"`
 	// DC-link voltage.
 	BusVoltage *Quantity `protobuf:"bytes,2,opt,name=bus_voltage,json=busVoltage,proto3" json:"bus_voltage,omitempty"`
-	// Load current out of the node, positive when sourcing; amplitude when sinusoidal.
+	// Load current, positive out of the node (sourcing), negative into it (sinking). fixedDuty, burst, heldOn: as it is. sinusoidal: the amplitude I
+	// of i = I·sin(θ - φ). sixStep: out of the node while the high side works, into it while the low side does.
 	LoadCurrent *Quantity `protobuf:"bytes,3,opt,name=load_current,json=loadCurrent,proto3" json:"load_current,omitempty"`
 	// Peak-to-peak ripple.
 	RippleCurrent *Quantity `protobuf:"bytes,4,opt,name=ripple_current,json=rippleCurrent,proto3" json:"ripple_current,omitempty"`
@@ -679,7 +688,7 @@ type OperatingPoint_FixedDuty struct {
 }
 
 type OperatingPoint_Sinusoidal struct {
-	// Sinusoidal modulation.
+	// Sinusoidal modulation of one leg.
 	Sinusoidal *Sinusoidal `protobuf:"bytes,11,opt,name=sinusoidal,proto3,oneof"`
 }
 
@@ -763,14 +772,16 @@ func (x *FixedDuty) GetLowSideOnTime() *Quantity {
 	return nil
 }
 
-// Sinusoidal modulation of one leg.
+// Sinusoidal modulation of one leg: d = 1/2 + (m·sin θ + zero sequence)/2, clipped to 0 and 1 where over-modulated, θ = 0 where the reference rises
+// through zero. Duty and current are sampled at the start of each carrier period; a fundamental has f_sw/f_1 of them, rounded up, at least 6. Pulses
+// shorter than the driver passes vanish.
 type Sinusoidal struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// Amplitude over half the DC-link voltage.
 	ModulationIndex *Quantity `protobuf:"bytes,1,opt,name=modulation_index,json=modulationIndex,proto3" json:"modulation_index,omitempty"`
 	// Fundamental frequency.
 	FundamentalFrequency *Quantity `protobuf:"bytes,2,opt,name=fundamental_frequency,json=fundamentalFrequency,proto3" json:"fundamental_frequency,omitempty"`
-	// Lag of the current.
+	// Lag φ of the current behind the reference, i = I·sin(θ - φ); beyond 90° the load regenerates.
 	DisplacementAngle *Quantity `protobuf:"bytes,3,opt,name=displacement_angle,json=displacementAngle,proto3" json:"displacement_angle,omitempty"`
 	// Zero sequence.
 	ZeroSequence  Sinusoidal_ZeroSequence_Value `protobuf:"varint,4,opt,name=zero_sequence,json=zeroSequence,proto3,enum=floatrail.v1.Sinusoidal_ZeroSequence_Value" json:"zero_sequence,omitempty"`
@@ -836,7 +847,8 @@ func (x *Sinusoidal) GetZeroSequence() Sinusoidal_ZeroSequence_Value {
 	return Sinusoidal_ZeroSequence_UNSPECIFIED
 }
 
-// Six-step commutation.
+// Six-step commutation: the high side works from 30° to 150°, the low side from 210° to 330°, and in between the node is open. Chopping is not
+// synchronous: the chopped switch is on for the duty from the start of each carrier period, and its opposite stays off. There is no dead time.
 type SixStep struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// Electrical frequency.
@@ -900,16 +912,16 @@ func (x *SixStep) GetDuty() *Quantity {
 	return nil
 }
 
-// Bursts of pulses.
+// Bursts of pulses of constant duty, and pauses between them in which both switches are off and the node stands at a voltage of its own.
 type Burst struct {
 	state protoimpl.MessageState `protogen:"open.v1"`
 	// Duty within a burst.
 	Duty *Quantity `protobuf:"bytes,1,opt,name=duty,proto3" json:"duty,omitempty"`
-	// Length of a burst.
+	// Length of a burst, rounded up to whole periods.
 	ActiveTime *Quantity `protobuf:"bytes,2,opt,name=active_time,json=activeTime,proto3" json:"active_time,omitempty"`
 	// Pause between bursts.
 	IdleTime *Quantity `protobuf:"bytes,3,opt,name=idle_time,json=idleTime,proto3" json:"idle_time,omitempty"`
-	// Node voltage in the pause.
+	// Node voltage in the pause; C_B is recharged only where V_DD less this and the drop of the element exceeds V_BS.
 	IdleNodeVoltage *Quantity `protobuf:"bytes,4,opt,name=idle_node_voltage,json=idleNodeVoltage,proto3" json:"idle_node_voltage,omitempty"`
 	unknownFields   protoimpl.UnknownFields
 	sizeCache       protoimpl.SizeCache

@@ -26,6 +26,8 @@ func scale(unit string) (float64, bool) {
 		return 0.01, true
 	case "h":
 		return 3600, true
+	case "deg":
+		return math.Pi / 180, true
 	}
 	for _, base := range baseUnits {
 		if prefix, ok := strings.CutSuffix(unit, base); ok {
@@ -37,7 +39,7 @@ func scale(unit string) (float64, bool) {
 	return 0, false
 }
 
-var functions = map[string]func(float64) float64{"ln": math.Log, "exp": math.Exp, "sqrt": math.Sqrt, "log10": math.Log10}
+var functions = map[string]func(float64) float64{"ln": math.Log, "exp": math.Exp, "sqrt": math.Sqrt, "log10": math.Log10, "sin": math.Sin, "cos": math.Cos}
 
 // parser reads one expression; the first error stays.
 type parser struct {
@@ -206,6 +208,7 @@ func TestArithmetic(t *testing.T) {
 		{"1 + 2 * 3", 7}, {"(1 + 2) * 3", 9}, {"2 - 3 - 4", -5}, {"8 / 4 / 2", 1}, {"-2^2", -4}, {"2^-1", 0.5}, {"2 * -3", -6},
 		{"470 nF * 90 %", 4.23e-7}, {"1 h / 1 s", 3600}, {"5 mohm", 5e-3}, {"1.5e-3 V", 1.5e-3}, {"0.25nC", 2.5e-10}, {"3 MHz", 3e6}, {"2 m", 2},
 		{"C_eff * 2", 4e-7}, {"m * ln(i / 1 A)", 0.04 * math.Log(0.5)}, {"exp(-(1 + 1))", math.Exp(-2)}, {"sqrt(9) + log10(1000)", 6},
+		{"sin(30 deg) + cos(-60 deg)", 1},
 	} {
 		got, err := evaluate(c.expression, names)
 		if c.expression == "2 m" {

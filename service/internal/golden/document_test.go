@@ -61,7 +61,7 @@ func commands(blocks []block, word string) []string {
 
 // documents of the repository, by path from its root.
 var documents = []string{"README.md", "DEVELOPERS.md", "testdata/stages/buck48.sheet.md", "testdata/stages/gan650.sheet.md",
-	"testdata/stages/drive400.sheet.md"}
+	"testdata/stages/drive400.sheet.md", "testdata/stages/spindle325.sheet.md"}
 
 var (
 	link    = regexp.MustCompile(`\]\(([^)]+)\)`)

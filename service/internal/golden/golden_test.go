@@ -45,11 +45,17 @@ func names(t *testing.T) []string {
 // answer is what `floatrail review --format json` prints for a stage: one canonical line.
 func answer(t *testing.T, name string) []byte {
 	t.Helper()
+	return answerTo(t, stages+name+".json")
+}
+
+// answerTo is the same for the stage of a file.
+func answerTo(t *testing.T, file string) []byte {
+	t.Helper()
 	var out, faults bytes.Buffer
 	status := render.Review(context.Background(), rpc.New(rpc.Options{Version: "development", Carried: wire.ReportOf}),
-		render.Options{Files: []string{stages + name + ".json"}, JSON: true, Stdout: &out, Stderr: &faults})
+		render.Options{Files: []string{file}, JSON: true, Stdout: &out, Stderr: &faults})
 	if status == render.ExitFault || status == render.ExitInternal || faults.Len() > 0 {
-		t.Fatalf("%s: exit status %d: %s", name, status, faults.String())
+		t.Fatalf("%s: exit status %d: %s", file, status, faults.String())
 	}
 	return bytes.TrimSuffix(out.Bytes(), []byte("\n"))
 }

@@ -172,8 +172,9 @@ func readmeCommands(t *testing.T, blocks []block, program string) {
 		"review testdata/stages/buck48.json --families=duty,gate --per-point":                          0,
 		"review testdata/stages/buck48.json --format=json":                                             0,
 		"review testdata/stages/drive400.json --simulate":                                              1,
-		"rules":  0,
-		"fields": 0,
+		"review testdata/stages/spindle325.json":                                                       1,
+		"rules":                                                                                        0,
+		"fields":                                                                                       0,
 	}
 	for _, line := range commands(blocks, "go run ./service") {
 		line = strings.TrimPrefix(strings.TrimPrefix(line, "go run ./service"), " ")
@@ -290,7 +291,7 @@ func readmeJSON(t *testing.T, blocks []block) {
 	if err := json.Unmarshal(answer(t, "buck48"), &live); err != nil {
 		t.Fatal(err)
 	}
-	findings, waivers, options, studies := 0, 0, 0, 0
+	findings, waivers, options, studies, modes := 0, 0, 0, 0, 0
 	for _, b := range blocks {
 		if b.language != "json" {
 			continue
@@ -322,14 +323,48 @@ func readmeJSON(t *testing.T, blocks []block) {
 			}
 			continue
 		}
+		if points, ok := excerpt["operatingPoints"].([]any); ok {
+			modes++
+			readmePoints(t, points)
+			continue
+		}
 		findings++
 		all, _ := lookUp(live, "findings").([]any)
 		if !slices.ContainsFunc(all, func(f any) bool { return within(excerpt, f) }) {
 			t.Errorf("no finding of buck48 reads\n%s", data)
 		}
 	}
-	if findings != 1 || waivers != 1 || options != 1 || studies != 1 {
-		t.Errorf("%d findings, %d waivers, %d options and %d studies, want one of each", findings, waivers, options, studies)
+	if findings != 1 || waivers != 1 || options != 1 || studies != 1 || modes != 1 {
+		t.Errorf("%d findings, %d waivers, %d options, %d studies and %d lists of operating points, want one of each", findings, waivers, options, studies, modes)
+	}
+}
+
+// readmePoints reviews buck48 at operating points of the README: V_BS is decided at each.
+func readmePoints(t *testing.T, points []any) {
+	t.Helper()
+	var request map[string]any
+	decodeFile(t, stages+"buck48.json", &request)
+	request["stage"].(map[string]any)["operatingPoints"] = points
+	data, err := json.Marshal(request)
+	if err != nil {
+		t.Fatal(err)
+	}
+	file := filepath.Join(t.TempDir(), "points.json")
+	if err := os.WriteFile(file, data, 0o644); err != nil {
+		t.Fatal(err)
+	}
+	var live any
+	if err := json.Unmarshal(answerTo(t, file), &live); err != nil {
+		t.Fatal(err)
+	}
+	decided := 0
+	for _, f := range lookUp(live, "findings").([]any) {
+		if lookUp(f, "rule") == "charge/lowest-voltage" && lookUp(f, "value") != nil {
+			decided++
+		}
+	}
+	if decided != len(points) {
+		t.Errorf("V_BS is decided at %d of %d operating points of the README", decided, len(points))
 	}
 }
 

@@ -2,6 +2,7 @@ package golden
 
 import (
 	"encoding/json"
+	"errors"
 	"fmt"
 	"math"
 	"os"
@@ -103,7 +104,11 @@ func (s *sheet) line(line string, request any) error {
 		}
 	}
 	if fromFile {
-		text, ok := lookUp(request, "stage."+field).(string)
+		path := field
+		if !strings.HasPrefix(field, "parts[") {
+			path = "stage." + field
+		}
+		text, ok := lookUp(request, path).(string)
 		if !ok {
 			return fmt.Errorf("the stage has no %s", field)
 		}
@@ -176,7 +181,8 @@ func find(r row, live any) (float64, error) {
 	}
 	rule, subject, _ := strings.Cut(key, " of ")
 	findings, _ := lookUp(live, "findings").([]any)
-	for _, f := range findings {
+	fault := errors.New("the answer has no such finding")
+	for _, f := range findings { // one for each kind of mode
 		subjects, _ := lookUp(f, "subjects").([]any)
 		if lookUp(f, "rule") != rule || subject != "" && (len(subjects) != 1 || subjects[0] != subject) {
 			continue
@@ -187,7 +193,8 @@ func find(r row, live any) (float64, error) {
 		}
 		_, corner, _ := strings.Cut(place, "; ")
 		if place != r.place && "any; "+corner != r.place {
-			return 0, fmt.Errorf("binds at %s", place)
+			fault = fmt.Errorf("binds at %s", place)
+			continue
 		}
 		if attribute == "margin" {
 			attribute = "margin.absolute"
@@ -198,7 +205,7 @@ func find(r row, live any) (float64, error) {
 		}
 		return v, nil
 	}
-	return 0, fmt.Errorf("the answer has no such finding")
+	return 0, fault
 }
 
 // lookUp follows a path of members, and of elements by number or by their operatingPoint or name, through a JSON tree.

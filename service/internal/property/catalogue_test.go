@@ -59,7 +59,7 @@ func lockout(volts float64) []edit {
 	return list(to("stage.driver.uvloFalling.max", text(volts)), to("stage.driver.uvloRising.max", text(volts+0.4)))
 }
 
-var examples = []example{
+var examples = append([]example{
 	{rule: "charge/droop", fail: list(to("stage.bootstrap.capacitor.capacitance.typ", `"100 nF ±10 %"`)),
 		marginal: list(to("stage.bootstrap.capacitor.capacitance.typ", `"220 nF ±10 %"`)), open: list(to("stage.driver.levelShiftCharge", ``))},
 	{rule: "charge/lowest-voltage", fail: lockout(9), marginal: lockout(8.4), open: list(to("stage.driver.uvloFalling", ``))},
@@ -297,7 +297,7 @@ var examples = []example{
 		marginal: list(to("stage.lowSide.reverse.peakForwardRecovery", ``)), open: list(to("stage.driver.slewMax", ``)),
 		neverFails: "an assumption proves nothing wrong",
 		tried:      [][]edit{list(to("stage.highSide", ``)), list(to("stage.layout", ``))}},
-}
+}, modulatedExamples...)
 
 // found is what a rule finds in a role; rules that judge what the others found are run with all of them.
 func found(t *testing.T, tree any, rl *rule.Rule, role string, simulated bool) (finding.Finding, *rule.Bench) {

@@ -2,8 +2,8 @@ package property
 
 import "testing"
 
-// modulated is the drive stage in the modes of a drive: driving and regenerating with a clamped phase, six-step at low speed, bursts in standby.
-func modulated(t testing.TB) any {
+// driveModes is the drive stage in the modes of a drive: driving and regenerating with a clamped phase, six-step at low speed, bursts in standby.
+func driveModes(t testing.TB) any {
 	t.Helper()
 	tree := document(t, "drive400")
 	points := lookup(tree, at("stage.operatingPoints")).([]any)

@@ -31,13 +31,24 @@ func studyDraws(t testing.TB) int {
 	return n
 }
 
-// studySubjects are the stages that are drawn: the demo stages, the strained one, one whose high side is held on, and the sound ones.
+// modulatedDraws is the largest number of draws of a stage with modulated operating points, and modulatedShare how many times fewer there are of it.
+const modulatedDraws, modulatedShare = 500, 5
+
+// drawsOf is the number of draws of a stage, of those that are asked for.
+func drawsOf(tree any, asked int) int {
+	if isModulated(tree) {
+		return max(1, min(asked/modulatedShare, modulatedDraws))
+	}
+	return asked
+}
+
+// studySubjects are the stages that are drawn: the demo stages, the strained one, one whose high side is held on, the sound ones, and the modulated one.
 func studySubjects(t testing.TB) []variant {
 	out := append(subjects(t), variant{name: "buck48 held on", tree: with(document(t, "buck48"), heldOn...)})
 	for _, s := range soundDesigns {
 		out = append(out, variant{name: s.name, tree: soundDocument(t, s.name)})
 	}
-	return out
+	return append(out, modulated(t))
 }
 
 // studied1 studies a tree.
@@ -71,9 +82,10 @@ const decisive = 10_000
 // TestExtremesBoundDraws holds the two engines against each other: no draw has a smaller margin than the worst case at the same place, none fails
 // where the worst case does not, and none is better by being undecided. Draws stand between the corners, at temperatures between the sets.
 func TestExtremesBoundDraws(t *testing.T) {
-	draws := studyDraws(t)
+	asked := studyDraws(t)
 	for i, s := range studySubjects(t) {
 		t.Run(s.name, func(t *testing.T) {
+			draws := drawsOf(s.tree, asked)
 			out := studied1(t, s.tree, draws, uint32(i), study.Uniform)
 			judged, seen := 0, map[remark]bool{}
 			for k := range out.Results {
