@@ -467,11 +467,9 @@ func (c *Circuit) breakEvenOfCycle() float64 {
 	if c.emptied() { // what leaves at the required voltage, whatever comes
 		e := c.edge()
 		q = loads*y.Plan.Carrier() + y.perPeriod(y.Gates)*math.Max(0, e.gate+e.offBias+e.levelShift+e.gatePerVolt*v)
-	} else {
-		from, to := c.fallen()
-		v += from - to
 	}
-	if v != v || q != q {
+	// What V_BS falls in a long time without recharge is for the capacitor to bear, not for the window.
+	if v += q / c.Capacitance(); v != v || q != q {
 		return nan
 	}
 	sum := 0.0
