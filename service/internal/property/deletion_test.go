@@ -51,7 +51,7 @@ func alone(tree any, p path) any {
 // temperatures and points of curves among them. What was not a PASS at an operating point must not become one, and what failed must not
 // become NOT_APPLICABLE; a request that is refused has no findings. Labels go together; what other data of the stage replace is left in.
 func TestDeletionNeverPasses(t *testing.T) {
-	for _, s := range subjects(t) {
+	for _, s := range allModes(t) {
 		t.Run(s.name, func(t *testing.T) {
 			base := judge(t, bind(t, s.tree), searched())
 			var watched []*rule.Rule // those that do not pass everywhere

@@ -35,8 +35,7 @@ func strained(t testing.TB) any {
 	)
 }
 
-// subjects are the stages that properties are tried on: the demo stages, of which one hardly objects to anything, that one strained, and one
-// whose operating points are modulated.
+// subjects are the stages that properties are tried on: the demo stages, of which one hardly objects to anything, and that one strained.
 func subjects(t testing.TB) []variant {
 	t.Helper()
 	return []variant{
@@ -44,6 +43,11 @@ func subjects(t testing.TB) []variant {
 		{name: "buck48 strained", tree: strained(t)},
 		{name: "gan650", tree: document(t, "gan650")},
 		{name: "drive400", tree: document(t, "drive400")},
-		{name: "drive400 modulated", tree: modulated(t)},
 	}
+}
+
+// allModes are the subjects and one whose operating points are modulated.
+func allModes(t testing.TB) []variant {
+	t.Helper()
+	return append(subjects(t), variant{name: "drive400 modulated", tree: modulated(t)})
 }

@@ -144,12 +144,12 @@ func widenings(tree any) []widening {
 // The strained stage, which stands where pulses vanish and supplies collapse, is demanded outcomes only.
 func TestWideningNeverImproves(t *testing.T) {
 	const between = 2e-3
-	for _, s := range subjects(t) {
+	for _, s := range allModes(t) {
 		t.Run(s.name, func(t *testing.T) {
 			tree := with(s.tree, to("stage.highSide.offBiasSource", `"SEPARATE"`), to("stage.lowSide.offBiasSource", `"SEPARATE"`))
 			base := judge(t, bind(t, tree), searched())
 			all := widenings(tree)
-			if s.name == "buck48 strained" { // the demo stage has the same ranges: every third shows what is wanted here
+			if s.name == "buck48 strained" || s.name == "drive400 modulated" { // the demo stages have the same ranges: every third shows what is wanted here
 				for i := range all {
 					if 3*i < len(all) {
 						all[i] = all[3*i]
