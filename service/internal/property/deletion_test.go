@@ -2,6 +2,7 @@ package property
 
 import (
 	"slices"
+	"strings"
 	"sync/atomic"
 	"testing"
 
@@ -72,6 +73,13 @@ func TestDeletionNeverPasses(t *testing.T) {
 					variants = append(variants, variant{p.String(), alone(without(s.tree, p), p)})
 				}
 			})
+			if s.name == "drive400 modulated" { // the demo stage has the same parts: what the modes make of them, and some of the rest
+				k := 0
+				variants = slices.DeleteFunc(variants, func(v variant) bool {
+					k++
+					return k%5 != 0 && !strings.Contains(v.name, "operatingPoints") && !strings.Contains(v.name, "channelPoints")
+				})
+			}
 			variants = append(variants, variant{"labels", bare})
 			var opened atomic.Int64
 			answered := eachBench(t, variants, func(v *variant, j *judged) {

@@ -1,11 +1,18 @@
 package property
 
 import (
+	"fmt"
 	"math"
+	"math/rand/v2"
+	"runtime"
 	"slices"
 	"strings"
 	"testing"
 
+	"github.com/google/go-cmp/cmp"
+	"github.com/google/go-cmp/cmp/cmpopts"
+
+	"floatrail/calc"
 	"floatrail/calc/circuit"
 	"floatrail/calc/corner"
 	"floatrail/calc/derive"
@@ -107,4 +114,61 @@ func TestModulatedLimitsTurn(t *testing.T) {
 		}
 	}
 	t.Log(found)
+}
+
+// randomMode is a mode with numbers between those of a servo and of a standby supply, some of them with a range.
+func randomMode(g *rand.Rand) (mode, text string) {
+	span := func(low, high float64) float64 { return low * math.Pow(high/low, g.Float64()) }
+	q := func(v float64, unit string) string {
+		if g.IntN(3) == 0 {
+			return fmt.Sprintf(`{"min": "%g%s", "typ": "%g%[2]s", "max": "%g%[2]s"}`, 0.9*v, unit, v, 1.05*v)
+		}
+		return fmt.Sprintf(`{"typ": "%g%s"}`, v, unit)
+	}
+	duty := func() string { return q(0.9*g.Float64(), "") }
+	switch g.IntN(4) {
+	case 0:
+		return "sixStep", fmt.Sprintf(`{"electricalFrequency": %s, "chopping": "%s", "duty": %s}`, q(span(0.1, 1500), " Hz"),
+			[]string{"HIGH_SIDE", "LOW_SIDE", "BOTH"}[g.IntN(3)], duty())
+	case 1:
+		return "burst", fmt.Sprintf(`{"duty": %s, "activeTime": %s, "idleTime": %s, "idleNodeVoltage": %s}`, duty(), q(span(1e-4, 1), " s"), q(span(1e-4, 10), " s"),
+			q(20*g.Float64(), " V"))
+	}
+	return "sinusoidal", fmt.Sprintf(`{"modulationIndex": %s, "fundamentalFrequency": %s, "displacementAngle": %s, "zeroSequence": "%s"}`, q(1.3*g.Float64(), ""),
+		q(span(0.1, 1500), " Hz"), q(180*g.Float64(), " deg"), []string{"NONE", "THIRD_HARMONIC", "MIN_MAX", "CLAMP_60", "CLAMP_120_HIGH", "CLAMP_120_LOW"}[g.IntN(6)])
+}
+
+// TestModulatedAnswersNeverVary reviews random stages of three modulated operating points: the report is the same on one, two and four processors, the
+// numbers are in whatever order the points stand, and no rule panics.
+func TestModulatedAnswersNeverVary(t *testing.T) {
+	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(0))
+	g := rand.New(rand.NewPCG(23, 29))
+	plain := pinned(document(t, "drive400"))
+	for k := range max(1, 8/every) {
+		var points []any
+		for n, p := range lookup(plain, at("stage.operatingPoints")).([]any) {
+			mode, text := randomMode(g)
+			p = with(without(p, path{"fixedDuty"}), to(mode, text))
+			if element := g.IntN(4); element == 0 {
+				p = with(p, to("rippleCurrent", `{"typ": "30 A"}`))
+			}
+			p.(map[string]any)["name"] = fmt.Sprint("point ", n)
+			points = append(points, p)
+		}
+		tree := with(plain, edit{at("stage.operatingPoints"), points})
+		if k%4 == 3 {
+			tree = with(tree, to("stage.bootstrap.element", `"INTEGRATED_SWITCH"`), to("stage.bootstrap.switchResistance", `{"min": "50 ohm", "typ": "60 ohm", "max": "80 ohm"}`))
+		}
+		runtime.GOMAXPROCS(1)
+		first := review(t, tree, calc.WithDutyLimits)
+		for _, processors := range []int{2, 4} {
+			runtime.GOMAXPROCS(processors)
+			if d := cmp.Diff(first, review(t, tree, calc.WithDutyLimits), cmpopts.EquateNaNs()); d != "" {
+				t.Errorf("%d on %d processors: %s", k, processors, d)
+			}
+		}
+		slices.Reverse(points)
+		want := judge(t, bind(t, tree), searched())
+		sameNumbers(t, want, judge(t, bind(t, with(tree, edit{at("stage.operatingPoints"), points})), searched()))
+	}
 }
