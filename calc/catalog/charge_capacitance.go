@@ -34,8 +34,8 @@ var chargeCapacitance = &rule.Rule{
 			}
 			return c.Capacitance() - c.MinimumCapacitance(c.Required())
 		},
-		func(c *circuit.Circuit, _ string) float64 { return spare(c, (*circuit.Circuit).Required) },
-		func(c *circuit.Circuit, _ string) float64 { return spare(c, (*circuit.Circuit).Kept) },
+		func(c *circuit.Circuit, _ string) float64 { return spare(c, false) },
+		func(c *circuit.Circuit, _ string) float64 { return spare(c, true) },
 		func(c *circuit.Circuit, _ string) float64 {
 			switch {
 			case c.Point == nil:
@@ -43,7 +43,7 @@ var chargeCapacitance = &rule.Rule{
 			case c.Point.HeldOn != nil: // no period, no ripple
 				return math.Inf(1)
 			}
-			return c.PermittedRipple() - c.CycleCharge()/c.Capacitance()
+			return c.RippleSpare()
 		},
 	},
 	Explain: func(c *circuit.Circuit, _ string, _ rule.Check) []string {
@@ -56,15 +56,19 @@ var chargeCapacitance = &rule.Rule{
 	},
 }
 
-// spare is what the charge of a period leaves above a voltage that V_BS must keep, whatever ripple is permitted [V]. It has the sign of the
+// spare is what the charge of a period leaves above the voltage that V_BS must keep, whatever ripple is permitted [V]. It has the sign of the
 // distance of C_B to the smallest capacitance that keeps the voltage, without its pole where nothing is left.
-func spare(c *circuit.Circuit, keep func(*circuit.Circuit) float64) float64 {
+func spare(c *circuit.Circuit, margin bool) float64 {
 	switch {
 	case c.Point == nil:
 		return c.NoPoint()
 	case c.Point.HeldOn != nil:
+		keep := c.Required()
+		if margin {
+			keep = c.Kept()
+		}
 		h, t := c.Hold()
-		return h.Voltage(t) - keep(c)
+		return h.Voltage(t) - keep
 	}
-	return c.Left(keep(c)) - c.CycleCharge()/c.Capacitance()
+	return c.SpareVoltage(margin)
 }

@@ -386,13 +386,54 @@ func (c *Circuit) Drop(keep float64) float64 {
 // Left is what recharge leaves above a voltage that V_BS must keep [V].
 func (c *Circuit) Left(keep float64) float64 {
 	if c.modulated() {
-		if c.emptied() {
-			return math.Inf(-1) + 0*keep
-		}
-		from, _ := c.fallen()
-		return from - keep
+		left := math.Inf(1)
+		c.eachFall(keep > c.Required(), func(from, _, keep float64) { left = math.Min(left, from-keep) })
+		return left
 	}
 	return c.recharged(charge.Consumed(c.Budget())) - keep
+}
+
+// eachFall calls f with the falls of V_BS at a modulated operating point that end nearest to what they must keep, with the policy's margin or without:
+// V_BS before, at the end, and what it keeps there [V]. Which of them asks for the largest capacitance is another question than which ends nearest.
+func (c *Circuit) eachFall(margin bool, f func(from, to, keep float64)) {
+	y := c.Cycle()
+	kept := func(v float64) float64 {
+		if margin {
+			return v + c.Margin(v)
+		}
+		return v
+	}
+	lockout := kept(c.Need(&c.Stage.Driver.UVLOFalling))
+	if c.emptied() {
+		f(math.Inf(-1)+0*lockout, math.Inf(-1), lockout)
+		return
+	}
+	f(y.Held, y.Low.Value, lockout)
+	if c.Forward() && (y.Plan == nil || y.OnLow.Period >= 0) {
+		f(y.OnHeld, y.OnLow.Value, kept(c.driveNeeded()))
+	}
+}
+
+// SpareVoltage is how far V_BS stays above what it must keep, with the policy's margin or without, whatever ripple is permitted [V].
+func (c *Circuit) SpareVoltage(margin bool) float64 {
+	if !c.modulated() {
+		keep := c.Required()
+		if margin {
+			keep = c.Kept()
+		}
+		return c.Left(keep) - c.CycleCharge()/c.Capacitance()
+	}
+	spare := math.Inf(1)
+	c.eachFall(margin, func(_, to, keep float64) { spare = math.Min(spare, to-keep) })
+	return spare
+}
+
+// RippleSpare is how far the fall of V_BS stays below the permitted ripple [V].
+func (c *Circuit) RippleSpare() float64 {
+	if c.modulated() {
+		return c.PermittedRipple() - c.Droop()
+	}
+	return c.PermittedRipple() - c.CycleCharge()/c.Capacitance()
 }
 
 // PermittedRipple is the policy's share of V_BS before the rising edge, or of the required voltage where there is no steady state [V].
@@ -436,6 +477,17 @@ func (c *Circuit) MinimumCapacitance(keep float64) float64 {
 			return math.Inf(1)
 		}
 		return h.Capacitance * t / hold
+	}
+	if c.modulated() { // the falls are in proportion to 1/C, whatever they start from
+		most := c.Droop() / c.PermittedRipple()
+		c.eachFall(keep > c.Required(), func(from, to, keep float64) {
+			ratio := (from - to) / (from - keep)
+			if from-keep <= 0 {
+				ratio = math.Inf(1)
+			}
+			most = math.Max(most, ratio)
+		})
+		return c.Capacitance() * most
 	}
 	v, _ := charge.MinimumCapacitance(c.CycleCharge(), c.Drop(keep))
 	return v

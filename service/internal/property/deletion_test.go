@@ -2,6 +2,7 @@ package property
 
 import (
 	"slices"
+	"strings"
 	"sync/atomic"
 	"testing"
 
@@ -51,7 +52,7 @@ func alone(tree any, p path) any {
 // temperatures and points of curves among them. What was not a PASS at an operating point must not become one, and what failed must not
 // become NOT_APPLICABLE; a request that is refused has no findings. Labels go together; what other data of the stage replace is left in.
 func TestDeletionNeverPasses(t *testing.T) {
-	for _, s := range subjects(t) {
+	for _, s := range allModes(t) {
 		t.Run(s.name, func(t *testing.T) {
 			base := judge(t, bind(t, s.tree), searched())
 			var watched []*rule.Rule // those that do not pass everywhere
@@ -72,6 +73,13 @@ func TestDeletionNeverPasses(t *testing.T) {
 					variants = append(variants, variant{p.String(), alone(without(s.tree, p), p)})
 				}
 			})
+			if s.name == "drive400 modulated" { // the demo stage has the same parts: what the modes make of them, and some of the rest
+				k := 0
+				variants = slices.DeleteFunc(variants, func(v variant) bool {
+					k++
+					return k%5 != 0 && !strings.Contains(v.name, "operatingPoints") && !strings.Contains(v.name, "channelPoints")
+				})
+			}
 			variants = append(variants, variant{"labels", bare})
 			var opened atomic.Int64
 			answered := eachBench(t, variants, func(v *variant, j *judged) {

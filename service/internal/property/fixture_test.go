@@ -35,9 +35,9 @@ func strained(t testing.TB) any {
 	)
 }
 
-// modulated is the demo stage whose operating points are modulated. Many periods stand behind each of its numbers: it is tried where that matters, and
+// spindle is the demo stage whose operating points are modulated. Many periods stand behind each of its numbers: it is tried where that matters, and
 // less often.
-func modulated(t testing.TB) variant {
+func spindle(t testing.TB) variant {
 	t.Helper()
 	return variant{name: "spindle325", tree: document(t, "spindle325")}
 }
@@ -63,4 +63,10 @@ func subjects(t testing.TB) []variant {
 		{name: "gan650", tree: document(t, "gan650")},
 		{name: "drive400", tree: document(t, "drive400")},
 	}
+}
+
+// allModes are the subjects and one whose operating points are modulated.
+func allModes(t testing.TB) []variant {
+	t.Helper()
+	return append(subjects(t), variant{name: "drive400 modulated", tree: modulated(t)})
 }

@@ -48,7 +48,7 @@ func studySubjects(t testing.TB) []variant {
 	for _, s := range soundDesigns {
 		out = append(out, variant{name: s.name, tree: soundDocument(t, s.name)})
 	}
-	return append(out, modulated(t))
+	return append(out, spindle(t))
 }
 
 // studied1 studies a tree.
