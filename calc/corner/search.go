@@ -133,9 +133,7 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 				if below(other, best) {
 					at = 3 - far
 				}
-				if d := math.Abs(above(u, v)); d > 0 && !math.IsInf(d, 0) {
-					w.effects = append(w.effects, Swing{s.inputs[id], d})
-				}
+				w.effect(id, math.Abs(above(u, v)))
 				if at != 0 {
 					w.ends = append(w.ends, end{id, at})
 				}
@@ -143,9 +141,7 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 			}
 			lo, hi := try(1), try(2)
 			if s.Dear {
-				if d := max(math.Abs(above(lo, v)), math.Abs(above(hi, v))); d > 0 && !math.IsInf(d, 0) {
-					w.effects = append(w.effects, Swing{s.inputs[id], d})
-				}
+				w.effect(id, max(math.Abs(above(lo, v)), math.Abs(above(hi, v))))
 			}
 			turns := above(lo, v)*above(hi, v) > 0
 			if s.interior.has(id) && !turns { // look between the ends for a turn
@@ -176,6 +172,13 @@ func (s *Space) search(f Function, log *[]seen) Worst {
 		s.Polish(&w, f)
 	}
 	return w
+}
+
+// effect notes how far an input moves the function from its typical draw.
+func (w *Worst) effect(id int, d float64) {
+	if d > 0 && !math.IsInf(d, 0) {
+		w.effects = append(w.effects, Swing{w.Space.inputs[id], d})
+	}
 }
 
 // farEnd is the end of an input that is farther from its typical value: the sample number.

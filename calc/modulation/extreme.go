@@ -4,9 +4,9 @@ import "math"
 
 // describe finds the extremes and means of the solution.
 func (w *walker) describe(out *Steady) {
-	out.Low, _ = w.extreme(out.steps, func(s *seen) float64 { return s.low }, 1)
-	out.OnLow, _ = w.extreme(out.steps, func(s *seen) float64 { return s.onLow }, 1)
-	out.High, _ = w.extreme(out.steps, func(s *seen) float64 { return -s.high }, -1)
+	out.Low = w.extreme(out.steps, func(s *seen) float64 { return s.low }, 1)
+	out.OnLow = w.extreme(out.steps, func(s *seen) float64 { return s.onLow }, 1)
+	out.High = w.extreme(out.steps, func(s *seen) float64 { return -s.high }, -1)
 	out.Charge = 0
 	for i := range out.steps {
 		s := &out.steps[i]
@@ -40,7 +40,7 @@ func (s *Steady) times() {
 const candidates = 1e-3
 
 // extreme finds the period in which what of is smallest; sign turns it to what is reported.
-func (w *walker) extreme(steps []step, of func(*seen) float64, sign float64) (best Extreme, found bool) {
+func (w *walker) extreme(steps []step, of func(*seen) float64, sign float64) (best Extreme) {
 	least := math.Inf(1)
 	for i := range steps {
 		for k := range steps[i].seen {
@@ -73,7 +73,7 @@ func (w *walker) extreme(steps []step, of func(*seen) float64, sign float64) (be
 		}
 	}
 	best.Value *= sign
-	return best, best.Period >= 0
+	return best
 }
 
 // lowest is about where what of tells is smallest in a step of several periods, by the cubic through the positions.
