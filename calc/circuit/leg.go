@@ -133,11 +133,13 @@ func (c *Circuit) modulated() bool {
 // Cycle finds the periodic solution over a fundamental, a revolution, or a burst with its pause.
 func (c *Circuit) Cycle() *Cycle {
 	return corner.Memo(c.Draw, slotCycle, true, &c.cycleAt, func() Cycle {
-		start := nan
+		var like modulation.Steady
 		if typ := c.typical(); typ != c {
-			start = typ.Cycle().Start
+			like = typ.Cycle().Steady
+		} else {
+			like.Start = nan
 		}
-		return c.cycle(start)
+		return c.cycle(&like)
 	})
 }
 
@@ -198,7 +200,7 @@ func (c *Circuit) makePlan() *modulation.Plan {
 	return nil
 }
 
-func (c *Circuit) cycle(start float64) Cycle {
+func (c *Circuit) cycle(like *modulation.Steady) Cycle {
 	out := Cycle{}
 	out.Low, out.OnLow, out.High = modulation.Extreme{Value: nan}, modulation.Extreme{Value: nan}, modulation.Extreme{Value: nan}
 	out.Droop, out.Held, out.OnHeld, out.Charge, out.Start = nan, nan, nan, nan, nan
@@ -206,7 +208,7 @@ func (c *Circuit) cycle(start float64) Cycle {
 	if p == nil {
 		return out
 	}
-	out.Steady, out.Plan = p.Steady(start), p
+	out.Steady, out.Plan = p.SteadyLike(like), p
 	if !out.Converged {
 		c.Open("the periodic solution was not found")
 	}
@@ -251,7 +253,10 @@ func (c *Circuit) overall() recharge.Steady {
 	low := y.Plan.At(y.Low.Period)
 	flow := low.Element.Flow()
 	pass := flow.Pass(&low.Period, y.Low.Before)
-	st.Low, st.High, st.BeforeEdge, st.AfterEdge, st.Charge = y.Low.Value, y.High.Value, y.Held, pass.After, y.perPeriod(y.Charge)
+	st.Low, st.High, st.BeforeEdge, st.AfterEdge, st.Charge = y.Low.Value, y.High.Value, y.Held, y.Held, y.perPeriod(y.Charge)
+	if low.Gated {
+		st.AfterEdge = pass.After
+	}
 	st.Recovery = y.Recovery
 	return st
 }

@@ -72,7 +72,12 @@ func (w *Worst) minor() []Swing {
 
 // Polish moves one input at a time from the worst draw until nothing gets worse, and measures the swings there. A frugal space moves those alone that
 // had most effect at the typical draw, once.
-func (s *Space) Polish(w *Worst, f Function) {
+func (s *Space) Polish(w *Worst, f Function) { s.polish(w, f, false) }
+
+// Scour is Polish that moves the inputs of little effect, too: what matters at the worst draw may not have at the typical one.
+func (s *Space) Scour(w *Worst, f Function) { s.polish(w, f, true) }
+
+func (s *Space) polish(w *Worst, f Function, all bool) {
 	passes := 4
 	var ids []int
 	minor := newBits(len(s.inputs)) // inputs of little effect, which stay where they are
@@ -85,7 +90,9 @@ func (s *Space) Polish(w *Worst, f Function) {
 	case s.Dear:
 		passes = dearPasses
 		for _, e := range w.minor() {
-			minor.set(e.Input.ID)
+			if !all {
+				minor.set(e.Input.ID)
+			}
 		}
 		fallthrough
 	default:

@@ -15,7 +15,7 @@ func BenchmarkFundamental(b *testing.B) {
 		}
 		c.Periods = 16_000
 		p := c.plan()
-		exact := p.steady(math.NaN(), defaultTolerance, true)
+		exact := p.steady(math.NaN(), defaultTolerance, true, nil)
 		b.Run(c.Name, func(b *testing.B) {
 			var s Steady
 			for b.Loop() {
@@ -27,7 +27,7 @@ func BenchmarkFundamental(b *testing.B) {
 		})
 		b.Run(c.Name+", every period", func(b *testing.B) {
 			for b.Loop() {
-				p.steady(math.NaN(), defaultTolerance, true)
+				p.steady(math.NaN(), defaultTolerance, true, nil)
 			}
 		})
 	}

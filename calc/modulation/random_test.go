@@ -79,7 +79,7 @@ func TestStepsAgainstEveryPeriod(t *testing.T) {
 	for k := range 300 {
 		p, text := randomCase(g, 4000)
 		start := p.leg.Supply * g.Float64()
-		got, want := p.steady(start, defaultTolerance, false), p.steady(start, defaultTolerance, true)
+		got, want := p.steady(start, defaultTolerance, false, nil), p.steady(start, defaultTolerance, true, nil)
 		if !got.Converged || !want.Converged || got.Collapses != want.Collapses || (got.OnLow.Period < 0) != (want.OnLow.Period < 0) {
 			t.Errorf("%d: converged %t and %t, collapses %t and %t, with forward current at %v and %v: %s", k, got.Converged, want.Converged, got.Collapses,
 				want.Collapses, got.OnLow, want.OnLow, text)

@@ -131,7 +131,7 @@ func TestReference(t *testing.T) {
 		kinds[c.Kind]++
 		e := &c.Expected
 		for _, exact := range []bool{true, false} {
-			s := p.steady(math.NaN(), defaultTolerance, exact)
+			s := p.steady(math.NaN(), defaultTolerance, exact, nil)
 			bad := func(what string, got, want, tolerance float64) {
 				if !(math.Abs(got-want) <= tolerance) {
 					t.Errorf("%s, exact %v: %s %.9g, want %.9g ± %.1g", c.Name, exact, what, got, want, tolerance)

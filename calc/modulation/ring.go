@@ -1,6 +1,9 @@
 package modulation
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // Extreme is where a voltage is lowest or highest over all periods of a plan.
 type Extreme struct {
@@ -36,10 +39,19 @@ type Steady struct {
 const mostTurns = 60
 
 // Steady finds the periodic solution from an estimate of V_BS before the first edge [V]; NaN where there is none.
-func (p *Plan) Steady(start float64) Steady { return p.steady(start, defaultTolerance, false) }
+func (p *Plan) Steady(start float64) Steady { return p.steady(start, defaultTolerance, false, nil) }
 
-// steady is Steady with a tolerance of the steps [V]; or, exact, with every period by itself.
-func (p *Plan) steady(start, tolerance float64, exact bool) Steady {
+// SteadyLike is Steady from the solution of a similar plan, whose steps are taken over where both have the same runs.
+func (p *Plan) SteadyLike(s *Steady) Steady {
+	var known []step
+	if s.plan != nil && s.plan.periods == p.periods && slices.EqualFunc(s.plan.runs, p.runs, func(a, b run) bool { return a.from == b.from && a.to == b.to }) {
+		known = s.steps
+	}
+	return p.steady(s.Start, defaultTolerance, false, known)
+}
+
+// steady is Steady with a tolerance of the steps [V]; or, exact, with every period by itself. It begins with the steps of another plan, if any.
+func (p *Plan) steady(start, tolerance float64, exact bool, known []step) Steady {
 	w := walker{plan: p, flow: p.leg.Element.Flow(), tolerance: tolerance, exact: exact, steps: make([]step, 0, 128)}
 	low, high := 0.0, p.ceiling()
 	nan := math.NaN()
@@ -51,7 +63,6 @@ func (p *Plan) steady(start, tolerance float64, exact bool) Steady {
 	if !(v > low && v < high) {
 		v = high / 2
 	}
-	var known []step
 	for turns := 0; ; turns++ {
 		if turns == mostTurns {
 			out.Passes = w.passes
@@ -61,7 +72,7 @@ func (p *Plan) steady(start, tolerance float64, exact bool) Steady {
 		var end, slope float64
 		met := false
 		if known != nil {
-			end, slope, met = w.again(v, known)
+			end, slope, met = w.again(v, known, turns == 0)
 		}
 		if known == nil || end != end {
 			w.steps = w.steps[:0]

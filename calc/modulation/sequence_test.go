@@ -92,7 +92,7 @@ func TestManyPeriods(t *testing.T) {
 			c.Load /= 100 // which is held for 3.3 s
 		}
 		p := c.plan()
-		got, want := p.Steady(math.NaN()), p.steady(math.NaN(), 0, true)
+		got, want := p.Steady(math.NaN()), p.steady(math.NaN(), 0, true, nil)
 		if math.Abs(got.Low.Value-want.Low.Value) > 0.3e-3 || math.Abs(got.High.Value-want.High.Value) > 0.3e-3 || got.Passes > 4000 || p.Periods() != 200_000 {
 			t.Errorf("%s: %g to %g V in %d evaluations, want %g to %g", c.Name, got.Low.Value, got.High.Value, got.Passes, want.Low.Value, want.High.Value)
 		}
@@ -123,5 +123,28 @@ func TestDirections(t *testing.T) {
 				t.Errorf("%s: more adverse %s lifts the lowest V_BS from %g to %g V", c.Name, k.name, base.Low.Value, s.Low.Value)
 			}
 		}
+	}
+}
+
+// TestSimilarPlans: a plan that takes over the steps of a similar one has the same solution, in fewer evaluations over all.
+func TestSimilarPlans(t *testing.T) {
+	own, taken := 0, 0
+	for _, c := range references(t) {
+		if c.Kind == "" || c.plan() == nil {
+			continue
+		}
+		first := c.plan().Steady(math.NaN())
+		c.Supply += 0.5
+		c.Load *= 1.3
+		c.Capacitance *= 0.8
+		p := c.plan()
+		a, b := p.Steady(first.Start), p.SteadyLike(&first)
+		own, taken = own+a.Passes, taken+b.Passes
+		if b.Collapses != a.Collapses || !b.Converged || math.Abs(a.Low.Value-b.Low.Value) > 0.3e-3 || math.Abs(a.High.Value-b.High.Value) > 0.3e-3 {
+			t.Errorf("%s: %g to %g V with the steps of another plan, %g to %g V with its own", c.Name, b.Low.Value, b.High.Value, a.Low.Value, a.High.Value)
+		}
+	}
+	if float64(taken) > 0.85*float64(own) {
+		t.Errorf("%d evaluations with the steps of another plan, %d with their own", taken, own)
 	}
 }

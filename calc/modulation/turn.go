@@ -20,6 +20,7 @@ type walker struct {
 	flow      recharge.Flow
 	tolerance float64
 	exact     bool // every period by itself
+	other     bool // the steps that are taken over are those of another plan
 	steps     []step
 	passes    int // evaluations of the law of one period
 
@@ -74,13 +75,15 @@ func (w *walker) turn(v float64) (end, slope float64) {
 	return v, slope
 }
 
-// again carries V_BS through the steps of a turn before, until it meets it.
-func (w *walker) again(v float64, known []step) (end, slope float64, met bool) {
+// again carries V_BS through the steps of a turn before, until it meets it; through those of another plan it does not end before the last.
+func (w *walker) again(v float64, known []step, other bool) (end, slope float64, met bool) {
 	slope = 1
-	for i := range known {
+	w.other = other
+	defer func() { w.other = false }()
+	for i := 0; i < len(known); i++ {
 		s := &known[i]
 		shift := v - s.v[0]
-		if math.Abs(shift) <= closeEnough {
+		if math.Abs(shift) <= closeEnough && !other {
 			w.steps = append(w.steps, known[i:]...)
 			return v, slope, true
 		}
@@ -92,8 +95,13 @@ func (w *walker) again(v float64, known []step) (end, slope float64, met bool) {
 				start.v[j] += shift
 			}
 			next, by, _, ok := w.collocate(start, true)
-			if !ok {
-				return math.NaN(), slope, false
+			if !ok { // the rest of the run in steps of its own
+				v, ds = w.rest(s.run, s.from, v)
+				slope *= ds
+				for i+1 < len(known) && known[i+1].run == s.run {
+					i++
+				}
+				continue
 			}
 			v, ds = next, by
 		case s.from == run.from:
@@ -131,10 +139,17 @@ func (w *walker) single(r, k int, v float64) (next, slope float64) {
 
 // walk carries V_BS through a run.
 func (w *walker) walk(r int, v float64) (end, slope float64) {
-	run := &w.plan.runs[r]
 	v, slope = w.enter(r, v)
+	end, ds := w.rest(r, w.steps[len(w.steps)-1].to, v)
+	return end, slope * ds
+}
+
+// rest carries V_BS through the periods of a run from one on.
+func (w *walker) rest(r, k int, v float64) (end, slope float64) {
+	run := &w.plan.runs[r]
+	slope = 1
 	size := 1.0 // of the next step [periods]
-	for k := w.steps[len(w.steps)-1].to; k < run.to; {
+	for k < run.to {
 		m := min(int(size), run.to-k)
 		var ds float64
 		if w.exact || m < fewest {
@@ -214,12 +229,14 @@ func (w *walker) collocate(s step, sure bool) (next, slope, grow float64, ok boo
 	}
 	// Neither the first period nor the ones looked at between are nodes: what the cubic misses there tells how good it is.
 	e := w.missed(&s, 0, first)
-	if sure {
-		w.steps = append(w.steps, s)
-		return next, slope, 1, e <= 2
+	if sure && !w.other {
+		if e <= enough {
+			w.steps = append(w.steps, s)
+		}
+		return next, slope, 1, e <= enough
 	}
 	look := func(at float64) {
-		if x := float64(s.from) + at*last; e <= 1 {
+		if x := float64(s.from) + at*last; e <= 1 || sure && e <= enough {
 			there, _ := w.pass(run, x, s.before(x))
 			e = math.Max(e, w.missed(&s, at, there))
 		}
@@ -230,6 +247,12 @@ func (w *walker) collocate(s step, sure bool) (next, slope, grow float64, ok boo
 			look(float64(m-s.from) * h)
 		}
 	}
+	if sure {
+		if e <= enough {
+			w.steps = append(w.steps, s)
+		}
+		return next, slope, 1, e <= enough
+	}
 	grow = math.Min(4, 0.9*math.Pow(math.Max(e, 1e-9), -0.25))
 	if !(e <= 1) {
 		return 0, 0, math.Max(grow, 0.1), false
@@ -237,6 +260,9 @@ func (w *walker) collocate(s step, sure bool) (next, slope, grow float64, ok boo
 	w.steps = append(w.steps, s)
 	return next, slope, grow, true
 }
+
+// enough is the error of a step taken over, in tolerances, up to which it stands.
+const enough = 2
 
 // between lies between the last two nodes.
 const between = 0.83

@@ -176,15 +176,8 @@ func (b *Bench) near(r *Rule, res *result) bool {
 	if r.Proxy != nil {
 		slack = res.worst.Value
 	}
-	share := nearShare
-	if res.worst.Space.Dear {
-		share = dearShare
-	}
-	return res.thin || !(slack > share*(res.worst.Typical-res.worst.Value))
+	return res.thin || !(slack > nearShare*(res.worst.Typical-res.worst.Value))
 }
-
-// dearShare is nearShare where evaluations take some time.
-const dearShare = 0.1
 
 // frugalShare is nearShare where evaluations are dear.
 const frugalShare = 0.15

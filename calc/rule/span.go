@@ -82,10 +82,10 @@ func (b *Bench) Adverse(p *Point, f Number, d quantity.Dimension, high bool) Ran
 	switch {
 	case out.Low.Space == nil:
 	case high:
-		out.High.Space.Polish(&out.High, fn.Negative())
+		out.High.Space.Scour(&out.High, fn.Negative())
 		out.Span.Max = significant(-out.High.Value)
 	default:
-		out.Low.Space.Polish(&out.Low, fn)
+		out.Low.Space.Scour(&out.Low, fn)
 		out.Span.Min = significant(out.Low.Value)
 	}
 	return out
