@@ -26,18 +26,6 @@ var dutyLargestDuty = &rule.Rule{
 	Quantity: "Duty or modulation index", Against: "largest one", Dimension: quantity.Ratio, Sense: rule.AtMost,
 	Inapplicable: switching,
 	Proxy:        func(c *circuit.Circuit, _ string) float64 { return derive.Hold(c) }, ProxyDimension: quantity.Voltage,
-	Alternatives: []func(*circuit.Circuit, string) float64{
-		func(c *circuit.Circuit, _ string) float64 { return derive.Hold(c) },
-		func(c *circuit.Circuit, _ string) float64 { // V_BS may be lowest at another index than that nearest to its limit
-			if c.Point == nil || c.Point.Sinusoidal == nil {
-				return math.Inf(1)
-			}
-			if low := c.Low(); low != low {
-				return low
-			}
-			return -c.Need(derive.DutyOf(c.Point))
-		},
-	},
 	Check: func(c *circuit.Circuit, _ string) rule.Check {
 		if c.Point == nil {
 			return rule.Check{Value: c.NoPoint()}
@@ -58,8 +46,8 @@ var dutyLargestDuty = &rule.Rule{
 			limit = math.Inf(-1)
 		}
 		if c.Point.Sinusoidal != nil {
-			if l.Whole { // no index breaks it
-				return rule.Check{Value: d, Limit: limit, Guard: limit}
+			if l.Whole && derive.Hold(c) >= 0 { // no index breaks it
+				return rule.Check{Value: d, Limit: math.Inf(1), Guard: math.Inf(1)}
 			}
 			return rule.Check{Value: d, Limit: limit, Guard: below(c, limit)}
 		}

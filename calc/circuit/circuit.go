@@ -32,6 +32,8 @@ type Circuit struct {
 	capacitanceAt float64
 	edgeAt        edge
 	budgetAt      []charge.Item
+	legAt         modulation.Leg
+	bufferAt      modulation.Buffer
 	cycleAt       Cycle
 	planAt        *modulation.Plan
 

@@ -11,20 +11,17 @@ import (
 
 // leg is the half-bridge as the modulation takes it.
 func (c *Circuit) leg() *modulation.Leg {
-	op, s := c.Point, c.Stage
+	op, s, l := c.Point, c.Stage, &c.legAt
 	if s.LowSide.Kind == "" {
 		c.Want(s.LowSide.Field + ".kind")
 	}
 	loads, e := c.Loads(), c.edge()
-	l := &modulation.Leg{
+	c.legAt = modulation.Leg{
 		Element: c.Element(), Capacitance: c.Capacitance(), Supply: c.Supply(), Bus: c.bus(), Period: 1 / c.Need(&op.SwitchingFrequency),
 		Shortest: c.shortestPulse(), Load: loads.Total(), PullDown: loads.PullDown, Ripple: c.Need(&op.RippleCurrent), LowTime: math.Inf(1),
-		DiodeLow: s.LowSide.Kind == stage.DiodeOnly, Freewheeling: c.freewheelNode, LowOn: c.LowSideNode,
+		DiodeLow: s.LowSide.Kind == stage.DiodeOnly, Nodes: (*read)(c),
 		Charge: e.gate + e.offBias + e.levelShift, ChargePerVolt: e.gatePerVolt, Least: e.offBias + e.levelShift, Junction: e.junction,
 		RecoverySpec: e.recovery, RecoveryTau: e.tau,
-	}
-	if l.DiodeLow { // which has no channel to ask for
-		l.LowOn = c.freewheelNode
 	}
 	if op.SixStep == nil {
 		l.DeadTime = c.Need(&op.DeadTime)
@@ -53,52 +50,69 @@ func (d *curve) at(i float64) float64 {
 	return d.y[k-1] + (d.y[k]-d.y[k-1])*(i-d.x[k-1])/(d.x[k]-d.x[k-1])
 }
 
-// nodes are freewheelNode and LowSideNode, read once for the thousands of periods of a modulated operating point at currents up to one [A].
-func (c *Circuit) nodes(most float64) (freewheeling, lowOn func(float64) float64) {
-	s := &c.Stage.LowSide
-	c.freewheelNode(most) // notes what is missing or assumed
-	if s.Kind != stage.DiodeOnly {
-		c.LowSideNode(most)
-		c.LowSideNode(-most)
+// read reads the node voltages of a draw each time anew.
+type read Circuit
+
+func (r *read) Freewheeling(i float64) float64 { return (*Circuit)(r).freewheelNode(i) }
+
+func (r *read) LowOn(i float64) float64 {
+	if r.Stage.LowSide.Kind == stage.DiodeOnly { // which has no channel to ask for
+		return r.Freewheeling(i)
 	}
-	var reverse, channel curve
+	return (*Circuit)(r).LowSideNode(i)
+}
+
+// drawn are the node voltages of a draw, read once.
+type drawn struct {
+	reverse, channel  curve
+	shunt, resistance float64 // [ohm]
+	kind              string
+}
+
+// nodes reads the node voltages once, for the thousands of periods of a modulated operating point at currents up to one [A].
+func (c *Circuit) nodes(most float64) *drawn {
+	s := &c.Stage.LowSide
+	r := (*read)(c) // which notes what is missing or assumed
+	r.Freewheeling(most)
+	r.LowOn(most)
+	r.LowOn(-most)
+	out := &drawn{kind: s.Kind}
 	for i := range s.Reverse.ForwardPoints.Items {
 		x := c.Need(&s.Reverse.ForwardPoints.Items[i].Current) * s.Count()
-		reverse.x, reverse.y = append(reverse.x, x), append(reverse.y, c.ReverseDrop(s, x))
+		out.reverse.x, out.reverse.y = append(out.reverse.x, x), append(out.reverse.y, c.ReverseDrop(s, x))
 	}
 	for i := range s.ChannelPoints.Items {
 		x := c.Need(&s.ChannelPoints.Items[i].Current) * s.Count()
-		channel.x, channel.y = append(channel.x, x), append(channel.y, c.channelDrop(s, x))
+		out.channel.x, out.channel.y = append(out.channel.x, x), append(out.channel.y, c.channelDrop(s, x))
 	}
-	shunt := c.shunt()
-	freewheeling = func(i float64) float64 {
-		if i > 0 {
-			return -reverse.at(i) - i*shunt
-		}
-		return 0
+	out.shunt = c.shunt()
+	if s.Kind != stage.IGBT && s.Kind != stage.DiodeOnly {
+		out.resistance = c.Need(&s.OnResistance) / s.Count()
 	}
-	switch s.Kind {
-	case stage.DiodeOnly:
-		return freewheeling, freewheeling
-	case stage.IGBT:
-		return freewheeling, func(i float64) float64 {
-			switch {
-			case i > 0:
-				return -reverse.at(i) - i*shunt
-			case i == 0:
-				return 0
-			}
-			return channel.at(-i) - i*shunt
-		}
+	return out
+}
+
+// Freewheeling is freewheelNode.
+func (d *drawn) Freewheeling(i float64) float64 {
+	if i > 0 {
+		return -d.reverse.at(i) - i*d.shunt
 	}
-	resistance := c.Need(&s.OnResistance) / s.Count()
-	return freewheeling, func(i float64) float64 {
-		drop := i * resistance
-		if i > 0 && len(reverse.x) > 0 && drop > 0.3 {
-			drop = math.Min(drop, reverse.at(i))
-		}
-		return -drop - i*shunt
+	return 0
+}
+
+// LowOn is LowSideNode.
+func (d *drawn) LowOn(i float64) float64 {
+	switch {
+	case d.kind == stage.DiodeOnly, d.kind == stage.IGBT && i >= 0:
+		return d.Freewheeling(i)
+	case d.kind == stage.IGBT:
+		return d.channel.at(-i) - i*d.shunt
 	}
+	drop := i * d.resistance
+	if i > 0 && len(d.reverse.x) > 0 && drop > 0.3 { // the body diode takes over where the channel drops more
+		drop = math.Min(drop, d.reverse.at(i))
+	}
+	return -drop - i*d.shunt
 }
 
 // complete tells whether a leg has all its numbers for currents up to one out of the node [A].
@@ -106,7 +120,7 @@ func complete(l *modulation.Leg, current float64) bool {
 	sum := l.Element.Resistance + l.Element.Slope + l.Element.LogSaturation + l.Capacitance + l.Supply + l.Bus + l.Period + l.DeadTime + l.Shortest +
 		l.Load + l.PullDown + l.NodeCharge + l.Ripple + l.Charge + l.ChargePerVolt + l.Junction + l.RecoverySpec + l.RecoveryTau
 	if current != 0 {
-		sum += l.Freewheeling(math.Abs(current)) + l.LowOn(current) + l.LowOn(-current)
+		sum += l.Nodes.Freewheeling(math.Abs(current)) + l.Nodes.LowOn(current) + l.Nodes.LowOn(-current)
 	}
 	return sum == sum && !math.IsInf(l.Period, 0)
 }
@@ -156,8 +170,9 @@ func (c *Circuit) plan() *modulation.Plan {
 
 func (c *Circuit) makePlan() *modulation.Plan {
 	op := c.Point
-	l, current := c.leg(), c.Need(&op.LoadCurrent)
-	l.Freewheeling, l.LowOn = c.nodes(math.Abs(current))
+	own := *c.leg() // plans outlive the draw
+	l, current := &own, c.Need(&op.LoadCurrent)
+	l.Nodes = c.nodes(math.Abs(current))
 	usable := complete(l, current)
 	fundamental := func(f float64) {
 		if f*l.Period*fewestPeriods > 1 {

@@ -187,7 +187,7 @@ func (c *Circuit) period() Period {
 	if t, ok := c.Has(&c.Point.FixedDuty.LowSideOnTime); ok {
 		l.LowTime = t
 	}
-	return c.described(l.Fixed(d, c.Need(&c.Point.LoadCurrent)), c.namesAt[:0])
+	return c.described(l.Fixed(d, c.Need(&c.Point.LoadCurrent), &c.bufferAt), c.namesAt[:0])
 }
 
 // freewheelNode is the node voltage while a current out of the node flows through the low side in reverse, and the shunt [V]; 0 where it

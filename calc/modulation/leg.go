@@ -33,14 +33,18 @@ type Leg struct {
 	Ripple      float64 // of the load current, peak to peak [A]
 	LowTime     float64 // longest on-time of the low side, after which the node floats; +Inf: all that is left [s]
 	DiodeLow    bool    // the low side is a diode: no dead times, and nothing pulls the node down but the load current
-	// Freewheeling and LowOn are the node voltage at a current out of the node [V]: of either sign with the low side on, positive through its
-	// diode alone.
-	Freewheeling, LowOn func(current float64) float64
+	Nodes       Nodes
 
 	// Leaving at a rising edge of the gate, as a line over V_BS after it, and of the node; Least as recharge.Period's ChargeLeast.
 	Charge, ChargePerVolt, Least float64 // [C], [F], [C]
 	Junction                     float64 // charge of D_B's junction, which returns as the node falls [C]
 	RecoverySpec, RecoveryTau    float64 // [C], [s]
+}
+
+// Nodes is the node voltage while it is low, at a current out of the node [A].
+type Nodes interface {
+	LowOn(current float64) float64        // with the low side on, at a current of either sign [V]
+	Freewheeling(current float64) float64 // through its diode alone, at a positive current [V]
 }
 
 // mostIntervals is the largest number of intervals in which the high side is off.
@@ -134,7 +138,7 @@ func (l *Leg) carrier(d, current float64, y *layout) {
 			l.gap(l.Period, peak, current, y)
 			return
 		}
-		y.add(LowSide, l.Period, l.Supply-l.LowOn(current), true, l.Load)
+		y.add(LowSide, l.Period, l.Supply-l.Nodes.LowOn(current), true, l.Load)
 		return
 	case l.DiodeLow || low <= 0 || low < l.Shortest:
 		y.code |= formGap
@@ -149,14 +153,14 @@ func (l *Leg) carrier(d, current float64, y *layout) {
 			y.code |= fallsOver
 		}
 		y.add(Waiting, wait, 0, false, l.Load)
-		y.add(FirstDead, l.DeadTime-wait, l.Supply-l.Freewheeling(peak), free, l.Load)
+		y.add(FirstDead, l.DeadTime-wait, l.Supply-l.Nodes.Freewheeling(peak), free, l.Load)
 	} else {
 		y.add(Waiting, l.DeadTime, 0, false, l.Load)
 	}
-	y.add(LowSide, low, l.Supply-l.LowOn(current), true, l.Load)
+	y.add(LowSide, low, l.Supply-l.Nodes.LowOn(current), true, l.Load)
 	if valley > 0 && floats == 0 {
 		y.code |= heldLow
-		y.add(SecondDead, l.DeadTime, l.Supply-l.Freewheeling(valley), free, l.Load)
+		y.add(SecondDead, l.DeadTime, l.Supply-l.Nodes.Freewheeling(valley), free, l.Load)
 	} else {
 		y.rest = floats + l.DeadTime
 	}
@@ -176,7 +180,7 @@ func (l *Leg) gap(t, peak, current float64, y *layout) {
 		y.code |= fallsOver
 	}
 	y.add(Waiting, wait, 0, false, l.Load)
-	y.add(Freewheel, t-wait, l.Supply-l.Freewheeling(current), !l.Element.Switch, l.Load)
+	y.add(Freewheel, t-wait, l.Supply-l.Nodes.Freewheeling(current), !l.Element.Switch, l.Load)
 }
 
 // period is a layout as the recharge law takes it, after another one: from just before the node rises, if it does. What the loads take in the rest of

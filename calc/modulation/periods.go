@@ -39,11 +39,13 @@ func (l *Leg) described(before, y *layout) Layout {
 }
 
 // Fixed is the period of a constant duty and current out of the node [1], [A], which repeats.
-func (l *Leg) Fixed(d, current float64) Layout {
-	y := new(layout)
-	l.carrier(d, current, y)
-	return l.described(y, y)
+func (l *Leg) Fixed(d, current float64, b *Buffer) Layout {
+	l.carrier(d, current, &b.y)
+	return l.described(&b.y, &b.y)
 }
+
+// Buffer is where the intervals of a Layout stand.
+type Buffer struct{ y layout }
 
 // At is a period of the plan, that of a sample or an extreme.
 func (p *Plan) At(x float64) Layout {

@@ -213,11 +213,11 @@ func (l *Leg) lowSector(m SixStep) (y layout) {
 	case on < l.Shortest:
 		on = 0
 	}
-	y.add(LowSide, on, l.Supply-l.LowOn(current), true, l.Load)
+	y.add(LowSide, on, l.Supply-l.Nodes.LowOn(current), true, l.Load)
 	switch rest := l.Period - on; {
 	case rest <= 0:
 	case current > 0:
-		y.add(Freewheel, rest, l.Supply-l.Freewheeling(current), !l.Element.Switch, l.Load)
+		y.add(Freewheel, rest, l.Supply-l.Nodes.Freewheeling(current), !l.Element.Switch, l.Load)
 	case on > 0:
 		y.rest = rest
 	default:

@@ -35,21 +35,21 @@ func randomCase(g *rand.Rand, most int) (p *Plan, text string) {
 		Ripple: sometimes(0.3, 0.1, 50), LowTime: math.Inf(1), DiodeLow: g.IntN(8) == 0, Charge: charge, Least: charge * g.Float64(),
 		ChargePerVolt: sometimes(0.3, 1e-3, 0.1) * capacitance, Junction: sometimes(0.3, 1e-4, 3e-2) * charge, RecoverySpec: sometimes(0.4, 0.01, 1) * charge,
 		RecoveryTau: span(1e-8, 3e-7),
-		Freewheeling: func(i float64) float64 {
+		Nodes: nodeFuncs{freewheeling: func(i float64) float64 {
 			if i > 0 {
 				return -reverse - 2*on*i
 			}
 			return 0
 		},
-		LowOn: func(i float64) float64 {
-			switch {
-			case saturation == 0:
-				return -i * on
-			case i > 0:
-				return -reverse - 2*on*i
-			}
-			return saturation - on*i
-		},
+			lowOn: func(i float64) float64 {
+				switch {
+				case saturation == 0:
+					return -i * on
+				case i > 0:
+					return -reverse - 2*on*i
+				}
+				return saturation - on*i
+			}},
 	}
 	current := span(0.01, 100)
 	if g.IntN(4) == 0 {

@@ -85,16 +85,16 @@ func (c *referenceCase) leg() *Leg {
 		Element:     recharge.Element{Junction: recharge.Junction{Slope: c.Element.Slope, LogSaturation: c.Element.LogSaturation}, Resistance: c.Element.Resistance, Switch: c.Element.Switch},
 		Capacitance: c.Capacitance, Supply: c.Supply, Bus: c.Bus, Period: 1 / c.SwitchingFrequency, DeadTime: c.DeadTime, Shortest: c.ShortestPulse,
 		Load: c.Load, PullDown: c.Conductance, NodeCharge: c.OutputCharge, LowTime: math.Inf(1),
-		Freewheeling: func(i float64) float64 { return -c.ReverseLevel - c.ReverseResistance*i },
-		LowOn: func(i float64) float64 {
-			switch {
-			case c.LowSide != "IGBT":
-				return -i * c.OnResistance
-			case i > 0:
-				return -c.ReverseLevel - c.ReverseResistance*i
-			}
-			return c.SaturationLevel - c.SaturationResistance*i
-		},
+		Nodes: nodeFuncs{freewheeling: func(i float64) float64 { return -c.ReverseLevel - c.ReverseResistance*i },
+			lowOn: func(i float64) float64 {
+				switch {
+				case c.LowSide != "IGBT":
+					return -i * c.OnResistance
+				case i > 0:
+					return -c.ReverseLevel - c.ReverseResistance*i
+				}
+				return c.SaturationLevel - c.SaturationResistance*i
+			}},
 		Charge: c.Charge, ChargePerVolt: c.ChargePerVolt, Junction: c.JunctionCharge, RecoverySpec: c.RecoverySpec, RecoveryTau: c.RecoveryTau,
 	}
 	return l
@@ -207,3 +207,9 @@ func (s *Steady) before(k int) float64 {
 	}
 	return math.NaN()
 }
+
+// nodeFuncs are node voltages by functions of the current.
+type nodeFuncs struct{ freewheeling, lowOn func(float64) float64 }
+
+func (n nodeFuncs) Freewheeling(i float64) float64 { return n.freewheeling(i) }
+func (n nodeFuncs) LowOn(i float64) float64        { return n.lowOn(i) }
