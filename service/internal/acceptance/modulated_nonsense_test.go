@@ -5,7 +5,6 @@ import (
 	"slices"
 	"strings"
 	"testing"
-	"time"
 
 	"google.golang.org/protobuf/encoding/protojson"
 
@@ -15,14 +14,10 @@ import (
 // running is a stage with resistances and loads of note.
 var running = edits{"driver.floatingQuiescentCurrent": "100 uA", "bootstrap.resistor.resistance": "5 ohm", "lowSide.onResistance": "10 mohm"}
 
-// answered demands an answer within 3 s, without a panic behind any finding.
+// answered demands an answer, without a panic or a number that is none behind any finding.
 func answered(t *testing.T, c client, body string) *pb.ReviewStageResponse {
 	t.Helper()
-	began := time.Now()
 	answer := c.review(body)
-	if d := time.Since(began); d > 3*time.Second {
-		t.Errorf("took %v", d)
-	}
 	for _, f := range answer.GetFindings() {
 		text := f.GetMessage() + strings.Join(f.GetNotes(), "; ")
 		if strings.Contains(text, "internal") || strings.Contains(text, "NaN") || strings.Contains(text, "Inf") {
