@@ -4,12 +4,12 @@ import "math"
 
 // describe finds the extremes and means of the solution.
 func (w *walker) describe(out *Steady) {
-	out.Low = w.extreme(out.steps, func(s *seen) float64 { return s.low }, 1)
-	out.OnLow = w.extreme(out.steps, func(s *seen) float64 { return s.onLow }, 1)
-	out.High = w.extreme(out.steps, func(s *seen) float64 { return -s.high }, -1)
+	out.Low = w.extreme(w.steps, func(s *seen) float64 { return s.low }, 1)
+	out.OnLow = w.extreme(w.steps, func(s *seen) float64 { return s.onLow }, 1)
+	out.High = w.extreme(w.steps, func(s *seen) float64 { return -s.high }, -1)
 	out.Charge = 0
-	for i := range out.steps {
-		s := &out.steps[i]
+	for i := range w.steps {
+		s := &w.steps[i]
 		for k, weight := range s.weights() {
 			if weight != 0 {
 				out.Charge += weight * s.seen[k].recharged
@@ -18,19 +18,19 @@ func (w *walker) describe(out *Steady) {
 		}
 	}
 	out.Collapses = out.Low.Value <= 0
-	out.times()
+	w.times(out)
 	w.held(out)
 }
 
 // times sums what does not depend on any voltage.
-func (s *Steady) times() {
-	for i := range s.steps {
-		step := &s.steps[i]
-		for k, weight := range step.weights() {
+func (w *walker) times(out *Steady) {
+	for i := range w.steps {
+		s := &w.steps[i]
+		for k, weight := range s.weights() {
 			if weight != 0 {
-				s.Window += weight * step.seen[k].window
-				s.OnTime += weight * step.seen[k].on
-				s.Gates += weight * step.seen[k].gates
+				out.Window += weight * s.seen[k].window
+				out.OnTime += weight * s.seen[k].on
+				out.Gates += weight * s.seen[k].gates
 			}
 		}
 	}
@@ -76,13 +76,21 @@ func (w *walker) extreme(steps []step, of func(*seen) float64, sign float64) (be
 	return best
 }
 
-// lowest is about where what of tells is smallest in a step of several periods, by the cubic through the positions.
+// lowest is about where what of tells is smallest in a step of several periods.
 func (s *step) lowest(of func(*seen) float64) (v, at float64) {
-	const looks = 24
-	v = math.Inf(1)
 	var values [4]float64
 	for k := range values {
-		if values[k] = of(&s.seen[k]); values[k] < v {
+		values[k] = of(&s.seen[k])
+	}
+	return s.least(values)
+}
+
+// least is about where a number of the periods of a step is smallest that is known at the positions, by the cubic through them.
+func (s *step) least(values [4]float64) (v, at float64) {
+	const looks = 24
+	v = math.Inf(1)
+	for k := range values {
+		if values[k] < v {
 			v, at = values[k], s.position(k)
 		}
 	}
@@ -141,10 +149,10 @@ func (w *walker) held(out *Steady) {
 			out.Droop = d
 		}
 	}
-	n := len(out.steps)
+	n := len(w.steps)
 	found := [2]bool{}
 	for i := range 2 * n { // the second round knows what the end of the first leaves
-		s := &out.steps[i%n]
+		s := &w.steps[i%n]
 		again := refreshes(s)
 		from := s.v[0]
 		if began == began {
@@ -194,10 +202,10 @@ func (w *walker) firstLow(s *step, refreshes bool) float64 {
 
 // largestFall is the largest fall within one period of a step of several, each of which recharges, by the cubic through the positions [V].
 func (s *step) largestFall() float64 {
-	falls := *s
-	for k := range falls.seen {
-		falls.seen[k].low -= s.v[k]
+	var rises [4]float64
+	for k := range rises {
+		rises[k] = s.seen[k].low - s.v[k]
 	}
-	v, _ := falls.lowest(func(saw *seen) float64 { return saw.low })
+	v, _ := s.least(rises)
 	return -v
 }

@@ -71,8 +71,9 @@ func (s *Steady) Each(f func(at Layout, before, weight float64)) {
 	if s.plan == nil {
 		return
 	}
-	for i := range s.steps {
-		step := &s.steps[i]
+	steps := s.kept.all()
+	for i := range steps {
+		step := &steps[i]
 		if step.merged {
 			y, before := new(layout), new(layout)
 			run := &s.plan.runs[step.run]
@@ -95,18 +96,19 @@ func (s *Steady) Each(f func(at Layout, before, weight float64)) {
 func (s *Steady) Strongest(f func(at Layout, onEnd, across float64) (more bool)) {
 	type sample struct{ step, k int }
 	var all []sample
-	for i := range s.steps {
-		for _, k := range s.steps[i].order() {
+	steps := s.kept.all()
+	for i := range steps {
+		for _, k := range steps[i].order() {
 			all = append(all, sample{i, k})
 		}
 	}
-	of := func(a sample) *seen { return &s.steps[a.step].seen[a.k] }
+	of := func(a sample) *seen { return &steps[a.step].seen[a.k] }
 	slices.SortStableFunc(all, func(a, b sample) int { return cmp.Compare(of(b).across, of(a).across) })
 	for _, a := range all {
 		if math.IsInf(of(a).across, -1) {
 			return
 		}
-		if !f(s.plan.At(s.steps[a.step].position(a.k)), of(a).onEnd, of(a).across) {
+		if !f(s.plan.At(steps[a.step].position(a.k)), of(a).onEnd, of(a).across) {
 			return
 		}
 	}

@@ -103,8 +103,8 @@ func sortPieces(e []piece) {
 
 // divide adds the periods from <= k < to as runs of equal form.
 func (p *Plan) divide(from, to int, at func(float64, *layout)) {
+	var y layout
 	form := func(k int) uint8 {
-		var y layout
 		at(float64(k), &y)
 		return y.code
 	}

@@ -182,8 +182,9 @@ func TestReference(t *testing.T) {
 
 // before is V_BS before the edge of a period [V].
 func (s *Steady) before(k int) float64 {
-	for i := range s.steps {
-		q := &s.steps[i]
+	steps := s.kept.all()
+	for i := range steps {
+		q := &steps[i]
 		if k < q.from || k >= q.to {
 			continue
 		}

@@ -3,6 +3,7 @@ package modulation
 import (
 	"math"
 	"slices"
+	"sync"
 )
 
 // Extreme is where a voltage is lowest or highest over all periods of a plan.
@@ -31,9 +32,12 @@ type Steady struct {
 	Converged bool // false: none was found
 	Passes    int  // evaluations of the law of one period
 
-	plan  *Plan
-	steps []step
+	plan *Plan
+	kept kept
 }
+
+// scratch is memory for the steps of two turns.
+var scratch = sync.Pool{New: func() any { return new([2][]step) }}
 
 // mostTurns is the number of turns over all periods until a solution is found.
 const mostTurns = 60
@@ -45,14 +49,16 @@ func (p *Plan) Steady(start float64) Steady { return p.steady(start, defaultTole
 func (p *Plan) SteadyLike(s *Steady) Steady {
 	var known []step
 	if s.plan != nil && s.plan.periods == p.periods && slices.EqualFunc(s.plan.runs, p.runs, func(a, b run) bool { return a.from == b.from && a.to == b.to }) {
-		known = s.steps
+		known = s.kept.all()
 	}
 	return p.steady(s.Start, defaultTolerance, false, known)
 }
 
 // steady is Steady with a tolerance of the steps [V]; or, exact, with every period by itself. It begins with the steps of another plan, if any.
 func (p *Plan) steady(start, tolerance float64, exact bool, known []step) Steady {
-	w := walker{plan: p, flow: p.leg.Element.Flow(), tolerance: tolerance, exact: exact, steps: make([]step, 0, 128)}
+	w := walker{plan: p, flow: p.leg.Element.Flow(), tolerance: tolerance, exact: exact}
+	pair := scratch.Get().(*[2][]step) // of this turn and the one before
+	defer scratch.Put(pair)
 	low, high := 0.0, p.ceiling()
 	nan := math.NaN()
 	out := Steady{Low: Extreme{nan, -1, nan}, OnLow: Extreme{nan, -1, nan}, High: Extreme{nan, -1, nan}, Droop: nan, Held: nan, OnHeld: nan, Charge: nan, Start: nan, plan: p}
@@ -68,7 +74,7 @@ func (p *Plan) steady(start, tolerance float64, exact bool, known []step) Steady
 			out.Passes = w.passes
 			return out
 		}
-		w.steps = make([]step, 0, max(128, len(known)+8))
+		w.steps = pair[turns%2][:0]
 		var end, slope float64
 		met := false
 		if known != nil {
@@ -78,6 +84,7 @@ func (p *Plan) steady(start, tolerance float64, exact bool, known []step) Steady
 			w.steps = w.steps[:0]
 			end, slope = w.turn(v)
 		}
+		pair[turns%2] = w.steps
 		if met { // from there on it is the turn before, which ended here
 			break
 		}
@@ -92,8 +99,8 @@ func (p *Plan) steady(start, tolerance float64, exact bool, known []step) Steady
 			high = v
 		}
 		if v == 0 && rise <= 0 {
-			out.Collapses, out.Converged, out.Passes, out.steps = true, true, w.passes, w.steps
-			out.times()
+			out.Collapses, out.Converged, out.Passes, out.kept = true, true, w.passes, keep(w.steps)
+			w.times(&out)
 			return out
 		}
 		step := rise / (1 - slope)
@@ -116,8 +123,8 @@ func (p *Plan) steady(start, tolerance float64, exact bool, known []step) Steady
 		known, v = w.steps, to
 	}
 	out.Start, out.Converged = v, true
-	out.steps = w.steps
 	w.describe(&out)
+	out.kept = keep(w.steps)
 	out.Passes = w.passes
 	return out
 }

@@ -29,8 +29,10 @@ func (s *Steady) Trace(most int) []TracePoint {
 		}
 	}
 	start := func(x float64) float64 { return x * s.plan.leg.Period }
-	for i := range s.steps {
-		q := &s.steps[i]
+	steps := s.kept.all()
+	flow := s.plan.leg.Element.Flow()
+	for i := range steps {
+		q := &steps[i]
 		if q.merged {
 			y, before := new(layout), new(layout)
 			s.plan.runs[q.run].merged(y)
@@ -44,7 +46,7 @@ func (s *Steady) Trace(most int) []TracePoint {
 			x := q.position(k)
 			at := s.plan.At(x)
 			add(start(x), x, q.v[k])
-			add(start(x)+at.OnTime, x, q.seen[k].low)
+			add(start(x)+at.OnTime, x, flow.Pass(&at.Period, q.v[k]).Low)
 		}
 		if !q.several() {
 			continue
