@@ -61,6 +61,9 @@ func (c *Circuit) LongestOn() float64 { return c.timing().LongestOn }
 // ShortestLow is the shortest pulse of the low side at a modulated operating point [s]; +Inf without any.
 func (c *Circuit) ShortestLow() float64 { return c.timing().ShortestLow }
 
+// justShort is by what share a time that V_BS does not endure is shown shorter at least [1].
+const justShort = 1e-3
+
 // Endures is how long a modulated operating point's longest time without recharge could last until V_BS falls to what it must keep [s].
 func (c *Circuit) Endures() float64 {
 	t := c.Unrefreshed()
@@ -73,13 +76,11 @@ func (c *Circuit) Endures() float64 {
 	}
 	keep := c.Required()
 	from, to := c.fallen()
-	h := charge.Hold{Start: to, Capacitance: c.Capacitance(), Loads: c.Loads()}
 	if to >= keep {
+		h := charge.Hold{Start: to, Capacitance: c.Capacitance(), Loads: c.Loads()}
 		return t + h.Time(keep)
 	}
-	e := c.edge()
-	h.Start = (h.Capacitance*from - e.gate - e.offBias - e.levelShift - e.junction) / (h.Capacitance + e.gatePerVolt)
-	return math.Min(h.Time(keep), t*(1-1e-3))
+	return math.Min(c.heldFrom(from, keep), t*(1-justShort)) // too long, whatever the loads did before the high side turned on
 }
 
 // Stall is how long the high side can stay on where the fundamental stops as it turns on for long, from V_BS in running operation to what V_BS must
@@ -94,13 +95,18 @@ func (c *Circuit) Stall() float64 {
 	case !(c.LongestOn() > y.Plan.Carrier()):
 		return math.Inf(1)
 	}
-	e := c.edge()
-	h := charge.Hold{Capacitance: c.Capacitance(), Loads: c.Loads()}
-	h.Start = (h.Capacitance*y.Held - e.gate - e.offBias - e.levelShift - e.junction) / (h.Capacitance + e.gatePerVolt)
 	keep := c.Need(&c.Stage.Driver.UVLOFalling)
 	if c.Forward() {
 		keep = math.Max(keep, c.driveNeeded())
 	}
+	return c.heldFrom(y.Held, keep)
+}
+
+// heldFrom is how long the high side can stay on from V_BS just before it turns on, until V_BS falls to what it must keep [V], [s].
+func (c *Circuit) heldFrom(before, keep float64) float64 {
+	e := c.edge()
+	h := charge.Hold{Capacitance: c.Capacitance(), Loads: c.Loads()}
+	h.Start = (h.Capacitance*before - e.gate - e.offBias - e.levelShift - e.junction) / (h.Capacitance + e.gatePerVolt)
 	return h.Time(keep)
 }
 
@@ -120,10 +126,10 @@ func (c *Circuit) HighPeriod() (*Period, int) {
 	return &p, pass.HighInterval
 }
 
-// LowAngle and HighAngle are where in the fundamental V_BS is lowest and highest [rad]; NaN where the operating point has none.
+// LowAngle is where in the fundamental V_BS is lowest [rad]; NaN where the operating point has none.
 func (c *Circuit) LowAngle() float64 { return c.angle(func(y *Cycle) float64 { return y.Low.Period }) }
 
-// HighAngle is documented with LowAngle.
+// HighAngle is where in the fundamental V_BS is highest [rad]; NaN where the operating point has none.
 func (c *Circuit) HighAngle() float64 {
 	return c.angle(func(y *Cycle) float64 { return y.High.Period })
 }
